@@ -1,0 +1,1 @@
+"""Numbers of Pricewake: series, growth rates and the lag between a driver and a response."""

@@ -1,0 +1,1 @@
+"""The dashboard and the command: files in, pages, exports."""

@@ -1,0 +1,1 @@
+"""Drawing: a result of analytics in, a plotly figure out; nothing is computed here."""
