@@ -1,5 +1,6 @@
 """Growth rates and trailing means. Every rate is in percent."""
 
+from dataclasses import replace
 from typing import Literal, get_args
 
 import numpy as np
@@ -64,7 +65,8 @@ def growth_rate(
     power = PERIODS_PER_YEAR[series.frequency] / span if annualised else 1.0
     rate = 100.0 * power * np.log(ratio) if formula == "log" else 100.0 * (ratio**power - 1.0)
     over = "year" if annualised else (noun if span == 1 else f"{span} {noun}s")
-    return series.replaced(
+    return replace(
+        series,
         first=series.first + span,
         values=rate,
         kind="rate",
@@ -103,4 +105,5 @@ def trailing_mean(values: ArrayLike, window: int) -> FloatArray:
         raise ValueError(f"values must be one-dimensional, but got shape {array.shape}")
     if not 1 <= window <= array.size:
         raise ValueError(f"window must be from 1 to {array.size}, but got {window}")
-    return np.lib.stride_tricks.sliding_window_view(array, window).mean(axis=1)
+    means: FloatArray = np.lib.stride_tricks.sliding_window_view(array, window).mean(axis=1)
+    return means

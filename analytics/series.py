@@ -2,8 +2,8 @@
 
 import hashlib
 from collections.abc import Iterable
-from dataclasses import dataclass
-from typing import Literal, cast, get_args
+from dataclasses import dataclass, replace
+from typing import Literal, get_args
 
 import numpy as np
 import pandas as pd
@@ -126,7 +126,7 @@ class Series:
     @property
     def last(self) -> pd.Period:
         """Period of the newest value."""
-        return cast(pd.Period, self.first + (self.values.size - 1))
+        return self.first + (self.values.size - 1)
 
     @property
     def periods(self) -> pd.PeriodIndex:
@@ -165,12 +165,7 @@ class Series:
                 f"{self.name!r} has no value in the sample chosen; it runs from"
                 f" {period_label(self.first)} to {period_label(self.last)}"
             )
-        return self.replaced(first=self.first + start, values=part)
-
-    def replaced(self, **changes: object) -> "Series":
-        """Return a copy with the named attributes changed."""
-        attributes = {name: getattr(self, name) for name in self.__dataclass_fields__}
-        return Series(**{**attributes, **changes})  # type: ignore[arg-type]
+        return replace(self, first=self.first + start, values=part)
 
 
 def series_from_periods(
