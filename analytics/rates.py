@@ -33,13 +33,14 @@ def growth_rate(
     Returns
     -------
     Series
-        Of kind "rate", shape (n - span,), in percent; nan where either value is missing.
+        Of kind "rate", in percent; nan where either value is missing. It runs from the first
+        period to the last that has a rate: n - span values where there is no gap.
 
     Raises
     ------
     ValueError
         A value is zero or below, the span is not positive or leaves no pair of values, or the
-        formula is unknown.
+        formula is unknown. Of a rate only the formula is checked.
 
     Examples
     --------
@@ -60,9 +61,17 @@ def growth_rate(
         )
     noun = PERIOD_NOUN[series.frequency]
     if span < 1 or span >= series.values.size:
-        raise ValueError(f"span must be from 1 to {series.values.size - 1} {noun}s, but got {span}")
+        raise ValueError(
+            f"span must be at least 1 and below the {series.values.size} {noun}s of"
+            f" {series.name!r}, but got {span}"
+        )
     ratio = series.values[span:] / series.values[:-span]
     power = PERIODS_PER_YEAR[series.frequency] / span if annualised else 1.0
+    if np.isnan(ratio).all():
+        apart = f"one {noun}" if span == 1 else f"{span} {noun}s"
+        raise ValueError(
+            f"{series.name!r} must have two values {apart} apart, but its gaps leave none"
+        )
     rate = 100.0 * power * np.log(ratio) if formula == "log" else 100.0 * (ratio**power - 1.0)
     over = "year" if annualised else (noun if span == 1 else f"{span} {noun}s")
     return replace(

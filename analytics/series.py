@@ -16,7 +16,7 @@ Adjustment = Literal["yes", "no", "unknown"]
 
 PERIODS_PER_YEAR: dict[Frequency, int] = {"monthly": 12, "quarterly": 4, "annual": 1}
 PERIOD_NOUN: dict[Frequency, str] = {"monthly": "month", "quarterly": "quarter", "annual": "year"}
-_FREQUENCY_OF: dict[str, Frequency] = {"M": "monthly", "Q": "quarterly", "Y": "annual"}
+_FREQUENCY_OF: dict[str, Frequency] = {"M": "monthly", "Q-DEC": "quarterly", "Y-DEC": "annual"}
 
 
 def read_only(values: ArrayLike) -> FloatArray:
@@ -32,12 +32,13 @@ def frequency_of(period: pd.Period) -> Frequency:
     Raises
     ------
     ValueError
-        The period is weekly, daily or of any other calendar.
+        The period is weekly, daily, of a fiscal year or of any other calendar.
     """
-    code = period.freqstr.split("-")[0]
-    if code not in _FREQUENCY_OF:
-        raise ValueError(f"periods must be months, quarters or years, but got {period.freqstr!r}")
-    return _FREQUENCY_OF[code]
+    if period.freqstr not in _FREQUENCY_OF:
+        raise ValueError(
+            f"periods must be months, quarters or years of the calendar, but got {period.freqstr!r}"
+        )
+    return _FREQUENCY_OF[period.freqstr]
 
 
 def period_label(period: pd.Period) -> str:
@@ -140,8 +141,8 @@ class Series:
 
     @property
     def fingerprint(self) -> str:
-        """Sixteen hexadecimal digits that change when calendar or values change."""
-        start = f"{self.frequency}:{self.first.ordinal}:".encode()
+        """Sixteen hexadecimal digits that change when calendar, values or kind change."""
+        start = f"{self.frequency}:{self.kind}:{self.first.ordinal}:".encode()
         body = np.where(np.isnan(self.values), np.nan, self.values + 0.0).astype("<f8").tobytes()
         return hashlib.sha256(start + body).hexdigest()[:16]
 
@@ -155,8 +156,14 @@ class Series:
         Raises
         ------
         ValueError
-            Nothing lies between the two.
+            Nothing lies between the two, or one is of another calendar than the series.
         """
+        for end in (first, last):
+            if end is not None and frequency_of(end) != self.frequency:
+                raise ValueError(
+                    f"the sample of {self.name!r} must be given in {PERIOD_NOUN[self.frequency]}s,"
+                    f" but got {period_code(end)}"
+                )
         start = 0 if first is None else max(0, first.ordinal - self.first.ordinal)
         stop = None if last is None else max(0, last.ordinal - self.first.ordinal + 1)
         part = self.values[start:stop]
@@ -292,11 +299,13 @@ def align(driver: Series, response: Series) -> Pair:
 
 
 def _longest_span(driver: Series, response: Series) -> str:
-    """Say which stretch without gaps is the longest."""
+    """Say which stretch without gaps is the longest, the earliest where several are."""
     joint = driver.to_frame().join(response.to_frame(), how="inner", lsuffix="'")
     whole = joint.notna().all(axis=1)
+    if not whole.any():
+        return f"no {PERIOD_NOUN[driver.frequency]} has both"
     runs = (~whole).cumsum()[whole]
-    best = runs[runs == runs.value_counts().idxmax()].index
+    best = runs[runs == runs.value_counts(sort=False).idxmax()].index
     return (
         f"the longest stretch without gaps is {period_label(best[0])} to {period_label(best[-1])}"
     )
