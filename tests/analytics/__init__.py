@@ -1,0 +1,1 @@
+"""Checks of the numbers, one file a module."""

@@ -1,0 +1,1 @@
+"""Checks against values and data that come from outside the project."""
