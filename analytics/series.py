@@ -300,7 +300,7 @@ def align(driver: Series, response: Series) -> Pair:
 
 def _longest_span(driver: Series, response: Series) -> str:
     """Say which stretch without gaps is the longest, the earliest where several are."""
-    joint = driver.to_frame().join(response.to_frame(), how="inner", lsuffix="'")
+    joint = pd.concat([driver.to_frame(), response.to_frame()], axis=1, join="inner")
     whole = joint.notna().all(axis=1)
     if not whole.any():
         return f"no {PERIOD_NOUN[driver.frequency]} has both"
