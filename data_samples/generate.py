@@ -10,6 +10,7 @@ import numpy as np
 from analytics.series import FloatArray, period_code
 from data_samples.divisions import BASE_YEAR, DIGITS, NAMES, YEARS, basket
 from data_samples.economy import BREAK_MONTH, MONTHS, QUARTERS, uldrevay
+from data_samples.panel import PANEL_MONTHS, PlannedEconomy, panel
 
 SEED = 2009
 
@@ -72,8 +73,13 @@ def write_files(directory: Path) -> None:
         [2],
     )
     _write(directory / "series.csv", _SERIES_HEADER, _series_rows())
+    economies = panel(np.random.default_rng(seeds[2]))
+    _write(directory / "panel.csv", _PANEL_HEADER, _panel_rows(economies))
+    _write(directory / "truth.csv", _TRUTH_HEADER, _truth_rows(economies))
 
 
+_PANEL_HEADER = ("economy", "period", "series", "value")
+_TRUTH_HEADER = ("economy", "relation", "lag", "slope", "baseline", "spread", "trait")
 _SERIES_HEADER = ("file", "name", "kind", "unit", "adjustment", "source", "note")
 
 
@@ -84,6 +90,33 @@ def _series_rows() -> Iterable[Sequence[str]]:
     for name in NAMES:
         yield "divisions.csv", name, "index", _BASE, "no", _OFFICE, "weights in weights.csv"
     yield "output_quarterly.csv", "Real output", "index", _BASE, "yes", _OFFICE, "volume"
+    source = "statistical offices of thirty invented economies"
+    note = "one for each economy"
+    yield "panel.csv", "Broad money", "level", "million of currency", "yes", source, note
+    yield "panel.csv", "Consumer prices", "index", "1986-11 = 100", "yes", source, note
+
+
+def _panel_rows(economies: Iterable[PlannedEconomy]) -> Iterable[Sequence[str]]:
+    """Long form: economy by economy, series by series, month by month."""
+    months = [period_code(month) for month in PANEL_MONTHS]
+    for plan, money, prices in economies:
+        for month, value in zip(months, money, strict=True):
+            yield plan.economy, month, "Broad money", f"{value:.1f}"
+        for month, value in zip(months, prices, strict=True):
+            yield plan.economy, month, "Consumer prices", f"{value:.3f}"
+
+
+def _truth_rows(economies: Iterable[PlannedEconomy]) -> Iterable[Sequence[str]]:
+    """State what each economy was made from; without a relation lag and slope are empty."""
+    for plan, _, _ in economies:
+        planted = (str(plan.lag), f"{plan.slope:.2f}", f"{plan.baseline:.2f}", str(plan.spread))
+        related = plan.slope != 0.0
+        yield (
+            plan.economy,
+            "yes" if related else "no",
+            *(planted if related else ("", "", "", "")),
+            plan.trait,
+        )
 
 
 def _write_wide(
