@@ -1,1 +1,1 @@
-"""Reading of release files."""
+"""Reading of release files. The door is `app.intake.reading`."""
