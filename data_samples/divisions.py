@@ -140,7 +140,7 @@ def _relative_prices(rng: np.random.Generator, n: int) -> FloatArray:
 def _per_mille(shares: FloatArray) -> FloatArray:
     """Shares in tenths of one per mille that sum to 1000 exactly, by largest remainder."""
     tenths = 10_000.0 * shares / shares.sum()
-    whole = np.floor(tenths)
+    whole: FloatArray = np.floor(tenths)
     missing = round(10_000.0 - float(whole.sum()))
     whole[np.argsort(whole - tenths, kind="stable")[:missing]] += 1.0
     return whole / 10.0
@@ -148,4 +148,5 @@ def _per_mille(shares: FloatArray) -> FloatArray:
 
 def _to_base_year(levels: FloatArray) -> FloatArray:
     """Levels whose mean over the base year is 100."""
-    return 100.0 * levels / levels[MONTHS.year == BASE_YEAR].mean(axis=0)
+    base: FloatArray = levels[MONTHS.year == BASE_YEAR].mean(axis=0)
+    return 100.0 * levels / base

@@ -62,10 +62,9 @@ def uldrevay(rng: np.random.Generator) -> Economy:
     """Make the economy; the same generator state makes the same economy."""
     n = MONTHS.size
     money = _money_growth(rng, _LEAD_IN + n)
-    noise = ar_process(rng, n, ar=0.94, sd=0.20, law="laplace")
-    noise += white_noise(rng, n, sd=0.27, law="laplace")
-    effect = lagged_effect(money, lag=LAG, spread=SPREAD)[_LEAD_IN:]
-    prices = BASELINE + SLOPE * effect + noise
+    core = BASELINE + SLOPE * lagged_effect(money, lag=LAG, spread=SPREAD)[_LEAD_IN:]
+    prices = core + ar_process(rng, n, ar=0.94, sd=0.19, law="laplace")
+    prices += white_noise(rng, n, sd=1.0, law="laplace") * (0.08 + 0.40 * np.maximum(core, 0.0))
     policy = _policy_rate(prices)
     unemployment = _unemployment(rng, prices, policy)
     return Economy(
@@ -126,4 +125,4 @@ def _output(rng: np.random.Generator, unemployment: FloatArray) -> FloatArray:
     growth = trend - 0.9 * np.diff(quarterly)
     growth += white_noise(rng, growth.size, sd=0.45, law="laplace")
     level = levels_from_growth(growth)
-    return level * 100.0 / level[QUARTERS.year == BASE_YEAR].mean()
+    return level * (100.0 / float(level[QUARTERS.year == BASE_YEAR].mean()))

@@ -8,8 +8,8 @@ from pathlib import Path
 import numpy as np
 
 from analytics.series import FloatArray, period_code
-from data_samples.divisions import BASE_YEAR, DIGITS, NAMES, YEARS, basket
-from data_samples.economy import BREAK_MONTH, MONTHS, QUARTERS, uldrevay
+from data_samples.divisions import DIGITS, NAMES, YEARS, basket
+from data_samples.economy import BASE_YEAR, BREAK_MONTH, MONTHS, QUARTERS, uldrevay
 from data_samples.panel import PANEL_MONTHS, PlannedEconomy, panel
 
 SEED = 2009
