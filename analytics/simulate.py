@@ -150,7 +150,8 @@ def garch_noise(
 
     References
     ----------
-    .. [1] Bollerslev (1986), Journal of Econometrics 31, equation 3.
+    .. [1] Bollerslev (1986), Generalized autoregressive conditional heteroskedasticity, Journal of
+       Econometrics 31, section 2.
     """
     if min(arch, garch) < 0.0 or arch + garch >= 1.0:
         raise ValueError(
