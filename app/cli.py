@@ -1,0 +1,261 @@
+"""The command `pricewake`: serve the dashboard, or answer without a browser."""
+
+import json
+import math
+import signal
+import socket
+import sys
+import threading
+import webbrowser
+from collections.abc import Callable
+from dataclasses import asdict, fields
+from pathlib import Path
+from typing import Any, NoReturn
+
+import click
+
+from app.places import software_version
+from app.state import StateError, ViewState, kind_of
+
+DEFAULT_PORT = 8391
+LAG_FIELDS = (
+    "driver",
+    "response",
+    "window",
+    "shift",
+    "growth",
+    "first",
+    "last",
+    "months",
+    "windows",
+    "shifts",
+)
+
+
+class _ServeUnlessNamed(click.Group):
+    """A group whose first word may be a file: then the dashboard is served."""
+
+    def parse_args(self, ctx: click.Context, args: list[str]) -> list[str]:
+        if not args or (args[0] not in self.commands and args[0] not in ("--help", "--version")):
+            args = ["serve", *args]
+        return super().parse_args(ctx, args)
+
+
+def _state_options(names: tuple[str, ...]) -> Callable[[Callable[..., Any]], Callable[..., Any]]:
+    """Give a command one flag a field of ViewState, from the table of the fields."""
+
+    def decorate(command: Callable[..., Any]) -> Callable[..., Any]:
+        for item in reversed([f for f in fields(ViewState) if f.name in names]):
+            flag = click.option(f"--{item.name}", metavar="TEXT", help=kind_of(item).help)
+            command = flag(command)
+        return command
+
+    return decorate
+
+
+_files = click.argument("files", nargs=-1, type=click.Path(path_type=Path))
+_as_json = click.option(
+    "--json", "as_json", is_flag=True, help="Print one JSON object and nothing else."
+)
+_csv = click.option("--csv", "csv_path", type=click.Path(path_type=Path), help="Write a CSV file.")
+
+
+@click.group(cls=_ServeUnlessNamed)
+@click.version_option(software_version(), prog_name="pricewake")
+def pricewake() -> None:
+    """Read a price release: is it unusual, does money lead it, and how surely.
+
+    With FILES and no command, the dashboard opens on them; with nothing at all, on an invented
+    economy.
+    """
+
+
+@pricewake.command()
+@_files
+@click.option("--port", type=click.IntRange(1, 65535), default=DEFAULT_PORT, show_default=True)
+@click.option("--no-browser", is_flag=True, help="Do not open the browser.")
+def serve(files: tuple[Path, ...], port: int, no_browser: bool) -> None:
+    """Serve the dashboard on this machine and open the browser (the command when none is named)."""
+    free = _free_port(port)
+    if free != port:
+        click.echo(f"Port {port} is taken; using {free}.")
+    from waitress.server import create_server
+
+    from app.server import build_app
+
+    app = build_app(_workspace(files))
+    server = create_server(app.server, host="127.0.0.1", port=free, threads=8, ident=None)
+    address = f"http://127.0.0.1:{free}/lag"
+    click.echo(f"Pricewake is at {address}  (Ctrl-C ends it)")
+    if not no_browser:
+        threading.Thread(target=webbrowser.open, args=(address,), daemon=True).start()
+    signal.signal(signal.SIGTERM, signal.default_int_handler)
+    try:
+        server.run()
+    except KeyboardInterrupt:
+        pass
+    finally:
+        server.close()
+        click.echo("Pricewake has ended.")
+
+
+@pricewake.command()
+@_files
+@_as_json
+@_csv
+def inspect(files: tuple[Path, ...], as_json: bool, csv_path: Path | None) -> int:
+    """Say what was understood in the files and what is wrong with them."""
+    from app.intake.reading import inspection
+
+    report = inspection(_workspace(files).releases)
+    if csv_path:
+        rows = [list(report["series"][0])] if report["series"] else []
+        rows += [[_flat(v) for v in series.values()] for series in report["series"]]
+        _write(csv_path, _csv_text("what was understood in the files", rows))
+    if as_json:
+        _print_json(report)
+    else:
+        for series in report["series"]:
+            click.echo(
+                f"{series['name']}: {series['frequency']} {series['kind']}, {series['first']} to"
+                f" {series['last']}, {series['n']} values, {len(series['gaps'])} missing"
+            )
+        for problem in report["problems"]:
+            place = f"row {problem['row']}, " if problem["row"] else ""
+            click.echo(f"{problem['severity']}: {problem['file']}: {place}{problem['message']}")
+    return int(any(problem["severity"] == "error" for problem in report["problems"]))
+
+
+@pricewake.command()
+@_files
+@_state_options(LAG_FIELDS)
+@_as_json
+@_csv
+@click.option(
+    "--view",
+    type=click.Choice(["surface", "scatter", "overlay"]),
+    default="surface",
+    show_default=True,
+    help="Which view --csv writes.",
+)
+def lag(
+    files: tuple[Path, ...], as_json: bool, csv_path: Path | None, view: str, **flags: str | None
+) -> int:
+    """Pair a driver with a response: one cell, and the best cell of the map."""
+    from app import exports
+    from app.compute import Bridge
+    from app.pages import lag as page
+
+    workspace = _workspace(files)
+    bridge = Bridge(workspace)
+    state = _state(workspace.opening_state(), flags)
+    shown = page.view(state, bridge, fit=_unasked(flags))
+    if csv_path:
+        rows = exports.VIEWS[view](shown)
+        _write(csv_path, exports.csv_text(exports.header(shown), rows))
+    answer = page.answer(shown)
+    if as_json:
+        _print_json(answer)
+    else:
+        cell, best = answer["cell"], answer["best"]
+        click.echo(shown.sentence)
+        click.echo(
+            f"Chosen cell: correlation {cell['correlation']:+.2f}, slope {cell['slope']:+.3f}"
+            f" (naive standard error {cell['se_naive']:.3f}), n {cell['n']}."
+        )
+        click.echo(
+            f"Best cell of the map: window {best['window']}, shift {best['shift']},"
+            f" correlation {best['correlation']:+.2f}, slope {best['slope']:+.3f}."
+        )
+        click.echo(page.CAUTION)
+    return _status(workspace)
+
+
+def main(arguments: list[str] | None = None) -> NoReturn:
+    """Run the command; wrong use and unreadable input give one sentence and exit status 2."""
+    try:
+        outcome = pricewake.main(arguments, prog_name="pricewake", standalone_mode=False)
+    except click.exceptions.Abort:
+        sys.exit(130)
+    except click.ClickException as error:
+        _refuse(error.format_message())
+    except (ValueError, OSError) as error:
+        _refuse(str(error))
+    sys.exit(outcome if isinstance(outcome, int) else 0)
+
+
+def _refuse(sentence: str) -> NoReturn:
+    click.echo(f"pricewake: {' '.join(sentence.split())}", err=True)
+    sys.exit(2)
+
+
+def _workspace(files: tuple[Path, ...]) -> Any:
+    """Read the files, or the invented economy if there are none."""
+    from app.demo import demo_releases
+    from app.intake.reading import read_path
+    from app.workspace import Workspace
+
+    return Workspace(tuple(read_path(path) for path in files) if files else demo_releases())
+
+
+def _unasked(flags: dict[str, str | None]) -> bool:
+    """Whether neither window nor shift was given, so that the calendar's usual ones apply."""
+    return flags["window"] is None and flags["shift"] is None
+
+
+def _state(opening: ViewState, flags: dict[str, str | None]) -> ViewState:
+    kinds = {item.name: kind_of(item) for item in fields(ViewState)}
+    given = {name: kinds[name].read(text) for name, text in flags.items() if text is not None}
+    try:
+        return ViewState(**{**asdict(opening), **given})
+    except StateError as error:
+        raise click.UsageError(str(error)) from error
+
+
+def _status(workspace: Any) -> int:
+    return int(any(problem.severity == "error" for problem in workspace.problems))
+
+
+def _free_port(port: int) -> int:
+    """Return the first port from `port` on that nothing listens on."""
+    for candidate in range(port, min(port + 100, 65536)):
+        with socket.socket(socket.AF_INET, socket.SOCK_STREAM) as probe:
+            probe.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
+            try:
+                probe.bind(("127.0.0.1", candidate))
+            except OSError:
+                continue
+            return candidate
+    raise click.UsageError(f"port must be free, but {port} and the 99 after it are taken")
+
+
+def _print_json(answer: dict[str, Any]) -> None:
+    click.echo(json.dumps(_finite(answer), ensure_ascii=False, allow_nan=False))
+
+
+def _finite(value: Any) -> Any:
+    """Replace what JSON cannot hold: nan and infinities become null."""
+    if isinstance(value, dict):
+        return {key: _finite(each) for key, each in value.items()}
+    if isinstance(value, (list, tuple)):
+        return [_finite(each) for each in value]
+    if isinstance(value, float) and not math.isfinite(value):
+        return None
+    return value
+
+
+def _flat(value: Any) -> Any:
+    return " ".join(str(each) for each in value) if isinstance(value, (list, tuple)) else value
+
+
+def _csv_text(view: str, rows: list[list[Any]]) -> str:
+    from app.exports import csv_text
+
+    return csv_text([("Pricewake", software_version()), ("view", view)], rows)
+
+
+def _write(path: Path, text: str) -> None:
+    """Write a file whole or not at all."""
+    part = path.with_name(path.name + ".part")
+    part.write_text(text, encoding="utf-8", newline="")
+    part.replace(path)

@@ -1,0 +1,83 @@
+"""A field of ViewState as a control on a page: label, native element, one sentence of help.
+
+Native elements keep keyboard and screen-reader behaviour of the browser. Dash has no plain
+``input``, so text fields and sliders are described in ``data-`` attributes, and
+assets/controls.js puts the element in.
+"""
+
+from collections.abc import Iterable
+from typing import Any
+
+from dash import html
+
+from app.state import Choice, Text, ViewState, Whole, field_kind
+
+
+def select(state: ViewState, name: str, options: Iterable[str] = ()) -> html.Div:
+    """Return a drop-down for a choice, or for a series name out of `options`."""
+    kind = field_kind(name)
+    current = getattr(state, name)
+    words = (
+        dict(kind.options)
+        if isinstance(kind, Choice)
+        else {option: option for option in dict.fromkeys([*options, current])}
+    )
+    return _labelled(
+        name,
+        html.Select(
+            [
+                html.Option(text, value=value, selected=value == current)
+                for value, text in words.items()
+            ],
+            id=f"field-{name}",
+            **{"data-field": name, "aria-describedby": f"help-{name}"},
+        ),
+    )
+
+
+def text(state: ViewState, name: str, placeholder: str = "") -> html.Div:
+    """Return a text field; `placeholder` shows what an empty one stands for."""
+    kind = field_kind(name)
+    assert isinstance(kind, Text)
+    return _labelled(
+        name, _native(name, type="text", value=getattr(state, name), placeholder=placeholder)
+    )
+
+
+def slider(state: ViewState, name: str, low: int, high: int, *, vertical: bool = False) -> html.Div:
+    """Return a slider over whole periods, lying along an axis of the map."""
+    kind = field_kind(name)
+    assert isinstance(kind, Whole)
+    return html.Div(
+        [
+            html.Label(kind.label, htmlFor=f"field-{name}", className="hidden-label"),
+            _native(
+                name,
+                type="range",
+                value=getattr(state, name),
+                min=low,
+                max=high,
+                step=1,
+                orient="vertical" if vertical else "horizontal",
+            ),
+            html.Span(kind.help, id=f"help-{name}", className="hidden-label"),
+        ],
+        className="slider vertical" if vertical else "slider",
+    )
+
+
+def _native(name: str, **attributes: Any) -> html.Span:
+    data = {f"data-{key}": str(value) for key, value in attributes.items() if value != ""}
+    return html.Span(className="native", **{"data-native": name, **data})
+
+
+def _labelled(name: str, element: Any) -> html.Div:
+    kind = field_kind(name)
+    return html.Div(
+        [
+            html.Label(kind.label, htmlFor=f"field-{name}", title=kind.help),
+            element,
+            html.Span(kind.help, id=f"help-{name}", className="hidden-label"),
+        ],
+        className="control",
+    )

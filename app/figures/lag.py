@@ -1,0 +1,220 @@
+"""Charts of the Lag page.
+
+The order of the traces is a contract with assets/lag-page.js, which puts the numbers of another
+cell into the same traces while a slider moves.
+"""
+
+import numpy as np
+import pandas as pd
+import plotly.graph_objects as go
+
+from analytics.cell import LagCell, SliceMeans
+from analytics.series import PERIOD_NOUN, Pair, Series, period_code, period_label
+from analytics.surface import LagSurface
+from app.compute import Overlay, noun
+from app.figures.theme import colour, diverging, template, time_scale
+from app.state import ViewState
+
+SCATTER_TRACES = ("points", "line", "ellipse", "driver_slices", "response_slices")
+OVERLAY_TRACES = ("driver", "response")
+
+
+def surface_heatmap(surface: LagSurface, pair: Pair, state: ViewState) -> go.Figure:
+    """Draw the map of all cells; the page draws the crosshair over it."""
+    values = surface.correlation if state.quantity == "correlation" else surface.slope
+    unit = noun(pair)
+    top = 1.0 if state.quantity == "correlation" else float(np.nanmax(np.abs(values)))
+    figure = go.Figure(
+        go.Heatmap(
+            x=surface.shifts,
+            y=surface.windows,
+            z=values,
+            customdata=surface.pairs,
+            zmin=-top,
+            zmax=top,
+            colorscale=diverging(),
+            colorbar={
+                "thickness": 10,
+                "len": 1.0,
+                "outlinewidth": 0,
+                "title": {"text": state.quantity, "side": "right"},
+                "xpad": 4,
+            },
+            hovertemplate=(
+                f"window %{{y}}, shift %{{x:+d}} {unit}s<br>{state.quantity} %{{z:+.2f}}"
+                f"<br>%{{customdata}} {unit}s<extra></extra>"
+            ),
+        )
+    )
+    step = {"monthly": 12, "quarterly": 4, "annual": 1}[pair.driver.frequency]
+    axis = {"showgrid": False, "ticklen": 11, "tick0": 0, "dtick": step, "fixedrange": True}
+    figure.update_layout(
+        template=template(),
+        margin={"l": 66, "r": 70, "t": 8, "b": 56},
+        xaxis={
+            **axis,
+            "range": [surface.shifts[0] - 0.5, surface.shifts[-1] + 0.5],
+            "title": {"text": f"shift ({unit}s; above 0 the driver leads)"},
+        },
+        yaxis={
+            **axis,
+            "range": [surface.windows[0] - 0.5, surface.windows[-1] + 0.5],
+            "title": {"text": f"window ({unit}s averaged)"},
+        },
+    )
+    if surface.shifts[0] < 0 < surface.shifts[-1]:
+        figure.add_vline(x=0, line={"color": colour("ink"), "width": 0.7, "dash": "dot"})
+    return figure
+
+
+def cell_scatter(cell: LagCell, pair: Pair, state: ViewState, start: int) -> go.Figure:
+    """Draw the pairs of one cell with line, 2-sigma ellipse and slice means.
+
+    `start` is the place in the pair's calendar of the first driver month.
+    """
+    months = pair.periods[start : start + cell.n]
+    ends = cell.driver.min(), cell.driver.max()
+    figure = go.Figure(
+        [
+            go.Scatter(
+                x=cell.driver,
+                y=cell.response,
+                mode="markers",
+                marker={
+                    "size": 5,
+                    "opacity": 0.75,
+                    "color": decimal_years(months),
+                    "colorscale": time_scale(),
+                    "cmin": decimal_years(pair.periods)[0],
+                    "cmax": decimal_years(pair.periods)[-1],
+                    "colorbar": {
+                        "thickness": 8,
+                        "len": 0.6,
+                        "outlinewidth": 0,
+                        "title": {"text": "driver read in", "side": "right"},
+                        "tickformat": "d",
+                        "nticks": 6,
+                    },
+                },
+                text=pair_labels(pair, start, cell.n, state.shift),
+                hovertemplate="%{text}<br>driver %{x:.2f}, response %{y:.2f}<extra></extra>",
+                name="months",
+            ),
+            go.Scatter(
+                x=ends,
+                y=[cell.intercept + cell.slope * end for end in ends],
+                mode="lines",
+                line={"color": colour("fit"), "width": 2},
+                hoverinfo="skip",
+                name="least squares",
+            ),
+            go.Scatter(
+                x=cell.ellipse[:, 0],
+                y=cell.ellipse[:, 1],
+                mode="lines",
+                line={"color": colour("mark"), "width": 1.2, "dash": "dash"},
+                hoverinfo="skip",
+                name="2-sigma ellipse",
+            ),
+            _slice_trace(cell.driver_slices, across=True),
+            _slice_trace(cell.response_slices, across=False),
+        ]
+    )
+    figure.update_layout(
+        template=template(),
+        margin={"l": 56, "r": 70, "t": 8, "b": 48},
+        xaxis={"title": {"text": axis_title(pair.driver, state)}},
+        yaxis={"title": {"text": axis_title(pair.response, state)}},
+    )
+    return figure
+
+
+def overlay_lines(overlay: Overlay, pair: Pair, state: ViewState) -> go.Figure:
+    """Draw both smoothed series on one time axis, the response moved back by the shift."""
+    months = [period_code(period) for period in overlay.periods]
+    when = overlay.periods.to_timestamp()
+    figure = go.Figure(
+        [
+            go.Scatter(
+                x=when,
+                y=overlay.driver,
+                text=months,
+                mode="lines",
+                line={"color": colour("driver"), "width": 1.8},
+                hovertemplate="%{text}: %{y:.2f}<extra>driver</extra>",
+                name="driver",
+            ),
+            go.Scatter(
+                x=when,
+                y=overlay.response,
+                text=months,
+                mode="lines",
+                line={"color": colour("response"), "width": 1.8, "dash": "5px,2px"},
+                hovertemplate="%{text}: %{y:.2f}<extra>response, moved</extra>",
+                name="response",
+            ),
+        ]
+    )
+    figure.update_layout(
+        template=template(),
+        margin={"l": 56, "r": 12, "t": 8, "b": 28},
+        xaxis={"hoverformat": "%b %Y"},
+        yaxis={"title": {"text": shared_unit(pair)}},
+        hovermode="x unified",
+    )
+    return figure
+
+
+def decimal_years(periods: pd.PeriodIndex) -> np.ndarray:
+    """Return the middle of each period as a year with decimals, for colours."""
+    per_year = {"M": 12, "Q": 4, "Y": 1}[periods.freqstr[0]]
+    return np.asarray((periods.asfreq("M", how="start").asi8 / 12 + 1970) + 0.5 / per_year)
+
+
+def pair_labels(pair: Pair, start: int, n: int, shift: int) -> list[str]:
+    """Name the two months of each point: driver's, then response's."""
+    months = pair.periods[start : start + n]
+    return [f"{period_label(m)} → {period_label(m + shift)}" for m in months]
+
+
+def rate_unit(series: Series) -> str:
+    """Return the unit of a growth rate or rate, percent if the source names none."""
+    return series.unit or "percent"
+
+
+def shared_unit(pair: Pair) -> str:
+    """Return the unit of both sides where they agree, else percent."""
+    units = {rate_unit(pair.driver), rate_unit(pair.response)}
+    return units.pop() if len(units) == 1 else "percent"
+
+
+def axis_title(series: Series, state: ViewState) -> str:
+    """Return the axis title: name, window and unit."""
+    name = series.name if len(series.name) <= 32 else series.name[:30] + "…"
+    smoothed = (
+        "" if state.window == 1 else f", mean of {state.window} {PERIOD_NOUN[series.frequency]}s"
+    )
+    return f"{name}{smoothed} ({rate_unit(series)})"
+
+
+def _slice_trace(slices: SliceMeans, *, across: bool) -> go.Scatter:
+    name = "mean response in slices of the driver" if across else "mean driver in slices"
+    return go.Scatter(
+        x=slices.centre if across else slices.mean,
+        y=slices.mean if across else slices.centre,
+        mode="lines+markers",
+        connectgaps=True,
+        line={"color": colour("response" if across else "driver"), "width": 1},
+        marker={
+            "size": 9,
+            "symbol": "diamond-open" if across else "square-open",
+            "color": colour("response" if across else "driver"),
+            "line": {"width": 2},
+        },
+        customdata=slices.count,
+        hovertemplate=(
+            ("mean response %{y:.2f}" if across else "mean driver %{x:.2f}")
+            + " over %{customdata} points<extra></extra>"
+        ),
+        name=name,
+    )

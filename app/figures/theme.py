@@ -1,0 +1,75 @@
+"""The plotly template and the colours, read from assets/tokens.css."""
+
+import re
+from functools import lru_cache
+
+import plotly.graph_objects as go
+
+from app.places import bundled
+
+CONFIG = {
+    "displayModeBar": False,
+    "displaylogo": False,
+    "showSendToCloud": False,
+    "plotlyServerURL": "",
+    "responsive": True,
+}
+
+
+@lru_cache(maxsize=1)
+def colours() -> dict[str, dict[str, str]]:
+    """Return the tokens that hold a colour: {"light": {name: hex}, "dark": {name: hex}}."""
+    text = (bundled("assets") / "tokens.css").read_text(encoding="utf-8")
+    found: dict[str, dict[str, str]] = {"light": {}, "dark": {}}
+    for selector, body in re.findall(r"(:root[^{]*)\{([^}]*)\}", text):
+        theme = "dark" if "dark" in selector else "light"
+        found[theme].update(re.findall(r"--([\w-]+):\s*(#[0-9A-Fa-f]{6});", body))
+    return found
+
+
+def colour(name: str) -> str:
+    """Return a light token's colour; the page swaps it for the dark one where that theme is on."""
+    return colours()["light"][name]
+
+
+def diverging() -> list[list[float | str]]:
+    """Colour scale for quantities with a sign; the middle is zero."""
+    names = ["low-3", "low-2", "low-1", "zero", "high-1", "high-2", "high-3"]
+    return [[i / 6, colour(name)] for i, name in enumerate(names)]
+
+
+def time_scale() -> list[list[float | str]]:
+    """Colour scale for dates, early to late, luminance falling."""
+    return [[0.0, colour("early")], [0.5, colour("middle")], [1.0, colour("late")]]
+
+
+def template() -> go.layout.Template:
+    """Return the template of every chart: no frames, thin rules, system type."""
+    axis = {
+        "showgrid": True,
+        "gridcolor": colour("rule"),
+        "gridwidth": 0.5,
+        "zeroline": False,
+        "linecolor": colour("rule"),
+        "ticks": "outside",
+        "ticklen": 4,
+        "tickcolor": colour("rule"),
+        "title": {"standoff": 8, "font": {"size": 13}},
+        "automargin": False,
+    }
+    return go.layout.Template(
+        layout={
+            "font": {
+                "family": "system-ui, -apple-system, Segoe UI, Roboto, Liberation Sans, sans-serif",
+                "size": 12,
+                "color": colour("ink"),
+            },
+            "paper_bgcolor": colour("paper"),
+            "plot_bgcolor": colour("paper"),
+            "xaxis": axis,
+            "yaxis": axis,
+            "margin": {"l": 56, "r": 12, "t": 8, "b": 44},
+            "hoverlabel": {"bgcolor": colour("raised"), "font": {"color": colour("ink")}},
+            "showlegend": False,
+        }
+    )

@@ -1,0 +1,306 @@
+"""The Lag page: two sliders, the map of all cells and the scatter of one, linked both ways.
+
+The server answers a *question* (pair, growth formula, sample, map); moving a slider inside an
+answered question needs no server: assets/lag-page.js computes the cell from the same series, and a
+browser test holds its numbers to those of `analytics.cell`.
+"""
+
+import json
+from dataclasses import asdict, dataclass
+from typing import Any
+
+from dash import ClientsideFunction, Dash, Input, Output, State, dcc, html
+from plotly.graph_objects import Figure
+
+from analytics.cell import LagCell
+from analytics.series import PERIODS_PER_YEAR, Pair, period_code
+from analytics.surface import LagSurface
+from app import controls
+from app.compute import MIN_PAIRS, Bridge, Overlay, cell_span, noun, span_words
+from app.figures import lag as figures
+from app.figures.theme import CONFIG
+from app.places import software_version
+from app.state import StateError, ViewState
+
+PATH, TITLE = "/lag", "Lag"
+CAUTION = (
+    "An association in past data, not a cause, and not investment or policy advice. Official "
+    "statistics and your desk's own qualified judgement come first."
+)
+
+
+@dataclass(frozen=True, eq=False)
+class LagView:
+    """Everything that the page shows for one state."""
+
+    state: ViewState
+    pair: Pair
+    surface: LagSurface
+    cell: LagCell
+    overlay: Overlay
+    start: int
+
+    @property
+    def sentence(self) -> str:
+        """The state in one sentence."""
+        return self.state.sentence(noun(self.pair), span_words(self.pair))
+
+
+def view(state: ViewState, bridge: Bridge, *, fit: bool = True) -> LagView:
+    """Compute what the page shows.
+
+    With `fit`, a window or shift outside the map gives way to the usual one of the calendar.
+
+    Raises
+    ------
+    ValueError
+        One sentence that says why there is nothing to show.
+    """
+    state = bridge.fitted(state) if fit else state
+    pair = bridge.pair(state)
+    cell = bridge.cell(state)
+    start = cell_span(pair, state)[0] + cell.start
+    return LagView(state, pair, bridge.surface(state), cell, bridge.overlay(state), start)
+
+
+def answer(shown: LagView) -> dict[str, Any]:
+    """Return the chosen cell and the best one, unrounded, under the names of the JSON output."""
+    window, shift = shown.surface.peak()
+    place = shown.surface.cell(window, shift)
+    cell = shown.cell
+    return {
+        "driver": shown.pair.driver.name,
+        "response": shown.pair.response.name,
+        "frequency": shown.pair.driver.frequency,
+        "first": period_code(shown.pair.periods[0]),
+        "last": period_code(shown.pair.periods[-1]),
+        "cell": {
+            "window": shown.state.window,
+            "shift": shown.state.shift,
+            "n": cell.n,
+            "slope": cell.slope,
+            "intercept": cell.intercept,
+            "correlation": cell.correlation,
+            "se_naive": cell.se_naive,
+            "p_naive": cell.p_naive,
+        },
+        "best": {
+            "window": window,
+            "shift": shift,
+            "correlation": float(shown.surface.correlation[place]),
+            "slope": float(shown.surface.slope[place]),
+        },
+    }
+
+
+def payload(state: ViewState, bridge: Bridge) -> dict[str, Any]:
+    """Return the view as the browser takes it: series, bounds, charts; or one sentence."""
+    try:
+        shown = view(state, bridge)
+    except ValueError as error:
+        return {"error": str(error), "state": asdict(state), "defaults": asdict(ViewState())}
+    pair, surface = shown.pair, shown.surface
+    return {
+        "state": asdict(shown.state),
+        "defaults": asdict(ViewState()),
+        "notes": _notes(state, shown),
+        "noun": noun(pair),
+        "span": span_words(pair),
+        "perYear": PERIODS_PER_YEAR[pair.driver.frequency],
+        "ordinal": pair.periods[0].ordinal,
+        "driver": _side(pair, "driver"),
+        "response": _side(pair, "response"),
+        "windows": [int(surface.windows[0]), int(surface.windows[-1])],
+        "shifts": [int(surface.shifts[0]), int(surface.shifts[-1])],
+        "same": shown.state.months == "same",
+        "minPairs": MIN_PAIRS,
+        "lost": [pair.lost_driver, pair.lost_response],
+        "figures": {
+            "surface": _plain(figures.surface_heatmap(surface, pair, shown.state)),
+            "scatter": _plain(figures.cell_scatter(shown.cell, pair, shown.state, shown.start)),
+            "overlay": _plain(figures.overlay_lines(shown.overlay, pair, shown.state)),
+        },
+        "source": _source_line(pair),
+    }
+
+
+def layout(query: str, bridge: Bridge) -> html.Div:
+    """Return the page for an address; refused values are named and replaced by the usual ones."""
+    state, refused = ViewState.from_query_or_default(query)
+    opening = bridge.workspace.opening_state()
+    if not any(part.split("=")[0] == "driver" for part in query.lstrip("?").split("&")):
+        state = _with(state, driver=opening.driver)
+    if not any(part.split("=")[0] == "response" for part in query.lstrip("?").split("&")):
+        state = _with(state, response=opening.response)
+    data = payload(state, bridge)
+    data |= {"fresh": True, "notes": [*refused, *data.get("notes", [])]}
+    shown = ViewState(**data["state"])
+    names = list(bridge.workspace.series)
+    windows, shifts = data.get("windows", [1, 60]), data.get("shifts", [-36, 60])
+    return html.Div(
+        [
+            dcc.Store(id="lag-state", data=data["state"]),
+            dcc.Store(id="lag-question"),
+            dcc.Store(id="lag-data", data=data),
+            html.Header(
+                [
+                    html.H1(id="lag-sentence"),
+                    html.P(id="lag-readout", className="readout", **{"aria-live": "polite"}),
+                    html.P(id="lag-message", className="message", role="alert"),
+                ],
+                className="headline",
+            ),
+            html.Div(
+                [
+                    controls.select(shown, "driver", names),
+                    controls.select(shown, "response", names),
+                    controls.select(shown, "growth"),
+                    controls.text(shown, "first", placeholder="earliest"),
+                    controls.text(shown, "last", placeholder="newest"),
+                    controls.select(shown, "months"),
+                    controls.select(shown, "quantity"),
+                ],
+                className="controls",
+                role="group",
+                **{"aria-label": "What is compared"},
+            ),
+            html.Div(
+                [
+                    html.Section(
+                        [
+                            _heading("surface", "Every window and shift"),
+                            html.Div(
+                                [
+                                    _graph("surface"),
+                                    html.Div(id="lag-cross", **{"aria-hidden": "true"}),
+                                    controls.slider(shown, "window", *windows, vertical=True),
+                                    controls.slider(shown, "shift", *shifts),
+                                ],
+                                className="map",
+                            ),
+                        ],
+                        className="view",
+                    ),
+                    html.Section(
+                        [
+                            _heading("scatter", "The chosen cell"),
+                            html.P(id="lag-equation", className="equation"),
+                            html.Div([_graph("scatter")], className="ghosted"),
+                            _key(
+                                ("line", "fit", "least squares"),
+                                ("dash", "mark", "2-sigma ellipse"),
+                                ("diamond", "response", "mean response in slices of the driver"),
+                                ("square", "driver", "mean driver in slices of the response"),
+                            ),
+                        ],
+                        className="view",
+                    ),
+                    html.Section(
+                        [
+                            _heading("overlay", "Through time"),
+                            html.P(id="lag-overlay-words", className="equation"),
+                            html.Div([_graph("overlay")], className="ghosted"),
+                        ],
+                        className="view wide",
+                    ),
+                ],
+                className="board",
+            ),
+            html.P(CAUTION, className="caution"),
+        ],
+        className="lag-page",
+    )
+
+
+def register(app: Dash, bridge: Bridge) -> None:
+    """Register the callbacks of this page on an app."""
+    app.clientside_callback(
+        ClientsideFunction("lag", "question"),
+        Output("lag-question", "data"),
+        Input("lag-state", "data"),
+    )
+
+    @app.callback(
+        Output("lag-data", "data"),
+        Input("lag-question", "data"),
+        State("lag-state", "data"),
+        prevent_initial_call=True,
+    )
+    def _answer(_question: str, state: dict[str, Any]) -> dict[str, Any]:
+        try:
+            return payload(ViewState(**state), bridge)
+        except (StateError, TypeError) as error:
+            return {"error": str(error), "state": state}
+
+    app.clientside_callback(
+        ClientsideFunction("lag", "adopt"),
+        Output("lag-message", "children"),
+        Input("lag-data", "data"),
+    )
+
+
+def _with(state: ViewState, **changes: Any) -> ViewState:
+    return ViewState(**{**asdict(state), **changes})
+
+
+def _notes(asked: ViewState, shown: LagView) -> list[str]:
+    """Say what was changed or left out on the way from the state asked for to the one shown."""
+    unit, notes = noun(shown.pair), []
+    for name in ("window", "shift"):
+        wanted, got = getattr(asked, name), getattr(shown.state, name)
+        if wanted != got:
+            bounds = getattr(shown.surface, name + "s")
+            notes.append(
+                f"A {name} of {wanted} {unit}s is outside this map ({bounds[0]} to {bounds[-1]});"
+                f" {got} is shown."
+            )
+    return notes
+
+
+def _source_line(pair: Pair) -> str:
+    """Name sources and program, for the foot of a saved chart."""
+    sources = dict.fromkeys(s.source or s.name for s in (pair.driver, pair.response))
+    lost = pair.lost_driver + pair.lost_response
+    left = f" {lost} {noun(pair)}s without a partner left out." if lost else ""
+    return f"Source: {'; '.join(sources)}.{left} Pricewake {software_version()}."
+
+
+def _side(pair: Pair, side: str) -> dict[str, Any]:
+    series = getattr(pair, side)
+    return {
+        "name": series.name,
+        "values": series.values.tolist(),
+        "unit": figures.rate_unit(series),
+        "source": series.source,
+    }
+
+
+def _plain(figure: Figure) -> Any:
+    return json.loads(figure.to_json())
+
+
+def _graph(name: str) -> dcc.Graph:
+    return dcc.Graph(id=f"lag-{name}", config=CONFIG, className=f"graph {name}", responsive=True)
+
+
+def _heading(name: str, words: str) -> html.Div:
+    buttons = [
+        html.Button(
+            f"Save {kind}", **{"data-save": kind.lower(), "data-view": name, "type": "button"}
+        )
+        for kind in ("PNG", "SVG")
+    ]
+    link = html.A("Save CSV", id=f"csv-{name}", className="button", **{"data-csv": name})
+    return html.Div(
+        [html.H2(words), html.Div([*buttons, link], className="save")], className="view-head"
+    )
+
+
+def _key(*entries: tuple[str, str, str]) -> html.Ul:
+    return html.Ul(
+        [
+            html.Li([html.Span(className=f"sign {sign} {token}"), words])
+            for sign, token, words in entries
+        ],
+        className="key",
+    )

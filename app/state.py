@@ -1,0 +1,269 @@
+"""ViewState: what is looked at. Sliders, addresses, exports, file names and cache keys read this.
+
+One table (the metadata of the fields) carries label, bounds, unit, default and help of every
+control; `app.controls` draws them and `app.cli` makes its flags from the same rows.
+"""
+
+import re
+from collections.abc import Mapping
+from dataclasses import Field, dataclass, field, fields, replace
+from typing import Any, cast
+from urllib.parse import parse_qsl, urlencode
+
+
+class StateError(ValueError):
+    """A value that a field of the state refuses; the text is one sentence for the user."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class FieldKind:
+    """How one field is labelled, read from text and checked."""
+
+    label: str
+    help: str
+    display: bool = False
+
+    def read(self, text: str) -> Any:
+        """Turn the text of an address or a flag into the field's value."""
+        return text.strip()
+
+    def check(self, value: Any) -> None:
+        """Raise StateError unless the value is allowed."""
+        raise NotImplementedError
+
+
+@dataclass(frozen=True, kw_only=True)
+class Whole(FieldKind):
+    """A whole number of periods between two bounds, both included."""
+
+    low: int
+    high: int
+
+    def read(self, text: str) -> Any:
+        """Read an integer; anything else is handed on for `check` to refuse."""
+        return int(text) if re.fullmatch(r"[+-]?\d{1,9}", text.strip()) else text
+
+    def check(self, value: Any) -> None:
+        """Raise StateError unless the value is an integer within the bounds."""
+        whole = isinstance(value, int) and not isinstance(value, bool)
+        if not whole or not self.low <= value <= self.high:
+            raise StateError(
+                f"{self.label} must be a whole number from {self.low} to {self.high},"
+                f" but got {value!r}"
+            )
+
+
+@dataclass(frozen=True, kw_only=True)
+class Choice(FieldKind):
+    """One of a few named options; `options` maps the value to the words on screen."""
+
+    options: Mapping[str, str]
+
+    def check(self, value: Any) -> None:
+        """Raise StateError unless the value is one of the options."""
+        if value not in self.options:
+            raise StateError(
+                f"{self.label} must be one of {', '.join(self.options)}, but got {value!r}"
+            )
+
+
+@dataclass(frozen=True, kw_only=True)
+class Text(FieldKind):
+    """Free text that has to match a pattern; `shape` says in words what is expected."""
+
+    pattern: str
+    shape: str
+
+    def check(self, value: Any) -> None:
+        """Raise StateError unless the value has the expected shape."""
+        if not isinstance(value, str) or not re.fullmatch(self.pattern, value, re.DOTALL):
+            shown = value if not isinstance(value, str) or len(value) < 60 else value[:57] + "..."
+            raise StateError(f"{self.label} must be {self.shape}, but got {shown!r}")
+
+
+def _state(default: Any, kind: FieldKind) -> Any:
+    return field(default=default, metadata={"kind": kind})
+
+
+_NAME = r".{1,200}"
+_PERIOD = r"(\d{4}(-(0[1-9]|1[0-2])|-Q[1-4])?)?"
+_RANGE = r"(-?\d{1,3}:-?\d{1,3})?"
+
+
+@dataclass(frozen=True, kw_only=True)
+class ViewState:
+    """What is looked at; equal states give equal addresses and equal cache keys."""
+
+    driver: str = _state(
+        "Broad money",
+        Text(
+            label="Driver",
+            pattern=_NAME,
+            shape="the name of a loaded series",
+            help="The series that may move first, for example broad money.",
+        ),
+    )
+    response: str = _state(
+        "Consumer prices",
+        Text(
+            label="Response",
+            pattern=_NAME,
+            shape="the name of a loaded series",
+            help="The series that may follow, for example consumer prices.",
+        ),
+    )
+    window: int = _state(
+        12,
+        Whole(
+            label="Window",
+            low=1,
+            high=60,
+            help="Periods in the trailing average of both series; more is smoother.",
+        ),
+    )
+    shift: int = _state(
+        24,
+        Whole(
+            label="Shift",
+            low=-36,
+            high=60,
+            help="Periods by which the response is read later; above 0 the driver leads.",
+        ),
+    )
+    growth: str = _state(
+        "log",
+        Choice(
+            label="Growth formula",
+            options={"log": "log: 100 ln(p/p₋₁)", "percent": "percent: 100 (p/p₋₁ − 1)"},
+            help="How growth from one period to the next is computed; a rate is used as it is.",
+        ),
+    )
+    first: str = _state(
+        "",
+        Text(
+            label="From",
+            pattern=_PERIOD,
+            shape="a period such as 1965-03, 1965-Q1 or 1965, or empty",
+            help="First period of the sample, such as 1965-03; empty takes the earliest there is.",
+        ),
+    )
+    last: str = _state(
+        "",
+        Text(
+            label="To",
+            pattern=_PERIOD,
+            shape="a period such as 2024-12, 2024-Q4 or 2024, or empty",
+            help="Last period of the sample, such as 2024-12; empty takes the newest there is.",
+        ),
+    )
+    months: str = _state(
+        "own",
+        Choice(
+            label="Periods compared",
+            options={"own": "all that each cell has", "same": "the same in every cell"},
+            help="Whether each cell uses all its periods or only those that every cell has.",
+        ),
+    )
+    windows: str = _state(
+        "",
+        Text(
+            label="Windows searched",
+            pattern=_RANGE,
+            shape="a range such as 1:60, or empty",
+            help="Range of windows on the map, such as 1:60; empty takes one to five years.",
+        ),
+    )
+    shifts: str = _state(
+        "",
+        Text(
+            label="Shifts searched",
+            pattern=_RANGE,
+            shape="a range such as -36:60, or empty",
+            help="Range of shifts on the map, such as -36:60; empty takes -3 to 5 years.",
+        ),
+    )
+    quantity: str = _state(
+        "correlation",
+        Choice(
+            label="Map shows",
+            options={"correlation": "correlation", "slope": "slope"},
+            help="What the colours of the map stand for.",
+            display=True,
+        ),
+    )
+
+    def __post_init__(self) -> None:
+        for item in fields(self):
+            kind_of(item).check(getattr(self, item.name))
+
+    @classmethod
+    def from_query(cls, query: str) -> "ViewState":
+        """Read the part of an address after ``?``; unknown keys are ignored.
+
+        Raises
+        ------
+        StateError
+            A value is not allowed.
+        """
+        return cls(**_values(query))
+
+    @classmethod
+    def from_query_or_default(cls, query: str) -> tuple["ViewState", tuple[str, ...]]:
+        """Read an address field by field; a refused value gives its sentence and the default."""
+        kept: dict[str, Any] = {}
+        sentences = []
+        kinds = {item.name: kind_of(item) for item in fields(cls)}
+        for name, value in _values(query).items():
+            try:
+                kinds[name].check(value)
+                kept[name] = value
+            except StateError as error:
+                sentences.append(f"{error}; the usual value is shown instead")
+        return cls(**kept), tuple(sentences)
+
+    def to_query(self) -> str:
+        """Write the fields that differ from their default, in field order."""
+        return urlencode(
+            [
+                (item.name, str(getattr(self, item.name)))
+                for item in fields(self)
+                if getattr(self, item.name) != item.default
+            ]
+        )
+
+    def numbers(self) -> "ViewState":
+        """Return the state with display-only fields at their default: the cache key."""
+        plain: dict[str, Any] = {i.name: i.default for i in fields(self) if kind_of(i).display}
+        return replace(self, **plain)
+
+    def question(self) -> "ViewState":
+        """Return `numbers` without the cell chosen: all cells of one surface share it."""
+        return replace(self.numbers(), window=ViewState.window, shift=ViewState.shift)
+
+    def sentence(self, noun: str = "month", span: str = "") -> str:
+        """Say the state in one sentence; `span` is the sample in words."""
+        smoothed = f"{self.window}-{noun} window" if self.window > 1 else f"one {noun} at a time"
+        size = f"{abs(self.shift)} {noun}{'' if abs(self.shift) == 1 else 's'}"
+        if self.shift > 0:
+            relation = f"leading {self.response} by {size}"
+        elif self.shift < 0:
+            relation = f"following {self.response} by {size}"
+        else:
+            relation = f"beside {self.response} of the same {noun}"
+        return f"{self.driver}, {smoothed}, {relation}{', ' + span if span else ''}"
+
+
+def kind_of(item: "Field[Any]") -> FieldKind:
+    """Return the row of the table that belongs to a field of `ViewState`."""
+    return cast(FieldKind, item.metadata["kind"])
+
+
+def field_kind(name: str) -> FieldKind:
+    """Return the row of the table for a field by its name."""
+    return kind_of(ViewState.__dataclass_fields__[name])
+
+
+def _values(query: str) -> dict[str, Any]:
+    kinds = {item.name: kind_of(item) for item in fields(ViewState)}
+    pairs = parse_qsl(query.lstrip("?"), keep_blank_values=True, max_num_fields=100)
+    return {name: kinds[name].read(text) for name, text in pairs if name in kinds}
