@@ -149,7 +149,7 @@ def lag(
     workspace = _workspace(files)
     bridge = Bridge(workspace)
     state = _state(workspace.opening_state(), flags)
-    shown = page.view(state, bridge, fit=_unasked(flags))
+    shown = page.view(state, bridge, asked={name for name, text in flags.items() if text})
     if csv_path:
         rows = exports.VIEWS[view](shown)
         _write(csv_path, exports.csv_text(exports.header(shown), rows))
@@ -196,11 +196,6 @@ def _workspace(files: tuple[Path, ...]) -> Any:
     from app.workspace import Workspace
 
     return Workspace(tuple(read_path(path) for path in files) if files else demo_releases())
-
-
-def _unasked(flags: dict[str, str | None]) -> bool:
-    """Whether neither window nor shift was given, so that the calendar's usual ones apply."""
-    return flags["window"] is None and flags["shift"] is None
 
 
 def _state(opening: ViewState, flags: dict[str, str | None]) -> ViewState:

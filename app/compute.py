@@ -2,7 +2,7 @@
 
 import hashlib
 import threading
-from collections.abc import Callable
+from collections.abc import Callable, Collection
 from dataclasses import dataclass, replace
 from typing import Any, TypeVar
 
@@ -105,16 +105,21 @@ class Bridge:
         ]
         return align(rates[0], rates[1])
 
-    def fitted(self, state: ViewState) -> ViewState:
+    def fitted(self, state: ViewState, asked: Collection[str] = ()) -> ViewState:
         """Return the state with window and shift inside the map of this pair's calendar.
 
         The usual 12 and 24 months stand for one and two years: for quarters they become 4 and 8.
+        Fields named in `asked` are kept as they are.
         """
-        windows, shifts = grid(self.pair(state), state)
-        year = PERIODS_PER_YEAR[self.pair(state).driver.frequency]
-        window = state.window if state.window in windows else min(year, windows[-1])
-        shift = state.shift if state.shift in shifts else min(2 * year, shifts[-1])
-        return replace(state, window=max(window, windows[0]), shift=max(shift, shifts[0]))
+        pair = self.pair(state)
+        windows, shifts = grid(pair, state)
+        year = PERIODS_PER_YEAR[pair.driver.frequency]
+        window, shift = state.window, state.shift
+        if window not in windows and "window" not in asked:
+            window = max(min(year, windows[-1]), windows[0])
+        if shift not in shifts and "shift" not in asked:
+            shift = max(min(2 * year, shifts[-1]), shifts[0])
+        return replace(state, window=window, shift=shift)
 
     def surface(self, state: ViewState) -> LagSurface:
         """Every cell of the map, for the pair and sample of the state."""

@@ -90,7 +90,10 @@ def _frame() -> html.Div:
                 [
                     html.Span("Pricewake", className="name"),
                     html.Nav(
-                        [dcc.Link(page.TITLE, href=page.PATH, className="nav") for page in PAGES],
+                        [
+                            dcc.Link(page.TITLE, href=page.PATH, id=f"nav-{page.TITLE.lower()}")
+                            for page in PAGES
+                        ],
                         **{"aria-label": "Pages"},
                     ),
                     html.Button("Dark", id="theme", type="button", **{"aria-pressed": "false"}),

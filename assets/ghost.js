@@ -9,7 +9,7 @@
   }
 
   function canvasOver(chart) {
-    const box = chart.parentElement.parentElement;
+    const box = chart.closest(".plot");
     let canvas = box.querySelector(":scope > canvas.ghost");
     if (!canvas) {
       canvas = document.createElement("canvas");
@@ -56,7 +56,7 @@
 
   function hide(id) {
     const chart = chartOf(id);
-    const box = chart && chart.parentElement.parentElement;
+    const box = chart && chart.closest(".plot");
     if (box) box.classList.remove("moving");
   }
 

@@ -1,8 +1,10 @@
 """Charts of the Lag page.
 
-The order of the traces is a contract with assets/lag-page.js, which puts the numbers of another
+The order of the traces is a contract with assets/page-lag.js, which puts the numbers of another
 cell into the same traces while a slider moves.
 """
+
+from html import escape
 
 import numpy as np
 import pandas as pd
@@ -122,9 +124,9 @@ def cell_scatter(cell: LagCell, pair: Pair, state: ViewState, start: int) -> go.
     )
     figure.update_layout(
         template=template(),
-        margin={"l": 56, "r": 70, "t": 8, "b": 48},
+        margin={"l": 66, "r": 70, "t": 8, "b": 48},
         xaxis={"title": {"text": axis_title(pair.driver, state)}},
-        yaxis={"title": {"text": axis_title(pair.response, state)}},
+        yaxis={"title": {"text": axis_title(pair.response, state, lines=2)}},
     )
     return figure
 
@@ -188,13 +190,12 @@ def shared_unit(pair: Pair) -> str:
     return units.pop() if len(units) == 1 else "percent"
 
 
-def axis_title(series: Series, state: ViewState) -> str:
-    """Return the axis title: name, window and unit."""
+def axis_title(series: Series, state: ViewState, *, lines: int = 1) -> str:
+    """Return the axis title: name, window and unit, on one line or two."""
     name = series.name if len(series.name) <= 32 else series.name[:30] + "…"
-    smoothed = (
-        "" if state.window == 1 else f", mean of {state.window} {PERIOD_NOUN[series.frequency]}s"
-    )
-    return f"{name}{smoothed} ({rate_unit(series)})"
+    smoothed = "" if state.window == 1 else f"{state.window}-{PERIOD_NOUN[series.frequency]} mean, "
+    parted = ", " if lines == 1 else "<br>"
+    return f"{escape(name, False)}{parted}{smoothed}{escape(rate_unit(series), False)}"
 
 
 def _slice_trace(slices: SliceMeans, *, across: bool) -> go.Scatter:

@@ -54,7 +54,7 @@ def template() -> go.layout.Template:
         "ticks": "outside",
         "ticklen": 4,
         "tickcolor": colour("rule"),
-        "title": {"standoff": 8, "font": {"size": 13}},
+        "title": {"standoff": 8, "font": {"size": 12}},
         "automargin": False,
     }
     return go.layout.Template(

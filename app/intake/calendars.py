@@ -3,6 +3,7 @@
 from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 import pandas as pd
@@ -37,7 +38,7 @@ class RowCalendar:
     kept: IntArray
     problems: tuple[Problem, ...]
 
-    @property
+    @cached_property
     def first(self) -> pd.Period:
         """The earliest period."""
         return self.at(int(self.ordinals.min()))

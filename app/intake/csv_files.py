@@ -12,7 +12,7 @@ from app.intake.problems import Problem, refusal
 
 MAX_BYTES = 64 * 1024 * 1024
 MAX_CELLS = 8_000_000
-MAX_COLUMNS = 100_000
+MAX_COLUMNS = 20_000
 MAX_ROWS = 2_000_000
 
 SEPARATORS = {",": "comma", ";": "semicolon", "\t": "tab"}
@@ -51,12 +51,15 @@ class Sheet:
         Line of the file on which each row begins, counted from 1.
     separator : str
         Comma, semicolon or tab.
+    quotes : bool
+        Whether any cell may be quoted, and so hold a separator.
     """
 
     file: str
     rows: list[list[str]]
     lines: list[int]
     separator: str
+    quotes: bool = True
 
 
 def read_csv_sheet(file: str, content: bytes) -> tuple[Sheet, list[Problem]]:
@@ -90,7 +93,7 @@ def read_csv_sheet(file: str, content: bytes) -> tuple[Sheet, list[Problem]]:
     if text.count(separator, start) > MAX_CELLS:
         raise refusal(file, f"a file must not have more than {MAX_CELLS:,} cells, but this one has")
     rows, lines = _rows(file, text[start:] if start else text, separator, skipped)
-    return Sheet(file, rows, lines, separator), notes
+    return Sheet(file, rows, lines, separator, '"' in text), notes
 
 
 def _refuse_other_formats(file: str, content: bytes) -> None:

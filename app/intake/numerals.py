@@ -103,7 +103,7 @@ def read_column(cells: Sequence[str], mark: Mark) -> ReadColumn:
     if _FAST[mark].fullmatch(joined):
         plain = cells if mark == "." else joined.replace(",", ".").split("\n")
         try:
-            values = np.array([float(cell) if cell else np.nan for cell in plain])
+            values = np.array([float(cell or "nan") for cell in plain])
         except ValueError:
             pass
         else:

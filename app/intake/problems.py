@@ -62,8 +62,9 @@ def refusal(
 
 def plain_text(text: str, limit: int) -> str:
     """Drop control, direction and other invisible characters; join white space; cap the length."""
-    spaced = "".join(" " if char.isspace() else char for char in text)
-    kept = "".join(char for char in spaced if unicodedata.category(char)[0] != "C")
+    kept = text
+    if not text.isprintable():
+        kept = "".join(c for c in text if c.isspace() or unicodedata.category(c)[0] != "C")
     joined = " ".join(kept.split())
     return joined if len(joined) <= limit else joined[: limit - 1].rstrip() + "…"
 

@@ -146,6 +146,8 @@ def _marks(
     Where nothing is proved anywhere, 1.234 has a decimal point, and 1,234 a decimal comma in a
     file with semicolons and grouped thousands in any other; a warning says so if in doubt.
     """
+    if sheet.separator == "," and not sheet.quotes:
+        return ["."] * len(columns), []
     proved = [decimal_mark(cells) for _, cells in columns]
     others = {mark for mark in proved if mark is not None}
     shared: Mark | None = others.pop() if len(others) == 1 else None

@@ -205,25 +205,32 @@ def _long_blocks(sheet: Sheet, header: Sequence[str]) -> list[Block]:
     width = len(header)
     period, series, value = (header.index(word) for word in ("period", "series", "value"))
     economy = header.index("economy") if "economy" in header else None
-    found: dict[str, list[tuple[int, str, str]]] = {}
+    found: dict[tuple[str, str], list[int]] = {}
     for place, row in enumerate(sheet.rows[1:], start=1):
         if len(row) < width or any(map(str.strip, row[width:])):
             message = f"a row must have {width} cells as the header has, but got {len(row)}"
             raise refusal(file, message, row=lines[place])
-        name = plain_text(row[series], MAX_NAME)
-        if economy is not None:
-            name = f"{plain_text(row[economy], MAX_NAME)}: {name}"
-        if not name.strip(": "):
-            raise refusal(file, "a row must name its series, but got none", row=lines[place])
-        found.setdefault(name, []).append((lines[place], row[period], row[value]))
+        whose = "" if economy is None else row[economy]
+        found.setdefault((whose, row[series]), []).append(place)
         if len(found) > MAX_COLUMNS:
             message = f"a file must not have more than {MAX_COLUMNS:,} series, but this one has"
             raise refusal(file, message, row=lines[place])
     if not found:
         message = "must have rows below the header, but the header is all there is"
         raise refusal(file, message, row=lines[0])
-    blocks = []
-    for name, entries in found.items():
-        where, periods, cells = zip(*entries, strict=True)
-        blocks.append(Block(where, periods, [(name, cells)]))
-    return blocks
+    named: dict[str, list[int]] = {}
+    for (whose, text), places in found.items():
+        name = plain_text(text, MAX_NAME)
+        if not name:
+            message = "a row must name its series, but this one does not"
+            raise refusal(file, message, row=lines[places[0]])
+        name = f"{plain_text(whose, MAX_NAME)}: {name}" if economy is not None else name
+        named.setdefault(name, []).extend(places)
+    return [
+        Block(
+            [lines[place] for place in places],
+            [sheet.rows[place][period] for place in places],
+            [(name, [sheet.rows[place][value] for place in places])],
+        )
+        for name, places in named.items()
+    ]

@@ -1,11 +1,12 @@
 """The Lag page: two sliders, the map of all cells and the scatter of one, linked both ways.
 
 The server answers a *question* (pair, growth formula, sample, map); moving a slider inside an
-answered question needs no server: assets/lag-page.js computes the cell from the same series, and a
+answered question needs no server: assets/page-lag.js computes the cell from the same series, and a
 browser test holds its numbers to those of `analytics.cell`.
 """
 
 import json
+from collections.abc import Collection
 from dataclasses import asdict, dataclass
 from typing import Any
 
@@ -46,17 +47,18 @@ class LagView:
         return self.state.sentence(noun(self.pair), span_words(self.pair))
 
 
-def view(state: ViewState, bridge: Bridge, *, fit: bool = True) -> LagView:
+def view(state: ViewState, bridge: Bridge, asked: Collection[str] = ()) -> LagView:
     """Compute what the page shows.
 
-    With `fit`, a window or shift outside the map gives way to the usual one of the calendar.
+    A window or shift outside the map gives way to the calendar's usual one, unless it is named in
+    `asked`: then it is kept, and refused where the sample does not allow it.
 
     Raises
     ------
     ValueError
         One sentence that says why there is nothing to show.
     """
-    state = bridge.fitted(state) if fit else state
+    state = bridge.fitted(state, asked)
     pair = bridge.pair(state)
     cell = bridge.cell(state)
     start = cell_span(pair, state)[0] + cell.start
@@ -185,12 +187,12 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                         [
                             _heading("scatter", "The chosen cell"),
                             html.P(id="lag-equation", className="equation"),
-                            html.Div([_graph("scatter")], className="ghosted"),
+                            _graph("scatter"),
                             _key(
                                 ("line", "fit", "least squares"),
                                 ("dash", "mark", "2-sigma ellipse"),
-                                ("diamond", "response", "mean response in slices of the driver"),
-                                ("square", "driver", "mean driver in slices of the response"),
+                                ("diamond", "response", "mean response by driver slice"),
+                                ("square", "driver", "mean driver by response slice"),
                             ),
                         ],
                         className="view",
@@ -198,8 +200,19 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                     html.Section(
                         [
                             _heading("overlay", "Through time"),
-                            html.P(id="lag-overlay-words", className="equation"),
-                            html.Div([_graph("overlay")], className="ghosted"),
+                            html.Ul(
+                                [
+                                    html.Li(
+                                        [
+                                            html.Span(className=f"sign {sign} {side}"),
+                                            html.Span(id=f"lag-{side}-words"),
+                                        ]
+                                    )
+                                    for sign, side in (("line", "driver"), ("dash", "response"))
+                                ],
+                                className="key",
+                            ),
+                            _graph("overlay"),
                         ],
                         className="view wide",
                     ),
@@ -279,8 +292,9 @@ def _plain(figure: Figure) -> Any:
     return json.loads(figure.to_json())
 
 
-def _graph(name: str) -> dcc.Graph:
-    return dcc.Graph(id=f"lag-{name}", config=CONFIG, className=f"graph {name}", responsive=True)
+def _graph(name: str) -> html.Div:
+    graph = dcc.Graph(id=f"lag-{name}", config=CONFIG, responsive=True)
+    return html.Div(graph, className=f"plot {name}")
 
 
 def _heading(name: str, words: str) -> html.Div:

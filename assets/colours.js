@@ -37,7 +37,7 @@
     const walk = (value) => {
       if (typeof value === "string") return swap.get(value.toLowerCase()) || value;
       if (ArrayBuffer.isView(value)) return value;
-      if (Array.isArray(value)) return typeof value[0] === "number" ? value : value.map(walk);
+      if (Array.isArray(value)) return value.length > 8 && typeof value[0] === "number" ? value : value.map(walk);
       if (value && typeof value === "object") {
         return Object.fromEntries(Object.entries(value).map(([key, each]) => [key, walk(each)]));
       }

@@ -84,10 +84,10 @@
     byId("lag-readout").textContent = cell
       ? `Correlation ${signed(cell.correlation, 2)} over ${counted(cell.n, data.noun)}, ${data.span}.`
       : `This cell is undefined: it leaves fewer than ${data.minPairs} ${data.noun}s, or one side does not vary.`;
-    byId("lag-overlay-words").textContent =
-      state.shift === 0
-        ? "Both series as they stand."
-        : `The response is moved ${state.shift > 0 ? "back" : "forward"} by ${counted(Math.abs(state.shift), data.noun)}, so that paired ${data.noun}s stand above each other.`;
+    const away = counted(Math.abs(state.shift), data.noun);
+    const moved = state.shift === 0 ? "" : `, moved ${state.shift > 0 ? "back" : "forward"} by ${away}`;
+    byId("lag-driver-words").textContent = data.driver.name;
+    byId("lag-response-words").textContent = data.response.name + moved;
     for (const [name, words] of [
       ["window", counted(state.window, data.noun)],
       ["shift", `${signed(state.shift, 0)} ${data.noun}${Math.abs(state.shift) === 1 ? "" : "s"}`],
@@ -233,11 +233,14 @@
 
   const endsOf = (values) => values.reduce(([a, b], v) => [Math.min(a, v), Math.max(b, v)], [Infinity, -Infinity]);
 
+  const escaped = (text) => text.replaceAll("&", "&amp;").replaceAll("<", "&lt;").replaceAll(">", "&gt;");
+
+  /* figures.lag.axis_title */
   function title(side) {
     const { name, unit } = page.data[side];
     const shown = name.length <= 32 ? name : `${name.slice(0, 30)}…`;
-    const smoothed = page.state.window === 1 ? "" : `, mean of ${page.state.window} ${page.data.noun}s`;
-    return `${shown}${smoothed} (${unit})`;
+    const smoothed = page.state.window === 1 ? "" : `${page.state.window}-${page.data.noun} mean, `;
+    return `${escaped(shown)}${side === "driver" ? ", " : "<br>"}${smoothed}${escaped(unit)}`;
   }
 
   function scatterFigure() {
