@@ -11,8 +11,8 @@ from werkzeug.exceptions import HTTPException
 
 from app import exports
 from app.compute import Bridge
-from app.intake.problems import IntakeError
 from app.intake.csv_files import MAX_BYTES
+from app.intake.problems import IntakeError
 from app.intake.reading import read_release
 from app.pages import data, lag
 from app.places import bundled, software_version
