@@ -212,6 +212,17 @@ def test_between_keeps_exactly_the_periods_inside(values, low, high):
     assert dict(zip(part.index, part, strict=True)) == expected
 
 
+@pytest.mark.parametrize(
+    ("first", "last"), [(None, "2023-10"), ("2024-04", None), ("2024-03", "2024-01")]
+)
+def test_between_refuses_a_stretch_with_no_value(first, last):
+    ends = [None if end is None else month(end) for end in (first, last)]
+    with pytest.raises(
+        ValueError, match="no value in the sample chosen; it runs from Jan 2024 to Mar 2024"
+    ):
+        prices([1.0, 2.0, 3.0]).between(*ends)
+
+
 def test_between_with_open_ends_is_the_series_itself():
     series = prices([1.0, NAN, 3.0], kind="level", unit="crowns", adjustment="yes", source="file")
     whole = series.between()
