@@ -41,7 +41,7 @@ class Whole(FieldKind):
 
     def read(self, text: str) -> Any:
         """Read an integer; anything else is handed on for `check` to refuse."""
-        return int(text) if re.fullmatch(r"[+-]?\d{1,9}", text.strip()) else text
+        return int(text) if re.fullmatch(r"[+-]?[0-9]{1,9}", text.strip()) else text
 
     def check(self, value: Any) -> None:
         """Raise StateError unless the value is an integer within the bounds."""
@@ -49,7 +49,7 @@ class Whole(FieldKind):
         if not whole or not self.low <= value <= self.high:
             raise StateError(
                 f"{self.label} must be a whole number from {self.low} to {self.high},"
-                f" but got {value!r}"
+                f" but got {_shown(value)}"
             )
 
 
@@ -61,9 +61,9 @@ class Choice(FieldKind):
 
     def check(self, value: Any) -> None:
         """Raise StateError unless the value is one of the options."""
-        if value not in self.options:
+        if not isinstance(value, str) or value not in self.options:
             raise StateError(
-                f"{self.label} must be one of {', '.join(self.options)}, but got {value!r}"
+                f"{self.label} must be one of {', '.join(self.options)}, but got {_shown(value)}"
             )
 
 
@@ -77,17 +77,22 @@ class Text(FieldKind):
     def check(self, value: Any) -> None:
         """Raise StateError unless the value has the expected shape."""
         if not isinstance(value, str) or not re.fullmatch(self.pattern, value, re.DOTALL):
-            shown = value if not isinstance(value, str) or len(value) < 60 else value[:57] + "..."
-            raise StateError(f"{self.label} must be {self.shape}, but got {shown!r}")
+            raise StateError(f"{self.label} must be {self.shape}, but got {_shown(value)}")
+
+
+def _shown(value: Any) -> str:
+    """Quote a refused value in at most 60 signs; `repr` writes what cannot be seen as a code."""
+    text = repr(value)
+    return text if len(text) <= 60 else f"{text[:57]}..."
 
 
 def _state(default: Any, kind: FieldKind) -> Any:
     return field(default=default, metadata={"kind": kind})
 
 
-_NAME = r".{1,200}"
-_PERIOD = r"(\d{4}(-(0[1-9]|1[0-2])|-Q[1-4])?)?"
-_RANGE = r"(-?\d{1,3}:-?\d{1,3})?"
+_NAME = r"(?=\S)[^\x00-\x1f\x7f-\x9f\ud800-\udfff]{1,200}(?<=\S)"
+_PERIOD = r"((?!0000)[0-9]{4}(-(0[1-9]|1[0-2])|-Q[1-4])?)?"
+_RANGE = r"(-?[0-9]{1,3}:-?[0-9]{1,3})?"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -265,5 +270,5 @@ def field_kind(name: str) -> FieldKind:
 
 def _values(query: str) -> dict[str, Any]:
     kinds = {item.name: kind_of(item) for item in fields(ViewState)}
-    pairs = parse_qsl(query.lstrip("?"), keep_blank_values=True, max_num_fields=100)
+    pairs = parse_qsl(query.lstrip("?"), keep_blank_values=True)
     return {name: kinds[name].read(text) for name, text in pairs if name in kinds}
