@@ -1,0 +1,346 @@
+"""ViewState: each field there and back through an address, refusals, keys and sentences."""
+
+import re
+from dataclasses import FrozenInstanceError, asdict, fields, replace
+from urllib.parse import quote, urlencode
+
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from app.state import Choice, StateError, Text, ViewState, Whole, field_kind, kind_of
+
+NAMES = [item.name for item in fields(ViewState)]
+# Free text has no table to take another allowed value from.
+OTHER_TEXT = {
+    "driver": "Narrow money",
+    "response": "Consumer prices, adjusted",
+    "first": "1965-03",
+    "last": "2024-Q4",
+    "windows": "1:60",
+    "shifts": "-36:60",
+}
+
+
+def other_values(name):
+    """Every allowed value of a choice, both bounds of a number, one other text; no default."""
+    kind = field_kind(name)
+    if isinstance(kind, Choice):
+        allowed = list(kind.options)
+    elif isinstance(kind, Whole):
+        allowed = [kind.low, kind.high]
+    else:
+        allowed = [OTHER_TEXT[name]]
+    return [value for value in allowed if value != getattr(ViewState(), name)]
+
+
+CHANGES = [(name, value) for name in NAMES for value in other_values(name)]
+
+# A name as intake lets it through: no control or lone surrogate, no space at either end.
+names = st.text(st.characters(exclude_categories=("Cc", "Cs")), min_size=1, max_size=200).filter(
+    lambda text: text == text.strip()
+)
+periods = st.one_of(
+    st.just(""),
+    st.integers(1, 9999).map(lambda y: f"{y:04d}"),
+    st.tuples(st.integers(1, 9999), st.integers(1, 12)).map(lambda p: f"{p[0]:04d}-{p[1]:02d}"),
+    st.tuples(st.integers(1, 9999), st.integers(1, 4)).map(lambda p: f"{p[0]:04d}-Q{p[1]}"),
+)
+ranges = st.one_of(
+    st.just(""),
+    st.tuples(st.integers(-999, 999), st.integers(-999, 999)).map(lambda r: f"{r[0]}:{r[1]}"),
+)
+BY_NAME = {
+    "driver": names,
+    "response": names,
+    "first": periods,
+    "last": periods,
+    "windows": ranges,
+    "shifts": ranges,
+}
+
+
+def drawn(name):
+    kind = field_kind(name)
+    if isinstance(kind, Whole):
+        return st.integers(kind.low, kind.high)
+    return st.sampled_from(list(kind.options)) if isinstance(kind, Choice) else BY_NAME[name]
+
+
+states = st.builds(ViewState, **{name: drawn(name) for name in NAMES})
+
+
+# Addresses -----------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize(("name", "value"), CHANGES)
+def test_a_changed_field_comes_back_from_the_address(name, value):
+    changed = replace(ViewState(), **{name: value})
+    back = ViewState.from_query("?" + changed.to_query())
+    assert back == changed
+    assert hash(back) == hash(changed)
+    assert back != ViewState()
+    assert changed.to_query().split("=")[0] == name  # and nothing but the change is written
+    assert "&" not in changed.to_query()
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_every_field_has_another_value_to_try(name):
+    assert other_values(name)
+
+
+@given(states)
+def test_any_state_comes_back_with_the_same_hash_and_address(state):
+    back = ViewState.from_query(state.to_query())
+    assert (back, hash(back), back.to_query()) == (state, hash(state), state.to_query())
+    assert ViewState.from_query_or_default(state.to_query()) == (state, ())
+
+
+@given(states, states)
+def test_states_are_equal_exactly_when_their_addresses_are(one, other):
+    assert (one == other) == (one.to_query() == other.to_query())
+    again = ViewState(**asdict(one))
+    assert again == one
+    assert hash(again) == hash(one)
+    assert again.to_query() == one.to_query()
+
+
+@given(states)
+def test_an_address_has_ascii_signs_only_and_no_default(state):
+    query = state.to_query()
+    assert re.fullmatch(r"[A-Za-z0-9_.~&=%+-]*", query)
+    written = {part.split("=")[0] for part in query.split("&") if part}
+    assert written == {n for n in NAMES if getattr(state, n) != getattr(ViewState(), n)}
+
+
+def test_the_order_and_repetition_of_an_address_do_not_matter():
+    state = ViewState.from_query("shift=-3&window=7")
+    assert state == ViewState.from_query("window=7&shift=-3")
+    assert state.to_query() == "window=7&shift=-3"
+    assert ViewState.from_query("window=9&window=7&shift=-3") == state  # the last one counts
+    assert ViewState.from_query("window=%2B7&shift=-03") == state  # numbers, not their digits
+
+
+def test_defaults_spelled_out_give_the_bare_address():
+    spelled = "&".join(f"{n}={getattr(ViewState(), n)}" for n in ("window", "shift", "growth"))
+    assert ViewState.from_query(spelled).to_query() == ""
+
+
+@pytest.mark.parametrize("query", ["", "?", "a=1", "__class__=x&WINDOW=3", "window", "&&=&;"])
+def test_unknown_parts_of_an_address_are_ignored(query):
+    if query == "window":  # a field's name without a value is not unknown
+        with pytest.raises(StateError, match="Window must be"):
+            ViewState.from_query(query)
+    else:
+        assert ViewState.from_query(query) == ViewState()
+
+
+def test_an_address_with_very_many_parts_is_read():
+    query = "&".join(["noise=1"] * 5_000) + "&window=7"
+    assert ViewState.from_query(query).window == 7
+    assert ViewState.from_query_or_default(query)[0].window == 7
+
+
+# Refusals ------------------------------------------------------------------------------------
+
+BAD = [
+    ("window", "0"),
+    ("window", "61"),
+    ("window", "12.0"),
+    ("window", "1e1"),
+    ("window", "abc"),
+    ("window", ""),
+    ("window", "nan"),
+    ("window", "9" * 10_000),
+    ("window", "١٢"),  # Arabic digits for 12
+    ("window", "1_2"),
+    ("shift", "-37"),
+    ("shift", "61"),
+    ("shift", "--1"),
+    ("shift", "a" * 10_000),
+    ("growth", "LOG"),
+    ("growth", ""),
+    ("growth", "x" * 10_000),
+    ("months", "<script>"),
+    ("quantity", "r\x00"),
+    ("driver", ""),
+    ("driver", "   "),
+    ("driver", "a" * 201),
+    ("driver", "a" * 10_000),
+    ("driver", "Money\x00"),
+    ("driver", "Money\nprices"),
+    ("response", "\x1b[31m"),
+    ("first", "1965-13"),
+    ("first", "1965-00"),
+    ("first", "1965-3"),
+    ("first", "1965-Q5"),
+    ("first", "0000-01"),
+    ("first", "65"),
+    ("first", "１９６５-０３"),  # full-width digits
+    ("first", "1965-03-01"),
+    ("last", "yesterday"),
+    ("last", "99999"),
+    ("windows", "1-60"),
+    ("windows", "1:"),
+    ("windows", "1:6:9"),
+    ("windows", "1:1000"),
+    ("shifts", "a:b"),
+    ("shifts", "１:２"),
+]
+
+
+@pytest.mark.parametrize(("name", "text"), BAD)
+def test_a_bad_value_gives_one_sentence(name, text):
+    query = urlencode({name: text, "growth" if name != "growth" else "window": "9"})
+    with pytest.raises(StateError) as caught:
+        ViewState.from_query(urlencode({name: text}))
+    sentence = str(caught.value)
+    assert sentence.startswith(f"{field_kind(name).label} must be ")
+    assert ", but got " in sentence
+    assert len(sentence) < 250
+    assert sentence.isprintable()
+    state, refused = ViewState.from_query_or_default(query)
+    assert getattr(state, name) == getattr(ViewState(), name)
+    assert any(told.startswith(sentence) for told in refused)
+    assert all(told.isprintable() for told in refused)
+
+
+@pytest.mark.parametrize(
+    ("name", "value"),
+    [
+        ("window", 12.0),
+        ("window", True),
+        ("window", None),
+        ("window", "12"),
+        ("window", [12]),
+        ("window", 10**30),
+        ("shift", float("nan")),
+        ("growth", None),
+        ("growth", ["log"]),
+        ("growth", {"log": 1}),
+        ("quantity", 1),
+        ("driver", None),
+        ("driver", 5),
+        ("driver", ["Broad money"] * 10_000),
+        ("driver", "lone \ud800 surrogate"),
+        ("first", 1965),
+        ("last", None),
+        ("windows", (1, 60)),
+    ],
+)
+def test_a_value_of_another_type_gives_one_sentence(name, value):
+    with pytest.raises(StateError, match=f"^{field_kind(name).label} must be ") as caught:
+        replace(ViewState(), **{name: value})
+    assert len(str(caught.value)) < 250
+    assert str(caught.value).isprintable()
+
+
+@given(st.sampled_from(NAMES), st.text())
+def test_no_text_of_an_address_does_worse_than_a_sentence(name, text):
+    query = f"{name}={quote(text, errors='replace')}&shift=-5"
+    state, refused = ViewState.from_query_or_default(query)
+    assert state.shift == -5 or (name == "shift" and refused)
+    assert len(refused) <= 1
+    try:
+        assert ViewState.from_query(query) == state
+        assert refused == ()
+    except StateError as error:
+        assert refused[0].startswith(str(error))
+
+
+def test_each_refused_value_is_named_and_the_others_are_kept():
+    state, refused = ViewState.from_query_or_default("window=abc&shift=-5&first=no&driver=M2")
+    assert state == ViewState(shift=-5, driver="M2")
+    assert len(refused) == 2
+    assert "Window must be a whole number from 1 to 60, but got 'abc'" in refused[0]
+    assert refused[1].startswith("From must be a period")
+    assert all(told.endswith("the usual value is shown instead") for told in refused)
+
+
+def test_a_state_cannot_be_changed_in_place():
+    with pytest.raises(FrozenInstanceError):
+        ViewState().window = 3
+
+
+# Keys ----------------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize(("name", "value"), CHANGES)
+def test_the_key_changes_unless_the_field_is_for_display_only(name, value):
+    changed = replace(ViewState(), **{name: value})
+    assert (changed.numbers() != ViewState().numbers()) == (not field_kind(name).display)
+
+
+@pytest.mark.parametrize(("name", "value"), CHANGES)
+def test_cells_of_one_map_share_the_question(name, value):
+    changed = replace(ViewState(), **{name: value})
+    shared = field_kind(name).display or name in ("window", "shift")
+    assert (changed.question() == ViewState().question()) == shared
+
+
+@given(states)
+def test_keys_are_reached_in_one_step(state):
+    assert state.numbers().numbers() == state.numbers()
+    assert state.question().numbers() == state.question()
+    assert state.numbers().question() == state.question()
+
+
+def test_some_field_is_for_display_only():
+    assert any(kind_of(item).display for item in fields(ViewState))
+
+
+# The table -----------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("item", fields(ViewState), ids=lambda item: item.name)
+def test_every_field_has_label_help_and_a_default_that_is_allowed(item):
+    kind = kind_of(item)
+    kind.check(item.default)
+    assert kind.read(str(item.default)) == item.default
+    assert kind.label[0].isupper()
+    assert kind.help.endswith(".")
+    assert len(kind.help) > 20
+    if isinstance(kind, Whole):
+        assert kind.low <= item.default <= kind.high
+    if isinstance(kind, Text):
+        assert kind.shape[0].islower()
+
+
+def test_labels_are_told_apart():
+    labels = [kind_of(item).label for item in fields(ViewState)]
+    assert len(set(labels)) == len(labels)
+
+
+# The sentence --------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize(
+    ("changes", "said"),
+    [
+        ({}, "Broad money, 12-month window, leading Consumer prices by 24 months"),
+        ({"shift": 1}, "Broad money, 12-month window, leading Consumer prices by 1 month"),
+        ({"shift": -1}, "Broad money, 12-month window, following Consumer prices by 1 month"),
+        ({"shift": -6}, "Broad money, 12-month window, following Consumer prices by 6 months"),
+        ({"shift": 0}, "Broad money, 12-month window, beside Consumer prices of the same month"),
+        (
+            {"window": 1, "shift": 3},
+            "Broad money, one month at a time, leading Consumer prices by 3 months",
+        ),
+    ],
+)
+def test_the_sentence_says_who_leads(changes, said):
+    assert ViewState(**changes).sentence() == said
+
+
+def test_the_sentence_counts_in_the_noun_given_and_ends_with_the_sample():
+    state = ViewState(window=4, shift=8)
+    assert state.sentence("quarter", "1965 Q1 to 2026 Q3") == (
+        "Broad money, 4-quarter window, leading Consumer prices by 8 quarters, 1965 Q1 to 2026 Q3"
+    )
+    assert "one year at a time" in replace(state, window=1).sentence("year")
+
+
+@given(states)
+def test_the_sentence_names_both_series(state):
+    assert state.driver in state.sentence()
+    assert state.response in state.sentence()
