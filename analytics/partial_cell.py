@@ -1,0 +1,136 @@
+"""A cell fitted to a part of its pairs, the others left out where they stand in the calendar."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+from scipy import fft
+from scipy.special import stdtr
+
+from analytics.cell import lag_cell
+from analytics.rates import trailing_mean
+from analytics.series import FloatArray
+from analytics.surface import smallest_variance
+
+BoolArray = NDArray[np.bool_]
+
+_FEWEST_EFFECTIVE = 3.1
+
+
+@dataclass(frozen=True, eq=False)
+class Relation:
+    """Line, correlation and per-cell p over some pairs of a cell.
+
+    Attributes
+    ----------
+    slope, intercept, correlation : float
+        Least-squares line of the response on the driver, and Pearson's r.
+    p : float
+        Two-sided, by effective months, of no relation.
+    effective_months : float
+        How many independent months the overlapping ones are worth, 3.1 or more.
+    """
+
+    slope: float
+    intercept: float
+    correlation: float
+    p: float
+    effective_months: float
+
+
+_UNDEFINED = Relation(np.nan, np.nan, np.nan, np.nan, np.nan)
+
+
+class PartialCell:
+    """The smoothed series of one cell, ready to be fitted to any part of its pairs.
+
+    Parameters
+    ----------
+    driver, response : array_like of float, shape (T,)
+        Growth rates in percent, one a month, same months, no gaps.
+    window, shift : int
+        The cell, in months; shift > 0 means that the driver leads.
+
+    Attributes
+    ----------
+    driver, response : ndarray of float, shape (n,)
+        All pairs of the cell.
+    n, window, shift : int
+        Number of pairs, and the cell.
+    first_month : int
+        Position in the driver of the last month of the first pair's window.
+    all_pairs : ndarray of bool, shape (n,)
+        The mask that keeps everything.
+
+    Raises
+    ------
+    ValueError
+        The series cannot be paired, fewer than 24 pairs are left, or a side is constant.
+    """
+
+    def __init__(self, driver: ArrayLike, response: ArrayLike, *, window: int, shift: int) -> None:
+        cell = lag_cell(driver, response, window=window, shift=shift)
+        x, y = np.asarray(driver, dtype=np.float64), np.asarray(response, dtype=np.float64)
+        self.window, self.shift, self.n = cell.window, cell.shift, cell.n
+        self.driver, self.response, self.first_month = cell.driver, cell.response, cell.start
+        self.all_pairs = np.ones(cell.n, dtype=bool)
+        self._series = (
+            (trailing_mean(x, window), max(0, -shift)),
+            (trailing_mean(y, window), max(0, shift)),
+        )
+        self._flat = smallest_variance(x), smallest_variance(y)
+
+    def relation(self, kept: BoolArray) -> Relation:
+        """Line, correlation and p over the pairs kept; all nan where they do not give any.
+
+        Parameters
+        ----------
+        kept : ndarray of bool, shape (n,)
+            Pairs to fit. Fewer than three, or a side that does not vary, give nan.
+
+        Notes
+        -----
+        With c_k the number of kept pairs that have a kept pair k months later, of m kept, the
+        effective months are ``m / max(1, 1 + 2 sum_k (c_k / m) rho_x(k) rho_y(k))`` over k up
+        to a third of the smoothed sample: the variance of a sum of products of two unrelated
+        series (Bartlett 1946) with the gap where it is. All pairs have c_k = n - k, the usual
+        form. Both autocorrelations are those of the months kept, so that the hump which an
+        episode leaves in them does not swallow what the other months say. Then
+        ``t = r sqrt((N - 2) / (1 - r^2))`` on N - 2 degrees of freedom, N the effective months.
+        """
+        pairs = int(kept.sum())
+        if pairs < 3:
+            return _UNDEFINED
+        x, y = self.driver[kept], self.response[kept]
+        x_mean, y_mean = float(x.mean()), float(y.mean())
+        x, y = x - x_mean, y - y_mean
+        sxx, syy, sxy = float(x @ x), float(y @ y), float(x @ y)
+        if sxx <= self._flat[0] * pairs or syy <= self._flat[1] * pairs:
+            return _UNDEFINED
+        slope, r = sxy / sxx, float(np.clip(sxy / np.sqrt(sxx * syy), -1.0, 1.0))
+        effective = self._effective_months(kept)
+        t = np.inf if r * r == 1.0 else abs(r) * np.sqrt((effective - 2.0) / (1.0 - r * r))
+        p = float(2.0 * stdtr(effective - 2.0, -t))
+        return Relation(slope, y_mean - slope * x_mean, r, p, effective)
+
+    def _effective_months(self, kept: BoolArray) -> float:
+        smoothed = self._series[0][0].size
+        longest = min(smoothed // 3, self.n - 1)
+        rho = np.ones(longest + 1)
+        for values, start in self._series:
+            known = np.ones(smoothed, dtype=bool)
+            known[start : start + self.n] = kept
+            centred = np.where(known, values - values[known].mean(), 0.0)
+            products = _lag_products(centred)[: longest + 1]
+            rho *= products / products[0]
+        apart = np.rint(_lag_products(kept.astype(np.float64)))[: longest + 1]
+        inflation = 1.0 + 2.0 * float(apart[1:] @ rho[1:]) / apart[0]
+        return float(max(_FEWEST_EFFECTIVE, apart[0] / max(1.0, inflation)))
+
+
+def _lag_products(values: FloatArray) -> FloatArray:
+    """Sum of values[t] * values[t + k] for k = 0 .. size - 1."""
+    length = fft.next_fast_len(2 * values.size, real=True)
+    spectrum = fft.rfft(values, length)
+    products: FloatArray = fft.irfft(np.abs(spectrum) ** 2, length)[: values.size]
+    return products
