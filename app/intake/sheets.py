@@ -26,7 +26,7 @@ def read_sheet(
         Rows of text, wide or long.
     metadata : mapping of str to mapping, optional
         Name of a series to its `kind`, `unit`, `adjustment` and `source`; these replace what
-        would be told from name and values.
+        would be told from name and values. "Broad money" also serves "Abrisund: Broad money".
 
     Returns
     -------
@@ -87,7 +87,7 @@ def _series(
     if np.isnan(values).all():
         message = "a series must have at least one value, but got none"
         return None, [Problem("error", file, None, name, message)]
-    given = metadata.get(name, {})
+    given = metadata.get(name) or metadata.get(name.partition(": ")[2], {})
     kind = given.get("kind") or inferred_kind(name, values, percent=numbers.percent)
     series = Series(
         name,

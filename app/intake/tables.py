@@ -1,5 +1,6 @@
 """From rows of text to columns with a name and a calendar: wide tables and long ones."""
 
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import NoReturn
@@ -9,6 +10,7 @@ from app.intake.periods import RULE, PeriodTrouble, looks_like_period, read_peri
 from app.intake.problems import MAX_NAME, Problem, counted, plain_text, quoted, refusal
 
 _LONG = ({"period", "series", "value"}, {"economy", "period", "series", "value"})
+_DIGIT = re.compile(r"[0-9]")
 
 
 @dataclass(frozen=True, eq=False)
@@ -61,11 +63,7 @@ def _wide_block(sheet: Sheet) -> Block:
     if not filled or max(filled) < 2:
         _refuse_without_header(sheet, first)
     header = filled.index(max(filled))
-    problems = [
-        Problem("note", file, lines[place], None, f"{_start(rows[place])} was not read")
-        for place in range(first)
-        if place != header
-    ]
+    problems = _remarks(sheet, [place for place in range(first) if place != header])
     width = len(rows[header])
     data, found = _data_rows(sheet, first, width)
     problems += found
@@ -92,25 +90,18 @@ def _data_rows(sheet: Sheet, first: int, width: int) -> tuple[list[int], list[Pr
     """Choose the rows to read: those as wide as the header that are more than a remark."""
     file, rows, lines = sheet.file, sheet.rows, sheet.lines
     problems: list[Problem] = []
-    data: list[int] = []
-    long: list[int] = []
-    short: list[int] = []
+    data, long, short, remarks = list[int](), list[int](), list[int](), list[int]()
     for place in range(first, len(rows)):
         row = rows[place]
-        if len(row) != width:
-            if any(map(str.strip, row[width:])):
-                long.append(place)
-                continue
+        if not looks_like_period(row[0][:60]) and _is_remark(row):
+            remarks.append(place)
+        elif len(row) > width and any(map(str.strip, row[width:])):
+            long.append(place)
+        else:
+            data.append(place)
             if len(row) < width:
                 short.append(place)
-        remark = row[0].startswith("#") or not looks_like_period(row[0][:60])
-        if remark and not any(map(str.strip, row[1:])):
-            problems.append(
-                Problem("note", file, lines[place], None, f"{_start(row)} was not read")
-            )
-            short = [p for p in short if p != place]
-            continue
-        data.append(place)
+    problems += _remarks(sheet, remarks)
     rule = f"a row must have {width} cells as the header has, but got"
     if long:
         message = f"{rule} {len(rows[long[0]])}"
@@ -148,6 +139,21 @@ def _unique_names(
         taken.add(new)
         names.append(new)
     return names, problems
+
+
+def _is_remark(row: Sequence[str]) -> bool:
+    """Tell whether a row without a period is words alone: no digit behind its first cell."""
+    return row[0].startswith("#") or not any(map(_DIGIT.search, row[1:]))
+
+
+def _remarks(sheet: Sheet, places: Sequence[int]) -> list[Problem]:
+    """Note the rows around the table that were passed over."""
+    if not places:
+        return []
+    message = counted(_start(sheet.rows[places[0]]), len(places) - 1, "row")
+    verb = "was" if len(places) == 1 else "were"
+    message = f"{message} outside the table {verb} not read"
+    return [Problem("note", sheet.file, sheet.lines[places[0]], None, message)]
 
 
 def _start(row: Sequence[str]) -> str:
