@@ -43,13 +43,15 @@ class Memory:
             return make()
         with self._guard:
             lock = self._locks.setdefault(key, threading.Lock())
-        with lock:
-            found: Any = self._cache.get(key)
-            if found is None:
-                found = make()
-                self._cache.set(key, found)
-        with self._guard:
-            self._locks.pop(key, None)
+        try:
+            with lock:
+                found: Any = self._cache.get(key)
+                if found is None:
+                    found = make()
+                    self._cache.set(key, found)
+        finally:
+            with self._guard:
+                self._locks.pop(key, None)
         return found  # type: ignore[no-any-return]
 
 
