@@ -47,10 +47,13 @@ def header(shown: LagView) -> list[tuple[str, str]]:
     sides = [
         (
             role,
-            f"{series.name}; {series.unit or 'percent'}; source {series.source or 'not named'}; "
-            f"growth {series.fingerprint}",
+            f"{rate.name}; {rate.unit or 'percent'}; source {rate.source or 'not named'}; "
+            f"{loaded.kind} as read: fingerprint {loaded.fingerprint}; "
+            f"growth as used: fingerprint {rate.fingerprint}",
         )
-        for role, series in (("driver", pair.driver), ("response", pair.response))
+        for role, rate, loaded in zip(
+            ("driver", "response"), (pair.driver, pair.response), shown.loaded, strict=True
+        )
     ]
     return [
         ("Pricewake", software_version()),

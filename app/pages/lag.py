@@ -14,7 +14,7 @@ from dash import ClientsideFunction, Dash, Input, Output, State, dcc, html
 from plotly.graph_objects import Figure
 
 from analytics.cell import LagCell
-from analytics.series import PERIODS_PER_YEAR, Pair, period_code
+from analytics.series import PERIODS_PER_YEAR, Pair, Series, period_code
 from analytics.surface import LagSurface
 from app import controls
 from app.compute import MIN_PAIRS, Bridge, Overlay, cell_span, noun, span_words
@@ -32,7 +32,7 @@ CAUTION = (
 
 @dataclass(frozen=True, eq=False)
 class LagView:
-    """Everything that the page shows for one state."""
+    """Everything that the page shows for one state; `loaded` are the two series as read."""
 
     state: ViewState
     pair: Pair
@@ -40,6 +40,7 @@ class LagView:
     cell: LagCell
     overlay: Overlay
     start: int
+    loaded: tuple[Series, Series]
 
     @property
     def sentence(self) -> str:
@@ -62,7 +63,8 @@ def view(state: ViewState, bridge: Bridge, asked: Collection[str] = ()) -> LagVi
     pair = bridge.pair(state)
     cell = bridge.cell(state)
     start = cell_span(pair, state)[0] + cell.start
-    return LagView(state, pair, bridge.surface(state), cell, bridge.overlay(state), start)
+    loaded = bridge.workspace.named(state.driver), bridge.workspace.named(state.response)
+    return LagView(state, pair, bridge.surface(state), cell, bridge.overlay(state), start, loaded)
 
 
 def answer(shown: LagView) -> dict[str, Any]:
