@@ -78,10 +78,9 @@ def read_csv_sheet(file: str, content: bytes) -> tuple[Sheet, list[Problem]]:
         )
     _refuse_other_formats(file, content)
     text, notes = _decoded(file, content)
-    if not text.strip():
-        raise refusal(file, "must hold a header and rows below it, but the file is empty")
-    if text.lstrip()[0] in "<{":
-        what = "HTML or XML" if text.lstrip()[0] == "<" else "JSON"
+    head = text.lstrip()[:1]
+    if head in ("<", "{"):
+        what = "HTML or XML" if head == "<" else "JSON"
         raise refusal(file, f"must be comma-separated text, but this looks like {what}")
     found = _CONTROL.search(text)
     if found:
@@ -93,6 +92,8 @@ def read_csv_sheet(file: str, content: bytes) -> tuple[Sheet, list[Problem]]:
     if text.count(separator, start) > MAX_CELLS:
         raise refusal(file, f"a file must not have more than {MAX_CELLS:,} cells, but this one has")
     rows, lines = _rows(file, text[start:] if start else text, separator, skipped)
+    if not rows:
+        raise refusal(file, "must hold a header and rows below it, but the file is empty")
     return Sheet(file, rows, lines, separator, '"' in text), notes
 
 

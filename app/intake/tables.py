@@ -10,6 +10,7 @@ from app.intake.periods import RULE, PeriodTrouble, looks_like_period, read_peri
 from app.intake.problems import MAX_NAME, Problem, counted, plain_text, quoted, refusal
 
 _LONG = ({"period", "series", "value"}, {"economy", "period", "series", "value"})
+_TOP = 20
 _DIGIT = re.compile(r"[0-9]")
 
 
@@ -45,11 +46,12 @@ def blocks_of(sheet: Sheet) -> list[Block]:
     IntakeError
         There is no header, no period, no column of values, or the rows do not fit the header.
     """
-    header = [cell.strip().lower() for cell in sheet.rows[0]]
-    while header and not header[-1]:
-        header.pop()
-    if set(header) in _LONG and len(set(header)) == len(header):
-        return _long_blocks(sheet, header)
+    for place, row in enumerate(sheet.rows[:_TOP]):
+        header = [cell.strip().lower() for cell in row]
+        while header and not header[-1]:
+            header.pop()
+        if set(header) in _LONG and len(set(header)) == len(header):
+            return _long_blocks(sheet, place, header)
     return [_wide_block(sheet)]
 
 
@@ -205,25 +207,36 @@ def _two_columns() -> str:
     )
 
 
-def _long_blocks(sheet: Sheet, header: Sequence[str]) -> list[Block]:
+def _long_blocks(sheet: Sheet, top: int, header: Sequence[str]) -> list[Block]:
     """Cut a long table into one block a series, in the order in which they first appear."""
     file, lines = sheet.file, sheet.lines
     width = len(header)
     period, series, value = (header.index(word) for word in ("period", "series", "value"))
     economy = header.index("economy") if "economy" in header else None
     found: dict[tuple[str, str], list[int]] = {}
-    for place, row in enumerate(sheet.rows[1:], start=1):
+    remarks, odd = list[int](), list[int]()
+    for place, row in enumerate(sheet.rows[top + 1 :], start=top + 1):
         if len(row) < width or any(map(str.strip, row[width:])):
-            message = f"a row must have {width} cells as the header has, but got {len(row)}"
-            raise refusal(file, message, row=lines[place])
+            dated = any(looks_like_period(cell[:60]) for cell in row[:width])
+            (remarks if _is_remark(row) and not dated else odd).append(place)
+            continue
         whose = "" if economy is None else row[economy]
         found.setdefault((whose, row[series]), []).append(place)
         if len(found) > MAX_COLUMNS:
             message = f"a file must not have more than {MAX_COLUMNS:,} series, but this one has"
             raise refusal(file, message, row=lines[place])
+    problems = _remarks(sheet, remarks)
+    if odd:
+        message = (
+            f"a row must have {width} cells as the header has, but got {len(sheet.rows[odd[0]])}"
+        )
+        if len(odd) > len(sheet.rows) // 2:
+            raise refusal(file, message, row=lines[odd[0]])
+        message = counted(f"{message}; the row was left out", len(odd) - 1, "such row")
+        problems.append(Problem("error", file, lines[odd[0]], None, message))
     if not found:
         message = "must have rows below the header, but the header is all there is"
-        raise refusal(file, message, row=lines[0])
+        raise refusal(file, message, row=lines[top])
     named: dict[str, list[int]] = {}
     for (whose, text), places in found.items():
         name = plain_text(text, MAX_NAME)
@@ -237,6 +250,7 @@ def _long_blocks(sheet: Sheet, header: Sequence[str]) -> list[Block]:
             [lines[place] for place in places],
             [sheet.rows[place][period] for place in places],
             [(name, [sheet.rows[place][value] for place in places])],
+            () if number else tuple(problems),
         )
-        for name, places in named.items()
+        for number, (name, places) in enumerate(named.items())
     ]
