@@ -13,7 +13,7 @@ from app.pages.lag import LagView, view
 from app.places import software_version
 from app.state import ViewState
 
-_FORMULA = ("=", "+", "-", "@", "\t", "\r")
+_FORMULA = tuple("=+-@\t\r\n＝＋－＠")  # the wide ones count in East Asian editions
 _NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?")
 
 
