@@ -254,7 +254,7 @@ def gap(series):
         ("quarters", {}, "driver and response must have the same frequency"),
         ("later", {}, "driver and response must overlap in time"),
         ("constant", {}, "must vary"),
-        ("negative", {}, "Prices"),
+        ("negative", {}, "'Prices' must be positive to have a growth rate"),
     ],
 )
 def test_what_cannot_be_shown_is_said_in_one_sentence(change, state, said):
