@@ -58,6 +58,8 @@ class Workspace:
         loaded = self.series
         if name in loaded:
             return loaded[name]
+        if not loaded:
+            raise UnknownSeriesError("nothing is loaded yet; open release files on the Data page")
         near = difflib.get_close_matches(name, loaded, n=3, cutoff=0.4) or list(loaded)[:6]
         known = f"; there is {', '.join(repr(each) for each in near)}" if near else ""
         raise UnknownSeriesError(f"no loaded series is named {name!r}{known}")

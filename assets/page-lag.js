@@ -290,6 +290,7 @@
 
   function settle() {
     clearTimeout(page.timer);
+    page.timer = 0;
     if (!page.data || page.data.error) return;
     if (page.frame) { cancelAnimationFrame(page.frame); draw(); }
     publish();
@@ -365,7 +366,7 @@
     if (field === "window" || field === "shift") move({ [field]: Number(element.value) });
   });
   controls.on("change", (field, element) => {
-    if (!page.state || !byId("lag-state")) return;
+    if (!page.state || !byId("lag-sentence")) return;
     if (field === "window" || field === "shift") return;
     page.state = { ...page.state, [field]: element.value.trim() };
     window.dash_clientside.set_props("lag-state", { data: page.state });
@@ -374,6 +375,7 @@
   window.dash_clientside = Object.assign({}, window.dash_clientside, { lag: { adopt, question } });
   pricewake.lag = page;
   page.move = move;
+  page.busy = () => Boolean(page.timer || page.frame || document.querySelector(".plot.moving"));
   page.settle = settle;
   page.sentence = () => sentenceParts(page.state).map((p) => (typeof p === "string" ? p : p[1])).join("");
   page.equation = () => (page.cell ? equation(page.cell) : "");
