@@ -75,7 +75,7 @@ class InfluenceResult:
     window, shift : int
         The cell, in months.
     slope, correlation, p, effective_months : float
-        The cell with all its pairs; p is per cell, by effective months.
+        The cell with all its pairs, as `cell_inference` has it.
     episodes : tuple of Episode
         In calendar order; they tile the pairs.
     fragility : float
@@ -112,7 +112,7 @@ class CellWithout:
     Attributes
     ----------
     driver, response : ndarray of float, shape (n,)
-        All pairs of the cell, the ones left out included.
+        All pairs of the cell without seasonal means, the ones left out included.
     kept : ndarray of bool, shape (n,)
         Pairs that the line is fitted to.
     slope, intercept, correlation, p, effective_months : float
@@ -171,7 +171,8 @@ def episodes(
     window, shift : int
         The cell, in months; shift > 0 means that the driver leads.
     periods_per_year : int, default 12
-        An episode lasts at least a year and at least a window.
+        An episode lasts at least a year and at least a window. Seasonal means are taken out of
+        both series first, as `cell_inference` does; 1 leaves them in.
     level : float, default 0.05
         Per-cell significance level behind `InfluenceResult.removals`.
 
@@ -206,9 +207,9 @@ def episodes(
     """
     if not 0.0 < level < 1.0:
         raise ValueError(f"level must be between 0 and 1, but got {level}")
-    if periods_per_year < 1:
-        raise ValueError(f"periods_per_year must be 1 or more, but got {periods_per_year}")
-    cell = PartialCell(driver, response, window=window, shift=shift)
+    cell = PartialCell(
+        driver, response, window=window, shift=shift, periods_per_year=periods_per_year
+    )
     whole = cell.relation(cell.all_pairs)
     borders = _runs(cell.driver, max(periods_per_year, window))
     spans = list(pairwise(borders))
@@ -284,7 +285,13 @@ def _removals(cell: PartialCell, spans: list[tuple[int, int]], p: float, level: 
 
 
 def cell_without(
-    driver: ArrayLike, response: ArrayLike, *, window: int, shift: int, episode: Episode
+    driver: ArrayLike,
+    response: ArrayLike,
+    *,
+    window: int,
+    shift: int,
+    episode: Episode,
+    periods_per_year: int = 12,
 ) -> CellWithout:
     """One cell without the pairs of an episode that `episodes` found in the same cell.
 
@@ -296,6 +303,8 @@ def cell_without(
         The cell, in months.
     episode : Episode
         Run of pairs to leave out.
+    periods_per_year : int, default 12
+        As for `episodes`.
 
     Returns
     -------
@@ -307,7 +316,9 @@ def cell_without(
         The series cannot be paired, the cell has fewer than 24 pairs, a side is constant, or
         the episode lies outside the cell.
     """
-    cell = PartialCell(driver, response, window=window, shift=shift)
+    cell = PartialCell(
+        driver, response, window=window, shift=shift, periods_per_year=periods_per_year
+    )
     if not 0 <= episode.start < episode.stop <= cell.n:
         raise ValueError(
             f"episode must lie within the {cell.n} pairs of the cell, but got"

@@ -8,13 +8,12 @@ from scipy import fft
 from scipy.special import stdtr
 
 from analytics.cell import lag_cell
+from analytics.effective import FEWEST_EFFECTIVE, student_t, without_season
 from analytics.rates import trailing_mean
 from analytics.series import FloatArray
-from analytics.surface import smallest_variance
+from analytics.surface import growth_pair, smallest_variance
 
 BoolArray = NDArray[np.bool_]
-
-_FEWEST_EFFECTIVE = 3.1
 
 
 @dataclass(frozen=True, eq=False)
@@ -50,11 +49,13 @@ class PartialCell:
         Growth rates in percent, one a month, same months, no gaps.
     window, shift : int
         The cell, in months; shift > 0 means that the driver leads.
+    periods_per_year : int
+        Seasonal means taken out first, as `cell_inference` does: 12, 4, or 1 for none.
 
     Attributes
     ----------
     driver, response : ndarray of float, shape (n,)
-        All pairs of the cell.
+        All pairs of the cell, without seasonal means.
     n, window, shift : int
         Number of pairs, and the cell.
     first_month : int
@@ -68,9 +69,17 @@ class PartialCell:
         The series cannot be paired, fewer than 24 pairs are left, or a side is constant.
     """
 
-    def __init__(self, driver: ArrayLike, response: ArrayLike, *, window: int, shift: int) -> None:
-        cell = lag_cell(driver, response, window=window, shift=shift)
-        x, y = np.asarray(driver, dtype=np.float64), np.asarray(response, dtype=np.float64)
+    def __init__(
+        self,
+        driver: ArrayLike,
+        response: ArrayLike,
+        *,
+        window: int,
+        shift: int,
+        periods_per_year: int,
+    ) -> None:
+        x, y = (without_season(v, periods_per_year) for v in growth_pair(driver, response))
+        cell = lag_cell(x, y, window=window, shift=shift)
         self.window, self.shift, self.n = cell.window, cell.shift, cell.n
         self.driver, self.response, self.first_month = cell.driver, cell.response, cell.start
         self.all_pairs = np.ones(cell.n, dtype=bool)
@@ -94,9 +103,10 @@ class PartialCell:
         effective months are ``m / max(1, 1 + 2 sum_k (c_k / m) rho_x(k) rho_y(k))`` over k up
         to a third of the smoothed sample: the variance of a sum of products of two unrelated
         series (Bartlett 1946) with the gap where it is. All pairs have c_k = n - k, the usual
-        form. Both autocorrelations are those of the months kept, so that the hump which an
-        episode leaves in them does not swallow what the other months say. Then
-        ``t = r sqrt((N - 2) / (1 - r^2))`` on N - 2 degrees of freedom, N the effective months.
+        form, and the p of `cell_inference`. Both autocorrelations are those of the months kept,
+        so that the hump which an episode leaves in them does not swallow what the other months
+        say: with those of the whole sample a genuine relation beside a shared event is seen in
+        21 % instead of 88 % of trials (own measurement, tests/bench/second_opinions).
         """
         pairs = int(kept.sum())
         if pairs < 3:
@@ -109,8 +119,8 @@ class PartialCell:
             return _UNDEFINED
         slope, r = sxy / sxx, float(np.clip(sxy / np.sqrt(sxx * syy), -1.0, 1.0))
         effective = self._effective_months(kept)
-        t = np.inf if r * r == 1.0 else abs(r) * np.sqrt((effective - 2.0) / (1.0 - r * r))
-        p = float(2.0 * stdtr(effective - 2.0, -t))
+        t = float(student_t(r, effective))
+        p = float(2.0 * stdtr(effective - 2.0, -abs(t)))
         return Relation(slope, y_mean - slope * x_mean, r, p, effective)
 
     def _effective_months(self, kept: BoolArray) -> float:
@@ -125,7 +135,7 @@ class PartialCell:
             rho *= products / products[0]
         apart = np.rint(_lag_products(kept.astype(np.float64)))[: longest + 1]
         inflation = 1.0 + 2.0 * float(apart[1:] @ rho[1:]) / apart[0]
-        return float(max(_FEWEST_EFFECTIVE, apart[0] / max(1.0, inflation)))
+        return float(max(FEWEST_EFFECTIVE, apart[0] / max(1.0, inflation)))
 
 
 def _lag_products(values: FloatArray) -> FloatArray:
