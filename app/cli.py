@@ -1,5 +1,6 @@
 """The command `pricewake`: serve the dashboard, or answer without a browser."""
 
+import io
 import json
 import math
 import signal
@@ -72,7 +73,13 @@ def pricewake() -> None:
 
 @pricewake.command()
 @_files
-@click.option("--port", type=click.IntRange(1, 65535), default=DEFAULT_PORT, show_default=True)
+@click.option(
+    "--port",
+    type=click.IntRange(1, 65535),
+    default=DEFAULT_PORT,
+    show_default=True,
+    help="Port to serve on; where it is taken, the next one that is free.",
+)
 @click.option("--no-browser", is_flag=True, help="Do not open the browser.")
 def serve(files: tuple[Path, ...], port: int, no_browser: bool) -> None:
     """Serve the dashboard on this machine and open the browser (the command when none is named)."""
@@ -107,7 +114,8 @@ def inspect(files: tuple[Path, ...], as_json: bool, csv_path: Path | None) -> in
     """Say what was understood in the files and what is wrong with them."""
     from app.intake.reading import inspection
 
-    report = inspection(_workspace(files).releases)
+    workspace = _workspace(files)
+    report = inspection(workspace.releases)
     if csv_path:
         rows = [list(report["series"][0])] if report["series"] else []
         rows += [[_flat(v) for v in series.values()] for series in report["series"]]
@@ -120,10 +128,9 @@ def inspect(files: tuple[Path, ...], as_json: bool, csv_path: Path | None) -> in
                 f"{series['name']}: {series['frequency']} {series['kind']}, {series['first']} to"
                 f" {series['last']}, {series['n']} values, {len(series['gaps'])} missing"
             )
-        for problem in report["problems"]:
-            place = f"row {problem['row']}, " if problem["row"] else ""
-            click.echo(f"{problem['severity']}: {problem['file']}: {place}{problem['message']}")
-    return int(any(problem["severity"] == "error" for problem in report["problems"]))
+        for problem in workspace.problems:
+            click.echo(f"{problem.severity}: {problem}")
+    return int(bool(_errors(workspace)))
 
 
 @pricewake.command()
@@ -168,11 +175,15 @@ def lag(
             f" correlation {best['correlation']:+.2f}, slope {best['slope']:+.3f}."
         )
         click.echo(page.CAUTION)
-    return _status(workspace)
+    for problem in _errors(workspace):
+        click.echo(f"pricewake: {problem}", err=True)
+    return int(bool(_errors(workspace)))
 
 
 def main(arguments: list[str] | None = None) -> NoReturn:
     """Run the command; wrong use and unreadable input give one sentence and exit status 2."""
+    if isinstance(sys.stdout, io.TextIOWrapper):
+        sys.stdout.reconfigure(errors="backslashreplace")  # a console need not know every letter
     try:
         outcome = pricewake.main(arguments, prog_name="pricewake", standalone_mode=False)
     except click.exceptions.Abort:
@@ -195,7 +206,14 @@ def _workspace(files: tuple[Path, ...]) -> Any:
     from app.intake.reading import read_path
     from app.workspace import Workspace
 
-    return Workspace(tuple(read_path(path) for path in files) if files else demo_releases())
+    if not files:
+        return Workspace(demo_releases())
+    releases = tuple(read_path(path) for path in files)
+    names = [release.name for release in releases]
+    for name in names:
+        if names.count(name) > 1:
+            raise click.UsageError(f"files must have different names, but {name!r} stands twice")
+    return Workspace(releases)
 
 
 def _state(opening: ViewState, flags: dict[str, str | None]) -> ViewState:
@@ -207,8 +225,8 @@ def _state(opening: ViewState, flags: dict[str, str | None]) -> ViewState:
         raise click.UsageError(str(error)) from error
 
 
-def _status(workspace: Any) -> int:
-    return int(any(problem.severity == "error" for problem in workspace.problems))
+def _errors(workspace: Any) -> list[Any]:
+    return [problem for problem in workspace.problems if problem.severity == "error"]
 
 
 def _free_port(port: int) -> int:
@@ -225,7 +243,7 @@ def _free_port(port: int) -> int:
 
 
 def _print_json(answer: dict[str, Any]) -> None:
-    click.echo(json.dumps(_finite(answer), ensure_ascii=False, allow_nan=False))
+    click.echo(json.dumps(_finite(answer), allow_nan=False))  # ASCII: fits every console
 
 
 def _finite(value: Any) -> Any:
@@ -251,6 +269,13 @@ def _csv_text(view: str, rows: list[list[Any]]) -> str:
 
 def _write(path: Path, text: str) -> None:
     """Write a file whole or not at all."""
-    part = path.with_name(path.name + ".part")
-    part.write_text(text, encoding="utf-8", newline="")
-    part.replace(path)
+    try:
+        if path.is_dir():
+            raise IsADirectoryError(0, "that is a folder")
+        part = path.with_name(f"{path.name}.part")
+        part.write_text(text, encoding="utf-8", newline="")
+        part.replace(path)
+    except OSError as error:
+        raise click.UsageError(
+            f"--csv must be a file that may be written, but got {str(path)!r}: {error.strerror}"
+        ) from error
