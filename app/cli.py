@@ -207,7 +207,7 @@ def _workspace(files: tuple[Path, ...]) -> Any:
     from app.workspace import Workspace
 
     if not files:
-        return Workspace(demo_releases())
+        return Workspace(placeholder=demo_releases())
     releases = tuple(read_path(path) for path in files)
     names = [release.name for release in releases]
     for name in names:

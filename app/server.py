@@ -138,8 +138,14 @@ def _register_routes(server: Flask, bridge: Bridge) -> None:
             release = read_release(name, request.get_data(cache=False))
         except IntakeError as error:
             return {"message": str(error)}, 422
+        if not release.series:
+            return {"message": " ".join(str(problem) for problem in release.problems[:3])}, 422
         bridge.workspace.add(release)
-        return {"file": release.name, "series": [s.name for s in release.series]}, 200
+        return {
+            "file": release.name,
+            "series": [series.name for series in release.series],
+            "problems": len(release.problems),
+        }, 200
 
     @server.errorhandler(Exception)
     def _failed(error: Exception) -> tuple[dict[str, str], int] | HTTPException:

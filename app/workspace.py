@@ -16,18 +16,25 @@ class UnknownSeriesError(ValueError):
 class Workspace:
     """Series of the files read so far, kept in memory; safe to share between threads.
 
-    A series read again under the same name takes the place of the earlier one.
+    A series read again under the same name takes the place of the earlier one. The releases given
+    as `placeholder` are shown until the first file of the user's own comes in.
     """
 
-    def __init__(self, releases: tuple[Release, ...] = ()) -> None:
+    def __init__(
+        self, releases: tuple[Release, ...] = (), placeholder: tuple[Release, ...] = ()
+    ) -> None:
         self._lock = threading.Lock()
-        self._releases: dict[str, Release] = {}
+        self._releases = {release.name: release for release in placeholder}
+        self._only_placeholder = bool(placeholder)
         for release in releases:
             self.add(release)
 
     def add(self, release: Release) -> None:
         """Take in a release; a file of the same name is replaced."""
         with self._lock:
+            if self._only_placeholder:
+                self._releases.clear()
+                self._only_placeholder = False
             self._releases.pop(release.name, None)
             self._releases[release.name] = release
 
@@ -65,16 +72,19 @@ class Workspace:
         raise UnknownSeriesError(f"no loaded series is named {name!r}{known}")
 
     def opening_state(self) -> ViewState:
-        """Return the view to open with: the usual pair if it is loaded, else the first two series.
+        """Return the view to open with: the usual pair if it is loaded, else the first that fits.
 
-        A name with "money" in it is preferred as driver, one with "price" or "cpi" as response.
+        A name with "money" in it is preferred as driver; the response shares its calendar, and one
+        with "price" or "cpi" in its name is preferred.
         """
-        usual, names = ViewState(), list(self.series)
-        if usual.driver in names and usual.response in names:
+        usual, loaded = ViewState(), self.series
+        if (usual.driver in loaded and usual.response in loaded) or not loaded:
             return usual
-        if not names:
-            return usual
-        driver = next((n for n in names if "money" in n.lower()), names[0])
-        others = [n for n in names if n != driver] or [driver]
-        response = next((n for n in others if any(w in n.lower() for w in ("price", "cpi"))), None)
-        return ViewState(driver=driver, response=response or others[0])
+        driver = next((name for name in loaded if "money" in name.lower()), next(iter(loaded)))
+        partners = [
+            name
+            for name, series in loaded.items()
+            if name != driver and series.frequency == loaded[driver].frequency
+        ]
+        prices = [n for n in partners if any(word in n.lower() for word in ("price", "cpi"))]
+        return ViewState(driver=driver, response=(prices or partners or [driver])[0])

@@ -18,7 +18,7 @@
       request.onloadend = () => {
         let answer = {};
         try { answer = JSON.parse(request.responseText); } catch (_) { /* told below */ }
-        if (request.status === 200) resolve(`${answer.file}: ${answer.series.length} series read.`);
+        if (request.status === 200) resolve(`${answer.file}: ${answer.series.length} series read${answer.problems ? `; ${answer.problems} things to look at, listed below` : ""}.`);
         else resolve(answer.message || `${file.name} could not be sent; is Pricewake still running?`);
       };
       request.send(file);
@@ -30,6 +30,7 @@
     for (const file of files) said.push(await send(file));
     say(said.join(" "));
     window.dash_clientside.set_props("data-tick", { data: Date.now() });
+    window.dash_clientside.set_props("nav-lag", { href: "/lag" });
   }
 
   document.addEventListener("change", (event) => {

@@ -56,7 +56,7 @@
     const { driver, response, noun } = page.data;
     const smoothed = window === 1 ? `one ${noun} at a time` : `averaged over ${window} ${noun}s`;
     const later = shift > 0 ? `${counted(shift, noun)} later` : shift < 0 ? `${counted(-shift, noun)} earlier` : `of the same ${noun}`;
-    return [driver.name, ", ", ["window", smoothed], ", against ", response.name, " ", ["shift", later], "."];
+    return [driver.name, ", ", ["window", smoothed, ","], " against ", response.name, " ", ["shift", later, "."]];
   }
 
   function equation(cell) {
@@ -77,7 +77,10 @@
         button.textContent = part[1];
         button.title = `Move the ${part[0]} slider`;
         button.onclick = () => controls.field(part[0]).focus();
-        return button;
+        const unbroken = document.createElement("span");
+        unbroken.className = "unbroken";
+        unbroken.append(button, part[2]);
+        return unbroken;
       }),
     );
     byId("lag-equation").textContent = cell ? equation(cell) : "";
@@ -320,6 +323,7 @@
     page.question = asked(data.state);
     page.state = data.state;
     document.querySelector(".lag-page").classList.toggle("broken", Boolean(data.error));
+    byId("lag-invented").hidden = !data.invented;
     if (data.error) {
       byId("lag-sentence").textContent = "Nothing to show for this choice.";
       byId("lag-readout").textContent = "";
@@ -377,6 +381,6 @@
   page.move = move;
   page.busy = () => Boolean(page.timer || page.frame || document.querySelector(".plot.moving"));
   page.settle = settle;
-  page.sentence = () => sentenceParts(page.state).map((p) => (typeof p === "string" ? p : p[1])).join("");
+  page.sentence = () => sentenceParts(page.state).map((p) => (typeof p === "string" ? p : p[1] + p[2])).join("");
   page.equation = () => (page.cell ? equation(page.cell) : "");
 })();

@@ -23,11 +23,11 @@
     const under = view === "surface" ? `${page.data.span}. The cross marks the chosen cell.` : `${page.equation()}    ${page.data.span}`;
     const source = wrapped(page.data.source, Math.floor(width / 6.5));
     const { layout } = figure;
-    const top = 34 + 24 * title.length, bottom = 62 + 15 * source.length;
-    layout.margin = { ...layout.margin, t: top + 16, b: bottom, l: 70 };
+    const top = 50 + 24 * title.length + (view === "surface" ? 0 : 22), bottom = 62 + 15 * source.length;
+    layout.margin = { ...layout.margin, t: top, b: bottom, l: 70 };
     layout.title = {
       text: `${title.map(escaped).join("<br>")}<br><span style="font-size:13px">${escaped(under)}</span>`,
-      x: 0.01, xanchor: "left", y: 1, yanchor: "top", yref: "container", pad: { t: 16 },
+      x: 0.01, xanchor: "left", y: 1 - 18 / height, yanchor: "top", yref: "container",
       font: { size: 18, family: "Georgia, Liberation Serif, serif" },
     };
     layout.annotations = [...(layout.annotations || []), {
@@ -41,9 +41,9 @@
         { type: "line", xref: "x", yref: "paper", x0: shift, x1: shift, y0: 0, y1: 1, line },
         { type: "line", xref: "paper", yref: "y", x0: 0, x1: 1, y0: window, y1: window, line }];
     }
-    if (view === "overlay") {
+    if (view !== "surface") {
       layout.showlegend = true;
-      layout.legend = { orientation: "h", x: 0, y: 1.0, yanchor: "bottom" };
+      layout.legend = { orientation: "h", x: 0, y: 1, yanchor: "bottom" };
     }
     if (view === "scatter") layout.margin.r = 90;
     layout.width = width;

@@ -125,6 +125,7 @@ def payload(state: ViewState, bridge: Bridge) -> dict[str, Any]:
             "overlay": _plain(figures.overlay_lines(shown.overlay, pair, shown.state)),
         },
         "source": _source_line(pair),
+        "invented": any(s.source.endswith("(invented)") for s in (pair.driver, pair.response)),
     }
 
 
@@ -151,6 +152,15 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                     html.H1(id="lag-sentence"),
                     html.P(id="lag-readout", className="readout", **{"aria-live": "polite"}),
                     html.P(id="lag-message", className="message", role="alert"),
+                    html.P(
+                        [
+                            "Driver or response belong to an invented economy. ",
+                            dcc.Link("Open your own files", href="/data"),
+                        ],
+                        id="lag-invented",
+                        className="invented",
+                        hidden=True,
+                    ),
                 ],
                 className="headline",
             ),
