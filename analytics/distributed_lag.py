@@ -117,9 +117,9 @@ def distributed_lag(
     With X the lags and y the response in deviations from their means, and P the penalty matrix,
     the weights are ``A^-1 X'y``, ``A = X'X + penalty P``, and their covariance is
     ``A^-1 S A^-1 + penalty s^2 A^-1 P A^-1``: S is the long-run product of regressor times
-    residual (Newey and West 1987) with critical values for a truncation that grows with the
-    sample (Kiefer and Vogelsang 2005), the second part the expected squared bias of a smooth
-    curve (Nychka 1988), 0 without a penalty.
+    residual (Newey and West 1987) times n over n less the parameters, with critical values for
+    a truncation that grows with the sample (Kiefer and Vogelsang 2005); the second part is the
+    expected squared bias of a smooth curve (Nychka 1988), 0 without a penalty.
 
     Examples
     --------
@@ -167,6 +167,7 @@ def distributed_lag(
     inverse = basis @ (rotation * shrink) @ rotation.T  # A^-1 X'e is what the noise adds
     scores = (design @ basis) * residuals[:, None]
     covariance = inverse @ long_run_products(scores, bartlett) @ inverse.T
+    covariance *= n / (n - 1.0 - parameters)
     if chosen > 0.0:
         variance = float(residuals @ residuals) / (n - 1 - parameters)
         covariance += chosen * variance * inverse @ price @ inverse.T

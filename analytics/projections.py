@@ -93,8 +93,8 @@ def local_projections(
     y_(t+h) replaced by the sum y_t + .. + y_(t+h) for the level and by a centred mean for
     `averaged`. The errors overlap, so the bands use Newey and West's (1987) variance with a
     truncation of 1.3 times the root of the sample or the horizon plus the months averaged,
-    whichever is longer, and the critical values of Kiefer and Vogelsang (2005). The number of
-    Jorda's equation is cited from memory.
+    whichever is longer, times n over n less the regressors, and the critical values of Kiefer
+    and Vogelsang (2005). The number of Jorda's equation is cited from memory.
 
     Examples
     --------
@@ -165,4 +165,5 @@ def _projection(
         [float(long_run_products(column[:, None], truncation)[0, 0]) for column in scores.T]
     )
     critical = fixed_b_critical(truncation, n, level)
-    return np.column_stack([slopes, spread / size**2, np.full(slopes.size, critical)])
+    variance = spread / size**2 * n / (n - controls.shape[1] - 1.0)
+    return np.column_stack([slopes, variance, np.full(slopes.size, critical)])

@@ -41,7 +41,7 @@ def test_unrestricted_equals_statsmodels(truncation):
         planted.driver, planted.response, max_shift=12, form="unrestricted", truncation=truncation
     )
     reference = sm.OLS(planted.response[12:], sm.add_constant(design(planted.driver, 13))).fit(
-        cov_type="HAC", cov_kwds={"maxlags": truncation}
+        cov_type="HAC", cov_kwds={"maxlags": truncation, "use_correction": True}
     )
     np.testing.assert_allclose(fitted.weights.estimate, reference.params[1:], atol=1e-10)
     np.testing.assert_allclose(fitted.weights.se, reference.bse[1:], rtol=1e-8)
@@ -64,7 +64,7 @@ def test_polynomial_equals_least_squares_on_powers():
     powers = np.vander(np.arange(21.0), 4, increasing=True)
     regressors = sm.add_constant(design(planted.driver, 21) @ powers)
     reference = sm.OLS(planted.response[20:], regressors).fit(
-        cov_type="HAC", cov_kwds={"maxlags": fitted.truncation}
+        cov_type="HAC", cov_kwds={"maxlags": fitted.truncation, "use_correction": True}
     )
     weights = reference.t_test(np.column_stack([np.zeros(21), powers]))
     np.testing.assert_allclose(fitted.weights.estimate, weights.effect, atol=1e-9)

@@ -32,7 +32,7 @@ def regression(planted, weights, own_lags):
     n = len(rows)
     truncation = max(int(np.ceil(1.3 * np.sqrt(n))), len(weights))
     fitted = sm.OLS(target, sm.add_constant(np.array(regressors))).fit(
-        cov_type="HAC", cov_kwds={"maxlags": truncation}
+        cov_type="HAC", cov_kwds={"maxlags": truncation, "use_correction": True}
     )
     return fitted.params[1], fitted.bse[1], fixed_b_critical(truncation, n, 0.95)
 
