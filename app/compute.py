@@ -96,9 +96,10 @@ class Bridge:
             One sentence: unknown name, other frequency, gap, no overlap, no growth rate.
         """
         loaded = list(self.workspace.series)
-        if len(loaded) < 2:
-            found = f"only {loaded[0]!r}" if loaded else "none"
-            raise StateError(f"two series must be loaded to be paired, but there is {found}")
+        if len(loaded) == 1:
+            raise StateError(
+                f"two series must be loaded to be paired, but there is only {loaded[0]!r}"
+            )
         if state.driver == state.response:
             raise StateError(
                 f"driver and response must be two series, but both are {state.driver!r}; a series"
