@@ -56,7 +56,7 @@ def test_an_unknown_name_gets_the_nearest_ones():
     )
     with pytest.raises(UnknownSeriesError, match="there is 'Broad money', 'Narrow money', 'Con"):
         here.named("zzz")
-    with pytest.raises(UnknownSeriesError, match=r"^nothing is loaded yet; open release files on the Data page$"):
+    with pytest.raises(UnknownSeriesError, match="^nothing is loaded yet; open release files"):
         Workspace().named("zzz")
 
 
@@ -85,6 +85,7 @@ def test_problems_of_all_files_are_together():
         (["Wages", "Oil price"], "Wages", "Oil price"),
         (["Money", "Money market rate"], "Money", "Money market rate"),
         (["A", "B", "C"], "A", "B"),
+        (["Prices of oil", "Cpi"], "Prices of oil", "Cpi"),
         (["Only"], "Only", "Only"),
     ],
 )
@@ -92,6 +93,27 @@ def test_the_opening_pair_is_money_and_prices_where_they_can_be_told(names, driv
     state = Workspace((release("a.csv", *names),)).opening_state()
     assert (state.driver, state.response) == (driver, response)
     assert state == replace(ViewState(), driver=driver, response=response)
+
+
+def test_the_opening_pair_shares_a_calendar_where_one_does():
+    quarterly = Series("Consumer prices", pd.Period("2000Q1"), np.arange(30) + 1.0)
+    files = Release("a.csv", (series("Money"), quarterly, series("Wages")), ())
+    state = Workspace((files,)).opening_state()
+    assert (state.driver, state.response) == ("Money", "Wages")
+    alone = Workspace((Release("a.csv", (series("Money"), quarterly), ()),)).opening_state()
+    assert alone.driver == "Money"
+
+
+def test_what_stands_in_goes_when_the_first_file_of_ones_own_comes():
+    here = Workspace(placeholder=(release("demo.csv", "One"), release("more.csv", "Two")))
+    assert list(here.series) == ["One", "Two"]
+    here.add(release("own.csv", "Three"))
+    assert list(here.series) == ["Three"]
+    here.add(release("demo.csv", "Four"))
+    assert list(here.series) == ["Three", "Four"]
+    assert list(Workspace((release("own.csv", "Three"),), (release("d.csv", "One"),)).series) == [
+        "Three"
+    ]
 
 
 def test_an_empty_workspace_opens_with_the_usual_state():
