@@ -56,7 +56,7 @@ def test_an_unknown_name_gets_the_nearest_ones():
     )
     with pytest.raises(UnknownSeriesError, match="there is 'Broad money', 'Narrow money', 'Con"):
         here.named("zzz")
-    with pytest.raises(UnknownSeriesError, match="^nothing is loaded yet; open release files"):
+    with pytest.raises(UnknownSeriesError, match=r"^nothing is loaded yet; open release files"):
         Workspace().named("zzz")
 
 
