@@ -9,7 +9,7 @@ import numpy as np
 import pandas as pd
 from numpy.typing import ArrayLike, NDArray
 
-from analytics.rates import trailing_mean
+from analytics.overlap import overlap_moments, smoothed_rows, span_moments
 from analytics.series import FloatArray, read_only
 
 IntArray = NDArray[np.int64]
@@ -63,7 +63,7 @@ class LagSurface:
         Parameters
         ----------
         by : {"absolute", "correlation"}
-            Largest absolute r, or largest r; of equal cells the first one, row by row.
+            Largest absolute r, or largest r; of cells equal to 1e-12 the first, row by row.
 
         Raises
         ------
@@ -75,7 +75,8 @@ class LagSurface:
         if not np.isfinite(self.correlation).any():
             raise ValueError("a peak must be a cell with a correlation, but no cell has one")
         height = np.abs(self.correlation) if by == "absolute" else self.correlation
-        row, column = np.unravel_index(np.nanargmax(height), height.shape)
+        first = np.flatnonzero(height >= np.nanmax(height) - 1e-12)[0]
+        row, column = np.unravel_index(first, height.shape)
         return int(self.windows[row]), int(self.shifts[column])
 
     def cell(self, window: int, shift: int) -> tuple[int, int]:
@@ -224,9 +225,7 @@ def lag_surface(
     t+s-w+1..t+s, for the n = T - w + 1 - abs(s) months t that have both. A positive shift reads the
     response later: the driver leads. With window 1 and all the pairs, r is close to the sample
     cross-correlation function (Box and Jenkins 1976, ch. 11; chapter from memory), which
-    divides by the moments of the whole sample instead of the cell's own. Means and squares of
-    the growing stretches come from the updating formula of Welford (1962), which does not
-    subtract large numbers.
+    divides by the moments of the whole sample instead of the cell's own.
 
     Examples
     --------
@@ -250,15 +249,14 @@ def lag_surface(
             f"a cell must have at least {min_pairs} pairs, but no cell of the grid has more than"
             f" {pairs.max()} of {x.size} months"
         )
-    moments = np.full((3, lengths.size, leads.size), np.nan)
-    x_centred, y_centred = x - x.mean(), y - y.mean()
-    for row, window in enumerate(lengths):
-        xs, ys = trailing_mean(x_centred, window), trailing_mean(y_centred, window)
-        if same_months:
-            span = (first - window + 1, last - window + 1)
-            moments[:, row] = _moments_of_span(xs, ys, leads, span)
-        else:
-            moments[:, row] = _moments_of_overlap(xs, ys, leads)
+    xs, ys = (smoothed_rows(values - values.mean(), lengths) for values in (x, y))
+    sizes = x.size - lengths + 1
+    if same_months:
+        spans = [(first - window + 1, last - window + 1) for window in lengths.tolist()]
+        rows = zip(xs, ys, sizes, spans, strict=True)
+        moments = np.stack([span_moments(a[:n], b[:n], leads, span) for a, b, n, span in rows], 1)
+    else:
+        moments = overlap_moments(xs, ys, sizes, leads)[2:]
     sxx, syy, sxy = moments
     usable = (
         (pairs >= min_pairs)
@@ -280,45 +278,3 @@ def _common_months(windows: IntArray, shifts: IntArray, months: int) -> tuple[in
     """First month t that every cell of the grid has, and the month after the last one."""
     first = int(windows[-1]) - 1 + max(0, -int(shifts[0]))
     return first, months - max(0, int(shifts[-1]))
-
-
-def _moments_of_overlap(xs: FloatArray, ys: FloatArray, shifts: IntArray) -> FloatArray:
-    """Return sums of squares and products about the means, shape (3, S): each shift's overlap.
-
-    For s >= 0 the first n values of the driver meet the last n of the response, for s < 0 the
-    other way round, so the moments of one side are those of stretches that grow from an end.
-    """
-    n = np.maximum(1, xs.size - np.abs(shifts))
-    leads = shifts >= 0
-    (x_head, x_head_squares), (x_tail, x_tail_squares) = _growing(xs), _growing(xs[::-1])
-    (y_head, y_head_squares), (y_tail, y_tail_squares) = _growing(ys), _growing(ys[::-1])
-    x_mean = np.where(leads, x_head[n - 1], x_tail[n - 1])
-    y_mean = np.where(leads, y_tail[n - 1], y_head[n - 1])
-    before, after = max(0, -int(shifts[0])), max(0, int(shifts[-1]))
-    products = np.correlate(np.pad(ys, (before, after)), xs, mode="valid")[shifts + before]
-    return np.stack(
-        [
-            np.where(leads, x_head_squares[n - 1], x_tail_squares[n - 1]),
-            np.where(leads, y_tail_squares[n - 1], y_head_squares[n - 1]),
-            products - n * x_mean * y_mean,
-        ]
-    )
-
-
-def _growing(values: FloatArray) -> tuple[FloatArray, FloatArray]:
-    """Mean of values[:k] and sum of squares about it for k = 1..n (Welford 1962)."""
-    k = np.arange(1, values.size + 1)
-    mean = np.cumsum(values) / k
-    step = np.concatenate(([0.0], values[1:] - mean[:-1]))
-    return mean, np.cumsum(step**2 * (k - 1) / k)
-
-
-def _moments_of_span(
-    xs: FloatArray, ys: FloatArray, shifts: IntArray, span: tuple[int, int]
-) -> FloatArray:
-    """Return sums of squares and products about the means, shape (3, S): one span of months."""
-    x = xs[span[0] : span[1]] - xs[span[0] : span[1]].mean()
-    y = np.lib.stride_tricks.sliding_window_view(ys, x.size)[span[0] + shifts]
-    y -= y.mean(axis=1, keepdims=True)
-    squares = np.einsum("ij,ij->i", y, y)
-    return np.stack([np.full(shifts.size, x @ x), squares, y @ x])

@@ -83,6 +83,12 @@ def test_planted_lag_is_found(lead, same_months):
     assert surface.slope[surface.cell(1, lead)] == pytest.approx(0.4, abs=0.03)
 
 
+def test_equal_cells_give_the_first():
+    driver = autoregression(240, 0.3, 8)
+    surface = lag_surface(driver, 3.0 * driver + 1.0, windows=range(1, 30), shifts=range(-3, 4))
+    assert surface.peak() == surface.peak("correlation") == (1, 0)
+
+
 def test_planted_negative_relation():
     driver = autoregression(240, 0.3, 8)
     surface = lag_surface(driver, -np.roll(driver, 5), windows=[1, 3], shifts=range(-9, 10))

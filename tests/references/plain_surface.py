@@ -91,3 +91,53 @@ def plain_slices(along, across, slices):
     for a, b in zip(along, across, strict=True):
         held[min(slices - 1, math.floor((a - low) / (high - low) * slices))].append(b)
     return [math.fsum(h) / len(h) if h else math.nan for h in held], [len(h) for h in held]
+
+
+def plain_effective_months(driver, response, window, shift):
+    """Effective months of a cell, with every sum a loop over the months it runs over."""
+    smoothed = []
+    for series in (driver, response):
+        means = [
+            math.fsum(series[t - window + 1 : t + 1]) / window
+            for t in range(window - 1, len(series))
+        ]
+        level = math.fsum(means) / len(means)
+        smoothed.append([mean - level for mean in means])
+    size = len(smoothed[0])
+    n = size - abs(shift)
+
+    def autocorrelation(values, k):
+        return math.fsum(values[t] * values[t + k] for t in range(size - k)) / math.fsum(
+            value * value for value in values
+        )
+
+    inflation = 1.0 + 2.0 * math.fsum(
+        (1.0 - k / n) * autocorrelation(smoothed[0], k) * autocorrelation(smoothed[1], k)
+        for k in range(1, min(size // 3, n - 1) + 1)
+    )
+    return max(3.1, n / max(1.0, inflation))
+
+
+def plain_without_season(series, periods_per_year):
+    """The series less the mean of its month of the year, plus the mean of all."""
+    level = math.fsum(series) / len(series)
+    means = [
+        math.fsum(series[place::periods_per_year]) / len(series[place::periods_per_year])
+        for place in range(periods_per_year)
+    ]
+    return [value - means[t % periods_per_year] + level for t, value in enumerate(series)]
+
+
+def plain_hac_se(driver, response, bandwidth):
+    """Bartlett-kernel standard error of the slope, lag by lag (Newey and West 1987)."""
+    n = len(driver)
+    mean_x, mean_y = math.fsum(driver) / n, math.fsum(response) / n
+    dx, dy = [v - mean_x for v in driver], [v - mean_y for v in response]
+    sxx = math.fsum(v * v for v in dx)
+    slope = math.fsum(v * w for v, w in zip(dx, dy, strict=True)) / sxx
+    scores = [v * (w - slope * v) for v, w in zip(dx, dy, strict=True)]
+    total = math.fsum(v * v for v in scores)
+    for lag in range(1, bandwidth):
+        products = math.fsum(scores[t] * scores[t + lag] for t in range(n - lag))
+        total += 2.0 * (1.0 - lag / bandwidth) * products
+    return math.sqrt(total) / sxx
