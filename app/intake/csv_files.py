@@ -33,7 +33,10 @@ _BYTE_ORDER = (
     (codecs.BOM_UTF16_LE, "utf-16-le", "UTF-16"),
     (codecs.BOM_UTF16_BE, "utf-16-be", "UTF-16"),
 )
-_LINE = re.compile(r"([^\r\n]*)(\r\n|\r|\n|$)")
+_ABOVE = re.compile(  # blank lines and comments, quoted or not
+    r"(?:[^\S\r\n]*(?:\r\n|\r|\n)|[^\S\r\n]*\"?#[^\r\n]*(?:\r\n|\r|\n|\Z))*+"
+)
+_DECLARED = re.compile(r" *sep=([,;\t]) *(?:\r\n|\r|\n|\Z)", re.IGNORECASE)
 _CONTROL = re.compile(r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f]")
 
 
@@ -84,8 +87,10 @@ def read_csv_sheet(file: str, content: bytes) -> tuple[Sheet, list[Problem]]:
         raise refusal(file, f"must be comma-separated text, but this looks like {what}")
     found = _CONTROL.search(text)
     if found:
-        row = len(_line_ends(text[: found.start()])) + 1
+        row = _line_ends(text[: found.start()]) + 1
         raise refusal(file, f"must be text, but holds the control code {ord(found[0])}", row=row)
+    if _line_ends(text) > MAX_ROWS:
+        raise refusal(file, f"a file must not have more than {MAX_ROWS:,} lines, but this one has")
     start, skipped, separator = _below_comments(text)
     if separator is None:
         separator = _separator(text[start : start + 1_000_000])
@@ -141,24 +146,18 @@ def _western(content: bytes) -> tuple[str, str]:
     return text, "Latin-1"
 
 
-def _line_ends(text: str) -> list[str]:
-    return re.findall(r"\r\n|\r|\n", text)
+def _line_ends(text: str) -> int:
+    return text.count("\n") + text.count("\r") - text.count("\r\n")
 
 
 def _below_comments(text: str) -> tuple[int, int, str | None]:
     """Return where the table starts, how many lines stand above, and a separator they declare."""
-    place, skipped, separator = 0, 0, None
-    while place < len(text):
-        match = _LINE.match(text, place)
-        assert match is not None  # the pattern also matches nothing
-        line = match[1].strip()
-        declared = re.fullmatch(r"sep=([,;\t])", match[1].strip(" "), re.IGNORECASE)
-        if declared:
-            separator = declared[1]
-        elif line and not line.startswith(("#", '"#')):
-            break
-        place, skipped = match.end(), skipped + 1
-    return place, skipped, separator
+    place, separator = _ABOVE.match(text).end(), None  # type: ignore[union-attr]
+    declared = _DECLARED.match(text, place)
+    if declared:
+        separator = declared[1]
+        place = _ABOVE.match(text, declared.end()).end()  # type: ignore[union-attr]
+    return place, _line_ends(text[:place]), separator
 
 
 def _separator(sample: str) -> str:
@@ -190,20 +189,18 @@ def _rows(file: str, text: str, separator: str, skipped: int) -> tuple[list[list
                 rows.append(row)
                 lines.append(begin)
                 cells += len(row)
-                if cells > MAX_CELLS or len(rows) > MAX_ROWS or len(row) > MAX_COLUMNS:
-                    raise refusal(file, _too_much(cells, len(rows)), row=begin)
+                if cells > MAX_CELLS:
+                    message = (
+                        f"a file must not have more than {MAX_CELLS:,} cells, but this one has"
+                    )
+                    raise refusal(file, message)
+                if len(row) > MAX_COLUMNS:
+                    message = f"a row must not have more than {MAX_COLUMNS:,} cells, but has"
+                    raise refusal(file, f"{message} {len(row):,}", row=begin)
             begin = skipped + reader.line_num + 1
     except csv.Error as error:
         raise refusal(file, _csv_rule(str(error)), row=begin) from None
     return rows, lines
-
-
-def _too_much(cells: int, rows: int) -> str:
-    if cells > MAX_CELLS:
-        return f"a file must not have more than {MAX_CELLS:,} cells, but this one has"
-    if rows > MAX_ROWS:
-        return f"a file must not have more than {MAX_ROWS:,} rows, but this one has"
-    return f"a row must not have more than {MAX_COLUMNS:,} cells, but this one has"
 
 
 def _csv_rule(error: str) -> str:

@@ -78,14 +78,17 @@ class ReadColumn:
     ----------
     values : ndarray of float, shape (n,)
         nan where the cell says that there is no value, and where it is wrong.
-    wrong : tuple of (int, str)
-        Place in the column and what is wrong there, in order.
+    wrong : tuple of int
+        Places in the column that hold no number.
+    message : str
+        What is wrong at the first of them.
     percent : bool
         Every number carries a percent sign.
     """
 
     values: FloatArray
-    wrong: tuple[tuple[int, str], ...]
+    wrong: tuple[int, ...]
+    message: str
     percent: bool
 
 
@@ -97,7 +100,7 @@ def read_column(cells: Sequence[str], mark: Mark) -> ReadColumn:
     >>> read_column(["1.234,5", "..", "−2"], ",").values
     array([1234.5,    nan,   -2. ])
     >>> read_column(["1_000", "100"], ".").wrong
-    ((0, "must be a number, but got '1_000'"),)
+    (0,)
     """
     joined = "\n".join(cells)
     if _FAST[mark].fullmatch(joined):
@@ -108,32 +111,31 @@ def read_column(cells: Sequence[str], mark: Mark) -> ReadColumn:
             pass
         else:
             if len(plain) == len(cells) and not np.isinf(values).any():
-                return ReadColumn(values, (), percent=False)
+                return ReadColumn(values, (), "", percent=False)
     values = np.full(len(cells), np.nan)
-    wrong: list[tuple[int, str]] = []
-    signs: list[int] = []
+    wrong: list[int] = []
+    message, percent = "", 0
     for place, cell in enumerate(cells):
         stripped = cell.strip()
         if stripped.lower() in MISSING:
             continue
         match = _NUMBER[mark].fullmatch(stripped)
         if match is None or not (match["whole"] or match["part"]):
-            wrong.append((place, f"must be a number, but got {quoted(cell)}"))
+            message = message or f"must be a number, but got {quoted(cell)}"
+            wrong.append(place)
             continue
         number = float(_digits(match))
         if np.isinf(number):
-            wrong.append((place, f"must be a number below 1.8e308, but got {quoted(cell)}"))
+            message = message or f"must be a number below 1.8e308, but got {quoted(cell)}"
+            wrong.append(place)
             continue
         values[place] = number
-        if match["percent"]:
-            signs.append(place)
-    numbers = int(np.isfinite(values).sum())
-    if signs and len(signs) < numbers and not wrong:
-        bare = next(p for p in np.flatnonzero(np.isfinite(values)).tolist() if "%" not in cells[p])
-        wrong.append(
-            (bare, f"must carry a percent sign as others do, but got {quoted(cells[bare])}")
-        )
-    return ReadColumn(values, tuple(wrong), percent=bool(signs))
+        percent += bool(match["percent"])
+    known = np.flatnonzero(~np.isnan(values)).tolist()
+    if not wrong and 0 < percent < len(known):
+        wrong = [place for place in known if "%" not in cells[place]]
+        message = f"must carry a percent sign as others do, but got {quoted(cells[wrong[0]])}"
+    return ReadColumn(values, tuple(wrong), message, percent=percent > 0)
 
 
 def _digits(match: re.Match[str]) -> str:

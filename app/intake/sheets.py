@@ -80,9 +80,8 @@ def _series(
     name, cells = column
     numbers = read_column(cells, mark)
     if numbers.wrong:
-        place, message = numbers.wrong[0]
-        message = counted(message, len(numbers.wrong) - 1, "such cell")
-        return None, [Problem("error", file, block.lines[place], name, message)]
+        message = counted(numbers.message, len(numbers.wrong) - 1, "such cell")
+        return None, [Problem("error", file, block.lines[numbers.wrong[0]], name, message)]
     values = rows.laid_out(numbers.values[rows.kept])
     if np.isnan(values).all():
         message = "a series must have at least one value, but got none"

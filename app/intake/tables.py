@@ -128,11 +128,13 @@ def _unique_names(
     written = [(column, plain_text(text, MAX_NAME)) for column, text in header]
     wanted = {name for _, name in written}
     taken: set[str] = set()
+    number: dict[str, int] = {}
     names: list[str] = []
     for column, name in written:
-        new, number = name or f"Column {column}", 2
+        new = base = name or f"Column {column}"
         while new in taken or (new != name and new in wanted):
-            new, number = f"{name or f'Column {column}'} ({number})", number + 1
+            number[base] = number.get(base, 1) + 1
+            new = f"{base} ({number[base]})"
         if new != name:
             rule = "a name must stand once" if name else "a column must have a name"
             found = f"{quoted(name)} stands again" if name else f"column {column} has none"

@@ -112,7 +112,7 @@ def test_refused_in_one_sentence(case: str) -> None:
         ("MAX_BYTES", 20, "a file must not be larger than"),
         ("MAX_CELLS", 7, "a file must not have more than 7 cells"),
         ("MAX_CELLS", 10, "a file must not have more than 10 cells"),
-        ("MAX_ROWS", 3, "a file must not have more than 3 rows"),
+        ("MAX_ROWS", 3, "a file must not have more than 3 lines"),
         ("MAX_COLUMNS", 2, "a row must not have more than 2 cells"),
     ],
 )
