@@ -253,8 +253,8 @@ def register(app: Dash, bridge: Bridge) -> None:
     )
     def _answer(_question: str, state: dict[str, Any]) -> dict[str, Any]:
         try:
-            return payload(ViewState(**state), bridge)
-        except (StateError, TypeError) as error:
+            return payload(_sent(state), bridge)
+        except StateError as error:
             return {"error": str(error), "state": state}
 
     app.clientside_callback(
@@ -262,6 +262,13 @@ def register(app: Dash, bridge: Bridge) -> None:
         Output("lag-message", "children"),
         Input("lag-data", "data"),
     )
+
+
+def _sent(values: Any) -> ViewState:
+    """Return the state that a page sent."""
+    if not isinstance(values, dict) or not values.keys() <= asdict(ViewState()).keys():
+        raise StateError("the page must send the fields of a view, but did not; load it anew")
+    return ViewState(**values)
 
 
 def _with(state: ViewState, **changes: Any) -> ViewState:
