@@ -124,7 +124,8 @@ def _register_routes(server: Flask, bridge: Bridge) -> None:
     @server.get("/export/<view>.csv")
     def _csv(view: str) -> Response:
         try:
-            name, text = exports.csv_export(view, request.query_string.decode(), bridge)
+            query = request.query_string.decode(errors="replace")
+            name, text = exports.csv_export(view, query, bridge)
         except ValueError as error:
             return Response(f"{error}\n", status=400, mimetype="text/plain")
         response = Response(text, mimetype="text/csv")
