@@ -25,3 +25,25 @@ def plain_correlations(driver, response, windows, shifts, min_pairs=24):
                 continue
             surface[row, column] = (a @ b) / np.sqrt((a @ a) * (b @ b))
     return surface
+
+
+def plain_search(driver, response, surrogates, windows, shifts, min_pairs=24):
+    """Search-adjusted p by its definition: every surrogate's surface in full, one loop each.
+
+    Returns p, one-sided p and the p of each cell.
+    """
+    surfaces = np.array(
+        [
+            np.arctanh(plain_correlations(series, response, windows, shifts, min_pairs))
+            for series in (driver, *surrogates)
+        ]
+    )
+    z = surfaces / np.sqrt((surfaces**2).mean(axis=0))
+    largest = np.nanmax(np.abs(z), axis=(1, 2))
+    highest = np.nanmax(z, axis=(1, 2))
+    p_cell = (largest[1:, None, None] >= np.abs(z[0])).sum(axis=0) + 1.0
+    return (
+        (1 + (largest[1:] >= largest[0]).sum()) / len(surfaces),
+        (1 + (highest[1:] >= highest[0]).sum()) / len(surfaces),
+        np.where(np.isnan(z[0]), np.nan, p_cell / len(surfaces)),
+    )
