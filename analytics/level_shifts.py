@@ -81,15 +81,17 @@ def level_shifts(values: ArrayLike) -> LevelShifts:
     dates = np.arange(shortest, n - shortest + 1)
     first = total[dates] ** 2 / dates
     last = total[dates] ** 2 / (n - dates)
-    one = (int(dates[np.argmax(first + last)]),)
+    one: tuple[int, ...] = (int(dates[np.argmax(first + last)]),)
 
-    length = dates[None, :] - dates[:, None]
-    middle = np.full(length.shape, -np.inf)
-    allowed = length >= shortest
-    difference = total[dates][None, :] - total[dates][:, None]
-    middle[allowed] = difference[allowed] ** 2 / length[allowed]
-    place = np.unravel_index(np.argmax(first[:, None] + middle + last[None, :]), middle.shape)
-    two = (int(dates[place[0]]), int(dates[place[1]]))
+    two: tuple[int, ...] = ()
+    best = -np.inf
+    for place, date in enumerate(dates[:-shortest]):
+        later = dates[place + shortest :]
+        middle = (total[later] - total[date]) ** 2 / (later - date)
+        fall = first[place] + middle + last[place + shortest :]
+        highest = int(np.argmax(fall))
+        if fall[highest] > best:
+            two, best = (int(date), int(later[highest])), float(fall[highest])
 
     candidates = []
     for steps, critical in ((one, _ONE_STEP), (two, _TWO_STEPS)):

@@ -1,0 +1,143 @@
+"""Responses that would follow if one candidate shift were the true one, and their correlations."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from analytics.series import FloatArray
+from analytics.surface import IntArray
+from analytics.surrogates import autoregressive_surrogates
+
+NARROWEST = 24  # periods over which the effect is taken to spread, whatever the window
+
+
+def effect_width(window: int) -> int:
+    """Periods over which the driver's effect is taken to spread: twice the window, at least 24."""
+    return max(2 * window, NARROWEST)
+
+
+@dataclass(frozen=True, eq=False)
+class DriverCells:
+    """The driver's side of every candidate cell, for `correlation_profile`."""
+
+    window: int
+    shifts: IntArray
+    pairs: FloatArray  # shape (S,)
+    weights: FloatArray  # shape (M, S): standardised means, at the months of the response
+    defined: NDArray[np.bool_]
+
+
+def driver_cells(
+    driver: FloatArray, window: int, shifts: IntArray, defined: NDArray[np.bool_]
+) -> DriverCells:
+    """Put the driver's deviations in each cell where they meet the response's trailing means."""
+    means = np.lib.stride_tricks.sliding_window_view(driver, window).mean(axis=1)
+    weights = np.zeros((means.size, shifts.size))
+    for place in np.flatnonzero(defined):
+        early, _ = _pair(means, means, int(shifts[place]))
+        deviation = early - early.mean()
+        start = max(0, int(shifts[place]))
+        weights[start : start + early.size, place] = deviation / np.sqrt(deviation @ deviation)
+    pairs = np.maximum(1.0, means.size - np.abs(shifts))
+    return DriverCells(window, shifts, pairs, weights, defined)
+
+
+def correlation_profile(responses: FloatArray, cells: DriverCells) -> FloatArray:
+    """Correlation of the driver with each of many responses at every candidate, shape (B, S)."""
+    total = np.cumsum(responses, axis=1)
+    means = total[:, cells.window - 1 :].copy()
+    means[:, 1:] -= total[:, : -cells.window]
+    correlation = means @ cells.weights
+    # A cell leaves out the response's first means (driver leads) or its last ones.
+    lost = np.minimum(np.abs(cells.shifts), means.shape[1])
+    late = cells.shifts >= 0
+    most = int(lost.max())
+    ends = np.stack((means[:, :most], means[:, ::-1][:, :most]))
+    moments = []
+    for whole_sum, values in (
+        (means.sum(axis=1), ends),
+        (np.einsum("bt,bt->b", means, means), ends**2),
+    ):
+        running = np.zeros((2, len(means), most + 1))
+        np.cumsum(values, axis=2, out=running[:, :, 1:])
+        moments.append(
+            whole_sum[:, None] - np.where(late, running[0][:, lost], running[1][:, lost])
+        )
+    spread = moments[1] - moments[0] ** 2 / cells.pairs
+    correlation /= np.sqrt(np.where(spread > 0, spread, np.nan))
+    correlation[:, ~cells.defined] = np.nan
+    return correlation
+
+
+def slope_profile(
+    driver: FloatArray, response: FloatArray, window: int, shifts: IntArray, r: FloatArray
+) -> FloatArray:
+    """Slope at each shift: r times the ratio of the standard deviations of the pairs."""
+    x = np.lib.stride_tricks.sliding_window_view(driver, window).mean(axis=1)
+    y = np.lib.stride_tricks.sliding_window_view(response, window).mean(axis=1)
+    slopes = np.full(shifts.size, np.nan)
+    for place in np.flatnonzero(np.isfinite(r)):
+        early, late = _pair(x, y, int(shifts[place]))
+        slopes[place] = r[place] * late.std() / early.std()
+    return slopes
+
+
+def simulated_responses(
+    driver: FloatArray,
+    response: FloatArray,
+    *,
+    window: int,
+    shift: int,
+    slope: float,
+    draws: int,
+    rng: np.random.Generator,
+) -> FloatArray:
+    """Responses in which the driver leads by `shift`, with a smoothed slope of `slope` there.
+
+    Parameters
+    ----------
+    driver, response : ndarray of float, shape (n,)
+        The pair observed.
+    window, shift : int
+        Periods averaged, and the candidate.
+    slope : float
+        Slope of the response's mean on the driver's at the candidate.
+    draws : int
+        Number of responses.
+    rng : numpy.random.Generator
+        Source of the noise.
+
+    Returns
+    -------
+    ndarray of float, shape (draws, n)
+        In deviations from their mean: the driver's mean over `effect_width` periods, centred
+        `shift` periods earlier, times a constant, plus autoregressive noise like the residual of
+        that fit (Burg, AIC). What lies before the first period or after the last counts as 0.
+    """
+    box = effect_width(window)
+    driver = driver - driver.mean()
+    # The mean over t - shift - box/2 .. t - shift + box/2, the two ends counted half.
+    weights = np.full(box + 1, 1.0 / box)
+    weights[[0, -1]] /= 2.0
+    smooth = np.convolve(driver, weights, "full")
+    effect = np.zeros(driver.size)
+    sources = np.arange(driver.size) - shift + box // 2
+    inside = (sources >= 0) & (sources < smooth.size)
+    effect[inside] = smooth[sources[inside]]
+
+    x = np.lib.stride_tricks.sliding_window_view(driver, window).mean(axis=1)
+    y = np.lib.stride_tricks.sliding_window_view(effect, window).mean(axis=1)
+    early, late = _pair(x, y, shift)
+    early = early - early.mean()
+    gain = float(early @ late) / float(early @ early)
+    scale = slope / gain if abs(gain) > 1e-6 else 0.0
+    centred = response - response.mean()
+    noise = autoregressive_surrogates(centred - scale * effect, draws, rng)
+    return noise + scale * effect
+
+
+def _pair(early: FloatArray, late: FloatArray, shift: int) -> tuple[FloatArray, FloatArray]:
+    """Values of `early` and, `shift` periods on, of `late`, where both exist."""
+    n = early.size - abs(shift)
+    return (early[:n], late[shift:]) if shift >= 0 else (early[-shift:], late[:n])
