@@ -30,6 +30,8 @@ LAG_FIELDS = (
     "months",
     "windows",
     "shifts",
+    "surrogates",
+    "seed",
 )
 
 
@@ -148,10 +150,13 @@ def inspect(files: tuple[Path, ...], as_json: bool, csv_path: Path | None) -> in
 def lag(
     files: tuple[Path, ...], as_json: bool, csv_path: Path | None, view: str, **flags: str | None
 ) -> int:
-    """Pair a driver with a response: one cell, and the best cell of the map."""
+    """Pair a driver with a response: one cell, the whole map, and what the search was worth."""
     from app import exports
-    from app.compute import Bridge
+    from app.compute import Bridge, noun
+    from app.evidence import completed
     from app.pages import lag as page
+    from app.verdict import effective_words
+    from app.words import p_words, plain, signed
 
     workspace = _workspace(files)
     bridge = Bridge(workspace)
@@ -160,19 +165,19 @@ def lag(
     if csv_path:
         rows = exports.VIEWS[view](shown)
         _write(csv_path, exports.csv_text(exports.header(shown), rows))
-    answer = page.answer(shown)
+    known = completed(shown.state, bridge)
+    answer = page.answer(shown, known)
     if as_json:
         _print_json(answer)
     else:
-        cell, best = answer["cell"], answer["best"]
+        cell = answer["cell"]
         click.echo(shown.sentence)
+        click.echo(" ".join(answer["verdict"]))
         click.echo(
-            f"Chosen cell: correlation {cell['correlation']:+.2f}, slope {cell['slope']:+.3f}"
-            f" (naive standard error {cell['se_naive']:.3f}), n {cell['n']}."
-        )
-        click.echo(
-            f"Best cell of the map: window {best['window']}, shift {best['shift']},"
-            f" correlation {best['correlation']:+.2f}, slope {best['slope']:+.3f}."
+            f"Chosen cell: correlation {signed(cell['correlation'])}, slope"
+            f" {plain(cell['slope'], 3)}; naive p {p_words(cell['p_naive'])}, per-cell p"
+            f" {p_words(cell['p_robust'])}."
+            f" {effective_words(cell['n'], cell['effective_months'], noun(shown.pair))}."
         )
         click.echo(page.CAUTION)
     for problem in _errors(workspace):

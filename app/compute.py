@@ -1,10 +1,9 @@
 """The one bridge from a state to analytics; each result is computed once and kept by its key."""
 
 import hashlib
-import threading
-from collections.abc import Callable, Collection
+from collections.abc import Collection
 from dataclasses import dataclass, replace
-from typing import Any, TypeVar
+from typing import Any
 
 import pandas as pd
 from flask_caching import Cache
@@ -22,37 +21,12 @@ from analytics.series import (
     period_label,
 )
 from analytics.surface import LagSurface, lag_surface
+from app.jobs import Jobs
+from app.memory import Memory
 from app.state import StateError, ViewState, field_kind
 from app.workspace import Workspace
 
-T = TypeVar("T")
 MIN_PAIRS = 24
-
-
-class Memory:
-    """Results by explicit key, one lock a key, so that two tabs never compute the same twice."""
-
-    def __init__(self, cache: Cache | None = None) -> None:
-        self._cache = cache
-        self._guard = threading.Lock()
-        self._locks: dict[str, threading.Lock] = {}
-
-    def once(self, key: str, make: Callable[[], T]) -> T:
-        """Return what is kept under `key`, or make it and keep it."""
-        if self._cache is None:
-            return make()
-        with self._guard:
-            lock = self._locks.setdefault(key, threading.Lock())
-        try:
-            with lock:
-                found: Any = self._cache.get(key)
-                if found is None:
-                    found = make()
-                    self._cache.set(key, found)
-        finally:
-            with self._guard:
-                self._locks.pop(key, None)
-        return found  # type: ignore[no-any-return]
 
 
 @dataclass(frozen=True, eq=False)
@@ -77,14 +51,15 @@ class Bridge:
 
     def __init__(self, workspace: Workspace, cache: Cache | None = None) -> None:
         self.workspace = workspace
-        self._memory = Memory(cache)
+        self.memory = Memory(cache)
+        self.jobs = Jobs(self.memory)
 
     def key(self, state: ViewState) -> str:
         """Return the key of everything numeric in a state: data, then state, never by hand."""
         parts = [state.numbers().to_query()]
         for name in (state.driver, state.response):
             series = self.workspace.named(name)
-            parts += [series.fingerprint, series.kind, series.name]
+            parts += [series.fingerprint, series.name]
         return hashlib.sha256("\n".join(parts).encode()).hexdigest()[:32]
 
     def pair(self, state: ViewState) -> Pair:
@@ -144,7 +119,7 @@ class Bridge:
                 min_pairs=MIN_PAIRS,
             )
 
-        return self._memory.once("surface:" + self.key(question), make)
+        return self.memory.once("surface:" + self.key(question), make)
 
     def cell(self, state: ViewState) -> LagCell:
         """Return the chosen cell in full."""
@@ -160,7 +135,7 @@ class Bridge:
                 min_pairs=MIN_PAIRS,
             )
 
-        return self._memory.once("cell:" + self.key(state), make)
+        return self.memory.once("cell:" + self.key(state), make)
 
     def overlay(self, state: ViewState) -> Overlay:
         """Both smoothed series on the driver's calendar, the response moved back by the shift."""

@@ -11,11 +11,13 @@ from werkzeug.exceptions import HTTPException
 
 from app import exports
 from app.compute import Bridge
+from app.evidence import WORK
 from app.intake.csv_files import MAX_BYTES
 from app.intake.problems import IntakeError
 from app.intake.reading import read_release
 from app.pages import data, lag
 from app.places import bundled, software_version
+from app.state import ViewState
 from app.workspace import Workspace
 
 PAGES = (data, lag)
@@ -58,7 +60,8 @@ def build_app(workspace: Workspace) -> Dash:
         compress=False,
         index_string=INDEX,
     )
-    bridge = Bridge(workspace, Cache(server, config={"CACHE_TYPE": "SimpleCache"}))
+    cache = {"CACHE_TYPE": "SimpleCache", "CACHE_DEFAULT_TIMEOUT": 0, "CACHE_THRESHOLD": 300}
+    bridge = Bridge(workspace, Cache(server, config=cache))
     app.layout = _frame()
 
     @app.callback(
@@ -131,6 +134,17 @@ def _register_routes(server: Flask, bridge: Bridge) -> None:
         response = Response(text, mimetype="text/csv")
         response.headers["Content-Disposition"] = f'attachment; filename="{name}"'
         return response
+
+    @server.get("/lag/work/<kind>")
+    def _work(kind: str) -> tuple[dict[str, Any], int]:
+        try:
+            state = ViewState.from_query(request.query_string.decode())
+            progress = bridge.jobs.step(WORK[kind](state, bridge))
+        except KeyError:
+            return {"message": f"there is no work named {kind!r}"}, 404
+        except ValueError as error:
+            return {"message": str(error)}, 422
+        return {"done": progress.done, "total": progress.total}, 200
 
     @server.post("/intake")
     def _intake() -> tuple[dict[str, Any], int]:

@@ -90,9 +90,11 @@ def _state(default: Any, kind: FieldKind) -> Any:
     return field(default=default, metadata={"kind": kind})
 
 
+CELL_FIELDS = ("window", "shift", "without")  # what one surface is looked at through
 _NAME = r"(?=\S)[^\x00-\x1f\x7f-\x9f\ud800-\udfff]{1,200}(?<=\S)"
 _PERIOD = r"((?!0000)[0-9]{4}(-(0[1-9]|1[0-2])|-Q[1-4])?)?"
 _RANGE = r"(-?[0-9]{1,3}:-?[0-9]{1,3})?"
+_SPAN = r"([0-9]{4}(-[0-9Q]{2})?:[0-9]{4}(-[0-9Q]{2})?)?"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -187,11 +189,44 @@ class ViewState:
             help="Range of shifts on the map, such as -36:60; empty takes -3 to 5 years.",
         ),
     )
+    surrogates: int = _state(
+        2000,
+        Whole(
+            label="Surrogates",
+            low=1,
+            high=20000,
+            help="Unrelated drivers that the search is held against; more makes p finer.",
+        ),
+    )
+    seed: int = _state(
+        1,
+        Whole(
+            label="Seed",
+            low=0,
+            high=2**31 - 1,
+            help="What the random draws start from; the same seed gives the same p.",
+        ),
+    )
+    without: str = _state(
+        "",
+        Text(
+            label="Without",
+            pattern=_SPAN,
+            shape="a stretch such as 1978-03:1983-05, or empty",
+            help="Episode of the driver that is left out of the cell for comparison.",
+        ),
+    )
     quantity: str = _state(
         "correlation",
         Choice(
             label="Map shows",
-            options={"correlation": "correlation", "slope": "slope"},
+            options={
+                "correlation": "correlation",
+                "slope": "slope",
+                "p_cell": "per-cell p (effective months)",
+                "p_naive": "naive p",
+                "p_hac": "HAC p (Bartlett, fixed-b)",
+            },
             help="What the colours of the map stand for.",
             display=True,
         ),
@@ -243,7 +278,8 @@ class ViewState:
 
     def question(self) -> "ViewState":
         """Return `numbers` without the cell chosen: all cells of one surface share it."""
-        return replace(self.numbers(), window=ViewState.window, shift=ViewState.shift)
+        cell: dict[str, Any] = {name: getattr(ViewState, name) for name in CELL_FIELDS}
+        return replace(self.numbers(), **cell)
 
     def sentence(self, noun: str = "month", span: str = "") -> str:
         """Say the state in one sentence; `span` is the sample in words."""

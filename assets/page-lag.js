@@ -227,6 +227,8 @@
       const field = controls.field(name);
       if (Number(field.value) !== page.state[name]) field.value = page.state[name];
     }
+    if (page.state.without) page.state.without = "";
+    document.querySelector(".lag-page").classList.add("stale");
     if (!page.frame) page.frame = requestAnimationFrame(draw);
     clearTimeout(page.timer);
     page.timer = setTimeout(settle, RESTING);
@@ -279,6 +281,22 @@
   function query() {
     const pairs = Object.entries(page.state).filter(([name, value]) => value !== page.data.defaults[name]);
     return new URLSearchParams(pairs).toString().replaceAll("%7E", "~").replaceAll("*", "%2A");
+  }
+
+  /* Lay over the map what the search says of its cells, and the shift set on its row. */
+  function layOver(known) {
+    const { figures } = page.data;
+    const extra = [...known.support];
+    if (known.set.length) {
+      extra.push({
+        type: "scatter", mode: "markers", x: known.set, y: known.set.map(() => page.state.window),
+        marker: { symbol: "square", size: 5, color: "#20242C" }, hoverinfo: "skip", name: "shift set",
+      });
+    }
+    const text = JSON.stringify(extra);
+    if (page.laid === text) return;
+    page.laid = text;
+    theme.show("lag-surface", { ...figures.surface, data: [...figures.surface.data, ...extra] });
   }
 
   function publish() {
@@ -341,6 +359,7 @@
     page.colours = data.driver.values.map((_, i) => colour(calendar.decimalYear(data.ordinal + i, data.perYear)));
     page.cell = cellAt(page.state.window, page.state.shift);
     page.overlay = overlayAt(page.state.window, page.state.shift);
+    page.laid = "";
     theme.show("lag-surface", data.figures.surface);
     showWords();
     settle();
@@ -357,7 +376,7 @@
 
   /* What the server has to answer anew: everything in the state but the cell. */
   function asked(state) {
-    return JSON.stringify({ ...state, window: 0, shift: 0 });
+    return JSON.stringify({ ...state, window: 0, shift: 0, without: "" });
   }
 
   function question(state) {
@@ -378,7 +397,7 @@
 
   window.dash_clientside = Object.assign({}, window.dash_clientside, { lag: { adopt, question } });
   pricewake.lag = page;
-  page.move = move;
+  Object.assign(page, { move, publish, layOver, query });
   page.busy = () => Boolean(page.timer || page.frame || document.querySelector(".plot.moving"));
   page.settle = settle;
   page.sentence = () => sentenceParts(page.state).map((p) => (typeof p === "string" ? p : p[1] + p[2])).join("");

@@ -14,38 +14,48 @@ from analytics.cell import LagCell, SliceMeans
 from analytics.series import PERIOD_NOUN, Pair, Series, period_code, period_label
 from analytics.surface import LagSurface
 from app.compute import Overlay, noun
-from app.figures.theme import colour, diverging, template, time_scale
+from app.figures.theme import colour, diverging, sequential, template, time_scale
 from app.state import ViewState
 
 SCATTER_TRACES = ("points", "line", "ellipse", "driver_slices", "response_slices")
 OVERLAY_TRACES = ("driver", "response")
+P_MAPS = {"p_cell": "per-cell p", "p_naive": "naive p", "p_hac": "HAC p"}
 
 
-def surface_heatmap(surface: LagSurface, pair: Pair, state: ViewState) -> go.Figure:
-    """Draw the map of all cells; the page draws the crosshair over it."""
-    values = surface.correlation if state.quantity == "correlation" else surface.slope
+def surface_heatmap(
+    surface: LagSurface, pair: Pair, state: ViewState, p: np.ndarray | None = None
+) -> go.Figure:
+    """Draw the map of all cells; the page draws the crosshair over it.
+
+    `p` holds the p-values of the map where the state asks for one of them, shape (W, S).
+    """
     unit = noun(pair)
-    top = 1.0 if state.quantity == "correlation" else float(np.nanmax(np.abs(values)))
+    where = f"window %{{y}}, shift %{{x:+d}} {unit}s<br>"
+    if p is None:
+        values = surface.correlation if state.quantity == "correlation" else surface.slope
+        top = 1.0 if state.quantity == "correlation" else float(np.nanmax(np.abs(values)))
+        scale = {"zmin": -top, "zmax": top, "colorscale": diverging()}
+        bar = {"title": {"text": state.quantity, "side": "right"}}
+        hover = f"{where}{state.quantity} %{{z:+.2f}}<br>%{{customdata}} {unit}s"
+        custom = surface.pairs
+    else:
+        values, custom = -np.log10(np.maximum(p, 1e-6)), p
+        scale = {"zmin": 0.0, "zmax": 6.0, "colorscale": sequential()}
+        bar = {
+            "title": {"text": P_MAPS[state.quantity], "side": "right"},
+            "tickvals": [0, 1, -np.log10(0.05), 2, 3, 4, 5, 6],
+            "ticktext": ["1", ".1", ".05", ".01", ".001", "1e-4", "1e-5", "1e-6 or less"],
+        }
+        hover = f"{where}{P_MAPS[state.quantity]} %{{customdata:.3f}}"
     figure = go.Figure(
         go.Heatmap(
             x=surface.shifts,
             y=surface.windows,
             z=values,
-            customdata=surface.pairs,
-            zmin=-top,
-            zmax=top,
-            colorscale=diverging(),
-            colorbar={
-                "thickness": 10,
-                "len": 1.0,
-                "outlinewidth": 0,
-                "title": {"text": state.quantity, "side": "right"},
-                "xpad": 4,
-            },
-            hovertemplate=(
-                f"window %{{y}}, shift %{{x:+d}} {unit}s<br>{state.quantity} %{{z:+.2f}}"
-                f"<br>%{{customdata}} {unit}s<extra></extra>"
-            ),
+            customdata=custom,
+            **scale,
+            colorbar={"thickness": 10, "len": 1.0, "outlinewidth": 0, "xpad": 4, **bar},
+            hovertemplate=hover + "<extra></extra>",
         )
     )
     step = {"monthly": 12, "quarterly": 4, "annual": 1}[pair.driver.frequency]

@@ -28,7 +28,10 @@ def colours() -> dict[str, dict[str, str]]:
 
 
 def colour(name: str) -> str:
-    """Return a light token's colour; the page swaps it for the dark one where that theme is on."""
+    """Return a light token's colour; the page swaps it for the dark one where that theme is on.
+
+    The swap goes by value, so no two light tokens may be the same colour (a test holds that).
+    """
     return colours()["light"][name]
 
 
@@ -36,6 +39,11 @@ def diverging() -> list[list[float | str]]:
     """Colour scale for quantities with a sign; the middle is zero."""
     names = ["low-3", "low-2", "low-1", "zero", "high-1", "high-2", "high-3"]
     return [[i / 6, colour(name)] for i, name in enumerate(names)]
+
+
+def sequential() -> list[list[float | str]]:
+    """Colour scale for quantities without a sign, luminance falling all the way."""
+    return [[i / 5, colour(f"few-{i + 1}")] for i in range(6)]
 
 
 def time_scale() -> list[list[float | str]]:

@@ -14,14 +14,17 @@ from dash import ClientsideFunction, Dash, Input, Output, State, dcc, html
 from plotly.graph_objects import Figure
 
 from analytics.cell import LagCell
-from analytics.series import PERIODS_PER_YEAR, Pair, Series, period_code
+from analytics.series import PERIODS_PER_YEAR, FloatArray, Pair, Series, period_code
 from analytics.surface import LagSurface
 from app import controls
 from app.compute import MIN_PAIRS, Bridge, Overlay, cell_span, noun, span_words
+from app.evidence import Evidence, episode_code, map_hac, map_inference
 from app.figures import lag as figures
 from app.figures.theme import CONFIG
+from app.pages import lag_evidence
 from app.places import software_version
 from app.state import StateError, ViewState
+from app.verdict import verdict
 
 PATH, TITLE = "/lag", "Lag"
 CAUTION = (
@@ -67,11 +70,14 @@ def view(state: ViewState, bridge: Bridge, asked: Collection[str] = ()) -> LagVi
     return LagView(state, pair, bridge.surface(state), cell, bridge.overlay(state), start, loaded)
 
 
-def answer(shown: LagView) -> dict[str, Any]:
-    """Return the chosen cell and the best one, unrounded, under the names of the JSON output."""
-    window, shift = shown.surface.peak()
+def answer(shown: LagView, known: Evidence) -> dict[str, Any]:
+    """Return the chosen cell, the best one and the evidence, unrounded, as the JSON output."""
+    found = known.search
+    window, shift = (
+        (found.best_window, found.best_shift) if found is not None else shown.surface.peak()
+    )
     place = shown.surface.cell(window, shift)
-    cell = shown.cell
+    cell, inference = shown.cell, known.inference
     return {
         "driver": shown.pair.driver.name,
         "response": shown.pair.response.name,
@@ -87,6 +93,9 @@ def answer(shown: LagView) -> dict[str, Any]:
             "correlation": cell.correlation,
             "se_naive": cell.se_naive,
             "p_naive": cell.p_naive,
+            "se_robust": inference.se_robust,
+            "p_robust": inference.p,
+            "effective_months": inference.effective_months,
         },
         "best": {
             "window": window,
@@ -94,6 +103,55 @@ def answer(shown: LagView) -> dict[str, Any]:
             "correlation": float(shown.surface.correlation[place]),
             "slope": float(shown.surface.slope[place]),
         },
+        "search": _search_answer(known),
+        "shift_set": _shift_set_answer(known),
+        "episodes": [
+            {
+                "first": code.split(":")[0],
+                "last": code.split(":")[1],
+                "share": episode.share,
+                "slope_without": episode.slope_without,
+                "p_without": episode.p_without,
+            }
+            for episode in known.influence.episodes
+            for code in [episode_code(episode, shown.pair, shown.state)]
+        ],
+        "fragility": known.influence.fragility,
+        "verdict": verdict(known, shown.pair, shown.state),
+    }
+
+
+def _search_answer(known: Evidence) -> dict[str, Any]:
+    found = known.search
+    if found is None:
+        return {"p": None, "refused": known.refusal}
+    return {
+        "p": float(found.p),
+        "p_one_sided": float(found.p_one_sided),
+        "p_with_level_shifts": found.p_with_level_shifts,
+        "level_shifts_removed": found.level_shifts_removed,
+        "surrogates": found.surrogates,
+        "seed": found.seed,
+        "method": found.method,
+        "best": {
+            "window": found.best_window,
+            "shift": found.best_shift,
+            "correlation": found.best_correlation,
+        },
+        "windows": [int(found.windows[0]), int(found.windows[-1])],
+        "shifts": [int(found.shifts[0]), int(found.shifts[-1])],
+    }
+
+
+def _shift_set_answer(known: Evidence) -> dict[str, Any]:
+    """Return the set only where the search is significant, as on the page."""
+    chosen = known.shift_set if known.found else None
+    if chosen is None:
+        return {"level": 0.95, "identified": False, "shifts": []}
+    return {
+        "level": chosen.level,
+        "identified": chosen.identified,
+        "shifts": [int(s) for s in chosen.shifts],
     }
 
 
@@ -120,7 +178,9 @@ def payload(state: ViewState, bridge: Bridge) -> dict[str, Any]:
         "minPairs": MIN_PAIRS,
         "lost": [pair.lost_driver, pair.lost_response],
         "figures": {
-            "surface": _plain(figures.surface_heatmap(surface, pair, shown.state)),
+            "surface": _plain(
+                figures.surface_heatmap(surface, pair, shown.state, p_map(shown.state, bridge))
+            ),
             "scatter": _plain(figures.cell_scatter(shown.cell, pair, shown.state, shown.start)),
             "overlay": _plain(figures.overlay_lines(shown.overlay, pair, shown.state)),
         },
@@ -150,7 +210,8 @@ def layout(query: str, bridge: Bridge) -> html.Div:
             html.Header(
                 [
                     html.H1(id="lag-sentence"),
-                    html.P(id="lag-readout", className="readout", **{"aria-live": "polite"}),
+                    lag_evidence.strip(),
+                    lag_evidence.verdict_place(),
                     html.P(id="lag-message", className="message", role="alert"),
                     html.P(
                         [
@@ -231,6 +292,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                 ],
                 className="board",
             ),
+            lag_evidence.folds(),
             html.P(CAUTION, className="caution"),
         ],
         className="lag-page",
@@ -257,6 +319,13 @@ def register(app: Dash, bridge: Bridge) -> None:
         except StateError as error:
             return {"error": str(error), "state": state}
 
+    lag_evidence.register(app, bridge)
+    app.clientside_callback(
+        ClientsideFunction("evidence", "adopt"),
+        Output("lag-adopted", "data"),
+        Input("lag-evidence", "data"),
+        prevent_initial_call=True,
+    )
     app.clientside_callback(
         ClientsideFunction("lag", "adopt"),
         Output("lag-message", "children"),
@@ -269,6 +338,16 @@ def _sent(values: Any) -> ViewState:
     if not isinstance(values, dict) or not values.keys() <= asdict(ViewState()).keys():
         raise StateError("the page must send the fields of a view, but did not; load it anew")
     return ViewState(**values)
+
+
+def p_map(state: ViewState, bridge: Bridge) -> FloatArray | None:
+    """Return the p-values that the map shows, shape (W, S); None where it shows none."""
+    if state.quantity == "p_hac":
+        return map_hac(state, bridge).p
+    if state.quantity in ("p_cell", "p_naive"):
+        found = map_inference(state, bridge)
+        return found.p if state.quantity == "p_cell" else found.p_naive
+    return None
 
 
 def _with(state: ViewState, **changes: Any) -> ViewState:

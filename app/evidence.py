@@ -1,0 +1,356 @@
+"""What the exploration was worth: inference, search, shift set and influence for a state.
+
+Quick parts are computed when they are asked for. Long ones are `Work` for `app.jobs`, done chunk by
+chunk, by the page or by the command.
+"""
+
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+
+from analytics.hac import HacSurface, hac_surface
+from analytics.influence import CellWithout, Episode, InfluenceResult, cell_without, episodes
+from analytics.opinions import SecondOpinions, second_opinions
+from analytics.robust import CellInference, SurfaceInference, cell_inference, surface_inference
+from analytics.search import (
+    SearchPlan,
+    SearchResult,
+    search_chunk,
+    search_plan,
+    search_result,
+)
+from analytics.series import PERIODS_PER_YEAR, Pair, period_code
+from analytics.shiftset import ShiftSet, shift_set_chunk, shift_set_plan, shift_set_result
+from analytics.stability import Stability, rolling_stability
+from app.compute import Bridge, cell_span, grid
+from app.jobs import Work
+from app.state import StateError, ViewState
+
+SIGNIFICANT = 0.05
+
+
+@dataclass(frozen=True, eq=False)
+class Evidence:
+    """What is known about a state so far; a part that is not there yet is None.
+
+    Attributes
+    ----------
+    naive_p : float
+        p of the chosen cell as if its overlapping months were independent.
+    inference : CellInference
+        The chosen cell, as if it had been the only one looked at.
+    influence : InfluenceResult
+        The chosen cell without each episode.
+    search : SearchResult or None
+        The whole map against unrelated drivers.
+    shift_set : ShiftSet or None
+        Shifts that fit as well, at the chosen window.
+    refusal : str
+        Why there can be no search, in one sentence; empty where there can.
+    """
+
+    naive_p: float
+    inference: CellInference
+    influence: InfluenceResult
+    search: SearchResult | None
+    shift_set: ShiftSet | None
+    refusal: str = ""
+
+    @property
+    def found(self) -> bool:
+        """Whether the search is done and holds at 5 %."""
+        return self.search is not None and self.search.p <= SIGNIFICANT
+
+    def p_searched(self, window: int, shift: int) -> float | None:
+        """Search-adjusted p of a cell; None without a search, nan where the cell is undefined."""
+        found = self.search
+        if found is None or window not in found.windows or shift not in found.shifts:
+            return None
+        row = int(np.flatnonzero(found.windows == window)[0])
+        column = int(np.flatnonzero(found.shifts == shift)[0])
+        return float(found.p_cell[row, column])
+
+
+@dataclass(frozen=True, eq=False)
+class Directions:
+    """The search once with the driver leading only, and once with the response leading only."""
+
+    forward: SearchResult
+    backward: SearchResult
+
+
+@dataclass(frozen=True)
+class _BothPlans:
+    forward: SearchPlan
+    backward: SearchPlan
+
+    @property
+    def chunks(self) -> int:
+        return self.forward.chunks + self.backward.chunks
+
+
+def evidence(state: ViewState, bridge: Bridge) -> Evidence:
+    """Gather what is known about a state without doing any long work.
+
+    Raises
+    ------
+    ValueError
+        One sentence that says why the chosen cell cannot be judged.
+    """
+    refusal, search, shifts = "", None, None
+    try:
+        search = bridge.jobs.remembered(search_work(state, bridge))
+        if search is None:
+            search_plan_or_refuse(state, bridge)
+    except ValueError as error:
+        refusal = str(error)
+    if search is not None:
+        shifts = bridge.jobs.remembered(shift_set_work(state, bridge))
+    return Evidence(
+        naive_p=bridge.cell(state).p_naive,
+        inference=inference(state, bridge),
+        influence=influence(state, bridge),
+        search=search,
+        shift_set=shifts,
+        refusal=refusal,
+    )
+
+
+def completed(state: ViewState, bridge: Bridge) -> Evidence:
+    """Do the search, and the shift set where the search holds, and return all that is known."""
+    known = evidence(state, bridge)
+    if known.search is None and not known.refusal:
+        bridge.jobs.complete(search_work(state, bridge))
+        known = evidence(state, bridge)
+    if known.found and known.shift_set is None:
+        bridge.jobs.complete(shift_set_work(state, bridge))
+        known = evidence(state, bridge)
+    return known
+
+
+def inference(state: ViewState, bridge: Bridge) -> CellInference:
+    """Slope, correlation and their intervals by effective months, for the chosen cell."""
+    return bridge.memory.once(
+        "inference:" + bridge.key(state), lambda: cell_inference(**_cell(state, bridge))
+    )
+
+
+def influence(state: ViewState, bridge: Bridge) -> InfluenceResult:
+    """Refit the chosen cell without each episode of the driver."""
+    return bridge.memory.once(
+        "influence:" + bridge.key(state), lambda: episodes(**_cell(state, bridge))
+    )
+
+
+def map_inference(state: ViewState, bridge: Bridge) -> SurfaceInference:
+    """Per-cell p and naive p in every cell of the map."""
+
+    def make() -> SurfaceInference:
+        pair, question = bridge.pair(state), state.question()
+        windows, shifts = grid(pair, question)
+        return surface_inference(
+            pair.driver.values,
+            pair.response.values,
+            windows=windows,
+            shifts=shifts,
+            same_months=question.months == "same",
+            periods_per_year=_year(pair),
+        )
+
+    return bridge.memory.once("map-inference:" + bridge.key(state.question()), make)
+
+
+def map_hac(state: ViewState, bridge: Bridge) -> HacSurface:
+    """Bartlett HAC errors with fixed-b p in every cell of the map; each cell its own months."""
+
+    def make() -> HacSurface:
+        pair = bridge.pair(state)
+        windows, shifts = grid(pair, state.question())
+        return hac_surface(pair.driver.values, pair.response.values, windows=windows, shifts=shifts)
+
+    return bridge.memory.once("map-hac:" + bridge.key(state.question()), make)
+
+
+def episode_code(episode: Episode, pair: Pair, state: ViewState) -> str:
+    """Name an episode by the driver's first and last month in it, for example 1978-03:1983-05."""
+    start = cell_span(pair, state)[0]
+    first = pair.periods[start + episode.first_month]
+    last = pair.periods[start + episode.stop_month - 1]
+    return f"{period_code(first)}:{period_code(last)}"
+
+
+def without_episode(state: ViewState, bridge: Bridge) -> tuple[Episode, CellWithout] | None:
+    """Return the episode that the state leaves out and the cell without it, if it names one.
+
+    Raises
+    ------
+    StateError
+        No episode of the chosen cell has these months.
+    """
+    if not state.without:
+        return None
+    pair = bridge.pair(state)
+    for episode in influence(state, bridge).episodes:
+        if episode_code(episode, pair, state) == state.without:
+            return episode, cell_without(**_cell(state, bridge), episode=episode)
+    raise StateError(f"Without must name an episode of this cell, but got {state.without!r}")
+
+
+def search_work(state: ViewState, bridge: Bridge) -> Work:
+    """Return the search over the whole map as work."""
+    question = state.question()
+    return Work(
+        "search:" + bridge.key(question),
+        lambda: search_plan_or_refuse(question, bridge),
+        search_chunk,
+        search_result,
+    )
+
+
+def search_plan_or_refuse(state: ViewState, bridge: Bridge) -> SearchPlan:
+    """Return the plan of the search.
+
+    Raises
+    ------
+    ValueError
+        One sentence that says why there can be no search.
+    """
+    pair = bridge.pair(state)
+    windows, shifts = grid(pair, state)
+    return _plan(pair.driver.values, pair.response.values, pair, state, windows, shifts)
+
+
+def shift_set_work(state: ViewState, bridge: Bridge) -> Work:
+    """Return the search for shifts that fit as well at the chosen window as work."""
+    pair = bridge.pair(state)
+
+    def plan() -> Any:
+        return shift_set_plan(
+            pair.driver.values,
+            pair.response.values,
+            window=state.window,
+            shifts=grid(pair, state)[1],
+            seed=state.seed,
+        )
+
+    key = bridge.key(replace(state, shift=ViewState.shift, without=""))
+    return Work("shift-set:" + key, plan, shift_set_chunk, shift_set_result)
+
+
+def directions_work(state: ViewState, bridge: Bridge) -> Work:
+    """Return two searches as work: the driver leading only, and the response leading only."""
+    question = state.question()
+
+    def plan() -> _BothPlans:
+        pair = bridge.pair(question)
+        windows, shifts = grid(pair, question)
+        ahead = range(1, shifts[-1] + 1)
+        if len(ahead) < 1:
+            raise StateError("the map has no shift above 0, so there is no direction to compare")
+        sides = pair.driver.values, pair.response.values
+        return _BothPlans(
+            _plan(*sides, pair, question, windows, ahead),
+            _plan(*sides[::-1], pair, question, windows, ahead),
+        )
+
+    def chunk(plans: _BothPlans, index: int) -> Any:
+        first = plans.forward.chunks
+        if index < first:
+            return search_chunk(plans.forward, index)
+        return search_chunk(plans.backward, index - first)
+
+    def result(plans: _BothPlans, chunks: list[Any]) -> Directions:
+        first = plans.forward.chunks
+        return Directions(
+            search_result(plans.forward, chunks[:first]),
+            search_result(plans.backward, chunks[first:]),
+        )
+
+    return Work("directions:" + bridge.key(question), plan, chunk, result)
+
+
+def opinions_work(state: ViewState, bridge: Bridge) -> Work:
+    """Return other methods, the other growth formula and the sample's halves as work."""
+
+    def make() -> SecondOpinions:
+        pair = bridge.pair(state)
+        other = "percent" if state.growth == "log" else "log"
+        changed = bridge.pair(replace(state, growth=other))
+        farthest = grid(pair, state)[1][-1]
+        if farthest < 1:
+            raise StateError("the map has no shift above 0, so no lag can be asked for")
+        return second_opinions(
+            pair.driver.values,
+            pair.response.values,
+            window=state.window,
+            shift=state.shift,
+            max_shift=farthest,
+            periods_per_year=_year(pair),
+            variants={f"{other} growth": (changed.driver.values, changed.response.values)},
+        )
+
+    return _whole_work("opinions:" + bridge.key(replace(state, without="")), make)
+
+
+def stability_work(state: ViewState, bridge: Bridge) -> Work:
+    """Return the chosen cell over rolling and growing samples as work."""
+
+    def make() -> Stability:
+        cell = _cell(state, bridge)
+        pairs = bridge.cell(state).n
+        ten_years = 10 * cell["periods_per_year"]
+        span = min(pairs, max(ten_years, 2 * state.window, 24))
+        return rolling_stability(**cell, span=span, rng=np.random.default_rng(state.seed))
+
+    return _whole_work("stability:" + bridge.key(replace(state, without="")), make)
+
+
+@dataclass(frozen=True)
+class _OneChunk:
+    chunks: int = 1
+
+
+def _whole_work(key: str, make: Callable[[], Any]) -> Work:
+    """Work that is short enough to be one chunk."""
+    return Work(key, _OneChunk, lambda _plan, _index: make(), lambda _plan, chunks: chunks[0])
+
+
+def _plan(
+    driver: Any, response: Any, pair: Pair, state: ViewState, windows: range, shifts: range
+) -> SearchPlan:
+    return search_plan(
+        driver,
+        response,
+        windows=windows,
+        shifts=shifts,
+        surrogates=state.surrogates,
+        seed=state.seed,
+        periods_per_year=_year(pair),
+    )
+
+
+def _cell(state: ViewState, bridge: Bridge) -> dict[str, Any]:
+    pair = bridge.pair(state)
+    first, last = cell_span(pair, state)
+    return {
+        "driver": pair.driver.values[first:last],
+        "response": pair.response.values[first:last],
+        "window": state.window,
+        "shift": state.shift,
+        "periods_per_year": _year(pair),
+    }
+
+
+def _year(pair: Pair) -> int:
+    return PERIODS_PER_YEAR[pair.driver.frequency]
+
+
+WORK: dict[str, Callable[[ViewState, Bridge], Work]] = {
+    "search": search_work,
+    "shift_set": shift_set_work,
+    "directions": directions_work,
+    "opinions": opinions_work,
+    "stability": stability_work,
+}

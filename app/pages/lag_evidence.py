@@ -1,0 +1,386 @@
+"""The part of the Lag page that says what the exploration was worth.
+
+The quick parts are answered when the hand rests. Long work is done in chunks that
+assets/evidence.js asks for; when it is done, the same callback answers again from memory.
+"""
+
+import json
+from typing import Any
+
+from dash import Dash, Input, Output, State, dcc, html
+from plotly.graph_objects import Figure
+
+from analytics.series import Pair, period_label
+from app.compute import Bridge, cell_span, noun
+from app.evidence import (
+    WORK,
+    Directions,
+    Evidence,
+    episode_code,
+    evidence,
+    without_episode,
+)
+from app.figures import evidence as figures
+from app.figures.theme import CONFIG
+from app.state import StateError, ViewState
+from app.verdict import effective_words, fragility, verdict
+from app.words import counted, p_words, percent, plain, shift_words, signed
+
+MOST_EPISODES = 8
+FOLDS = {
+    "profile": "Which shifts fit as well",
+    "plane": "Where intercept and slope may lie",
+    "episodes": "Which years carry it",
+    "opinions": "Second opinions",
+    "stability": "The slope through time",
+}
+_NEEDS = {"opinions": ("directions", "opinions"), "stability": ("stability",)}
+
+
+def strip() -> html.Div:
+    """Return the line of p-values under the headline."""
+    return html.Div(
+        [
+            html.P(id="lag-readout", className="readout", **{"aria-live": "polite"}),
+            html.Dl(id="lag-strip", className="strip"),
+        ],
+        className="strip-line",
+    )
+
+
+def verdict_place() -> html.Div:
+    """Return where the verdict stands, with the progress of the search."""
+    return html.Div(
+        [
+            html.P(id="lag-verdict", className="verdict", **{"aria-live": "polite"}),
+            html.Div(
+                [
+                    html.Progress(id="lag-progress", value="0", max="1"),
+                    html.Span(id="lag-progress-words"),
+                    html.Button("Stop", id="lag-cancel", type="button"),
+                    html.Button("Search", id="lag-resume", type="button", hidden=True),
+                ],
+                id="lag-work",
+                className="work",
+                hidden=True,
+            ),
+        ]
+    )
+
+
+def folds(open_folds: tuple[str, ...] = ()) -> html.Div:
+    """Return the sections that fold out below the charts."""
+    return html.Div(
+        [
+            dcc.Store(id="lag-evidence"),
+            dcc.Store(id="lag-adopted"),
+            dcc.Store(id="lag-tick", data=0),
+            dcc.Store(id="lag-open", data=[]),
+            *[
+                html.Details(
+                    [
+                        html.Summary(html.H2(words)),
+                        html.Div(id=f"lag-{name}-words", className="fold-words"),
+                        _plot(name),
+                        *([_plot("without")] if name == "episodes" else []),
+                    ],
+                    id=f"fold-{name}",
+                    className="fold",
+                    **{"data-fold": name},
+                )
+                for name, words in FOLDS.items()
+            ],
+        ],
+        className="folds",
+    )
+
+
+def register(app: Dash, bridge: Bridge) -> None:
+    """Register the callbacks of the evidence on an app."""
+
+    @app.callback(
+        Output("lag-strip", "children"),
+        Output("lag-verdict", "children"),
+        *[Output(f"lag-{name}-words", "children") for name in FOLDS],
+        Output("lag-evidence", "data"),
+        Input("lag-state", "data"),
+        Input("lag-tick", "data"),
+        Input("lag-open", "data"),
+        State("lag-data", "data"),
+    )
+    def _judge(
+        state: dict[str, Any], _tick: int, opened: list[str], data: dict[str, Any]
+    ) -> tuple[Any, ...]:
+        empty = [[] for _ in FOLDS]
+        if not state or data.get("error"):
+            return [], "", *empty, None
+        try:
+            return answer(ViewState(**state), bridge, tuple(opened or ()))
+        except (ValueError, TypeError) as error:
+            return [], str(error), *empty, {"state": state, "figures": {}, "jobs": []}
+
+
+def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[Any, ...]:
+    """Return strip, verdict, the words of each fold, and charts with the work still to do."""
+    pair = bridge.pair(state)
+    known = evidence(state, bridge)
+    jobs = [] if known.refusal or known.search else ["search"]
+    if known.found and known.shift_set is None:
+        jobs.append("shift_set")
+    results: dict[str, Any] = {}
+    for fold in opened:
+        for kind in _NEEDS.get(fold, ()):
+            results[kind] = bridge.jobs.remembered(WORK[kind](state, bridge))
+            if results[kind] is None and not (known.refusal and kind == "directions"):
+                jobs.append(kind)
+    start = cell_span(pair, state)[0]
+    charts: dict[str, Figure] = {
+        "plane": figures.parameter_plane(known.inference, pair),
+        "episodes": figures.episode_shares(known.influence, pair, start),
+    }
+    if known.found and known.shift_set is not None:
+        charts["profile"] = figures.shift_profile(known.shift_set, pair)
+    left_out, refused = None, ""
+    try:
+        left_out = without_episode(state, bridge)
+    except StateError as error:
+        refused = str(error)
+    if left_out is not None:
+        charts["without"] = figures.scatter_without(
+            bridge.cell(state), *left_out, pair, state, start
+        )
+    if results.get("opinions") is not None:
+        charts["opinions"] = figures.opinion_profiles(results["opinions"], pair)
+    if results.get("stability") is not None:
+        charts["stability"] = figures.stability_courses(results["stability"], pair, start)
+    words = {
+        "profile": _profile_words(known, pair, state),
+        "plane": _plane_words(known, pair),
+        "episodes": _episode_words(known, pair, state, refused),
+        "opinions": _opinion_words(results, pair, state),
+        "stability": _stability_words(results, pair),
+    }
+    data = {
+        "state": vars(state),
+        "figures": {name: json.loads(chart.to_json()) for name, chart in charts.items()},
+        "jobs": jobs,
+        "support": (
+            [json.loads(trace.to_json()) for trace in figures.support_traces(known.search)]
+            if known.search
+            else []
+        ),
+        "set": (
+            [int(s) for s in known.shift_set.shifts] if known.found and known.shift_set else []
+        ),
+    }
+    return (
+        _strip(known, state, noun(pair)),
+        " ".join(verdict(known, pair, state)),
+        *[words[name] for name in FOLDS],
+        data,
+    )
+
+
+def _strip(known: Evidence, state: ViewState, unit: str) -> list[html.Div]:
+    inference, found = known.inference, known.search
+    whole = p_words(found.p) if found else "not searched"
+    return [
+        _figure(
+            "naive p",
+            p_words(known.naive_p),
+            "As if the overlapping months of this cell were independent. They are not.",
+        ),
+        _figure(
+            "per-cell p",
+            p_words(inference.p),
+            f"{effective_words(inference.n, inference.effective_months, unit)};"
+            " as if this cell had been the only one looked at.",
+        ),
+        _figure(
+            "search-adjusted p",
+            whole,
+            "For the best cell of the whole map, the search paid for; two-sided."
+            + (f" One-sided {p_words(found.p_one_sided)}." if found else ""),
+        ),
+        html.Div(
+            html.Dd(effective_words(inference.n, inference.effective_months, unit)),
+            title="What overlapping, smoothed months are worth (Bartlett 1946).",
+            className="strip-item worth",
+        ),
+    ]
+
+
+def _figure(name: str, value: str, meaning: str) -> html.Div:
+    return html.Div(
+        [html.Dt(name), html.Dd(value), html.Span(meaning, className="hidden-label")],
+        title=meaning,
+        className="strip-item",
+    )
+
+
+def _profile_words(known: Evidence, pair: Pair, state: ViewState) -> list[Any]:
+    if known.refusal:
+        return [html.P(f"There is no search here: {known.refusal}.")]
+    if known.search is None:
+        return [html.P("This is shown once the search is done.")]
+    if not known.found:
+        return [
+            html.P(
+                "A set of shifts means something only where the search holds at 5 %. It does not"
+                f" here (p {p_words(known.search.p)}), so none is shown."
+            )
+        ]
+    if known.shift_set is None:
+        return [html.P("Being worked out.")]
+    return [
+        html.P(
+            f"Filled points: shifts that a simulated test at window {state.window} does not"
+            f" reject ({known.shift_set.level:.0%}, {known.shift_set.draws} simulated responses"
+            " a shift). Rings: the quick closed-form preview. The window is taken as chosen"
+            " beforehand; having looked at many is not paid for here."
+        )
+    ]
+
+
+def _plane_words(known: Evidence, pair: Pair) -> list[Any]:
+    inference, unit = known.inference, noun(pair)
+    low, high = inference.slope_interval
+    return [
+        html.P(
+            f"Slope {plain(inference.slope, 3)}, {inference.level:.0%} interval"
+            f" {plain(low, 3)} to {plain(high, 3)}; correlation"
+            f" {signed(inference.correlation)} ({signed(inference.correlation_interval.low)} to"
+            f" {signed(inference.correlation_interval.high)}). "
+            f"{effective_words(inference.n, inference.effective_months, unit).capitalize()}."
+            " Seasonal means are taken out first."
+        )
+    ]
+
+
+def _episode_words(known: Evidence, pair: Pair, state: ViewState, refused: str) -> list[Any]:
+    influence, start = known.influence, cell_span(pair, state)[0]
+    ranked = sorted(influence.episodes, key=lambda e: -max(abs(e.share), e.weight))
+    rows = []
+    for episode in ranked[:MOST_EPISODES]:
+        code = episode_code(episode, pair, state)
+        first = period_label(pair.periods[start + episode.first_month])
+        last = period_label(pair.periods[start + episode.stop_month - 1])
+        chosen = state.without == code
+        rows.append(
+            html.Tr(
+                [
+                    html.Td(
+                        html.Button(
+                            f"{first} to {last}",
+                            type="button",
+                            className="episode",
+                            **{
+                                "data-without": "" if chosen else code,
+                                "aria-pressed": str(chosen).lower(),
+                            },
+                        )
+                    ),
+                    html.Td("high" if episode.high else "low"),
+                    html.Td(percent(episode.share)),
+                    html.Td("too few left" if episode.too_few_left else percent(episode.change)),
+                    html.Td(p_words(episode.p_without)),
+                ]
+            )
+        )
+    head = ("Episode of the driver", "Driver", "Share", "Slope without it", "Per-cell p without it")
+    return [
+        html.P(fragility(known, pair, state)),
+        *([html.P(refused, className="message")] if refused else []),
+        html.Table(
+            [
+                html.Thead(html.Tr([html.Th(text, scope="col") for text in head])),
+                html.Tbody(rows),
+            ],
+            className="table",
+        ),
+        html.P(
+            f"The {min(MOST_EPISODES, len(ranked))} of {counted(len(ranked), 'episode')} that"
+            " matter most. Choose one to see the cell without it.",
+            className="quiet",
+        ),
+    ]
+
+
+def _opinion_words(results: dict[str, Any], pair: Pair, state: ViewState) -> list[Any]:
+    unit = noun(pair)
+    opinions, directions = results.get("opinions"), results.get("directions")
+    if opinions is None:
+        return [html.P("Being worked out.")]
+    rows = [
+        (
+            o.method,
+            shift_words(o.shift, unit),
+            f"{plain(o.estimate)} ({plain(o.low)} to {plain(o.high)})",
+            "yes" if o.clear else "no",
+        )
+        for o in opinions.opinions
+    ]
+    samples = dict(opinions.variants)
+    if opinions.halves is not None:
+        samples |= {"first half": opinions.halves.first, "second half": opinions.halves.second}
+    rows += [
+        (
+            name,
+            shift_words(best.best_shift, unit),
+            f"chosen cell r {signed(best.correlation)}, slope {plain(best.slope)}",
+            f"p {p_words(best.p)}",
+        )
+        for name, best in samples.items()
+    ]
+    parts: list[Any] = [
+        html.P(
+            "Other ways to ask for the lag. They are put side by side and not averaged: where they"
+            " disagree, the lag depends on how it is asked for."
+        ),
+        html.Table(
+            [
+                html.Thead(
+                    html.Tr(
+                        [
+                            html.Th(text, scope="col")
+                            for text in ("Method", "Strongest at", "Estimate", "Clear of zero")
+                        ]
+                    )
+                ),
+                html.Tbody([html.Tr([html.Td(text) for text in row]) for row in rows]),
+            ],
+            className="table",
+        ),
+    ]
+    parts += [
+        html.P(f"{name}: {why}.", className="quiet") for name, why in opinions.missing.items()
+    ]
+    if isinstance(directions, Directions):
+        forward, backward = directions.forward, directions.backward
+        parts.append(
+            html.P(
+                "Direction, both searched as strictly over shifts 1 to"
+                f" {forward.shifts[-1]}: driver first, search-adjusted p {p_words(forward.p)}"
+                f" (best at {shift_words(forward.best_shift, unit)}); response first,"
+                f" p {p_words(backward.p)} (best at {shift_words(backward.best_shift, unit)})."
+            )
+        )
+    return parts
+
+
+def _stability_words(results: dict[str, Any], pair: Pair) -> list[Any]:
+    stable = results.get("stability")
+    if stable is None:
+        return [html.P("Being worked out.")]
+    return [
+        html.P(
+            f"If the relation had been the same throughout, a slope over {stable.span}"
+            f" {noun(pair)}s would stray this far somewhere with probability"
+            f" {p_words(stable.rolling_slope.p_constant)}."
+        )
+    ]
+
+
+def _plot(name: str) -> html.Div:
+    graph = dcc.Graph(id=f"lag-{name}", config=CONFIG, responsive=True)
+    return html.Div(graph, className=f"plot fold-plot {name}", hidden=True, id=f"place-{name}")

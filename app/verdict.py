@@ -1,0 +1,135 @@
+"""The verdict on the Lag page: sentences made from results; every number in them is a result's."""
+
+from analytics.series import Pair, period_label
+from app.compute import cell_span, noun
+from app.evidence import SIGNIFICANT, Evidence
+from app.state import ViewState
+from app.words import counted, p_words, percent, plain, runs_words, shift_words, signed
+
+
+def effective_words(n: int, effective: float, unit: str) -> str:
+    """Say what overlapping months are worth: ``766 months behave like 23 independent ones``."""
+    return f"{counted(n, unit)} behave like {max(3, round(effective))} independent ones"
+
+
+def verdict(known: Evidence, pair: Pair, state: ViewState) -> list[str]:
+    """Return the verdict for a state: a few sentences, most important first."""
+    unit, found = noun(pair), known.search
+    if known.refusal:
+        return [f"There is no search here: {known.refusal}.", _cell_sentence(known, pair, state)]
+    if found is None:
+        return [
+            "Not searched yet: what the map shows has not been held against unrelated drivers.",
+            _cell_sentence(known, pair, state),
+        ]
+    sentences = [_search_sentence(known, pair)]
+    if found.level_shifts_removed:
+        sentences.append(_shift_guard_sentence(known, pair))
+    if known.found:
+        sentences.append(_set_sentence(known, pair, state))
+        sentences.append(fragility(known, pair, state))
+        sentences.append(
+            "It is an association in this sample, not a cause, and the lag may not stay."
+        )
+    else:
+        place = known.p_searched(state.window, state.shift)
+        sentences.append(
+            f"The chosen cell, window {state.window} and shift {shift_words(state.shift, unit)},"
+            f" has {p_words(place)} after the search; its naive p is"
+            f" {p_words(known.naive_p)}."
+        )
+    return sentences
+
+
+def fragility(known: Evidence, pair: Pair, state: ViewState) -> str:
+    """Say in one sentence what the chosen cell rests on."""
+    influence = known.influence
+    cause = influence.episodes[influence.cause]
+    start = cell_span(pair, state)[0]
+    first = period_label(pair.periods[start + cause.first_month])
+    last = period_label(pair.periods[start + cause.stop_month - 1])
+    head = {
+        "spread over history": "The chosen cell is spread over history",
+        "leans on one episode": "The chosen cell leans on one episode",
+        "one-episode result": "The chosen cell is a one-episode result",
+    }[influence.band]
+    if cause.too_few_left:
+        return f"{head}: without {first} to {last} too few {noun(pair)}s are left to fit a line to."
+    return (
+        f"{head}: removing {first} to {last} changes the slope by {percent(cause.change)}"
+        f" (per-cell p {p_words(influence.p)} to {p_words(cause.p_without)})."
+    )
+
+
+def _search_sentence(known: Evidence, pair: Pair) -> str:
+    found, unit = known.search, noun(pair)
+    assert found is not None
+    searched = (
+        f"windows {found.windows[0]} to {found.windows[-1]} and shifts"
+        f" {runs_words([int(found.shifts[0])])} to {runs_words([int(found.shifts[-1])])} {unit}s"
+    )
+    best = (
+        f"the cell at window {found.best_window} and shift"
+        f" {shift_words(found.best_shift, unit)} stands out most"
+        f" (correlation {signed(found.best_correlation)})"
+    )
+    guard = ", level shifts removed," if found.level_shifts_removed else ""
+    if found.p > SIGNIFICANT:
+        return (
+            f"The search found nothing that an unrelated driver would not: of {searched}{guard}"
+            f" {best}, and its search-adjusted p is {p_words(found.p)}."
+        )
+    relation = (
+        "led" if found.best_shift > 0 else "followed" if found.best_shift < 0 else "moved with"
+    )
+    opposite = "" if found.best_correlation > 0 else ", in the opposite direction"
+    return (
+        f"{pair.driver.name} has {relation} {pair.response.name}{opposite}: of {searched}{guard}"
+        f" {best}; an unrelated driver does as well with probability {p_words(found.p)}"
+        " (search-adjusted, two-sided)."
+    )
+
+
+def _shift_guard_sentence(known: Evidence, pair: Pair) -> str:
+    found = known.search
+    assert found is not None
+    sides = []
+    for side, steps in (("driver", found.driver_steps), ("response", found.response_steps)):
+        months = ", ".join(period_label(pair.periods[step]) for step in steps)
+        sides.append(f"{side} from {months}")
+    evened = " or of spread" if found.spreads_evened else ""
+    return (
+        f"Both series have shifts of level{evened} ({'; '.join(sides)}), which alone can look like"
+        f" a lag; with them left in, p would be {p_words(found.p_with_level_shifts)}."
+    )
+
+
+def _set_sentence(known: Evidence, pair: Pair, state: ViewState) -> str:
+    unit, chosen = noun(pair), known.shift_set
+    if chosen is None:
+        return f"Which shifts fit as well at window {state.window} is being worked out."
+    if not chosen.identified:
+        reach = (
+            f"{runs_words([int(s) for s in chosen.shifts])} {unit}s"
+            if chosen.shifts.size
+            else "no shift"
+        )
+        return (
+            f"At window {state.window} the lag is not identified: the {chosen.level:.0%} shift set"
+            f" is {reach}, more than half of the range."
+        )
+    return (
+        f"At window {state.window} the data cannot tell shifts"
+        f" {runs_words([int(s) for s in chosen.shifts])} {unit}s apart"
+        f" ({chosen.level:.0%} shift set)."
+    )
+
+
+def _cell_sentence(known: Evidence, pair: Pair, state: ViewState) -> str:
+    inference, unit = known.inference, noun(pair)
+    low, high = inference.slope_interval
+    return (
+        f"Window {state.window}, shift {shift_words(state.shift, unit)}, as if it were the only"
+        f" cell looked at: slope {plain(inference.slope)} ({plain(low)} to {plain(high)}),"
+        f" p {p_words(inference.p)}."
+    )

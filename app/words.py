@@ -1,0 +1,54 @@
+"""Numbers as people read them: the same rules on screen, in verdicts and in the command."""
+
+import math
+
+MINUS = "\N{MINUS SIGN}"
+
+
+def signed(value: float, digits: int = 2) -> str:
+    """Return a number with its sign shown: ``+0.80``, ``−0.15``."""
+    return f"{value:+.{digits}f}".replace("-", MINUS)
+
+
+def plain(value: float, digits: int = 2) -> str:
+    """Return a number with a sign only below zero."""
+    return f"{value:.{digits}f}".replace("-", MINUS)
+
+
+def p_words(p: float | None) -> str:
+    """Return a p-value in words: ``below .001``, ``.03``, ``.31``, ``above .99``."""
+    if p is None or math.isnan(p):
+        return "undefined"
+    if p < 0.001:
+        return "below .001"
+    if p > 0.99:
+        return "above .99"
+    text = f"{p:.3f}" if p < 0.0095 else f"{p:.2f}"
+    return text.lstrip("0")
+
+
+def percent(share: float) -> str:
+    """Return a share of one as a whole percentage with its sign."""
+    return f"{100 * share:+.0f} %".replace("-", MINUS)
+
+
+def counted(n: int, noun: str) -> str:
+    """Return a number with its noun: ``1 month``, ``12 months``."""
+    return f"{n} {noun}{'' if n == 1 else 's'}".replace("-", MINUS)
+
+
+def shift_words(shift: int, noun: str) -> str:
+    """Return a shift with its sign and noun: ``+24 months``."""
+    return f"{shift:+d} {noun}{'' if abs(shift) == 1 else 's'}".replace("-", MINUS)
+
+
+def runs_words(numbers: list[int]) -> str:
+    """Return whole numbers as runs: ``+20 to +24`` or ``−3, +20 to +24``."""
+    runs: list[list[int]] = []
+    for number in numbers:
+        if runs and number == runs[-1][-1] + 1:
+            runs[-1].append(number)
+        else:
+            runs.append([number])
+    parts = [f"{r[0]:+d}" if len(r) == 1 else f"{r[0]:+d} to {r[-1]:+d}" for r in runs]
+    return ", ".join(parts).replace("-", MINUS).replace("+0", "0")

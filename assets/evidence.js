@@ -1,0 +1,111 @@
+/* What the exploration was worth, on the Lag page: long work asked for chunk by chunk, so that
+   dragging never waits for it; progress, cancel, and the charts of the fold-outs. */
+(function () {
+  "use strict";
+  const pricewake = window.pricewake;
+  const WORDS = {
+    search: "Searching the map against unrelated drivers",
+    shift_set: "Looking for shifts that fit as well",
+    directions: "Searching both directions",
+    opinions: "Asking other methods",
+    stability: "Following the slope through time",
+  };
+  const work = { running: null, stopped: new Set() };
+  const byId = (id) => document.getElementById(id);
+
+  function say(kind, done, total) {
+    const place = byId("lag-work");
+    if (!place) return;
+    place.hidden = kind === null;
+    if (kind === null) return;
+    const stopped = done === null;
+    byId("lag-progress").hidden = stopped;
+    byId("lag-cancel").hidden = stopped;
+    byId("lag-resume").hidden = !stopped;
+    byId("lag-progress-words").textContent = stopped ? "The search was stopped." : `${WORDS[kind]}, ${done} of ${total}`;
+    if (!stopped) { byId("lag-progress").max = total; byId("lag-progress").value = done; }
+  }
+
+  /* Ask for one chunk after another until the work is done, the question changes or it is stopped. */
+  async function run(kind, query) {
+    const name = `${kind}?${query}`;
+    if (work.running === name) return;
+    work.running = name;
+    say(kind, 0, 1);
+    try {
+      for (;;) {
+        const answer = await fetch(`/lag/work/${name}`);
+        const progress = await answer.json();
+        if (work.running !== name) return;
+        if (!answer.ok) { byId("lag-progress-words").textContent = progress.message; work.stopped.add(name); break; }
+        say(kind, progress.done, progress.total);
+        if (progress.done === progress.total) break;
+      }
+    } catch (_) {
+      if (work.running === name) byId("lag-progress-words").textContent = "The program does not answer; is it still running?";
+      work.running = null;
+      return;
+    }
+    work.running = null;
+    say(null);
+    window.dash_clientside.set_props("lag-tick", { data: Date.now() });
+  }
+
+  function adopt(data) {
+    if (!data) return window.dash_clientside.no_update;
+    const page = pricewake.lag;
+    if (!page.state || JSON.stringify(sorted(data.state)) !== JSON.stringify(sorted(page.state))) {
+      return window.dash_clientside.no_update; // the hand has moved on; its own answer is coming
+    }
+    page.known = data;
+    document.querySelector(".lag-page").classList.remove("stale");
+    for (const place of document.querySelectorAll(".fold-plot")) {
+      const name = place.id.slice("place-".length);
+      place.hidden = !data.figures[name];
+      if (data.figures[name] && place.closest("details").open) pricewake.theme.show(`lag-${name}`, data.figures[name]);
+    }
+    page.layOver(data);
+    const query = page.query();
+    const next = data.jobs.find((kind) => !work.stopped.has(`${kind}?${query}`));
+    if (next) run(next, query);
+    else {
+      work.running = null;
+      if (data.jobs.length) say(data.jobs[0], null); else say(null);
+    }
+    return window.dash_clientside.no_update;
+  }
+
+  const sorted = (state) => Object.entries(state).sort(([a], [b]) => (a < b ? -1 : 1));
+
+  document.addEventListener("click", (event) => {
+    const page = pricewake.lag;
+    if (event.target.id === "lag-cancel" && work.running) {
+      const [kind] = work.running.split("?");
+      work.stopped.add(work.running);
+      work.running = null;
+      say(kind, null);
+    }
+    if (event.target.id === "lag-resume") {
+      work.stopped.clear();
+      window.dash_clientside.set_props("lag-tick", { data: Date.now() });
+    }
+    const episode = event.target.closest && event.target.closest("[data-without]");
+    if (episode) {
+      page.state = { ...page.state, without: episode.dataset.without };
+      page.publish();
+    }
+  });
+
+  document.addEventListener(
+    "toggle",
+    (event) => {
+      if (!event.target.dataset || !event.target.dataset.fold) return;
+      const open = [...document.querySelectorAll("details[data-fold]")].filter((fold) => fold.open);
+      window.dash_clientside.set_props("lag-open", { data: open.map((fold) => fold.dataset.fold) });
+    },
+    true,
+  );
+
+  window.dash_clientside = Object.assign({}, window.dash_clientside, { evidence: { adopt } });
+  pricewake.work = work;
+})();
