@@ -293,14 +293,16 @@ def _spread_of_blocks(
     np.matmul(powers[:2].T, factors[:2], out=table)
     sums *= later
     dgemm(-1.0, factors[2:].T, powers, beta=1.0, c=table.T, overwrite_c=1)
+    zero = int(np.searchsorted(shifts, 0))
     head = -(-max(0, -int(shifts[0])) // _STEP)
     tail = max(0, months - max(0, int(shifts[-1]))) // _STEP
-    sums[:, :head] *= month[:, :head, None] >= -shifts
-    sums[:, tail:] *= month[:, tail:, None] < months - np.maximum(0, shifts)
+    sums[:, :head, :zero] *= month[:, :head, None] >= -shifts[:zero]
+    sums[:, tail:, zero:] *= month[:, tail:, None] < months - shifts[zero:]
+    sums[months - size + _STEP :, -1] = 0.0
 
     for step in range(1, _STEP):
         sums[step] += sums[step - 1]
-    sums[:, 1:] += np.cumsum(sums[-1, :-1], axis=0)
+    sums[:, 1:] += np.tri(blocks - 1) @ sums[-1, :-1]
 
     whole, rest = divmod(span, _STEP)  # c_(i + span) stands `whole` blocks and `rest` steps on
     near, far = max(0, blocks - whole), max(0, blocks - whole - 1)

@@ -131,6 +131,45 @@ def test_intervals_and_p_tell_the_same():
             assert middle == pytest.approx(cell.slope)
 
 
+def test_correlation_interval_of_independent_months_is_near_fishers():
+    """White noise with r = .6: atanh r -+ 1.96 / sqrt(n - 3) (Fisher 1921), and a little wider.
+
+    The squared sampling errors of n / 3 autocorrelations add 2 (1 - (2/3)^3) / 3 = .469 to each
+    sum of squares, and r^2 times that to the sum of products.
+    """
+    rng = np.random.default_rng(12)
+    driver = rng.standard_normal(20_000)
+    response = 0.6 * driver + 0.8 * rng.standard_normal(20_000)
+    cell = cell_inference(driver, response, window=1, shift=0)
+    found = (np.arctanh(cell.correlation_interval) - np.arctanh(cell.correlation)) * np.sqrt(19_997)
+    variance = 0.64 * (1.0 + 0.469 * 0.36) + 0.36 * 1.469
+    expected = 1.96 * np.sqrt(variance)
+    np.testing.assert_allclose(found, [-expected, expected], rtol=0.03)
+    assert 1.96 < expected < 1.15 * 1.96
+
+
+def test_correlation_interval_keeps_what_its_own_variance_keeps():
+    """Each end lies at its distance, on Fisher's scale, by the variance that holds there."""
+    from statsmodels.tsa.stattools import acf
+
+    driver = autoregression(300, 0.6, 13)
+    response = driver + 2.0 * autoregression(300, 0.9, 14)
+    cell = cell_inference(driver, response, window=1, shift=0, periods_per_year=1)
+    shown = lag_cell(driver, response, window=1, shift=0)
+    k = np.arange(1, 101)
+    worth = [
+        300.0 / (1.0 + 2.0 * ((1.0 - k / 300.0) * acf(series, nlags=100)[1:] ** 2).sum())
+        for series in (driver, shown.residuals)
+    ]
+    freedom = cell.effective_months - 2.0
+    quantile = stats.t.ppf(0.975, freedom)
+    half = np.arctanh(quantile / np.sqrt(freedom + quantile**2))
+    for end in cell.correlation_interval:
+        ratio = 1.0 - end**2 + cell.effective_months * end**2 * sum(0.5 / n for n in worth)
+        distance = abs(np.arctanh(end) - np.arctanh(cell.correlation))
+        assert distance == pytest.approx(half * np.sqrt(ratio), rel=1e-8)
+
+
 def test_regions_of_intercept_and_slope():
     cell = cell_inference(DRIVER, RESPONSE, window=5, shift=9, level=0.9)
     plane = cell.plane
