@@ -41,7 +41,7 @@ class Whole(FieldKind):
 
     def read(self, text: str) -> Any:
         """Read an integer; anything else is handed on for `check` to refuse."""
-        return int(text) if re.fullmatch(r"[+-]?[0-9]{1,9}", text.strip()) else text
+        return int(text) if re.fullmatch(r"[+-]?[0-9]{1,18}", text.strip()) else text
 
     def check(self, value: Any) -> None:
         """Raise StateError unless the value is an integer within the bounds."""
@@ -92,9 +92,10 @@ def _state(default: Any, kind: FieldKind) -> Any:
 
 CELL_FIELDS = ("window", "shift", "without")  # what one surface is looked at through
 _NAME = r"(?=\S)[^\x00-\x1f\x7f-\x9f\ud800-\udfff]{1,200}(?<=\S)"
-_PERIOD = r"((?!0000)[0-9]{4}(-(0[1-9]|1[0-2])|-Q[1-4])?)?"
+_ONE_PERIOD = r"(?!0000)[0-9]{4}(-(0[1-9]|1[0-2])|-Q[1-4])?"
+_PERIOD = rf"({_ONE_PERIOD})?"
 _RANGE = r"(-?[0-9]{1,3}:-?[0-9]{1,3})?"
-_SPAN = r"([0-9]{4}(-[0-9Q]{2})?:[0-9]{4}(-[0-9Q]{2})?)?"
+_SPAN = rf"({_ONE_PERIOD}:{_ONE_PERIOD})?"
 
 
 @dataclass(frozen=True, kw_only=True)
