@@ -16,7 +16,8 @@ from analytics import surface as surface_module
 from analytics.series import Series
 from analytics.surface import lag_surface
 from app import compute
-from app.compute import MIN_PAIRS, Bridge, Memory, cell_span, grid, noun, span_words, usual_grid
+from app.compute import MIN_PAIRS, Bridge, cell_span, grid, noun, span_words, usual_grid
+from app.memory import Memory
 from app.state import StateError, ViewState
 from app.workspace import UnknownSeriesError
 from tests.app.economies import LAG, SLOPE, levels, planted, workspace
@@ -94,10 +95,13 @@ def test_a_failure_is_raised_to_each_and_kept_by_none():
     assert memory._locks == {}
 
 
-def test_without_a_cache_each_call_makes_anew():
+def test_without_a_server_results_are_kept_too():
     made = iter(range(3))
     memory = Memory()
-    assert [memory.once("key", lambda: next(made)) for _ in range(3)] == [0, 1, 2]
+    assert memory.found("key") is None
+    assert [memory.once("key", lambda: next(made)) for _ in range(3)] == [0, 0, 0]
+    assert memory.found("key") == 0
+    assert Memory().found("key") is None  # and by nobody else
 
 
 @pytest.mark.parametrize("what", ["surface", "cell"])

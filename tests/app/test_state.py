@@ -8,7 +8,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from app.state import Choice, StateError, Text, ViewState, Whole, field_kind, kind_of
+from app.state import CELL_FIELDS, Choice, StateError, Text, ViewState, Whole, field_kind, kind_of
 
 NAMES = [item.name for item in fields(ViewState)]
 # Free text has no table to take another allowed value from.
@@ -19,6 +19,7 @@ OTHER_TEXT = {
     "last": "2024-Q4",
     "windows": "1:60",
     "shifts": "-36:60",
+    "without": "1978-03:1983-Q1",
 }
 
 
@@ -40,12 +41,13 @@ CHANGES = [(name, value) for name in NAMES for value in other_values(name)]
 names = st.text(st.characters(exclude_categories=("Cc", "Cs")), min_size=1, max_size=200).filter(
     lambda text: text == text.strip()
 )
-periods = st.one_of(
-    st.just(""),
+one_period = st.one_of(
     st.integers(1, 9999).map(lambda y: f"{y:04d}"),
     st.tuples(st.integers(1, 9999), st.integers(1, 12)).map(lambda p: f"{p[0]:04d}-{p[1]:02d}"),
     st.tuples(st.integers(1, 9999), st.integers(1, 4)).map(lambda p: f"{p[0]:04d}-Q{p[1]}"),
 )
+periods = st.one_of(st.just(""), one_period)
+spans = st.one_of(st.just(""), st.tuples(one_period, one_period).map(":".join))
 ranges = st.one_of(
     st.just(""),
     st.tuples(st.integers(-999, 999), st.integers(-999, 999)).map(lambda r: f"{r[0]}:{r[1]}"),
@@ -57,6 +59,7 @@ BY_NAME = {
     "last": periods,
     "windows": ranges,
     "shifts": ranges,
+    "without": spans,
 }
 
 
@@ -186,6 +189,16 @@ BAD = [
     ("windows", "1:1000"),
     ("shifts", "a:b"),
     ("shifts", "１:２"),
+    ("without", "1978-03"),
+    ("without", "1978-03:"),
+    ("without", "1978-00:1979-13"),
+    ("without", "1978-QQ:1979-Q5"),
+    ("without", "0000-01:1979-01"),
+    ("without", "1978-03:1983-05:1984-01"),
+    ("surrogates", "0"),
+    ("surrogates", "1e9"),
+    ("seed", "-1"),
+    ("seed", "4294967296"),
 ]
 
 
@@ -274,7 +287,7 @@ def test_the_key_changes_unless_the_field_is_for_display_only(name, value):
 @pytest.mark.parametrize(("name", "value"), CHANGES)
 def test_cells_of_one_map_share_the_question(name, value):
     changed = replace(ViewState(), **{name: value})
-    shared = field_kind(name).display or name in ("window", "shift")
+    shared = field_kind(name).display or name in CELL_FIELDS
     assert (changed.question() == ViewState().question()) == shared
 
 
