@@ -19,6 +19,17 @@ from app.places import software_version
 from app.state import StateError, ViewState, kind_of
 
 DEFAULT_PORT = 8391
+VIEW_NAMES = (
+    "surface",
+    "scatter",
+    "overlay",
+    "profile",
+    "plane",
+    "episodes",
+    "without",
+    "opinions",
+    "stability",
+)
 LAG_FIELDS = (
     "driver",
     "response",
@@ -32,6 +43,7 @@ LAG_FIELDS = (
     "shifts",
     "surrogates",
     "seed",
+    "without",
 )
 
 
@@ -142,7 +154,7 @@ def inspect(files: tuple[Path, ...], as_json: bool, csv_path: Path | None) -> in
 @_csv
 @click.option(
     "--view",
-    type=click.Choice(["surface", "scatter", "overlay"]),
+    type=click.Choice(VIEW_NAMES),
     default="surface",
     show_default=True,
     help="Which view --csv writes.",
@@ -163,8 +175,7 @@ def lag(
     state = _state(workspace.opening_state(), flags)
     shown = page.view(state, bridge, asked={name for name, text in flags.items() if text})
     if csv_path:
-        rows = exports.VIEWS[view](shown)
-        _write(csv_path, exports.csv_text(exports.header(shown), rows))
+        _write(csv_path, exports.view_text(view, shown, bridge))
     known = completed(shown.state, bridge)
     answer = page.answer(shown, known)
     if as_json:

@@ -66,6 +66,23 @@ def slider(state: ViewState, name: str, low: int, high: int, *, vertical: bool =
     )
 
 
+def save_buttons(view: str) -> html.Div:
+    """Return the buttons that save a view as PNG, SVG and CSV."""
+    buttons = [
+        html.Button(
+            f"Save {kind}", **{"data-save": kind.lower(), "data-view": view, "type": "button"}
+        )
+        for kind in ("PNG", "SVG")
+    ]
+    link = html.A("Save CSV", id=f"csv-{view}", className="button", **{"data-csv": view})
+    return html.Div([*buttons, link], className="save")
+
+
+def view_head(view: str, words: str) -> html.Div:
+    """Return the heading of a view with its buttons."""
+    return html.Div([html.H2(words), save_buttons(view)], className="view-head")
+
+
 def _native(name: str, **attributes: Any) -> html.Span:
     data = {f"data-{key}": str(value) for key, value in attributes.items() if value != ""}
     return html.Span(className="native", **{"data-native": name, **data})

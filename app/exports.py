@@ -4,11 +4,12 @@ import csv
 import io
 import re
 import unicodedata
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Iterable, Sequence
 from typing import Any
 
-from analytics.series import period_code
 from app.compute import Bridge, noun
+from app.evidence import Evidence, completed
+from app.export_rows import SEARCHED, VIEWS
 from app.pages.lag import LagView, view
 from app.places import software_version
 from app.state import ViewState
@@ -22,8 +23,8 @@ def csv_export(name: str, query: str, bridge: Bridge) -> tuple[str, str]:
 
     Parameters
     ----------
-    name : {"surface", "scatter", "overlay"}
-        Which view.
+    name : str
+        A key of `app.export_rows.VIEWS`.
     query : str
         The state as an address carries it.
     bridge : Bridge
@@ -37,12 +38,17 @@ def csv_export(name: str, query: str, bridge: Bridge) -> tuple[str, str]:
     if name not in VIEWS:
         raise ValueError(f"view must be one of {', '.join(VIEWS)}, but got {name!r}")
     shown = view(ViewState.from_query(query), bridge)
-    text = csv_text(header(shown), VIEWS[name](shown))
-    return f"{file_stem(name, shown.state)}.csv", text
+    return f"{file_stem(name, shown.state)}.csv", view_text(name, shown, bridge)
 
 
-def header(shown: LagView) -> list[tuple[str, str]]:
-    """Name what a file holds: sentence, series with fingerprints, state, cell, version."""
+def view_text(name: str, shown: LagView, bridge: Bridge) -> str:
+    """Return one view as CSV text; what the numbers need and is not there yet is computed first."""
+    known = completed(shown.state, bridge) if name in SEARCHED else None
+    return csv_text(header(shown, known), VIEWS[name](shown, bridge))
+
+
+def header(shown: LagView, known: Evidence | None = None) -> list[tuple[str, str]]:
+    """Name what a file holds: sentence, series with fingerprints, state, cell, search, version."""
     pair, cell, unit = shown.pair, shown.cell, noun(shown.pair)
     sides = [
         (
@@ -71,8 +77,37 @@ def header(shown: LagView) -> list[tuple[str, str]]:
             f"correlation {cell.correlation!r}; naive standard error {cell.se_naive!r}; "
             f"naive p {cell.p_naive!r}",
         ),
+        *(_search_lines(known) if known else []),
         ("note", "an association in past data; not a cause and not advice"),
     ]
+
+
+def _search_lines(known: Evidence) -> list[tuple[str, str]]:
+    inference, found = known.inference, known.search
+    lines = [
+        (
+            "cell by effective months",
+            f"effective months {inference.effective_months!r}; p {inference.p!r}; standard error"
+            f" of the slope {inference.se_robust!r}; fragility {known.influence.fragility!r}",
+        )
+    ]
+    if found is None:
+        return [*lines, ("search", f"none: {known.refusal}")]
+    left_in = found.p_with_level_shifts
+    lines.append(
+        (
+            "search",
+            f"p {float(found.p)!r}; one-sided {float(found.p_one_sided)!r}; best cell window"
+            f" {found.best_window} shift {found.best_shift}; surrogates {found.surrogates}; seed"
+            f" {found.seed}; level shifts removed {'yes' if found.level_shifts_removed else 'no'}"
+            + (f"; p with them {left_in!r}" if left_in is not None else ""),
+        )
+    )
+    lines.append(("null hypothesis", found.method))
+    if known.found and known.shift_set is not None:
+        kept = " ".join(str(int(s)) for s in known.shift_set.shifts)
+        lines.append((f"shift set {known.shift_set.level:.0%}", kept or "empty"))
+    return lines
 
 
 def csv_text(head: Iterable[tuple[str, str]], rows: Iterable[Sequence[Any]]) -> str:
@@ -110,82 +145,3 @@ def _field(value: Any) -> str:
     if text.startswith(_FORMULA) and not _NUMBER.fullmatch(text):
         return "'" + text
     return text
-
-
-def _surface_rows(shown: LagView) -> Iterable[Sequence[Any]]:
-    yield "window", "shift", "pairs", "correlation", "slope"
-    surface = shown.surface
-    for i, window in enumerate(surface.windows):
-        for j, shift in enumerate(surface.shifts):
-            yield (
-                int(window),
-                int(shift),
-                int(surface.pairs[i, j]),
-                float(surface.correlation[i, j]),
-                float(surface.slope[i, j]),
-            )
-
-
-def _cell_rows(shown: LagView) -> Iterable[Sequence[Any]]:
-    yield (
-        "part",
-        "driver_period",
-        "response_period",
-        "driver",
-        "response",
-        "fitted",
-        "residual",
-        "slice_low",
-        "slice_high",
-        "count",
-    )
-    cell, months = shown.cell, shown.pair.periods
-    for i in range(cell.n):
-        month = months[shown.start + i]
-        yield (
-            "pair",
-            period_code(month),
-            period_code(month + shown.state.shift),
-            float(cell.driver[i]),
-            float(cell.response[i]),
-            float(cell.intercept + cell.slope * cell.driver[i]),
-            float(cell.residuals[i]),
-            None,
-            None,
-            None,
-        )
-    for part, slices in (
-        ("driver slice", cell.driver_slices),
-        ("response slice", cell.response_slices),
-    ):
-        for k in range(slices.count.size):
-            centre, mean = float(slices.centre[k]), float(slices.mean[k])
-            across = part == "driver slice"
-            yield (
-                part,
-                None,
-                None,
-                centre if across else mean,
-                mean if across else centre,
-                None,
-                None,
-                float(slices.edges[k]),
-                float(slices.edges[k + 1]),
-                int(slices.count[k]),
-            )
-    for driver, response in cell.ellipse:
-        yield "ellipse", None, None, float(driver), float(response), None, None, None, None, None
-
-
-def _overlay_rows(shown: LagView) -> Iterable[Sequence[Any]]:
-    yield "period", "driver", "response_moved_back"
-    overlay = shown.overlay
-    for i, period in enumerate(overlay.periods):
-        yield period_code(period), float(overlay.driver[i]), float(overlay.response[i])
-
-
-VIEWS: dict[str, Callable[[LagView], Iterable[Sequence[Any]]]] = {
-    "surface": _surface_rows,
-    "scatter": _cell_rows,
-    "overlay": _overlay_rows,
-}

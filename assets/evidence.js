@@ -59,7 +59,7 @@
     }
     page.known = data;
     document.querySelector(".lag-page").classList.remove("stale");
-    for (const place of document.querySelectorAll(".fold-plot")) {
+    for (const place of document.querySelectorAll(".place")) {
       const name = place.id.slice("place-".length);
       place.hidden = !data.figures[name];
       if (data.figures[name] && place.closest("details").open) pricewake.theme.show(`lag-${name}`, data.figures[name]);

@@ -4,6 +4,8 @@
   const { theme, ghost } = window.pricewake;
   const SIZES = { surface: [1100, 760], scatter: [900, 860], overlay: [1200, 560] };
 
+  const MAP_KEY = "Outside the black line the search-adjusted p is above 5 % (paler).";
+
   function wrapped(text, width) {
     const lines = [""];
     for (const word of text.split(" ")) {
@@ -18,9 +20,9 @@
 
   function printed(view, page) {
     const figure = structuredClone(theme.figures.get(`lag-${view}`));
-    const [width, height] = SIZES[view];
+    const [width, height] = SIZES[view] || [1000, 680];
     const title = wrapped(page.sentence(), Math.floor(width / 9.5));
-    const under = view === "surface" ? `${page.data.span}. The cross marks the chosen cell.` : `${page.equation()}    ${page.data.span}`;
+    const under = view === "surface" ? `${page.data.span}. The cross marks the chosen cell.${page.known ? ` ${MAP_KEY}` : ""}` : `${page.equation()}    ${page.data.span}`;
     const source = wrapped(page.data.source, Math.floor(width / 6.5));
     const { layout } = figure;
     const top = 50 + 24 * title.length + (view === "surface" ? 0 : 22), bottom = 62 + 15 * source.length;

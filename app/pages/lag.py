@@ -243,7 +243,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                 [
                     html.Section(
                         [
-                            _heading("surface", "Every window and shift"),
+                            controls.view_head("surface", "Every window and shift"),
                             html.Div(
                                 [
                                     _graph("surface"),
@@ -258,7 +258,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                     ),
                     html.Section(
                         [
-                            _heading("scatter", "The chosen cell"),
+                            controls.view_head("scatter", "The chosen cell"),
                             html.P(id="lag-equation", className="equation"),
                             _graph("scatter"),
                             _key(
@@ -272,7 +272,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                     ),
                     html.Section(
                         [
-                            _heading("overlay", "Through time"),
+                            controls.view_head("overlay", "Through time"),
                             html.Ul(
                                 [
                                     html.Li(
@@ -393,19 +393,6 @@ def _plain(figure: Figure) -> Any:
 def _graph(name: str) -> html.Div:
     graph = dcc.Graph(id=f"lag-{name}", config=CONFIG, responsive=True)
     return html.Div(graph, className=f"plot {name}")
-
-
-def _heading(name: str, words: str) -> html.Div:
-    buttons = [
-        html.Button(
-            f"Save {kind}", **{"data-save": kind.lower(), "data-view": name, "type": "button"}
-        )
-        for kind in ("PNG", "SVG")
-    ]
-    link = html.A("Save CSV", id=f"csv-{name}", className="button", **{"data-csv": name})
-    return html.Div(
-        [html.H2(words), html.Div([*buttons, link], className="save")], className="view-head"
-    )
 
 
 def _key(*entries: tuple[str, str, str]) -> html.Ul:

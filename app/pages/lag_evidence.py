@@ -11,6 +11,7 @@ from dash import Dash, Input, Output, State, dcc, html
 from plotly.graph_objects import Figure
 
 from analytics.series import Pair, period_label
+from app import controls
 from app.compute import Bridge, cell_span, noun
 from app.evidence import (
     WORK,
@@ -383,4 +384,12 @@ def _stability_words(results: dict[str, Any], pair: Pair) -> list[Any]:
 
 def _plot(name: str) -> html.Div:
     graph = dcc.Graph(id=f"lag-{name}", config=CONFIG, responsive=True)
-    return html.Div(graph, className=f"plot fold-plot {name}", hidden=True, id=f"place-{name}")
+    return html.Div(
+        [
+            controls.save_buttons(name),
+            html.Div(graph, className=f"plot fold-plot {name}"),
+        ],
+        hidden=True,
+        id=f"place-{name}",
+        className="place",
+    )
