@@ -121,6 +121,11 @@ def distributed_lag(
     a truncation that grows with the sample (Kiefer and Vogelsang 2005); the second part is the
     expected squared bias of a smooth curve (Nychka 1988), 0 without a penalty.
 
+    Bands of 95 % held the true weights of an effect that begins and ends abruptly at 95 % of
+    the lags when unrestricted, at 88 to 93 % when smooth, and at 59 to 83 % on a polynomial of
+    degree 4, which cannot follow such a course. For an effect spread over 13 months the smooth
+    bands are half as wide as the unrestricted (own measurement, tests/bench/second_opinions).
+
     Examples
     --------
     >>> rng = np.random.default_rng(1)

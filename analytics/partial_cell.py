@@ -106,7 +106,7 @@ class PartialCell:
         form, and the p of `cell_inference`. Both autocorrelations are those of the months kept,
         so that the hump which an episode leaves in them does not swallow what the other months
         say: with those of the whole sample a genuine relation beside a shared event is seen in
-        21 % instead of 88 % of trials (own measurement, tests/bench/second_opinions).
+        39 % instead of 93 % of trials (own measurement, tests/bench/second_opinions).
         """
         pairs = int(kept.sum())
         if pairs < 3:

@@ -201,7 +201,7 @@ def gap(runs):
                 continue
             rest = cell_without(*pair, window=12, shift=LAG, episode=run, periods_per_year=1)
             cell = lag_cell(*pair, window=12, shift=LAG)
-            whole = smoothed_autocorrelations(*pair, 12)
+            whole = [smoothed_autocorrelations(values, np.array([12]))[0] for values in pair]
             months = float(effective_months(*whole, cell.n)) * rest.kept.sum() / cell.n
             t = float(student_t(rest.correlation, months))
             found.append([rest.p <= 0.05, 2.0 * stdtr(max(1.1, months - 2.0), -abs(t)) <= 0.05])
