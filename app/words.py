@@ -16,20 +16,25 @@ def plain(value: float, digits: int = 2) -> str:
 
 
 def p_words(p: float | None) -> str:
-    """Return a p-value in words: ``below .001``, ``.03``, ``.31``, ``above .99``."""
+    """Return a p-value in words: ``below .001``, ``.03``, ``.31``, ``above .99``.
+
+    A p above .05 is given as many digits as it takes to be seen above it: ``.052``.
+    """
     if p is None or math.isnan(p):
         return "undefined"
     if p < 0.001:
         return "below .001"
     if p > 0.99:
         return "above .99"
-    text = f"{p:.3f}" if p < 0.0095 else f"{p:.2f}"
+    digits = 3 if p < 0.0095 else 2
+    while (float(text := f"{p:.{digits}f}") > 0.05) != (p > 0.05):
+        digits += 1
     return text.lstrip("0")
 
 
 def percent(share: float) -> str:
     """Return a share of one as a whole percentage with its sign."""
-    return f"{100 * share:+.0f} %".replace("-", MINUS)
+    return f"{100 * share:+z.0f} %".replace("-", MINUS)
 
 
 def counted(n: int, noun: str) -> str:
@@ -38,8 +43,8 @@ def counted(n: int, noun: str) -> str:
 
 
 def shift_words(shift: int, noun: str) -> str:
-    """Return a shift with its sign and noun: ``+24 months``."""
-    return f"{shift:+d} {noun}{'' if abs(shift) == 1 else 's'}".replace("-", MINUS)
+    """Return a shift with its sign and noun: ``+24 months``, ``0 months``."""
+    return f"{runs_words([shift])} {noun}{'' if abs(shift) == 1 else 's'}"
 
 
 def runs_words(numbers: list[int]) -> str:
