@@ -4,7 +4,6 @@ A second opinion beside the effective months of `robust`: on long windows it cal
 unrelated pairs related.
 """
 
-import os
 from collections.abc import Iterable
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
@@ -25,6 +24,7 @@ from analytics.surface import (
 )
 
 _STEP = 16  # months in a block of the running sums
+_THREADS = 2  # the result does not depend on it
 _FIXED_B: dict[float, tuple[float, float, float, float]] = {
     0.90: (1.2816, 1.3040, 0.5135, -0.3386),
     0.95: (1.6449, 2.1859, 0.3142, -0.3427),
@@ -214,27 +214,7 @@ def hac_surface(
     for square, series in zip(moments[2:4], (x, y), strict=True):
         usable &= square > smallest_variance(series) * pairs
     moments[:, ~usable] = np.array([[0.0], [0.0], [1.0], [1.0], [0.0]])
-    before, after = max(0, -int(every[0])), max(0, int(every[-1]))
-    padded = np.pad(ys, ((0, 0), (before, after)))[:, max(0, int(every[0])) :]
-    spread = np.empty(pairs.shape)
-    workers = min(lengths.size, os.cpu_count() or 1)
-
-    def fill(rows: range) -> None:
-        buffer = np.empty(xs.shape[1] * every.size)
-        for row in rows:
-            spread[row] = _spread_of_blocks(
-                xs[row],
-                padded[row],
-                every,
-                moments[:, row],
-                int(sizes[row]),
-                int(spans[row]),
-                buffer,
-            )
-
-    with ThreadPoolExecutor(workers) as pool:
-        list(pool.map(fill, [range(first, lengths.size, workers) for first in range(workers)]))
-
+    spread = _spreads(xs, ys, sizes, every, moments, spans)
     slope = np.where(usable, moments[4] / moments[2], np.nan)
     variance = spread / np.minimum(spans[:, None], np.maximum(1, pairs)) / moments[2] ** 2
     se = np.where(usable, np.sqrt(variance), np.nan)
@@ -254,60 +234,75 @@ def hac_surface(
     )
 
 
-def _spread_of_blocks(
+def _spreads(
     xs: FloatArray,
-    padded: FloatArray,
+    ys: FloatArray,
+    sizes: IntArray,
     shifts: IntArray,
     moments: FloatArray,
-    months: int,
-    span: int,
-    buffer: FloatArray,
+    spans: IntArray,
 ) -> FloatArray:
-    """Sum of squares of all sums of `span` neighbouring scores, shape (S,).
+    """Sum of squares of all sums of `span` neighbouring scores in each cell, shape (W, S).
 
-    `xs` and `padded` hold the driver's and the response's means, `padded` so that the response
-    at the first shift begins with it. Month u stands at [u % 16, u // 16], so that sixteen
-    additions of whole blocks make the running sums; the shifts, neighbours, are the last axis.
+    `xs` and `ys` are rows of `smoothed_rows` with 16 spare columns, `shifts` are neighbours.
     """
-    x_mean, y_mean, sxx, _, sxy = moments
-    slope = sxy / sxx
-    blocks = -(-months // _STEP)
-    size = blocks * _STEP
-    sums = buffer[: size * shifts.size].reshape(_STEP, blocks, shifts.size)
-    table = sums.reshape(size, shifts.size)
-    month = np.arange(size).reshape(blocks, _STEP).T
-    stride = padded.strides[0]
+    blocks = -(-int(sizes[0]) // _STEP)
+    shape = (_STEP, blocks, shifts.size)
+    before, after = max(0, -int(shifts[0])), max(0, int(shifts[-1]))
+
+    # Month u stands at [u % 16, u // 16]; `later` is the response at month u + shift, a view.
+    x = xs[:, : blocks * _STEP].reshape(sizes.size, blocks, _STEP).transpose(0, 2, 1)
+    powers = np.ones((sizes.size, 3, blocks * _STEP))
+    powers[:, 1] = x.reshape(sizes.size, -1)
+    powers[:, 2] = powers[:, 1] ** 2
+    padded = np.pad(ys, ((0, 0), (before, after)))[:, max(0, int(shifts[0])) :]
+    row_step, step = padded.strides
     later = np.lib.stride_tricks.as_strided(
-        padded, sums.shape, (stride, _STEP * stride, stride), writeable=False
+        padded, (sizes.size, *shape), (row_step, step, _STEP * step, step), writeable=False
     )
 
-    # Scores (x - mean)(y - mean - slope (x - mean)) as (x - mean) y - (a + b x + slope x^2).
-    powers = np.ones((3, size))
-    powers[1] = xs[:size].reshape(blocks, _STEP).T.ravel()
-    powers[2] = powers[1] ** 2
-    factors = np.ones((5, shifts.size))
-    factors[0] = -x_mean
-    factors[2] = x_mean * (slope * x_mean - y_mean)
-    factors[3] = y_mean - 2.0 * slope * x_mean
-    factors[4] = slope
-    np.matmul(powers[:2].T, factors[:2], out=table)
-    sums *= later
-    dgemm(-1.0, factors[2:].T, powers, beta=1.0, c=table.T, overwrite_c=1)
-    zero = int(np.searchsorted(shifts, 0))
-    head = -(-max(0, -int(shifts[0])) // _STEP)
-    tail = max(0, months - max(0, int(shifts[-1]))) // _STEP
-    sums[:, :head, :zero] *= month[:, :head, None] >= -shifts[:zero]
-    sums[:, tail:, zero:] *= month[:, tail:, None] < months - shifts[zero:]
-    sums[months - size + _STEP :, -1] = 0.0
+    # Scores (x - mean)(y - mean - slope (x - mean)) are (x - mean) y - (a + b x + slope x^2).
+    x_mean, y_mean, sxx, _, sxy = moments
+    slope = sxy / sxx
+    factors = np.stack([-x_mean, np.ones_like(slope)], axis=1)
+    a, b = x_mean * (slope * x_mean - y_mean), y_mean - 2.0 * slope * x_mean
+    polynomial = np.stack([a, b, slope], axis=1)
 
-    for step in range(1, _STEP):
-        sums[step] += sums[step - 1]
-    sums[:, 1:] += np.tri(blocks - 1) @ sums[-1, :-1]
+    # A shift below 0 has no scores in its first months, one above 0 none in its last.
+    zero, head = int(np.searchsorted(shifts, 0)), -(-before // _STEP)
+    month = np.arange(blocks * _STEP).reshape(blocks, _STEP).T[:, :, None]
+    begun = (month[:, :head] >= -shifts[:zero]).astype(np.float64)
+    triangle = np.tri(blocks - 1)
+    ones = np.ones(_STEP)
+    spread = np.empty((sizes.size, shifts.size))
 
-    whole, rest = divmod(span, _STEP)  # c_(i + span) stands `whole` blocks and `rest` steps on
-    near, far = max(0, blocks - whole), max(0, blocks - whole - 1)
-    spread = np.einsum("us,us->s", table, table)
-    spread -= np.einsum("kbs,kbs->s", sums[: _STEP - rest, :near], sums[rest:, whole:])
-    spread -= np.einsum("kbs,kbs->s", sums[_STEP - rest :, :far], sums[:rest, whole + 1 :])
-    positive: FloatArray = np.maximum(0.0, 2.0 * spread)
-    return positive
+    def fill(rows: range) -> None:
+        sums = np.empty(shape)
+        table, steps = sums.reshape(-1, shifts.size), sums.reshape(_STEP, -1)
+        for row in rows:
+            months, (whole, rest) = int(sizes[row]), divmod(int(spans[row]), _STEP)
+            np.matmul(powers[row, :2].T, factors[row], out=table)
+            sums *= later[row]
+            # In place, table -= powers.T @ polynomial; transposed, as BLAS counts columns first.
+            dgemm(-1.0, polynomial[row].T, powers[row], beta=1.0, c=table.T, overwrite_c=1)
+            tail = max(0, months - after) // _STEP
+            sums[:, :head, :zero] *= begun
+            sums[:, tail:, zero:] *= month[:, tail:] < months - shifts[zero:]
+            sums[:, months // _STEP :, :zero] *= month[:, months // _STEP :] < months
+
+            # Running sums: what came before a block goes into its first month.
+            totals = (ones @ steps).reshape(blocks, -1)
+            sums[0, 1:] += triangle @ totals[:-1]
+            for k in range(1, _STEP):
+                sums[k] += sums[k - 1]
+
+            # The sum `span` months on stands `whole` blocks and `rest` steps on.
+            near, far = max(0, blocks - whole), max(0, blocks - whole - 1)
+            found = np.einsum("us,us->s", table, table)
+            found -= np.einsum("kbs,kbs->s", sums[: _STEP - rest, :near], sums[rest:, whole:])
+            found -= np.einsum("kbs,kbs->s", sums[_STEP - rest :, :far], sums[:rest, whole + 1 :])
+            spread[row] = np.maximum(0.0, 2.0 * found)
+
+    with ThreadPoolExecutor(_THREADS) as pool:
+        list(pool.map(fill, [range(first, sizes.size, _THREADS) for first in range(_THREADS)]))
+    return spread
