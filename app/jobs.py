@@ -5,7 +5,6 @@ its own number, so order, tabs and restarts change nothing.
 """
 
 import threading
-from collections import OrderedDict
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from typing import Any
@@ -13,6 +12,7 @@ from typing import Any
 from app.memory import Memory
 
 MOST_KEPT = 3  # unfinished jobs held in memory; a forgotten one is simply done again
+PATIENCE = 32  # steps of other jobs after which a job counts as left alone
 
 
 @dataclass(frozen=True)
@@ -37,6 +37,7 @@ class Progress:
 @dataclass
 class _Job:
     plan: Any
+    asked: int = 0
     chunks: dict[int, Any] = field(default_factory=dict)
     lock: threading.Lock = field(default_factory=threading.Lock)
 
@@ -47,7 +48,8 @@ class Jobs:
     def __init__(self, memory: Memory) -> None:
         self._memory = memory
         self._guard = threading.Lock()
-        self._jobs: OrderedDict[str, _Job] = OrderedDict()
+        self._jobs: dict[str, _Job] = {}  # in the order in which they were begun
+        self._steps = 0
 
     def remembered(self, work: Work) -> Any:
         """Return the result if the work was done before, else None."""
@@ -61,15 +63,17 @@ class Jobs:
         job = self._job(work)
         with job.lock:
             total = job.plan.chunks
-            if len(job.chunks) < total:
-                index = next(i for i in range(total) if i not in job.chunks)
-                job.chunks[index] = work.chunk(job.plan, index)
-            if len(job.chunks) < total:
-                return Progress(len(job.chunks), total)
-            result = self._memory.once(
-                work.key,
-                lambda: work.result(job.plan, [job.chunks[i] for i in range(total)]),
-            )
+            result = self._memory.found(work.key)  # another tab may have finished just now
+            if result is None:
+                if len(job.chunks) < total:
+                    index = next(i for i in range(total) if i not in job.chunks)
+                    job.chunks[index] = work.chunk(job.plan, index)
+                if len(job.chunks) < total:
+                    return Progress(len(job.chunks), total)
+                result = self._memory.once(
+                    work.key,
+                    lambda: work.result(job.plan, [job.chunks[i] for i in range(total)]),
+                )
         with self._guard:
             self._jobs.pop(work.key, None)
         return Progress(total, total, result)
@@ -82,12 +86,23 @@ class Jobs:
 
     def _job(self, work: Work) -> _Job:
         with self._guard:
-            if work.key in self._jobs:
-                self._jobs.move_to_end(work.key)
-                return self._jobs[work.key]
-        job = _Job(work.plan())
+            job = self._jobs.get(work.key)
+        if job is None:
+            job = _Job(work.plan())
         with self._guard:
             job = self._jobs.setdefault(work.key, job)
-            while len(self._jobs) > MOST_KEPT:
-                self._jobs.popitem(last=False)
+            self._steps += 1
+            job.asked = self._steps
+            if len(self._jobs) > MOST_KEPT:
+                self._forget_one()
             return job
+
+    def _forget_one(self) -> None:
+        """Forget a job left alone, or else the youngest but this one: the oldest come to an end.
+
+        Were it the one asked for longest ago, more tabs than `MOST_KEPT` that take turns would
+        forget each other's work for ever.
+        """
+        *others, _this = self._jobs
+        alone = [key for key in others if self._steps - self._jobs[key].asked > PATIENCE]
+        del self._jobs[alone[0] if alone else others[-1]]
