@@ -251,7 +251,9 @@ def second_opinions(
     Methods: `prewhitened_correlation` (Box and Jenkins 1976), `distributed_lag` with a smooth
     course (Shiller 1973), `local_projections` (Jorda 2005). An interval over K + 1 lags at once
     has the confidence ``level ** (1 / (K + 1))`` at each (Sidak 1967), which is on the safe
-    side because neighbouring lags move together.
+    side because neighbouring lags move together. Of unrelated pairs at most 3 % were called
+    clear, but 8 to 12 % by the distributed lag when 240 autocorrelated months had to bear 49 lags
+    (own measurement, tests/bench/second_opinions).
 
     Examples
     --------
