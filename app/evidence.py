@@ -4,6 +4,7 @@ Quick parts are computed when they are asked for. Long ones are `Work` for `app.
 chunk, by the page or by the command.
 """
 
+import contextlib
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 from typing import Any
@@ -49,6 +50,8 @@ class Evidence:
         Shifts that fit as well, at the chosen window.
     refusal : str
         Why there can be no search, in one sentence; empty where there can.
+    set_refusal : str
+        Why there can be no shift set although the search holds; empty where there can.
     """
 
     naive_p: float
@@ -57,6 +60,7 @@ class Evidence:
     search: SearchResult | None
     shift_set: ShiftSet | None
     refusal: str = ""
+    set_refusal: str = ""
 
     @property
     def found(self) -> bool:
@@ -99,15 +103,12 @@ def evidence(state: ViewState, bridge: Bridge) -> Evidence:
     ValueError
         One sentence that says why the chosen cell cannot be judged.
     """
-    refusal, search, shifts = "", None, None
-    try:
-        search = bridge.jobs.remembered(search_work(state, bridge))
-        if search is None:
-            search_plan_or_refuse(state, bridge)
-    except ValueError as error:
-        refusal = str(error)
+    search, shifts = bridge.jobs.remembered(search_work(state, bridge)), None
+    refusal, set_refusal = "" if search else _search_refusal(state, bridge), ""
     if search is not None:
-        shifts = bridge.jobs.remembered(shift_set_work(state, bridge))
+        work = shift_set_work(state, bridge)
+        shifts = bridge.jobs.remembered(work)
+        set_refusal = "" if shifts else bridge.jobs.refusal(work)
     return Evidence(
         naive_p=bridge.cell(state).p_naive,
         inference=inference(state, bridge),
@@ -115,6 +116,7 @@ def evidence(state: ViewState, bridge: Bridge) -> Evidence:
         search=search,
         shift_set=shifts,
         refusal=refusal,
+        set_refusal=set_refusal,
     )
 
 
@@ -125,7 +127,8 @@ def completed(state: ViewState, bridge: Bridge) -> Evidence:
         bridge.jobs.complete(search_work(state, bridge))
         known = evidence(state, bridge)
     if known.found and known.shift_set is None:
-        bridge.jobs.complete(shift_set_work(state, bridge))
+        with contextlib.suppress(ValueError):  # kept as the set's refusal
+            bridge.jobs.complete(shift_set_work(state, bridge))
         known = evidence(state, bridge)
     return known
 
@@ -220,6 +223,19 @@ def search_plan_or_refuse(state: ViewState, bridge: Bridge) -> SearchPlan:
     pair = bridge.pair(state)
     windows, shifts = grid(pair, state)
     return _plan(pair.driver.values, pair.response.values, pair, state, windows, shifts)
+
+
+def _search_refusal(state: ViewState, bridge: Bridge) -> str:
+    """Say why there can be no search; nothing where there can."""
+
+    def make() -> str:
+        try:
+            search_plan_or_refuse(state.question(), bridge)
+        except ValueError as error:
+            return str(error)
+        return ""
+
+    return bridge.memory.once("search-refusal:" + bridge.key(state.question()), make)
 
 
 def shift_set_work(state: ViewState, bridge: Bridge) -> Work:

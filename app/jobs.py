@@ -55,8 +55,26 @@ class Jobs:
         """Return the result if the work was done before, else None."""
         return self._memory.found(work.key)
 
+    def refusal(self, work: Work) -> str:
+        """Return why the work was refused when it was asked for, or nothing."""
+        return self._memory.found(f"refused:{work.key}") or ""
+
     def step(self, work: Work) -> Progress:
-        """Do the next chunk of some work; the last one gives the result."""
+        """Do the next chunk of some work; the last one gives the result.
+
+        Raises
+        ------
+        ValueError
+            The work cannot be done; `refusal` keeps the sentence.
+        """
+        try:
+            return self._step(work)
+        except ValueError as error:
+            sentence = str(error)
+            self._memory.once(f"refused:{work.key}", lambda: sentence)
+            raise
+
+    def _step(self, work: Work) -> Progress:
         known = self._memory.found(work.key)
         if known is not None:
             return Progress(1, 1, known)

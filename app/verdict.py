@@ -106,6 +106,8 @@ def _shift_guard_sentence(known: Evidence, pair: Pair) -> str:
 
 def _set_sentence(known: Evidence, pair: Pair, state: ViewState) -> str:
     unit, chosen = noun(pair), known.shift_set
+    if known.set_refusal:
+        return f"There is no shift set at window {state.window}: {known.set_refusal}."
     if chosen is None:
         return f"Which shifts fit as well at window {state.window} is being worked out."
     if not chosen.identified:

@@ -147,7 +147,8 @@ def _shift_set_answer(known: Evidence) -> dict[str, Any]:
     """Return the set only where the search is significant, as on the page."""
     chosen = known.shift_set if known.found else None
     if chosen is None:
-        return {"level": 0.95, "identified": False, "shifts": []}
+        none = {"level": 0.95, "identified": False, "shifts": []}
+        return none | ({"refused": known.set_refusal} if known.set_refusal else {})
     return {
         "level": chosen.level,
         "identified": chosen.identified,

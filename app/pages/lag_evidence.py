@@ -118,7 +118,8 @@ def register(app: Dash, bridge: Bridge) -> None:
         try:
             return answer(ViewState(**state), bridge, tuple(opened or ()))
         except (ValueError, TypeError) as error:
-            return [], str(error), *empty, {"state": state, "figures": {}, "jobs": []}
+            nothing = {"figures": {}, "jobs": [], "support": [], "set": []}
+            return [], f"{error}.", *empty, {"state": state, **nothing}
 
 
 def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[Any, ...]:
@@ -126,13 +127,18 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
     pair = bridge.pair(state)
     known = evidence(state, bridge)
     jobs = [] if known.refusal or known.search else ["search"]
-    if known.found and known.shift_set is None:
+    if known.found and known.shift_set is None and not known.set_refusal:
         jobs.append("shift_set")
     results: dict[str, Any] = {}
+    refusals: dict[str, str] = {}
     for fold in opened:
         for kind in _NEEDS.get(fold, ()):
-            results[kind] = bridge.jobs.remembered(WORK[kind](state, bridge))
-            if results[kind] is None and not (known.refusal and kind == "directions"):
+            work = WORK[kind](state, bridge)
+            results[kind] = bridge.jobs.remembered(work)
+            refusals[kind] = "" if results[kind] else bridge.jobs.refusal(work)
+            if known.refusal and kind == "directions":
+                refusals[kind] = known.refusal
+            if results[kind] is None and not refusals[kind]:
                 jobs.append(kind)
     start = cell_span(pair, state)[0]
     charts: dict[str, Figure] = {
@@ -158,8 +164,8 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
         "profile": _profile_words(known, pair, state),
         "plane": _plane_words(known, pair),
         "episodes": _episode_words(known, pair, state, refused),
-        "opinions": _opinion_words(results, pair, state),
-        "stability": _stability_words(results, pair),
+        "opinions": _opinion_words(results, refusals, pair),
+        "stability": _stability_words(results, refusals, pair),
     }
     data = {
         "state": vars(state),
@@ -231,6 +237,8 @@ def _profile_words(known: Evidence, pair: Pair, state: ViewState) -> list[Any]:
                 f" here (p {p_words(known.search.p)}), so none is shown."
             )
         ]
+    if known.set_refusal:
+        return [html.P(f"There is no set here: {known.set_refusal}.")]
     if known.shift_set is None:
         return [html.P("Being worked out.")]
     return [
@@ -307,9 +315,11 @@ def _episode_words(known: Evidence, pair: Pair, state: ViewState, refused: str) 
     ]
 
 
-def _opinion_words(results: dict[str, Any], pair: Pair, state: ViewState) -> list[Any]:
+def _opinion_words(results: dict[str, Any], refusals: dict[str, str], pair: Pair) -> list[Any]:
     unit = noun(pair)
     opinions, directions = results.get("opinions"), results.get("directions")
+    if refusals.get("opinions"):
+        return [html.P(f"Other methods cannot be asked here: {refusals['opinions']}.")]
     if opinions is None:
         return [html.P("Being worked out.")]
     rows = [
@@ -369,8 +379,10 @@ def _opinion_words(results: dict[str, Any], pair: Pair, state: ViewState) -> lis
     return parts
 
 
-def _stability_words(results: dict[str, Any], pair: Pair) -> list[Any]:
+def _stability_words(results: dict[str, Any], refusals: dict[str, str], pair: Pair) -> list[Any]:
     stable = results.get("stability")
+    if refusals.get("stability"):
+        return [html.P(f"The slope cannot be followed here: {refusals['stability']}.")]
     if stable is None:
         return [html.P("Being worked out.")]
     return [
