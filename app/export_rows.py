@@ -172,13 +172,13 @@ def _without_rows(shown: LagView, bridge: Bridge) -> Rows:
     found = without_episode(shown.state, bridge)
     if found is None:
         return
-    rest = found[1]
+    rest, whole = found[1], inference(shown.state, bridge)
     for i in range(rest.driver.size):
         month = period_code(shown.pair.periods[shown.start + i])
         yield "pair", month, float(rest.driver[i]), float(rest.response[i]), int(rest.kept[i])
     low, high = float(rest.driver.min()), float(rest.driver.max())
     for part, intercept, slope in (
-        ("line, all", shown.cell.intercept, shown.cell.slope),
+        ("line, all", whole.intercept, whole.slope),
         ("line, without", rest.intercept, rest.slope),
     ):
         for end in (low, high):

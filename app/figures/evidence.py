@@ -3,7 +3,6 @@
 import numpy as np
 import plotly.graph_objects as go
 
-from analytics.cell import LagCell
 from analytics.influence import CellWithout, Episode, InfluenceResult
 from analytics.opinions import SecondOpinions
 from analytics.robust import CellInference
@@ -138,9 +137,17 @@ def episode_shares(influence: InfluenceResult, pair: Pair, start: int) -> go.Fig
 
 
 def scatter_without(
-    cell: LagCell, episode: Episode, rest: CellWithout, pair: Pair, state: ViewState, start: int
+    cell: CellInference,
+    episode: Episode,
+    rest: CellWithout,
+    pair: Pair,
+    state: ViewState,
+    start: int,
 ) -> go.Figure:
-    """Draw a cell with the pairs of one episode set apart, and the line with and without them."""
+    """Draw a cell with the pairs of one episode set apart, and the line with and without them.
+
+    Pairs and lines are those without seasonal means, as the share and the change of slope are.
+    """
     low, high = float(rest.driver.min()), float(rest.driver.max())
     ends = [low, high]
     figure = go.Figure(

@@ -153,9 +153,7 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
     except StateError as error:
         refused = str(error)
     if left_out is not None:
-        charts["without"] = figures.scatter_without(
-            bridge.cell(state), *left_out, pair, state, start
-        )
+        charts["without"] = figures.scatter_without(known.inference, *left_out, pair, state, start)
     if results.get("opinions") is not None:
         charts["opinions"] = figures.opinion_profiles(results["opinions"], pair)
     if results.get("stability") is not None:
