@@ -14,7 +14,7 @@ def effective_words(n: int, effective: float, unit: str) -> str:
 
 def verdict(known: Evidence, pair: Pair, state: ViewState) -> list[str]:
     """Return the verdict for a state: a few sentences, most important first."""
-    unit, found = noun(pair), known.search
+    found = known.search
     if known.refusal:
         return [f"There is no search here: {known.refusal}.", _cell_sentence(known, pair, state)]
     if found is None:
@@ -26,18 +26,16 @@ def verdict(known: Evidence, pair: Pair, state: ViewState) -> list[str]:
     if found.level_shifts_removed:
         sentences.append(_shift_guard_sentence(known, pair))
     if known.found:
+        place = known.p_searched(state.window, state.shift)
+        if place is None or not place <= SIGNIFICANT:
+            sentences.append(_chosen_sentence(known, pair, state))
         sentences.append(_set_sentence(known, pair, state))
         sentences.append(fragility(known, pair, state))
         sentences.append(
             "It is an association in this sample, not a cause, and the lag may not stay."
         )
     else:
-        place = known.p_searched(state.window, state.shift)
-        sentences.append(
-            f"The chosen cell, window {state.window} and shift {shift_words(state.shift, unit)},"
-            f" has {p_words(place)} after the search; its naive p is"
-            f" {p_words(known.naive_p)}."
-        )
+        sentences.append(_chosen_sentence(known, pair, state))
     return sentences
 
 
@@ -104,6 +102,17 @@ def _shift_guard_sentence(known: Evidence, pair: Pair) -> str:
     )
 
 
+def _chosen_sentence(known: Evidence, pair: Pair, state: ViewState) -> str:
+    cell = f"window {state.window} and shift {shift_words(state.shift, noun(pair))}"
+    place = known.p_searched(state.window, state.shift)
+    if place is None:
+        return f"The chosen cell, {cell}, lies outside the cells searched."
+    return (
+        f"The chosen cell, {cell}, is not supported: after the search its p is {p_words(place)},"
+        f" where the naive p is {p_words(known.naive_p)}."
+    )
+
+
 def _set_sentence(known: Evidence, pair: Pair, state: ViewState) -> str:
     unit, chosen = noun(pair), known.shift_set
     if known.set_refusal:
@@ -111,14 +120,15 @@ def _set_sentence(known: Evidence, pair: Pair, state: ViewState) -> str:
     if chosen is None:
         return f"Which shifts fit as well at window {state.window} is being worked out."
     if not chosen.identified:
-        reach = (
-            f"{runs_words([int(s) for s in chosen.shifts])} {unit}s"
-            if chosen.shifts.size
-            else "no shift"
-        )
+        reach = f"{runs_words([int(s) for s in chosen.shifts])} {unit}s"
         return (
             f"At window {state.window} the lag is not identified: the {chosen.level:.0%} shift set"
-            f" is {reach}, more than half of the range."
+            f" is {reach}, which reaches over more than half of the range."
+        )
+    if chosen.shifts.size == 1:
+        return (
+            f"At window {state.window} the data tell {shift_words(int(chosen.shifts[0]), unit)}"
+            f" apart from every other shift ({chosen.level:.0%} shift set)."
         )
     return (
         f"At window {state.window} the data cannot tell shifts"
