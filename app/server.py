@@ -21,6 +21,7 @@ from app.state import ViewState
 from app.workspace import Workspace
 
 PAGES = (data, lag)
+EXPORTS = {"lag": exports.csv_export}  # page name -> (view, query, bridge) -> file name, text
 HOSTS = ("127.0.0.1", "localhost", "[::1]")
 INDEX = """<!DOCTYPE html>
 <html lang="en">
@@ -124,11 +125,13 @@ def _missing() -> html.Div:
 
 
 def _register_routes(server: Flask, bridge: Bridge) -> None:
-    @server.get("/export/<view>.csv")
-    def _csv(view: str) -> Response:
+    @server.get("/export/<page>/<view>.csv")
+    def _csv(page: str, view: str) -> Response:
         try:
             query = request.query_string.decode(errors="replace")
-            name, text = exports.csv_export(view, query, bridge)
+            name, text = EXPORTS[page](view, query, bridge)
+        except KeyError:
+            return Response(f"no page named {page!r} has exports\n", 404, mimetype="text/plain")
         except ValueError as error:
             return Response(f"{error}\n", status=400, mimetype="text/plain")
         response = Response(text, mimetype="text/csv")

@@ -35,7 +35,30 @@
     });
   }
 
+  /* The part of an address after "?": fields that differ from their default, in field order. The
+     twin of ViewState.to_query; `defaults` comes from Python in field order. */
+  function query(state, defaults) {
+    const pairs = Object.keys(defaults)
+      .filter((name) => name in state && state[name] !== defaults[name])
+      .map((name) => [name, state[name]]);
+    return new URLSearchParams(pairs).toString().replaceAll("%7E", "~").replaceAll("*", "%2A");
+  }
+
+  /* Put the state into the address bar, the CSV links and the navigation. */
+  function publish(page, state, defaults) {
+    const text = query(state, defaults);
+    const search = text ? `?${text}` : "";
+    history.replaceState(history.state, "", `${location.pathname}${search}`);
+    for (const link of document.querySelectorAll("[data-csv]")) {
+      link.href = `/export/${page}/${link.dataset.csv}.csv${search}`;
+    }
+    window.dash_clientside.set_props(`nav-${page}`, { href: `/${page}${search}` });
+    window.dash_clientside.set_props(`${page}-state`, { data: state });
+  }
+
   pricewake.controls = {
+    query,
+    publish,
     on: (kind, listener) => heard[kind].push(listener),
     field: (name) => document.getElementById(`field-${name}`),
   };

@@ -278,10 +278,7 @@
     return figure;
   }
 
-  function query() {
-    const pairs = Object.entries(page.state).filter(([name, value]) => value !== page.data.defaults[name]);
-    return new URLSearchParams(pairs).toString().replaceAll("%7E", "~").replaceAll("*", "%2A");
-  }
+  const query = () => controls.query(page.state, page.data.defaults);
 
   /* Lay over the map what the search says of its cells, and the shift set on its row. */
   function layOver(known) {
@@ -299,15 +296,7 @@
     theme.show("lag-surface", { ...figures.surface, data: [...figures.surface.data, ...extra] });
   }
 
-  function publish() {
-    const search = query();
-    history.replaceState(history.state, "", `${location.pathname}${search ? `?${search}` : ""}`);
-    for (const link of document.querySelectorAll("[data-csv]")) {
-      link.href = `/export/${link.dataset.csv}.csv${search ? `?${search}` : ""}`;
-    }
-    window.dash_clientside.set_props("nav-lag", { href: `/lag${search ? `?${search}` : ""}` });
-    window.dash_clientside.set_props("lag-state", { data: page.state });
-  }
+  const publish = () => controls.publish("lag", page.state, page.data.defaults);
 
   function settle() {
     clearTimeout(page.timer);
@@ -401,5 +390,14 @@
   page.busy = () => Boolean(page.timer || page.frame || document.querySelector(".plot.moving"));
   page.settle = settle;
   page.sentence = () => sentenceParts(page.state).map((p) => (typeof p === "string" ? p : p[1] + p[2])).join("");
+  page.subtitle = (view) =>
+    view === "surface"
+      ? `${page.data.span}. The cross marks the chosen cell.${page.known && page.known.support.length ? " Outside the black line the search-adjusted p is above 5 % (paler)." : ""}`
+      : `${page.equation()}    ${page.data.span}`;
+  page.source = () => page.data.source;
+  page.stem = (view) => {
+    const { driver, response, window, shift } = page.state;
+    return `${view} ${driver} ${response} window ${window} shift ${shift < 0 ? "minus " : ""}${Math.abs(shift)}`;
+  };
   page.equation = () => (page.cell ? equation(page.cell) : "");
 })();

@@ -1,10 +1,16 @@
-/* Save a view as PNG or SVG: the light chart with the state's sentence on top and sources below. */
+/* Save a view as PNG or SVG: the light chart with the state's sentence on top and sources below.
+   A page offers sentence(), subtitle(view), source() and stem(view). */
 (function () {
   "use strict";
-  const { theme, ghost } = window.pricewake;
+  const pricewake = window.pricewake;
   const SIZES = { surface: [1100, 760], scatter: [900, 860], overlay: [1200, 560] };
 
-  const MAP_KEY = "Outside the black line the search-adjusted p is above 5 % (paler).";
+  /* The page that is open: the Lag page, or one of the pages that the server answers whole. */
+  function openPage() {
+    if (document.querySelector(".lag-page")) return ["lag", pricewake.lag];
+    const root = document.querySelector("[data-page]");
+    return root ? [root.dataset.page, pricewake.plain] : [null, null];
+  }
 
   function wrapped(text, width) {
     const lines = [""];
@@ -18,17 +24,17 @@
 
   const escaped = (text) => text.replaceAll("&", "&amp;").replaceAll("<", "&lt;").replaceAll(">", "&gt;");
 
-  function printed(view, page) {
-    const figure = structuredClone(theme.figures.get(`lag-${view}`));
+  function printed(view, page, prefix = "lag") {
+    const figure = structuredClone(pricewake.theme.figures.get(`${prefix}-${view}`));
     const [width, height] = SIZES[view] || [1000, 680];
     const title = wrapped(page.sentence(), Math.floor(width / 9.5));
-    const under = view === "surface" ? `${page.data.span}. The cross marks the chosen cell.${page.known ? ` ${MAP_KEY}` : ""}` : `${page.equation()}    ${page.data.span}`;
-    const source = wrapped(page.data.source, Math.floor(width / 6.5));
+    const source = wrapped(page.source(), Math.floor(width / 6.5));
     const { layout } = figure;
-    const top = 50 + 24 * title.length + (view === "surface" ? 0 : 22), bottom = 62 + 15 * source.length;
-    layout.margin = { ...layout.margin, t: top, b: bottom, l: 70 };
+    const legend = layout.showlegend || view === "scatter" || view === "overlay";
+    const top = 50 + 24 * title.length + (legend ? 26 : 0), bottom = 62 + 15 * source.length;
+    layout.margin = { ...layout.margin, t: top, b: bottom, l: Math.max(70, (layout.margin || {}).l || 0) };
     layout.title = {
-      text: `${title.map(escaped).join("<br>")}<br><span style="font-size:13px">${escaped(under)}</span>`,
+      text: `${title.map(escaped).join("<br>")}<br><span style="font-size:13px">${escaped(page.subtitle(view))}</span>`,
       x: 0.01, xanchor: "left", y: 1 - 18 / height, yanchor: "top", yref: "container",
       font: { size: 18, family: "Georgia, Liberation Serif, serif" },
     };
@@ -36,6 +42,10 @@
       text: source.map(escaped).join("<br>"), showarrow: false, xref: "paper", yref: "paper", x: 0, y: 0,
       xanchor: "left", yanchor: "top", yshift: -52, align: "left", font: { size: 11 },
     }];
+    if (legend) {
+      layout.showlegend = true;
+      layout.legend = { orientation: "h", x: 0, y: 1, yanchor: "bottom" };
+    }
     if (view === "surface") {
       const { window, shift } = page.state;
       const line = { color: "#20242C", width: 1 };
@@ -43,34 +53,24 @@
         { type: "line", xref: "x", yref: "paper", x0: shift, x1: shift, y0: 0, y1: 1, line },
         { type: "line", xref: "paper", yref: "y", x0: 0, x1: 1, y0: window, y1: window, line }];
     }
-    if (view !== "surface") {
-      layout.showlegend = true;
-      layout.legend = { orientation: "h", x: 0, y: 1, yanchor: "bottom" };
-    }
     if (view === "scatter") layout.margin.r = 90;
-    layout.width = width;
-    layout.height = height;
-    layout.autosize = false;
-    return figure;
+    return Object.assign(figure, { layout: { ...layout, width, height, autosize: false } });
   }
 
-  function stem(view, page) {
-    const { driver, response, window, shift } = page.state;
-    return `${view} ${driver} ${response} window ${window} shift ${shift < 0 ? "minus " : ""}${Math.abs(shift)}`
-      .normalize("NFKD").replace(/[^\x00-\x7f]/g, "").replace(/[^A-Za-z0-9]+/g, "-").replace(/^-+|-+$/g, "").toLowerCase().slice(0, 120);
-  }
+  const stem = (text) =>
+    text.normalize("NFKD").replace(/[^\x00-\x7f]/g, "").replace(/[^A-Za-z0-9]+/g, "-").replace(/^-+|-+$/g, "").toLowerCase().slice(0, 120);
 
   document.addEventListener("click", (event) => {
     const button = event.target.closest && event.target.closest("[data-save]");
-    if (!button || !ghost.chartOf(`lag-${button.dataset.view}`)) return;
-    const page = window.pricewake.lag;
-    page.settle();
+    const [prefix, page] = openPage();
+    if (!button || !page || !pricewake.theme.figures.has(`${prefix}-${button.dataset.view}`)) return;
+    if (page.settle) page.settle();
     const { view, save } = button.dataset;
-    const figure = printed(view, page);
+    const figure = printed(view, page, prefix);
     window.Plotly.downloadImage(figure, {
-      format: save, scale: 2, width: figure.layout.width, height: figure.layout.height, filename: stem(view, page),
+      format: save, scale: 2, width: figure.layout.width, height: figure.layout.height, filename: stem(page.stem(view)),
     });
   });
 
-  window.pricewake.printed = printed;
+  pricewake.printed = printed;
 })();

@@ -1,0 +1,143 @@
+"""What pages share that the server answers whole: frame, one callback, charts by way of the theme.
+
+A page of this kind has ``answer(state, bridge)``, which returns the words of each place and the
+charts of each view. assets/plain-page.js is the other half.
+"""
+
+import json
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import asdict, dataclass, field
+from typing import Any
+
+from dash import ClientsideFunction, Dash, Input, Output, dcc, html
+from plotly.graph_objects import Figure
+
+from app import controls
+from app.compute import Bridge
+from app.figures.theme import CONFIG
+from app.state import StateError, ViewState
+
+
+@dataclass(frozen=True, eq=False)
+class Answer:
+    """What a page shows for a state.
+
+    Attributes
+    ----------
+    state : ViewState
+        The state shown, which may differ from the one asked for.
+    sentence : str
+        The state in one sentence: the headline, and the title of saved charts.
+    verdict : str
+        One or two sentences with their numbers.
+    source : str
+        Foot of saved charts: sources and program.
+    stem : str
+        Words for file names, after the view's name.
+    charts : mapping of str to Figure
+        One a view; a view that is left out is not shown.
+    subtitles : mapping of str to str
+        Second line of saved charts.
+    words : mapping of str to component
+        Children of each place named in `places` of `frame`.
+    """
+
+    state: ViewState
+    sentence: str
+    verdict: str
+    source: str
+    stem: str
+    charts: Mapping[str, Figure]
+    subtitles: Mapping[str, str] = field(default_factory=dict)
+    words: Mapping[str, Any] = field(default_factory=dict)
+
+
+def frame(
+    name: str,
+    state: ViewState,
+    tools: Sequence[Any],
+    body: Sequence[Any],
+    caution: str,
+    refused: Sequence[str] = (),
+) -> html.Div:
+    """Return a page: headline, verdict, message, controls, body and the standing caution."""
+    return html.Div(
+        [
+            dcc.Store(id=f"{name}-state", data=asdict(state)),
+            dcc.Store(id=f"{name}-answer"),
+            dcc.Store(id=f"{name}-adopted"),
+            html.Header(
+                [
+                    html.H1(id=f"{name}-sentence"),
+                    html.P(id=f"{name}-verdict", className="verdict", **{"aria-live": "polite"}),
+                    html.P(" ".join(refused), id=f"{name}-message", className="message"),
+                ],
+                className="headline",
+            ),
+            html.Div(
+                list(tools), className="controls", role="group", **{"aria-label": "What is shown"}
+            ),
+            html.Div(list(body), id=f"{name}-body"),
+            html.P(caution, className="caution"),
+        ],
+        className=f"plain-page {name}-page",
+        **{"data-page": name},
+    )
+
+
+def view(name: str, chart: str, words: str, *, wide: bool = False) -> html.Section:
+    """Return a section with a heading, save buttons, a place for words and a chart."""
+    graph = dcc.Graph(id=f"{name}-{chart}", config=CONFIG, responsive=True)
+    return html.Section(
+        [
+            controls.view_head(chart, words),
+            html.Div(id=f"{name}-{chart}-words", className="view-words"),
+            html.Div(graph, className=f"plot plain-plot {chart}", id=f"{name}-{chart}-place"),
+        ],
+        className="view wide" if wide else "view",
+    )
+
+
+def register(
+    app: Dash,
+    bridge: Bridge,
+    name: str,
+    answer: Callable[[ViewState, Bridge], Answer],
+    places: Sequence[str],
+) -> None:
+    """Register the one callback of such a page; `places` are the ids that take ``words``."""
+
+    @app.callback(
+        Output(f"{name}-sentence", "children"),
+        Output(f"{name}-verdict", "children"),
+        Output(f"{name}-message", "children"),
+        Output(f"{name}-body", "hidden"),
+        *[Output(f"{name}-{place}", "children") for place in places],
+        Output(f"{name}-answer", "data"),
+        Input(f"{name}-state", "data"),
+    )
+    def _answer(values: dict[str, Any]) -> tuple[Any, ...]:
+        nothing = [[] for _ in places]
+        defaults = asdict(ViewState())
+        try:
+            shown = answer(ViewState(**values), bridge)
+        except (StateError, ValueError, TypeError) as error:
+            data = {"state": values, "defaults": defaults, "figures": {}, "sentence": ""}
+            return "Nothing to show for this choice.", "", str(error), True, *nothing, data
+        data = {
+            "state": asdict(shown.state),
+            "defaults": defaults,
+            "sentence": shown.sentence,
+            "subtitles": dict(shown.subtitles),
+            "source": shown.source,
+            "stem": shown.stem,
+            "figures": {view: json.loads(chart.to_json()) for view, chart in shown.charts.items()},
+        }
+        words = [shown.words.get(place, []) for place in places]
+        return shown.sentence, shown.verdict, "", False, *words, data
+
+    app.clientside_callback(
+        ClientsideFunction("plain", "adopt"),
+        Output(f"{name}-adopted", "data"),
+        Input(f"{name}-answer", "data"),
+    )
