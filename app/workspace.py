@@ -6,6 +6,7 @@ import threading
 from analytics.series import Series
 from app.intake.problems import Problem
 from app.intake.reading import Release
+from app.opening import opening_state
 from app.state import ViewState
 
 
@@ -72,19 +73,5 @@ class Workspace:
         raise UnknownSeriesError(f"no loaded series is named {name!r}{known}")
 
     def opening_state(self) -> ViewState:
-        """Return the view to open with: the usual pair if it is loaded, else the first that fits.
-
-        A name with "money" in it is preferred as driver; the response shares its calendar, and one
-        with "price" or "cpi" in its name is preferred.
-        """
-        usual, loaded = ViewState(), self.series
-        if (usual.driver in loaded and usual.response in loaded) or not loaded:
-            return usual
-        driver = next((name for name in loaded if "money" in name.lower()), next(iter(loaded)))
-        partners = [
-            name
-            for name, series in loaded.items()
-            if name != driver and series.frequency == loaded[driver].frequency
-        ]
-        prices = [n for n in partners if any(word in n.lower() for word in ("price", "cpi"))]
-        return ViewState(driver=driver, response=(prices or partners or [driver])[0])
+        """Return the view to open with: see `app.opening.opening_state`."""
+        return opening_state(self.series)

@@ -193,11 +193,12 @@ def payload(state: ViewState, bridge: Bridge) -> dict[str, Any]:
 def layout(query: str, bridge: Bridge) -> html.Div:
     """Return the page for an address; refused values are named and replaced by the usual ones."""
     state, refused = ViewState.from_query_or_default(query)
+    named = {part.split("=")[0] for part in query.lstrip("?").split("&")}
     opening = bridge.workspace.opening_state()
-    if not any(part.split("=")[0] == "driver" for part in query.lstrip("?").split("&")):
-        state = _with(state, driver=opening.driver)
-    if not any(part.split("=")[0] == "response" for part in query.lstrip("?").split("&")):
-        state = _with(state, response=opening.response)
+    if not named & {"driver", "response", "window", "shift"}:
+        state = _with(state, window=opening.window, shift=opening.shift)
+    for side in {"driver", "response"} - named:
+        state = _with(state, **{side: getattr(opening, side)})
     data = payload(state, bridge)
     data |= {"fresh": True, "notes": [*refused, *data.get("notes", [])]}
     shown = ViewState(**data["state"])
