@@ -4,6 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy import fft
 
 from analytics.series import FloatArray
 from analytics.surface import IntArray
@@ -23,51 +24,55 @@ class DriverCells:
 
     window: int
     shifts: IntArray
-    pairs: FloatArray  # shape (S,)
-    weights: FloatArray  # shape (M, S): standardised means, at the months of the response
-    defined: NDArray[np.bool_]
+    pairs: IntArray  # shape (S,)
+    length: int  # of the transforms
+    spectrum: NDArray[np.complex128]  # of the driver's trailing means, centred
+    total: FloatArray  # sum of them in each cell, shape (S,)
+    spread: FloatArray  # sum of squares about the cell's mean, nan where not defined
 
 
 def driver_cells(
     driver: FloatArray, window: int, shifts: IntArray, defined: NDArray[np.bool_]
 ) -> DriverCells:
-    """Put the driver's deviations in each cell where they meet the response's trailing means."""
+    """Prepare a driver for `correlation_profile`."""
     means = np.lib.stride_tricks.sliding_window_view(driver, window).mean(axis=1)
-    weights = np.zeros((means.size, shifts.size))
+    means = means - means.mean()
+    length = fft.next_fast_len(means.size + int(np.abs(shifts).max()), real=True)
+    total, spread = np.zeros(shifts.size), np.full(shifts.size, np.nan)
     for place in np.flatnonzero(defined):
         early, _ = _pair(means, means, int(shifts[place]))
-        deviation = early - early.mean()
-        start = max(0, int(shifts[place]))
-        weights[start : start + early.size, place] = deviation / np.sqrt(deviation @ deviation)
-    pairs = np.maximum(1.0, means.size - np.abs(shifts))
-    return DriverCells(window, shifts, pairs, weights, defined)
+        total[place] = early.sum()
+        spread[place] = np.square(early - early.mean()).sum()
+    pairs = np.maximum(1, means.size - np.abs(shifts))
+    spectrum = fft.rfft(means, length).conj()
+    return DriverCells(window, shifts, pairs, length, spectrum, total, spread)
 
 
 def correlation_profile(responses: FloatArray, cells: DriverCells) -> FloatArray:
     """Correlation of the driver with each of many responses at every candidate, shape (B, S)."""
-    total = np.cumsum(responses, axis=1)
-    means = total[:, cells.window - 1 :].copy()
-    means[:, 1:] -= total[:, : -cells.window]
-    correlation = means @ cells.weights
+    summed = np.cumsum(responses, axis=1)
+    means = summed[:, cells.window - 1 :].copy()
+    means[:, 1:] -= summed[:, : -cells.window]
+    means -= means.mean(axis=1, keepdims=True)
+    # Products at every lag: the means end where the sample ends, so each has its own overlap.
+    spectrum = fft.rfft(means, cells.length, axis=1)
+    spectrum *= cells.spectrum
+    products = fft.irfft(spectrum, cells.length, axis=1, overwrite_x=True)
+    covariance = products[:, cells.shifts % cells.length]
     # A cell leaves out the response's first means (driver leads) or its last ones.
-    lost = np.minimum(np.abs(cells.shifts), means.shape[1])
+    lost = means.shape[1] - np.maximum(0, means.shape[1] - np.abs(cells.shifts))
     late = cells.shifts >= 0
     most = int(lost.max())
     ends = np.stack((means[:, :most], means[:, ::-1][:, :most]))
-    moments = []
-    for whole_sum, values in (
-        (means.sum(axis=1), ends),
-        (np.einsum("bt,bt->b", means, means), ends**2),
-    ):
-        running = np.zeros((2, len(means), most + 1))
-        np.cumsum(values, axis=2, out=running[:, :, 1:])
-        moments.append(
-            whole_sum[:, None] - np.where(late, running[0][:, lost], running[1][:, lost])
-        )
-    spread = moments[1] - moments[0] ** 2 / cells.pairs
-    correlation /= np.sqrt(np.where(spread > 0, spread, np.nan))
-    correlation[:, ~cells.defined] = np.nan
-    return correlation
+    running = np.zeros((2, 2, len(means), most + 1))
+    np.cumsum(ends, axis=2, out=running[0, :, :, 1:])
+    np.cumsum(ends**2, axis=2, out=running[1, :, :, 1:])
+    total, squares = -np.where(late, running[:, 0][:, :, lost], running[:, 1][:, :, lost])
+    squares += np.einsum("bt,bt->b", means, means)[:, None]
+    covariance -= total * (cells.total / cells.pairs)
+    spread = squares - total**2 / cells.pairs
+    covariance /= np.sqrt(np.where(spread > 0, spread, np.nan) * cells.spread)
+    return covariance
 
 
 def slope_profile(

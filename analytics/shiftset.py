@@ -6,6 +6,7 @@ best makes the set too narrow.
 """
 
 from collections.abc import Iterable, Sequence
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 
 import numpy as np
@@ -232,22 +233,8 @@ def shift_set_chunk(plan: ShiftSetPlan, index: int) -> ShiftSetChunk:
     if not 0 <= index < plan.chunks:
         raise ValueError(f"index must be from 0 to {plan.chunks - 1}, but got {index}")
     places = np.arange(index * CHUNK, min(plan.shifts.size, (index + 1) * CHUNK))
-    p = np.full(places.size, np.nan)
-    for row, place in enumerate(places):
-        if np.isfinite(plan.correlation[place]):
-            rng = np.random.default_rng([plan.seed, int(place)])
-            simulated = simulated_responses(
-                plan.driver,
-                plan.response,
-                window=plan.window,
-                shift=int(plan.shifts[place]),
-                slope=float(plan.slope[place]),
-                draws=plan.draws,
-                rng=rng,
-            )
-            drawn = _deficit(correlation_profile(simulated, plan._cells))
-            reached = np.count_nonzero(drawn[:, place] >= plan.deficit[place])
-            p[row] = (1.0 + reached) / (plan.draws + 1.0)
+    with ThreadPoolExecutor(2) as pool:  # the transforms run outside Python's lock
+        p = list(pool.map(lambda place: _candidate_p(plan, int(place)), places))
     return ShiftSetChunk(index, read_only(p))
 
 
@@ -328,6 +315,24 @@ def shift_set(
         driver, response, window=window, shifts=shifts, level=level, draws=draws, seed=seed
     )
     return shift_set_result(plan, [shift_set_chunk(plan, index) for index in range(plan.chunks)])
+
+
+def _candidate_p(plan: ShiftSetPlan, place: int) -> float:
+    """Give p of one candidate as the true shift; nan where its cell is not defined."""
+    if np.isnan(plan.correlation[place]):
+        return float("nan")
+    simulated = simulated_responses(
+        plan.driver,
+        plan.response,
+        window=plan.window,
+        shift=int(plan.shifts[place]),
+        slope=float(plan.slope[place]),
+        draws=plan.draws,
+        rng=np.random.default_rng([plan.seed, place]),
+    )
+    drawn = _deficit(correlation_profile(simulated, plan._cells))
+    reached = np.count_nonzero(drawn[:, place] >= plan.deficit[place])
+    return (1.0 + reached) / (plan.draws + 1.0)
 
 
 def _deficit(correlation: FloatArray) -> FloatArray:

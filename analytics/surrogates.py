@@ -115,9 +115,9 @@ def autoregressive_surrogates(
     surprises = surprises - surprises.mean()
     length = fft.next_fast_len(array.size + _memory(whitening), real=True)
     drawn = surprises[rng.integers(0, surprises.size, (draws, length), dtype=np.int32)]
-    spectrum = fft.rfft(drawn, axis=1, overwrite_x=True, workers=2)
+    spectrum = fft.rfft(drawn, axis=1, overwrite_x=True)
     spectrum /= fft.rfft(whitening, length)
-    surrogates: FloatArray = fft.irfft(spectrum, length, axis=1, overwrite_x=True, workers=2)
+    surrogates: FloatArray = fft.irfft(spectrum, length, axis=1, overwrite_x=True)
     surrogates = surrogates[:, : array.size]
     surrogates += array.mean()
     return surrogates
