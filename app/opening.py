@@ -19,18 +19,21 @@ def opening_state(loaded: Mapping[str, Series]) -> ViewState:
     usual = ViewState()
     if (usual.driver in loaded and usual.response in loaded) or not loaded:
         return usual
-    names = list(loaded)
-    response = next((n for n in names if _PRICES.search(n) and not _MONEY.search(n)), None)
-    others = [
-        n
-        for n in names
-        if n != response and (response is None or loaded[n].frequency == loaded[response].frequency)
-    ]
-    driver = next((n for n in others if _MONEY.search(n)), next(iter(others), names[0]))
-    if response is None:
-        year_of = loaded[driver].frequency
-        response = next(
-            (n for n in names if n != driver and loaded[n].frequency == year_of), driver
-        )
+    paired = [n for n in loaded if len(_partners(n, loaded)) > 0] or list(loaded)
+    prices = [n for n in paired if _PRICES.search(n) and not _MONEY.search(n)]
+    money = [n for n in paired if _MONEY.search(n)]
+    if prices:
+        response = prices[0]
+        partners = _partners(response, loaded) or [response]
+        driver = next((n for n in partners if n in money), partners[0])
+    else:
+        driver = (money or paired)[0]
+        response = next(iter(_partners(driver, loaded)), driver)
     year = PERIODS_PER_YEAR[loaded[driver].frequency]
     return ViewState(driver=driver, response=response, window=year, shift=2 * year)
+
+
+def _partners(name: str, loaded: Mapping[str, Series]) -> list[str]:
+    """Names of the other series of the same calendar."""
+    calendar = loaded[name].frequency
+    return [n for n, series in loaded.items() if n != name and series.frequency == calendar]

@@ -81,11 +81,12 @@ def test_problems_of_all_files_are_together():
     [
         (["Consumer prices", "Policy rate", "Broad money"], "Broad money", "Consumer prices"),
         (["CPI", "M2 money"], "M2 money", "CPI"),
-        (["cpi all items", "Wages"], "cpi all items", "Wages"),
+        (["cpi all items", "Wages"], "Wages", "cpi all items"),
+        (["cpi", "m1"], "m1", "cpi"),
         (["Wages", "Oil price"], "Wages", "Oil price"),
         (["Money", "Money market rate"], "Money", "Money market rate"),
         (["A", "B", "C"], "A", "B"),
-        (["Prices of oil", "Cpi"], "Prices of oil", "Cpi"),
+        (["Prices of oil", "Cpi"], "Cpi", "Prices of oil"),
         (["Only"], "Only", "Only"),
     ],
 )
