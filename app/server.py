@@ -127,11 +127,11 @@ def _missing() -> html.Div:
 def _register_routes(server: Flask, bridge: Bridge) -> None:
     @server.get("/export/<page>/<view>.csv")
     def _csv(page: str, view: str) -> Response:
+        if page not in EXPORTS:
+            return Response(f"no page named {page!r} has exports\n", 404, mimetype="text/plain")
         try:
             query = request.query_string.decode(errors="replace")
             name, text = EXPORTS[page](view, query, bridge)
-        except KeyError:
-            return Response(f"no page named {page!r} has exports\n", 404, mimetype="text/plain")
         except ValueError as error:
             return Response(f"{error}\n", status=400, mimetype="text/plain")
         response = Response(text, mimetype="text/csv")
@@ -140,11 +140,11 @@ def _register_routes(server: Flask, bridge: Bridge) -> None:
 
     @server.get("/lag/work/<kind>")
     def _work(kind: str) -> tuple[dict[str, Any], int]:
-        try:
-            state = ViewState.from_query(request.query_string.decode())
-            progress = bridge.jobs.step(WORK[kind](state, bridge))
-        except KeyError:
+        if kind not in WORK:
             return {"message": f"there is no work named {kind!r}"}, 404
+        try:
+            state = ViewState.from_query(request.query_string.decode(errors="replace"))
+            progress = bridge.jobs.step(WORK[kind](state, bridge))
         except ValueError as error:
             return {"message": str(error)}, 422
         return {"done": progress.done, "total": progress.total}, 200
@@ -185,8 +185,12 @@ def _guard(server: Flask, app: Dash) -> None:
     def _check() -> None:
         if urlsplit(f"//{request.host.lower()}").hostname not in {h.strip("[]") for h in HOSTS}:
             abort(421)
+        site = request.headers.get("Sec-Fetch-Site", "same-origin")
+        mode = request.headers.get("Sec-Fetch-Mode", "navigate")
+        if site in ("cross-site", "same-site") and mode != "navigate":
+            abort(403)  # another site may link here, but not set the machine to work
         if request.method not in ("GET", "HEAD"):
-            if request.headers.get("Sec-Fetch-Site", "same-origin") != "same-origin":
+            if site != "same-origin":
                 abort(403)
             origin = request.headers.get("Origin")
             if origin and urlsplit(origin).netloc != request.host:
