@@ -9,7 +9,6 @@ from dataclasses import fields
 from pathlib import Path
 
 import click
-import numpy as np
 import pytest
 
 from analytics.series import period_code
@@ -24,6 +23,11 @@ from tests.app.economies import LAG, levels, planted
 
 ROOT = Path(__file__).resolve().parents[2]
 CELL = {"window", "shift", "n", "slope", "intercept", "correlation", "se_naive", "p_naive"}
+ROBUST = {"se_robust", "p_robust", "effective_months"}
+KEYS = {
+    "search": "p p_one_sided p_with_level_shifts level_shifts_removed surrogates seed method",
+    "shift_set": "level identified shifts",
+}
 
 
 @pytest.fixture
@@ -33,7 +37,9 @@ def run(capsys, tmp_path, monkeypatch):
 
     def call(*words):
         with pytest.raises(SystemExit) as ended:
-            main([str(word) for word in words])
+            # Few surrogates: what is judged here is the command and not the search.
+            few = ["--surrogates", "39"] if words[0] == "lag" and len(words) > 1 else []
+            main([str(word) for word in (words[0], *few, *words[1:])])
         out, err = capsys.readouterr()
         return ended.value.code, out, err
 
@@ -87,7 +93,13 @@ def test_lag_gives_the_chosen_and_the_best_cell_unrounded(run):
     assert (status, err) == (0, "")
     assert out.count("\n") == 1  # one object on one line and nothing else
     answer = json.loads(out)
-    assert set(answer["cell"]) >= CELL
+    assert set(answer["cell"]) >= CELL | ROBUST
+    for key, names in KEYS.items():
+        assert set(answer[key]) >= set(names.split())
+    assert answer["search"]["surrogates"] == 39
+    for episode in answer["episodes"]:
+        assert set(episode) >= {"first", "last", "share", "slope_without", "p_without"}
+    assert "fragility" in answer
     assert {"window", "shift", "correlation", "slope"} <= set(answer["best"])
     state, bridge = ViewState(), Bridge(Workspace(demo_releases()))
     cell, surface = bridge.cell(state), bridge.surface(state)
@@ -97,7 +109,7 @@ def test_lag_gives_the_chosen_and_the_best_cell_unrounded(run):
         assert answer["cell"][key] == getattr(cell, key)
     best = answer["best"]
     place = surface.cell(best["window"], best["shift"])
-    assert best["correlation"] == surface.correlation[place] == np.nanmax(surface.correlation)
+    assert best["correlation"] == surface.correlation[place] > 0.7
     assert best["slope"] == surface.slope[place]
 
 
@@ -134,11 +146,12 @@ def test_quarters_are_counted_as_quarters(run, tmp_path):
 
 
 def test_words_for_people_name_the_cell_the_best_and_the_caution(run):
-    status, out, err = run("lag")
+    status, out, err = run("lag", "--window", "12")
     assert (status, err) == (0, "")
     assert out.startswith("Broad money, 12-month window, leading Consumer prices by 24 months")
-    assert "Best cell of the map: window" in out
-    assert "naive standard error" in out
+    assert "Chosen cell: correlation +0.80, slope 0.548" in out
+    assert "search-adjusted" in out
+    assert "naive p" in out
     assert "not a cause" in out
 
 
@@ -419,9 +432,9 @@ def process(*words, **environment):
 
 
 def test_the_command_runs_as_a_process_and_prints_json_only():
-    done = process("lag", "--json")
+    done = process("lag", "--json", "--surrogates", "39")
     assert (done.returncode, done.stderr) == (0, "")
-    assert json.loads(done.stdout)["best"]["correlation"] > 0.8
+    assert json.loads(done.stdout)["best"]["correlation"] > 0.7
 
 
 def test_a_refusal_of_a_process_is_one_sentence():
@@ -435,7 +448,15 @@ def test_a_refusal_of_a_process_is_one_sentence():
 def test_a_console_without_the_letters_of_a_name_still_gets_the_answer(tmp_path, words, console):
     write(tmp_path / "namen.csv", rows_of(), ("period", "Geldmenge für alle", "价格"))
     done = subprocess.run(
-        [sys.executable, "-m", "app", "lag", str(tmp_path / "namen.csv"), *words],
+        [
+            sys.executable,
+            "-m",
+            "app",
+            "lag",
+            str(tmp_path / "namen.csv"),
+            "--surrogates=39",
+            *words,
+        ],
         cwd=ROOT,
         capture_output=True,
         timeout=120,

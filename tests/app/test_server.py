@@ -179,6 +179,16 @@ def test_other_methods_from_another_site_are_refused_too(client, method):
     assert getattr(client, method)("/intake").status_code == 405
 
 
+@pytest.mark.parametrize("path", ["/lag/work/search", "/export/lag/surface.csv", "/lag"])
+@pytest.mark.parametrize("site", ["cross-site", "same-site"])
+def test_another_site_may_link_here_but_not_fetch(client, path, site):
+    for mode in ("no-cors", "cors", "same-origin"):
+        headers = {"Sec-Fetch-Site": site, "Sec-Fetch-Mode": mode}
+        assert client.get(path, headers=headers).status_code == 403
+    headers = {"Sec-Fetch-Site": site, "Sec-Fetch-Mode": "navigate"}
+    assert client.get("/lag?window=7", headers=headers).status_code == 200
+
+
 def test_a_request_from_the_page_itself_is_answered(own):
     client, here = own
     headers = {"Origin": "http://localhost", "Sec-Fetch-Site": "same-origin"}
@@ -360,6 +370,39 @@ def test_a_broken_callback_request_is_no_disaster(client, body):
     assert len(answer.data) < 1000
 
 
+# Long work -----------------------------------------------------------------------------------
+
+
+def test_long_work_comes_in_steps_until_it_is_done(own):
+    client, _ = own
+    query = "driver=Money&response=Prices&windows=1:3&shifts=-3:9&surrogates=39"
+    seen = []
+    while not seen or seen[-1]["done"] < seen[-1]["total"]:
+        answer = client.get(f"/lag/work/search?{query}")
+        assert answer.status_code == 200
+        seen.append(answer.json)
+        assert len(seen) < 100
+    assert [step["done"] for step in seen] == sorted(step["done"] for step in seen)
+    assert client.get(f"/lag/work/search?{query}").json["done"] == 1  # kept: nothing is left to do
+
+
+@pytest.mark.parametrize(
+    ("address", "status", "said"),
+    [
+        ("nope", 404, "there is no work named 'nope'"),
+        ("search?window=abc", 422, "Window must be a whole number"),
+        ("search?driver=Nope", 422, "no loaded series is named 'Nope'"),
+        ("search?driver=%ff", 422, "no loaded series is named"),
+        ("search?driver=Consumer+prices", 422, "must be two series"),
+    ],
+)
+def test_work_that_cannot_be_done_is_refused_in_one_sentence(client, address, status, said):
+    answer = client.get(f"/lag/work/{address}")
+    assert answer.status_code == status
+    assert said in answer.json["message"]
+    assert "\n" not in answer.json["message"]
+
+
 # Exports -------------------------------------------------------------------------------------
 
 
@@ -398,6 +441,13 @@ def test_an_export_that_cannot_be_made_is_refused_in_one_sentence(client, addres
     assert said in text
     assert text.count("\n") == 1
     assert "Set-Cookie" not in answer.headers
+
+
+@pytest.mark.parametrize("page", ["nope", "..", "<b>"])
+def test_a_page_without_exports_is_not_found(client, page):
+    answer = client.get(f"/export/{page}/surface.csv")
+    assert answer.status_code == 404
+    assert answer.mimetype == "text/plain" or b"<b>" not in answer.data
 
 
 def test_an_address_with_raw_bytes_is_refused_and_not_an_accident(client):
@@ -571,9 +621,9 @@ def test_an_accident_inside_is_told_without_its_inside(own, monkeypatch, caplog)
     client, _ = own
 
     def broken(*_args):
-        raise RuntimeError("secret inside")
+        raise KeyError("secret inside")
 
-    monkeypatch.setattr(server_module.exports, "csv_export", broken)
+    monkeypatch.setitem(server_module.EXPORTS, "lag", broken)
     answer = client.get("/export/lag/surface.csv")
     assert answer.status_code == 500
     assert b"secret" not in answer.data

@@ -26,7 +26,7 @@ NEEDED = (
     "app/bundled/data_samples/economy_monthly.csv",
     "app/bundled/data_samples/series.csv",
 )
-SERVED = ("/lag", "/data", "/assets/page.css", "/assets/tokens.css", "/export/surface.csv")
+SERVED = ("/lag", "/data", "/assets/page.css", "/assets/tokens.css", "/export/lag/overlay.csv")
 
 
 class Installed:
