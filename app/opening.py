@@ -24,7 +24,7 @@ def opening_state(loaded: Mapping[str, Series]) -> ViewState:
     money = [n for n in paired if _MONEY.search(n)]
     if prices:
         response = prices[0]
-        partners = _partners(response, loaded) or [response]
+        partners = _partners(response, loaded) or [n for n in loaded if n != response] or [response]
         driver = next((n for n in partners if n in money), partners[0])
     else:
         driver = (money or paired)[0]
