@@ -311,13 +311,22 @@ def opinions_work(state: ViewState, bridge: Bridge) -> Work:
 
 
 def stability_work(state: ViewState, bridge: Bridge) -> Work:
-    """Return the chosen cell over rolling and growing samples as work."""
+    """Return the chosen cell over rolling and growing samples as work.
+
+    A rolling sample is ten years long, or half of the pairs where there are not as many.
+    """
 
     def make() -> Stability:
         cell = _cell(state, bridge)
-        pairs = bridge.cell(state).n
-        ten_years = 10 * cell["periods_per_year"]
-        span = min(pairs, max(ten_years, 2 * state.window, 24))
+        pairs, fewest = bridge.cell(state).n, max(24, 2 * state.window)
+        span = max(10 * cell["periods_per_year"], fewest)
+        if span >= pairs:  # no ten years that could move
+            span = max(pairs // 2, fewest)
+        if span >= pairs:
+            raise StateError(
+                f"the cell must have more than {fewest} pairs for its slope to be followed,"
+                f" but has {pairs}"
+            )
         return rolling_stability(**cell, span=span, rng=np.random.default_rng(state.seed))
 
     return _whole_work("stability:" + bridge.key(replace(state, without="")), make)
