@@ -1,0 +1,459 @@
+"""Evidence: the parts are what analytics says of the pair, and keys hold what they depend on."""
+
+import json
+from dataclasses import replace
+from itertools import pairwise
+
+import numpy as np
+import pytest
+from click.testing import CliRunner
+
+from analytics.hac import hac_surface
+from analytics.influence import cell_without, episodes
+from analytics.opinions import second_opinions
+from analytics.robust import cell_inference, surface_inference
+from analytics.search import lag_search
+from analytics.series import period_code
+from analytics.shiftset import shift_set
+from analytics.stability import rolling_stability
+from app import evidence as ev
+from app.compute import Bridge, cell_span, grid
+from app.demo import demo_releases
+from app.state import StateError, ViewState
+from app.workspace import Workspace
+from tests.app.economies import LAG, planted, workspace
+from tests.app.evidence_cases import STATE, case, noise, rates
+
+SMALL = replace(STATE, windows="1:6", shifts="-6:12")
+EVERY_CHANGE = {
+    "response": "Other",
+    "window": 5,
+    "shift": 2,
+    "growth": "percent",
+    "first": "2001-05",
+    "last": "2018-02",
+    "months": "same",
+    "windows": "1:5",
+    "shifts": "-5:12",
+    "surrogates": 300,
+    "seed": 2,
+    "without": "2000-03:2001-03",
+    "quantity": "slope",
+}
+
+
+def fresh(*series):
+    return Bridge(workspace(*(series or planted())))
+
+
+def same(ours, theirs):
+    """Hold two results against each other, part by part."""
+    assert type(ours) is type(theirs)
+    if hasattr(ours, "__dataclass_fields__"):
+        for name in ours.__dataclass_fields__:
+            same(getattr(ours, name), getattr(theirs, name))
+    elif isinstance(ours, (tuple, list)):
+        assert len(ours) == len(theirs)
+        for a, b in zip(ours, theirs, strict=True):
+            same(a, b)
+    elif isinstance(ours, dict):
+        assert list(ours) == list(theirs)
+        same(list(ours.values()), list(theirs.values()))
+    else:
+        np.testing.assert_array_equal(ours, theirs)
+
+
+# Parts ---------------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("months", ["own", "same"])
+@pytest.mark.parametrize("shift", [LAG, 0, -4])
+@pytest.mark.parametrize("first", ["2000-01", "1990Q1"])
+def test_the_chosen_cell_is_judged_by_analytics_on_the_values_of_the_pair(shift, months, first):
+    bridge = fresh(*planted(first=first))
+    state = replace(SMALL, shift=shift, months=months)
+    pair, year = bridge.pair(state), 12 if first == "2000-01" else 4
+    start, stop = (0, pair.n) if months == "own" else _months_every_cell_has(pair.n, 3, shift)
+    sides = pair.driver.values[start:stop], pair.response.values[start:stop]
+    options = {"window": 3, "shift": shift, "periods_per_year": year}
+    known = ev.evidence(state, bridge)
+    same(known.inference, cell_inference(*sides, **options))
+    same(known.influence, episodes(*sides, **options))
+    assert known.naive_p == bridge.cell(state).p_naive
+    assert known.inference.n == bridge.cell(state).n
+    assert (known.search, known.shift_set, known.refusal, known.set_refusal) == (None, None, "", "")
+    assert known.found is False
+
+
+def _months_every_cell_has(n, window, shift):
+    """By hand, for windows to 6 and shifts -6 to 12: driver months 11 .. n - 13 end a window."""
+    first, last = 5 + 6, n - 1 - 12
+    used = [t - k for t in (first, last) for k in (0, window - 1)]
+    used += [month + shift for month in used]
+    return min(used), max(used) + 1
+
+
+def test_the_same_months_are_fewer_than_all():
+    bridge = fresh()
+    own, cut = (ev.inference(replace(SMALL, months=m), bridge) for m in ("own", "same"))
+    assert cut.n == 240 - 11 - 12 < own.n == 240 - 2 - LAG
+
+
+@pytest.mark.parametrize("months", ["own", "same"])
+def test_every_cell_of_the_map_is_judged_by_analytics(months):
+    bridge, state = fresh(), replace(SMALL, months=months)
+    pair = bridge.pair(state)
+    options = {"windows": range(1, 7), "shifts": range(-6, 13)}
+    sides = pair.driver.values, pair.response.values
+    same(
+        ev.map_inference(state, bridge),
+        surface_inference(*sides, **options, same_months=months == "same", periods_per_year=12),
+    )
+    same(ev.map_hac(state, bridge), hac_surface(*sides, **options))
+    at = ev.map_inference(state, bridge)
+    assert at.p[2, 6 + LAG] == pytest.approx(ev.inference(state, bridge).p, rel=1e-9)
+
+
+@pytest.mark.parametrize("first", ["2000-01", "1990Q1"])
+def test_the_search_and_the_set_are_those_of_analytics(first):
+    bridge, state = fresh(*planted(first=first)), replace(SMALL, seed=9)
+    known, pair = ev.completed(state, bridge), bridge.pair(state)
+    sides = pair.driver.values, pair.response.values
+    same(
+        known.search,
+        lag_search(
+            *sides, windows=range(1, 7), shifts=range(-6, 13), surrogates=250, seed=9,
+            periods_per_year=12 if first == "2000-01" else 4,
+        ),
+    )  # fmt: skip
+    same(known.shift_set, shift_set(*sides, window=3, shifts=range(-6, 13), seed=9))
+    assert known.found
+    same(ev.evidence(state, bridge), known)
+
+
+def test_both_directions_are_two_searches_over_shifts_above_zero():
+    bridge = fresh(*planted(lag=-4))
+    found, pair = (
+        bridge.jobs.complete(ev.directions_work(SMALL, bridge)),
+        bridge.pair(SMALL),
+    )
+    options = {"windows": range(1, 7), "shifts": range(1, 13), "surrogates": 250, "seed": 1}
+    driver, response = pair.driver.values, pair.response.values
+    same(found.forward, lag_search(driver, response, **options))
+    same(found.backward, lag_search(response, driver, **options))
+    assert found.backward.best_shift == 4, "the response leads by what was planted"
+    assert found.backward.p <= 0.05
+
+
+def test_other_methods_are_asked_about_the_pair_and_the_other_formula():
+    bridge = fresh()
+    found, pair = bridge.jobs.complete(ev.opinions_work(SMALL, bridge)), bridge.pair(SMALL)
+    sides = pair.driver.values, pair.response.values
+    same(
+        found,
+        second_opinions(
+            *sides, window=3, shift=LAG, max_shift=12, periods_per_year=12,
+            variants={"percent growth": sides},  # a rate is used as it is, whatever the formula
+        ),
+    )  # fmt: skip
+
+
+@pytest.mark.parametrize("months", ["own", "same"])
+def test_the_slope_is_followed_over_ten_years(months):
+    bridge, state = fresh(), replace(SMALL, months=months, seed=3)
+    found, pair = bridge.jobs.complete(ev.stability_work(state, bridge)), bridge.pair(state)
+    start, stop = cell_span(pair, state)
+    whole = rolling_stability(
+        pair.driver.values[start:stop], pair.response.values[start:stop],
+        window=3, shift=LAG, span=120, rng=np.random.default_rng(3), periods_per_year=12,
+    )  # fmt: skip
+    same(found, whole)
+
+
+@pytest.mark.parametrize(
+    ("n", "first", "window", "span"),
+    [
+        (129, "2000-01", 3, 120),  # 121 pairs
+        (128, "2000-01", 3, 60),  # 120 pairs: no ten years that could move
+        (80, "2000-01", 3, 36),
+        (45, "2000-01", 3, 24),  # 37 pairs
+        (240, "2000-01", 70 // 2, 120),
+        (130, "2000-01", 30, 60),  # 95 pairs, two windows
+        (160, "1980Q1", 3, 40),
+    ],
+)
+def test_the_slope_of_a_short_sample_is_followed_over_half_of_it(n, first, window, span):
+    bridge, state = fresh(*planted(n, first=first)), replace(SMALL, window=window)
+    state = replace(state, windows="1:1", shifts="0:6")
+    assert bridge.jobs.complete(ev.stability_work(state, bridge)).span == span
+
+
+def test_a_slope_that_cannot_be_followed_is_refused_in_a_sentence():
+    bridge, state = fresh(*planted(32)), replace(SMALL, windows="1:3", shifts="0:6")
+    with pytest.raises(ValueError, match="must have more than 24 pairs for its"):
+        bridge.jobs.complete(ev.stability_work(state, bridge))
+
+
+def test_an_unrelated_pair_gets_no_shift_set():
+    state, bridge, known = case("unrelated")
+    assert not known.found
+    assert known.search.p > ev.SIGNIFICANT
+    assert known.shift_set is None
+    assert bridge.jobs.remembered(ev.shift_set_work(state, bridge)) is None
+
+
+def test_p_after_the_search_is_that_of_the_cell():
+    _, _, known = case("leads")
+    found = known.search
+    for window, shift in ((1, -12), (3, 9), (12, 24), (7, 0)):
+        there = found.p_cell[window - 1, shift + 12]
+        assert known.p_searched(window, shift) == there
+    assert known.p_searched(found.best_window, found.best_shift) == found.p == found.p_cell.min()
+    for window, shift in ((13, 9), (0, 9), (3, 25), (3, -13)):
+        assert known.p_searched(window, shift) is None
+    assert replace(known, search=None).p_searched(3, 9) is None
+
+
+def test_p_of_an_undefined_cell_is_nan():
+    bridge, state = fresh(*planted(70)), replace(STATE, windows="1:12", shifts="-12:40")
+    known = ev.completed(state, bridge)
+    assert bridge.surface(state).pairs[11, 52] < 24
+    assert np.isnan(known.p_searched(12, 40))
+
+
+@pytest.mark.parametrize(("p", "held"), [(0.05, True), (0.0501, False), (0.001, True), (1, False)])
+def test_a_search_holds_up_to_5_percent(p, held):
+    known = case("leads")[2]
+    assert replace(known, search=replace(known.search, p=p)).found is held
+
+
+# Refusals ------------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize(
+    ("name", "why"),
+    [
+        ("short", "a search must have at least 60 periods, but got 50"),
+        ("identical", "driver and response must differ, but they are the same series (r = 1)"),
+    ],
+)
+def test_a_pair_that_cannot_be_searched_is_still_judged_cell_by_cell(name, why):
+    state, bridge, known = case(name)
+    assert known.refusal == why
+    assert (known.search, known.shift_set, known.found) == (None, None, False)
+    assert np.isfinite(known.inference.p)
+    same(ev.evidence(state, bridge), known)
+    with pytest.raises(ValueError, match=why[:30]):
+        ev.search_plan_or_refuse(state, bridge)
+    with pytest.raises(ValueError, match=why[:30]):
+        bridge.jobs.step(ev.search_work(state, bridge))
+
+
+@pytest.mark.parametrize("n", [59, 60])
+def test_sixty_months_are_enough(n):
+    bridge = fresh(*planted(n))
+    assert bool(ev.evidence(SMALL, bridge).refusal) is (n < 60)
+
+
+@pytest.mark.parametrize("constant", ["driver", "response"])
+def test_a_constant_series_is_refused_in_one_sentence(constant):
+    x, _ = noise()
+    sides = (np.ones(240), x) if constant == "driver" else (x, np.ones(240))
+    bridge = fresh(*rates(*sides))
+    for ask in (ev.evidence, ev.completed):
+        with pytest.raises(ValueError, match=f"{constant} must vary"):
+            ask(SMALL, bridge)
+    with pytest.raises(ValueError, match=f"{constant} must vary, but is 1 in every period"):
+        bridge.jobs.step(ev.search_work(SMALL, bridge))
+
+
+def test_a_refused_shift_set_takes_nothing_else_down():
+    state, bridge, known = case("exact copy")
+    assert known.found
+    assert known.shift_set is None
+    assert known.set_refusal == "the response must not follow the driver exactly, but r is 1"
+    assert known.refusal == ""
+    same(ev.evidence(state, bridge), known)
+
+
+@pytest.mark.parametrize("kind", ["directions", "opinions"])
+def test_what_needs_shifts_above_zero_is_refused_without_them(kind):
+    bridge, state = fresh(*planted(lag=-4)), replace(SMALL, shift=-4, shifts="-12:0")
+    work = ev.WORK[kind](state, bridge)
+    assert bridge.jobs.refusal(work) == ""
+    with pytest.raises(ValueError, match="the map has no shift above 0"):
+        bridge.jobs.complete(work)
+    assert bridge.jobs.refusal(work).startswith("the map has no shift above 0")
+    assert ev.completed(state, bridge).search.best_shift == -4
+
+
+# Keys ----------------------------------------------------------------------------------------
+
+
+def keys(kind, bridge, **changes):
+    return ev.WORK[kind](replace(SMALL, **changes), bridge).key
+
+
+@pytest.mark.parametrize(
+    ("kind", "free"),
+    [
+        ("search", {"window", "shift", "without", "quantity"}),
+        ("directions", {"window", "shift", "without", "quantity"}),
+        ("shift_set", {"shift", "without", "quantity"}),
+        ("opinions", {"without", "quantity"}),
+        ("stability", {"without", "quantity"}),
+    ],
+)
+def test_a_key_changes_with_everything_its_work_depends_on(kind, free):
+    money, prices = planted()
+    bridge = fresh(money, prices, replace(prices, name="Other"))
+    whole = keys(kind, bridge)
+    assert set(EVERY_CHANGE) | {"driver"} == set(ViewState.__dataclass_fields__)
+    for name, value in EVERY_CHANGE.items():
+        assert (keys(kind, bridge, **{name: value}) == whole) is (name in free), name
+    assert keys(kind, bridge, driver="Other") != whole
+    other = fresh(*planted(seed=12), replace(prices, name="Other"))
+    assert keys(kind, other) != whole, "other data"
+    assert keys(kind, fresh(money, prices)) == whole, "equal data and state give an equal key"
+
+
+def test_kinds_of_work_have_keys_of_their_own():
+    bridge = fresh()
+    assert len({keys(kind, bridge) for kind in ev.WORK}) == len(ev.WORK) == 5
+
+
+def test_the_cell_chosen_does_not_change_the_search_and_the_window_changes_the_set():
+    bridge = fresh()
+    first = ev.completed(SMALL, bridge)
+    second = ev.completed(replace(SMALL, window=5, shift=2), bridge)
+    third = ev.completed(replace(SMALL, shift=2), bridge)
+    assert second.search is first.search is third.search
+    assert third.shift_set is first.shift_set
+    assert (first.shift_set.window, second.shift_set.window) == (3, 5)
+
+
+# Episodes ------------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("months", ["own", "same"])
+@pytest.mark.parametrize("shift", [LAG, 0, -4])
+def test_an_episode_is_named_by_its_months_and_found_by_its_name(shift, months):
+    bridge, state = fresh(), replace(SMALL, shift=shift, months=months)
+    pair = bridge.pair(state)
+    start, stop = cell_span(pair, state)
+    parts = ev.influence(state, bridge).episodes
+    codes = [ev.episode_code(episode, pair, state) for episode in parts]
+    assert len(set(codes)) == len(parts) > 2
+    # They tile the driver's months: each begins in the month after the last one's end.
+    ends = [code.split(":") for code in codes]
+    names = [period_code(period) for period in pair.periods]
+    for (_, last), (first, _) in pairwise(ends):
+        assert names.index(first) == names.index(last) + 1
+    cell_start = start + bridge.cell(state).start
+    assert ends[0][0] == names[cell_start]
+    assert ends[-1][1] == names[cell_start + bridge.cell(state).n - 1]
+    for code, episode in zip(codes, parts, strict=True):
+        found = ev.without_episode(replace(state, without=code), bridge)
+        same(found[0], episode)
+        same(
+            found[1],
+            cell_without(
+                pair.driver.values[start:stop], pair.response.values[start:stop],
+                window=3, shift=shift, episode=episode, periods_per_year=12,
+            ),
+        )  # fmt: skip
+        assert found[1].slope == pytest.approx(episode.slope_without, rel=1e-12)
+
+
+def test_no_episode_named_is_none_left_out():
+    assert ev.without_episode(SMALL, fresh()) is None
+
+
+@pytest.mark.parametrize("name", ["1950-01:1951-01", "2000-03:2000-04", "2001"])
+def test_an_episode_that_this_cell_does_not_have_is_refused(name):
+    if ":" not in name:
+        with pytest.raises(StateError, match="Without must be a stretch"):
+            replace(SMALL, without=name)
+        return
+    with pytest.raises(StateError, match=f"Without must name an episode of this cell, .*{name}"):
+        ev.without_episode(replace(SMALL, without=name), fresh())
+
+
+def test_episodes_of_quarters_are_named_by_quarters():
+    bridge = fresh(*planted(160, first="1980Q1"))
+    code = ev.episode_code(ev.influence(SMALL, bridge).episodes[0], bridge.pair(SMALL), SMALL)
+    assert code.startswith("1980-Q3:")  # the third quarter ends the first window of three
+    assert ev.without_episode(replace(SMALL, without=code), bridge)[0].start == 0
+
+
+# The command ---------------------------------------------------------------------------------
+
+DESIGN = {
+    "cell": "window shift n slope intercept correlation se_naive p_naive se_robust p_robust"
+    " effective_months",
+    "best": "window shift correlation slope",
+    "search": "p p_one_sided p_with_level_shifts level_shifts_removed surrogates seed method",
+    "shift_set": "level identified shifts",
+}
+
+
+def lag_json(*flags):
+    from app.cli import pricewake
+
+    ran = CliRunner().invoke(
+        pricewake,
+        ["lag", "--json", "--surrogates", "250", "--windows", "1:24", "--shifts", "-12:36", *flags],
+        standalone_mode=False,
+    )
+    assert ran.exception is None
+    assert ran.return_value == 0
+    return ran.stdout
+
+
+def test_the_json_of_the_command_is_the_evidence():
+    text = lag_json("--seed", "5")
+    found = json.loads(text)
+    for part, names in DESIGN.items():
+        assert set(names.split()) <= set(found[part])
+    for episode in found["episodes"]:
+        assert {"first", "last", "share", "slope_without", "p_without"} <= set(episode)
+    state = ViewState(windows="1:24", shifts="-12:36", surrogates=250, seed=5)
+    bridge = Bridge(Workspace(demo_releases()))
+    known, cell = ev.completed(state, bridge), bridge.cell(state)
+    assert found["cell"] == {
+        "window": 12, "shift": 24, "n": cell.n, "slope": cell.slope, "intercept": cell.intercept,
+        "correlation": cell.correlation, "se_naive": cell.se_naive, "p_naive": cell.p_naive,
+        "se_robust": known.inference.se_robust, "p_robust": known.inference.p,
+        "effective_months": known.inference.effective_months,
+    }  # fmt: skip
+    assert found["search"]["p"] == known.search.p
+    assert found["search"]["p_one_sided"] == known.search.p_one_sided
+    assert (found["search"]["surrogates"], found["search"]["seed"]) == (250, 5)
+    assert found["search"]["method"] == known.search.method
+    assert found["best"]["window"] == known.search.best_window
+    assert found["best"]["shift"] == known.search.best_shift
+    assert found["shift_set"]["shifts"] == known.shift_set.shifts.tolist()
+    assert found["shift_set"]["identified"] is known.shift_set.identified
+    assert found["fragility"] == known.influence.fragility
+    assert [e["share"] for e in found["episodes"]] == [e.share for e in known.influence.episodes]
+    assert sum(e["share"] for e in found["episodes"]) == pytest.approx(1.0, abs=1e-9)
+    windows, shifts = grid(bridge.pair(state), state)
+    assert (found["search"]["windows"], found["search"]["shifts"]) == ([1, 24], [-12, 36])
+    assert (windows[-1], shifts[-1]) == (24, 36)
+    assert lag_json("--seed", "5") == text, "the same seed gives the same answer"
+
+
+def test_the_json_of_an_unrelated_pair_has_no_shift_set():
+    found = json.loads(lag_json("--driver", "Unemployment rate", "--last", "1979-12"))
+    assert found["search"]["p"] > 0.05
+    assert found["shift_set"] == {"level": 0.95, "identified": False, "shifts": []}
+
+
+def test_the_json_of_a_refused_search_says_why():
+    found = json.loads(
+        lag_json("--first", "2022-01", "--windows", "1:6", "--shifts", "-6:12",
+                 "--window", "3", "--shift", "3")
+    )  # fmt: skip
+    assert found["search"]["p"] is None
+    assert "at least 60 periods" in found["search"]["refused"]
+    assert found["cell"]["p_robust"] is not None
