@@ -10,7 +10,7 @@ from typing import Any
 
 from dash import html
 
-from app.state import Choice, Text, ViewState, Whole, field_kind
+from app.state import Choice, Day, Text, ViewState, Whole, field_kind
 
 
 def select(state: ViewState, name: str, options: Iterable[str] = ()) -> html.Div:
@@ -42,6 +42,25 @@ def text(state: ViewState, name: str, placeholder: str = "") -> html.Div:
     return _labelled(
         name, _native(name, type="text", value=getattr(state, name), placeholder=placeholder)
     )
+
+
+def number(state: ViewState, name: str) -> html.Div:
+    """Return a field for a whole number within the bounds of the table."""
+    kind = field_kind(name)
+    assert isinstance(kind, Whole)
+    return _labelled(
+        name,
+        _native(
+            name, type="number", value=getattr(state, name), min=kind.low, max=kind.high, step=1
+        ),
+    )
+
+
+def day(state: ViewState, name: str) -> html.Div:
+    """Return a field for a date, with the browser's own calendar."""
+    kind = field_kind(name)
+    assert isinstance(kind, Day)
+    return _labelled(name, _native(name, type="date", value=getattr(state, name)))
 
 
 def slider(state: ViewState, name: str, low: int, high: int, *, vertical: bool = False) -> html.Div:

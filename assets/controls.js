@@ -53,10 +53,16 @@
       link.href = `/export/${page}/${link.dataset.csv}.csv${search}`;
     }
     window.dash_clientside.set_props(`nav-${page}`, { href: `/${page}${search}` });
+    carry(page, state.as_of);
     window.dash_clientside.set_props(`${page}-state`, { data: state });
   }
 
+  /* What a control holds, as the state takes it: a number where the field is one. */
+  const valueOf = (element) =>
+    element.type === "range" || element.type === "number" ? Number(element.value) : element.value.trim();
+
   pricewake.controls = {
+    valueOf,
     query,
     publish,
     on: (kind, listener) => heard[kind].push(listener),

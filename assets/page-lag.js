@@ -380,7 +380,7 @@
   controls.on("change", (field, element) => {
     if (!page.state || !byId("lag-sentence")) return;
     if (field === "window" || field === "shift") return;
-    page.state = { ...page.state, [field]: element.value.trim() };
+    page.state = { ...page.state, [field]: controls.valueOf(element) };
     window.dash_clientside.set_props("lag-state", { data: page.state });
   });
 

@@ -8,7 +8,6 @@
   const DRAGGING = 120; // milliseconds between answers while a slider is dragged
 
   const root = () => document.querySelector("[data-page]");
-  const typed = (element) => (element.type === "range" || element.dataset.number ? Number(element.value) : element.value.trim());
 
   function send() {
     page.timer = 0;
@@ -17,7 +16,7 @@
 
   function change(field, element, wait) {
     if (!root() || !page.state) return;
-    page.state = { ...page.state, [field]: typed(element) };
+    page.state = { ...page.state, [field]: controls.valueOf(element) };
     clearTimeout(page.timer);
     page.timer = setTimeout(send, wait);
   }

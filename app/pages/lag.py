@@ -22,6 +22,7 @@ from app.evidence import Evidence, episode_code, map_hac, map_inference
 from app.figures import lag as figures
 from app.figures.theme import CONFIG
 from app.pages import lag_evidence
+from app.pages.as_of import as_of_line
 from app.places import software_version
 from app.state import StateError, ViewState
 from app.verdict import verdict
@@ -66,7 +67,8 @@ def view(state: ViewState, bridge: Bridge, asked: Collection[str] = ()) -> LagVi
     pair = bridge.pair(state)
     cell = bridge.cell(state)
     start = cell_span(pair, state)[0] + cell.start
-    loaded = bridge.workspace.named(state.driver), bridge.workspace.named(state.response)
+    in_view = bridge.in_view(state)
+    loaded = in_view.named(state.driver), in_view.named(state.response)
     return LagView(state, pair, bridge.surface(state), cell, bridge.overlay(state), start, loaded)
 
 
@@ -194,7 +196,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
     """Return the page for an address; refused values are named and replaced by the usual ones."""
     state, refused = ViewState.from_query_or_default(query)
     named = {part.split("=")[0] for part in query.lstrip("?").split("&")}
-    opening = bridge.workspace.opening_state()
+    opening = bridge.in_view(state).opening_state()
     if not named & {"driver", "response", "window", "shift"}:
         state = _with(state, window=opening.window, shift=opening.shift)
     for side in {"driver", "response"} - named:
@@ -202,7 +204,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
     data = payload(state, bridge)
     data |= {"fresh": True, "notes": [*refused, *data.get("notes", [])]}
     shown = ViewState(**data["state"])
-    names = list(bridge.workspace.series)
+    names = list(bridge.in_view(shown).series)
     windows, shifts = data.get("windows", [1, 60]), data.get("shifts", [-36, 60])
     return html.Div(
         [
@@ -215,6 +217,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                     lag_evidence.strip(),
                     lag_evidence.verdict_place(),
                     html.P(id="lag-message", className="message", role="alert"),
+                    as_of_line(shown),
                     html.P(
                         [
                             "Driver or response belong to an invented economy. ",
@@ -294,7 +297,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                 ],
                 className="board",
             ),
-            lag_evidence.folds(),
+            lag_evidence.folds(shown),
             html.P(CAUTION, className="caution"),
         ],
         className="lag-page",

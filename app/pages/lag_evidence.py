@@ -25,7 +25,7 @@ from app.figures import evidence as figures
 from app.figures.theme import CONFIG
 from app.state import StateError, ViewState
 from app.verdict import effective_words, fragility, verdict
-from app.words import counted, p_words, percent, plain, shift_words, signed
+from app.words import counted, p_words, percent, plain, runs_words, shift_words, signed
 
 MOST_EPISODES = 8
 FOLDS = {
@@ -34,6 +34,7 @@ FOLDS = {
     "episodes": "Which years carry it",
     "opinions": "Second opinions",
     "stability": "The slope through time",
+    "method": "How it was searched",
 }
 _NEEDS = {"opinions": ("directions", "opinions"), "stability": ("stability",)}
 
@@ -69,8 +70,15 @@ def verdict_place() -> html.Div:
     )
 
 
-def folds(open_folds: tuple[str, ...] = ()) -> html.Div:
+def folds(state: ViewState) -> html.Div:
     """Return the sections that fold out below the charts."""
+    tools = html.Div(
+        [controls.number(state, "surrogates"), controls.number(state, "seed")],
+        className="controls",
+    )
+    inside: dict[str, list[Any]] = {name: [_plot(name)] for name in FOLDS}
+    inside["episodes"].append(_plot("without"))
+    inside["method"] = [tools]
     return html.Div(
         [
             dcc.Store(id="lag-evidence"),
@@ -82,8 +90,7 @@ def folds(open_folds: tuple[str, ...] = ()) -> html.Div:
                     [
                         html.Summary(html.H2(words)),
                         html.Div(id=f"lag-{name}-words", className="fold-words"),
-                        _plot(name),
-                        *([_plot("without")] if name == "episodes" else []),
+                        *inside[name],
                     ],
                     id=f"fold-{name}",
                     className="fold",
@@ -164,6 +171,7 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
         "episodes": _episode_words(known, pair, state, refused),
         "opinions": _opinion_words(results, refusals, pair),
         "stability": _stability_words(results, refusals, pair),
+        "method": _method_words(known, pair),
     }
     data = {
         "state": vars(state),
@@ -389,6 +397,35 @@ def _stability_words(results: dict[str, Any], refusals: dict[str, str], pair: Pa
             f" {noun(pair)}s would stray this far somewhere with probability"
             f" {p_words(stable.rolling_slope.p_constant)}."
         )
+    ]
+
+
+def _method_words(known: Evidence, pair: Pair) -> list[Any]:
+    found, unit = known.search, noun(pair)
+    if found is None:
+        return [html.P("This is shown once the search is done.")]
+    dropped = (
+        f" The {counted(found.months_dropped, f'oldest {unit}')} were left out, so that whole years"
+        " are searched."
+        if found.months_dropped
+        else ""
+    )
+    return [
+        html.P(found.method),
+        html.P(
+            f"Searched: windows {found.windows[0]} to {found.windows[-1]}, shifts"
+            f" {runs_words([int(found.shifts[0])])} to {runs_words([int(found.shifts[-1])])}"
+            f" {unit}s, each cell with all {unit}s it has; {found.months_used} {unit}s,"
+            f" {found.surrogates} surrogates, seed {found.seed}.{dropped}"
+        ),
+        html.P(
+            f"Two-sided p {p_words(found.p)}; one-sided, for a positive relation,"
+            f" {p_words(found.p_one_sided)}. Largest correlation of the map:"
+            f" {signed(found.largest_correlation)} at window {found.largest_window} and shift"
+            f" {shift_words(found.largest_shift, unit)}; wide windows at far shifts have few"
+            f" independent {unit}s and often own it by chance, so the search weighs each cell by"
+            " what unrelated drivers reach there."
+        ),
     ]
 
 
