@@ -24,7 +24,7 @@ from analytics.surface import LagSurface, lag_surface
 from app.jobs import Jobs
 from app.memory import Memory
 from app.state import StateError, ViewState, field_kind
-from app.workspace import Workspace
+from app.workspace import Workspace, WorkspaceView
 
 MIN_PAIRS = 24
 
@@ -54,11 +54,16 @@ class Bridge:
         self.memory = Memory(cache)
         self.jobs = Jobs(self.memory)
 
+    def in_view(self, state: ViewState) -> WorkspaceView:
+        """Return the loaded series, as they stood on the date of the state where it names one."""
+        return self.workspace.as_of(state.as_of)
+
     def key(self, state: ViewState) -> str:
         """Return the key of everything numeric in a state: data, then state, never by hand."""
         parts = [state.numbers().to_query()]
+        in_view = self.in_view(state)
         for name in (state.driver, state.response):
-            series = self.workspace.named(name)
+            series = in_view.named(name)
             parts += [series.fingerprint, series.name]
         return hashlib.sha256("\n".join(parts).encode()).hexdigest()[:32]
 
@@ -70,7 +75,8 @@ class Bridge:
         ValueError
             One sentence: unknown name, other frequency, gap, no overlap, no growth rate.
         """
-        loaded = list(self.workspace.series)
+        in_view = self.in_view(state)
+        loaded = list(in_view.series)
         if len(loaded) == 1:
             raise StateError(
                 f"two series must be loaded to be paired, but there is only {loaded[0]!r}"
@@ -82,7 +88,7 @@ class Bridge:
             )
         formula: Any = state.growth
         rates = [
-            _sample(growth_rate(self.workspace.named(name), formula=formula), state)
+            _sample(growth_rate(in_view.named(name), formula=formula), state)
             for name in (state.driver, state.response)
         ]
         return align(rates[0], rates[1])

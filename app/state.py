@@ -4,6 +4,7 @@ One table (the metadata of the fields) carries label, bounds, unit, default and 
 control; `app.controls` draws them and `app.cli` makes its flags from the same rows.
 """
 
+import datetime
 import re
 from collections.abc import Mapping
 from dataclasses import Field, dataclass, field, fields, replace
@@ -78,6 +79,26 @@ class Text(FieldKind):
         """Raise StateError unless the value has the expected shape."""
         if not isinstance(value, str) or not re.fullmatch(self.pattern, value, re.DOTALL):
             raise StateError(f"{self.label} must be {self.shape}, but got {_shown(value)}")
+
+
+@dataclass(frozen=True, kw_only=True)
+class Day(FieldKind):
+    """A date of the calendar such as 2024-03-12, or empty."""
+
+    def check(self, value: Any) -> None:
+        """Raise StateError unless the value is a date that exists, or empty."""
+        good = isinstance(value, str) and bool(
+            re.fullmatch(r"([0-9]{4}-[0-9]{2}-[0-9]{2})?", value)
+        )
+        try:
+            if good and value:
+                datetime.date.fromisoformat(value)
+        except ValueError:
+            good = False
+        if not good:
+            raise StateError(
+                f"{self.label} must be a date such as 2024-03-12, or empty, but got {_shown(value)}"
+            )
 
 
 def _shown(value: Any) -> str:
@@ -232,6 +253,13 @@ class ViewState:
             display=True,
         ),
     )
+    as_of: str = _state(
+        "",
+        Day(
+            label="As it stood on",
+            help="Date such as 2024-03-12 whose vintages are used; empty takes the newest.",
+        ),
+    )
 
     def __post_init__(self) -> None:
         for item in fields(self):
@@ -292,7 +320,8 @@ class ViewState:
             relation = f"following {self.response} by {size}"
         else:
             relation = f"beside {self.response} of the same {noun}"
-        return f"{self.driver}, {smoothed}, {relation}{', ' + span if span else ''}"
+        stood = f", as it stood on {self.as_of}" if self.as_of else ""
+        return f"{self.driver}, {smoothed}, {relation}{', ' + span if span else ''}{stood}"
 
 
 def kind_of(item: "Field[Any]") -> FieldKind:

@@ -14,18 +14,17 @@ from dash import ClientsideFunction, Dash, Input, Output, State, dcc, html
 from plotly.graph_objects import Figure
 
 from analytics.cell import LagCell
-from analytics.series import PERIODS_PER_YEAR, FloatArray, Pair, Series, period_code
+from analytics.series import PERIODS_PER_YEAR, FloatArray, Pair, Series
 from analytics.surface import LagSurface
 from app import controls
 from app.compute import MIN_PAIRS, Bridge, Overlay, cell_span, noun, span_words
-from app.evidence import Evidence, episode_code, map_hac, map_inference
+from app.evidence import map_hac, map_inference
 from app.figures import lag as figures
 from app.figures.theme import CONFIG
 from app.pages import lag_evidence
 from app.pages.as_of import as_of_line
 from app.places import software_version
 from app.state import StateError, ViewState
-from app.verdict import verdict
 
 PATH, TITLE = "/lag", "Lag"
 CAUTION = (
@@ -70,92 +69,6 @@ def view(state: ViewState, bridge: Bridge, asked: Collection[str] = ()) -> LagVi
     in_view = bridge.in_view(state)
     loaded = in_view.named(state.driver), in_view.named(state.response)
     return LagView(state, pair, bridge.surface(state), cell, bridge.overlay(state), start, loaded)
-
-
-def answer(shown: LagView, known: Evidence) -> dict[str, Any]:
-    """Return the chosen cell, the best one and the evidence, unrounded, as the JSON output."""
-    found = known.search
-    window, shift = (
-        (found.best_window, found.best_shift) if found is not None else shown.surface.peak()
-    )
-    place = shown.surface.cell(window, shift)
-    cell, inference = shown.cell, known.inference
-    return {
-        "driver": shown.pair.driver.name,
-        "response": shown.pair.response.name,
-        "frequency": shown.pair.driver.frequency,
-        "first": period_code(shown.pair.periods[0]),
-        "last": period_code(shown.pair.periods[-1]),
-        "cell": {
-            "window": shown.state.window,
-            "shift": shown.state.shift,
-            "n": cell.n,
-            "slope": cell.slope,
-            "intercept": cell.intercept,
-            "correlation": cell.correlation,
-            "se_naive": cell.se_naive,
-            "p_naive": cell.p_naive,
-            "se_robust": inference.se_robust,
-            "p_robust": inference.p,
-            "effective_months": inference.effective_months,
-        },
-        "best": {
-            "window": window,
-            "shift": shift,
-            "correlation": float(shown.surface.correlation[place]),
-            "slope": float(shown.surface.slope[place]),
-        },
-        "search": _search_answer(known),
-        "shift_set": _shift_set_answer(known),
-        "episodes": [
-            {
-                "first": code.split(":")[0],
-                "last": code.split(":")[1],
-                "share": episode.share,
-                "slope_without": episode.slope_without,
-                "p_without": episode.p_without,
-            }
-            for episode in known.influence.episodes
-            for code in [episode_code(episode, shown.pair, shown.state)]
-        ],
-        "fragility": known.influence.fragility,
-        "verdict": verdict(known, shown.pair, shown.state),
-    }
-
-
-def _search_answer(known: Evidence) -> dict[str, Any]:
-    found = known.search
-    if found is None:
-        return {"p": None, "refused": known.refusal}
-    return {
-        "p": float(found.p),
-        "p_one_sided": float(found.p_one_sided),
-        "p_with_level_shifts": found.p_with_level_shifts,
-        "level_shifts_removed": found.level_shifts_removed,
-        "surrogates": found.surrogates,
-        "seed": found.seed,
-        "method": found.method,
-        "best": {
-            "window": found.best_window,
-            "shift": found.best_shift,
-            "correlation": found.best_correlation,
-        },
-        "windows": [int(found.windows[0]), int(found.windows[-1])],
-        "shifts": [int(found.shifts[0]), int(found.shifts[-1])],
-    }
-
-
-def _shift_set_answer(known: Evidence) -> dict[str, Any]:
-    """Return the set only where the search is significant, as on the page."""
-    chosen = known.shift_set if known.found else None
-    if chosen is None:
-        none = {"level": 0.95, "identified": False, "shifts": []}
-        return none | ({"refused": known.set_refusal} if known.set_refusal else {})
-    return {
-        "level": chosen.level,
-        "identified": chosen.identified,
-        "shifts": [int(s) for s in chosen.shifts],
-    }
 
 
 def payload(state: ViewState, bridge: Bridge) -> dict[str, Any]:

@@ -5,7 +5,7 @@ from dataclasses import fields, replace
 import pytest
 
 from app import controls
-from app.state import Choice, Text, ViewState, Whole, field_kind
+from app.state import Choice, Day, Text, ViewState, Whole, field_kind
 
 NAMES = [item.name for item in fields(ViewState)]
 CHOICES = [name for name in NAMES if isinstance(field_kind(name), Choice)]
@@ -45,6 +45,8 @@ def draw(name, state=None):
         return controls.select(state, name)
     if name in NUMBERS:
         return controls.slider(state, name, field_kind(name).low, field_kind(name).high)
+    if isinstance(field_kind(name), Day):
+        return controls.day(state, name)
     return controls.text(state, name)
 
 
@@ -103,6 +105,12 @@ def test_a_text_field_shows_its_value_or_what_an_empty_one_means():
     assert empty["data-placeholder"] == "earliest"
     filled = native(controls.text(ViewState(first="1965-03"), "first", "earliest"))
     assert filled["data-value"] == "1965-03"
+
+
+def test_a_date_is_chosen_in_a_calendar_and_may_be_empty():
+    assert "data-value" not in native(controls.day(ViewState(), "as_of"))
+    filled = native(controls.day(ViewState(as_of="2024-03-12"), "as_of"))
+    assert (filled["data-type"], filled["data-value"]) == ("date", "2024-03-12")
 
 
 def test_hostile_names_are_text_and_never_markup():

@@ -20,6 +20,7 @@ OTHER_TEXT = {
     "windows": "1:60",
     "shifts": "-36:60",
     "without": "1978-03:1983-Q1",
+    "as_of": "2024-03-12",
 }
 
 
@@ -60,6 +61,7 @@ BY_NAME = {
     "windows": ranges,
     "shifts": ranges,
     "without": spans,
+    "as_of": st.one_of(st.just(""), st.dates().map(str)),
 }
 
 
@@ -195,6 +197,15 @@ BAD = [
     ("without", "1978-QQ:1979-Q5"),
     ("without", "0000-01:1979-01"),
     ("without", "1978-03:1983-05:1984-01"),
+    ("as_of", "2024-02-30"),
+    ("as_of", "2023-02-29"),
+    ("as_of", "2024-3-12"),
+    ("as_of", "20240312"),
+    ("as_of", "2024-W10-1"),
+    ("as_of", "12.03.2024"),
+    ("as_of", "0000-01-01"),
+    ("as_of", "２０２４-03-12"),
+    ("as_of", "today"),
     ("surrogates", "0"),
     ("surrogates", "1e9"),
     ("seed", "-1"),
@@ -351,6 +362,7 @@ def test_the_sentence_counts_in_the_noun_given_and_ends_with_the_sample():
         "Broad money, 4-quarter window, leading Consumer prices by 8 quarters, 1965 Q1 to 2026 Q3"
     )
     assert "one year at a time" in replace(state, window=1).sentence("year")
+    assert replace(state, as_of="2024-03-12").sentence().endswith(", as it stood on 2024-03-12")
 
 
 @given(states)

@@ -142,7 +142,8 @@ def test_threads_may_add_and_read_at_once():
                 else:
                     assert "One" in here.series
                     assert here.named("One").values[0] == 1.0
-                    assert len({each.name for each in here.releases}) == len(here.releases)
+                    seen = here.releases
+                    assert len({each.name for each in seen}) == len(seen)
         except Exception as error:
             failures.append(error)
 
