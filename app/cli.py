@@ -166,6 +166,7 @@ def lag(
     from app import exports
     from app.compute import Bridge, noun
     from app.evidence import completed
+    from app.lag_answer import answer as lag_answer
     from app.pages import lag as page
     from app.verdict import effective_words
     from app.words import p_words, plain, signed
@@ -177,7 +178,7 @@ def lag(
     if csv_path:
         _write(csv_path, exports.view_text(view, shown, bridge))
     known = completed(shown.state, bridge)
-    answer = page.answer(shown, known)
+    answer = lag_answer(shown, known)
     if as_json:
         _print_json(answer)
     else:

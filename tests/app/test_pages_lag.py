@@ -8,8 +8,9 @@ import pytest
 from app.compute import MIN_PAIRS, Bridge
 from app.demo import demo_releases
 from app.evidence import completed
+from app.lag_answer import answer
 from app.pages import data as data_page
-from app.pages.lag import CAUTION, answer, layout, payload, view
+from app.pages.lag import CAUTION, layout, payload, view
 from app.state import ViewState, field_kind
 from app.workspace import Workspace
 from tests.app.economies import LAG, planted, workspace
