@@ -1,4 +1,4 @@
-"""The answer of `pricewake lag` as JSON, unrounded: cell, best cell, search, shift set, episodes."""
+"""The answer of `pricewake lag` as JSON, unrounded: cell, best, search, shift set, episodes."""
 
 from typing import Any
 
