@@ -1,5 +1,7 @@
 """Charts of what the exploration was worth: shift set, parameter plane, episodes, opinions."""
 
+from html import escape
+
 import numpy as np
 import plotly.graph_objects as go
 
@@ -63,7 +65,7 @@ def shift_profile(chosen: ShiftSet, pair: Pair) -> go.Figure:
 
 def parameter_plane(inference: CellInference, pair: Pair) -> go.Figure:
     """Draw where intercept and slope may lie together, robust and naive, and the zero slope."""
-    plane, unit = inference.plane, rate_unit(pair.response)
+    plane, unit = inference.plane, escape(rate_unit(pair.response), False)
     figure = go.Figure(
         [
             _outline(plane.robust, "fit", "solid", f"{plane.level:.0%} region, effective months"),
