@@ -4,107 +4,36 @@ One table (the metadata of the fields) carries label, bounds, unit, default and 
 control; `app.controls` draws them and `app.cli` makes its flags from the same rows.
 """
 
-import datetime
-import re
-from collections.abc import Mapping
 from dataclasses import Field, dataclass, field, fields, replace
 from typing import Any, cast
 from urllib.parse import parse_qsl, urlencode
 
+from app import breadth_fields
+from app.state_kinds import (
+    NAME,
+    PERIOD,
+    RANGE,
+    SPAN,
+    Choice,
+    Day,
+    FieldKind,
+    StateError,
+    Text,
+    Whole,
+)
 
-class StateError(ValueError):
-    """A value that a field of the state refuses; the text is one sentence for the user."""
-
-
-@dataclass(frozen=True, kw_only=True)
-class FieldKind:
-    """How one field is labelled, read from text and checked."""
-
-    label: str
-    help: str
-    display: bool = False
-
-    def read(self, text: str) -> Any:
-        """Turn the text of an address or a flag into the field's value."""
-        return text.strip()
-
-    def check(self, value: Any) -> None:
-        """Raise StateError unless the value is allowed."""
-        raise NotImplementedError
-
-
-@dataclass(frozen=True, kw_only=True)
-class Whole(FieldKind):
-    """A whole number of periods between two bounds, both included."""
-
-    low: int
-    high: int
-
-    def read(self, text: str) -> Any:
-        """Read an integer; anything else is handed on for `check` to refuse."""
-        return int(text) if re.fullmatch(r"[+-]?[0-9]{1,18}", text.strip()) else text
-
-    def check(self, value: Any) -> None:
-        """Raise StateError unless the value is an integer within the bounds."""
-        whole = isinstance(value, int) and not isinstance(value, bool)
-        if not whole or not self.low <= value <= self.high:
-            raise StateError(
-                f"{self.label} must be a whole number from {self.low} to {self.high},"
-                f" but got {_shown(value)}"
-            )
-
-
-@dataclass(frozen=True, kw_only=True)
-class Choice(FieldKind):
-    """One of a few named options; `options` maps the value to the words on screen."""
-
-    options: Mapping[str, str]
-
-    def check(self, value: Any) -> None:
-        """Raise StateError unless the value is one of the options."""
-        if not isinstance(value, str) or value not in self.options:
-            raise StateError(
-                f"{self.label} must be one of {', '.join(self.options)}, but got {_shown(value)}"
-            )
-
-
-@dataclass(frozen=True, kw_only=True)
-class Text(FieldKind):
-    """Free text that has to match a pattern; `shape` says in words what is expected."""
-
-    pattern: str
-    shape: str
-
-    def check(self, value: Any) -> None:
-        """Raise StateError unless the value has the expected shape."""
-        if not isinstance(value, str) or not re.fullmatch(self.pattern, value, re.DOTALL):
-            raise StateError(f"{self.label} must be {self.shape}, but got {_shown(value)}")
-
-
-@dataclass(frozen=True, kw_only=True)
-class Day(FieldKind):
-    """A date of the calendar such as 2024-03-12, or empty."""
-
-    def check(self, value: Any) -> None:
-        """Raise StateError unless the value is a date that exists, or empty."""
-        good = isinstance(value, str) and bool(
-            re.fullmatch(r"([0-9]{4}-[0-9]{2}-[0-9]{2})?", value)
-        )
-        try:
-            if good and value:
-                datetime.date.fromisoformat(value)
-        except ValueError:
-            good = False
-        if not good:
-            raise StateError(
-                f"{self.label} must be a date such as 2024-03-12, or empty, but got {_shown(value)}"
-            )
-
-
-def _shown(value: Any) -> str:
-    """Quote a refused value in at most 60 signs; `repr` writes what cannot be seen as a code."""
-    text = repr(value)
-    return text if len(text) <= 60 else f"{text[:57]}..."
+__all__ = [
+    "CELL_FIELDS",
+    "Choice",
+    "Day",
+    "FieldKind",
+    "StateError",
+    "Text",
+    "ViewState",
+    "Whole",
+    "field_kind",
+    "kind_of",
+]
 
 
 def _state(default: Any, kind: FieldKind) -> Any:
@@ -112,11 +41,6 @@ def _state(default: Any, kind: FieldKind) -> Any:
 
 
 CELL_FIELDS = ("window", "shift", "without")  # what one surface is looked at through
-_NAME = r"(?=\S)[^\x00-\x1f\x7f-\x9f\ud800-\udfff]{1,200}(?<=\S)"
-_ONE_PERIOD = r"(?!0000)[0-9]{4}(-(0[1-9]|1[0-2])|-Q[1-4])?"
-_PERIOD = rf"({_ONE_PERIOD})?"
-_RANGE = r"(-?[0-9]{1,3}:-?[0-9]{1,3})?"
-_SPAN = rf"({_ONE_PERIOD}:{_ONE_PERIOD})?"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -127,7 +51,7 @@ class ViewState:
         "Broad money",
         Text(
             label="Driver",
-            pattern=_NAME,
+            pattern=NAME,
             shape="the name of a loaded series",
             help="The series that may move first, for example broad money.",
         ),
@@ -136,7 +60,7 @@ class ViewState:
         "Consumer prices",
         Text(
             label="Response",
-            pattern=_NAME,
+            pattern=NAME,
             shape="the name of a loaded series",
             help="The series that may follow, for example consumer prices.",
         ),
@@ -171,7 +95,7 @@ class ViewState:
         "",
         Text(
             label="From",
-            pattern=_PERIOD,
+            pattern=PERIOD,
             shape="a period such as 1965-03, 1965-Q1 or 1965, or empty",
             help="First period of the sample, such as 1965-03; empty takes the earliest there is.",
         ),
@@ -180,7 +104,7 @@ class ViewState:
         "",
         Text(
             label="To",
-            pattern=_PERIOD,
+            pattern=PERIOD,
             shape="a period such as 2024-12, 2024-Q4 or 2024, or empty",
             help="Last period of the sample, such as 2024-12; empty takes the newest there is.",
         ),
@@ -197,7 +121,7 @@ class ViewState:
         "",
         Text(
             label="Windows searched",
-            pattern=_RANGE,
+            pattern=RANGE,
             shape="a range such as 1:60, or empty",
             help="Range of windows on the map, such as 1:60; empty takes one to five years.",
         ),
@@ -206,7 +130,7 @@ class ViewState:
         "",
         Text(
             label="Shifts searched",
-            pattern=_RANGE,
+            pattern=RANGE,
             shape="a range such as -36:60, or empty",
             help="Range of shifts on the map, such as -36:60; empty takes -3 to 5 years.",
         ),
@@ -233,7 +157,7 @@ class ViewState:
         "",
         Text(
             label="Without",
-            pattern=_SPAN,
+            pattern=SPAN,
             shape="a stretch such as 1978-03:1983-05, or empty",
             help="Episode of the driver that is left out of the cell for comparison.",
         ),
@@ -260,6 +184,20 @@ class ViewState:
             help="Date such as 2024-03-12 whose vintages are used; empty takes the newest.",
         ),
     )
+
+    aggregate: str = _state("", breadth_fields.AGGREGATE)
+    span: str = _state("year", breadth_fields.SPAN)
+    link: int = _state(12, breadth_fields.LINK)
+    valued: str = _state("link", breadth_fields.VALUED)
+    scale: str = _state("no", breadth_fields.SCALE)
+    trim: str = _state("15", breadth_fields.TRIM)
+    core: str = _state("year", breadth_fields.CORE)
+    excluded: str = _state("", breadth_fields.EXCLUDED)
+    pace: str = _state("2", breadth_fields.PACE)
+    strip: str = _state("rank", breadth_fields.STRIP)
+    years: int = _state(10, breadth_fields.YEARS)
+    sort: str = _state("points-down", breadth_fields.SORT)
+    rows: str = _state("top", breadth_fields.ROWS)
 
     def __post_init__(self) -> None:
         for item in fields(self):

@@ -21,6 +21,10 @@ OTHER_TEXT = {
     "shifts": "-36:60",
     "without": "1978-03:1983-Q1",
     "as_of": "2024-03-12",
+    "aggregate": "Consumer prices",
+    "trim": "24:31.5",
+    "excluded": "01 Food|04 Energy",
+    "pace": "-2.5",
 }
 
 
@@ -62,6 +66,10 @@ BY_NAME = {
     "shifts": ranges,
     "without": spans,
     "as_of": st.one_of(st.just(""), st.dates().map(str)),
+    "aggregate": st.one_of(st.just(""), names),
+    "trim": st.integers(0, 99).map(str),
+    "excluded": st.one_of(st.just(""), st.lists(names, min_size=1, max_size=3).map("|".join)),
+    "pace": st.integers(-999, 999).map(str),
 }
 
 
@@ -206,6 +214,15 @@ BAD = [
     ("as_of", "0000-01-01"),
     ("as_of", "２０２４-03-12"),
     ("as_of", "today"),
+    ("trim", "-1"),
+    ("trim", "100"),
+    ("trim", "1:2:3"),
+    ("pace", "fast"),
+    ("pace", "2,5"),
+    ("link", "0"),
+    ("link", "13"),
+    ("excluded", "a\x00"),
+    ("years", "0"),
     ("surrogates", "0"),
     ("surrogates", "1e9"),
     ("seed", "-1"),
