@@ -10,7 +10,7 @@ from typing import Any
 
 from dash import html
 
-from app.state import Choice, Day, Text, ViewState, Whole, field_kind
+from app.state import Choice, Day, StateError, Text, ViewState, Whole, field_kind
 
 
 def select(state: ViewState, name: str, options: Iterable[str] = ()) -> html.Div:
@@ -117,3 +117,16 @@ def _labelled(name: str, element: Any) -> html.Div:
         ],
         className="control",
     )
+
+
+def sent_state(values: Any) -> ViewState:
+    """Return the state that a page sent.
+
+    Raises
+    ------
+    StateError
+        It is no state, or a value is refused.
+    """
+    if not isinstance(values, dict) or not values.keys() <= vars(ViewState()).keys():
+        raise StateError("the page must send the fields of a view, but did not; load it anew")
+    return ViewState(**values)

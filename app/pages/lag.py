@@ -233,7 +233,7 @@ def register(app: Dash, bridge: Bridge) -> None:
     )
     def _answer(_question: str, state: dict[str, Any]) -> dict[str, Any]:
         try:
-            return payload(_sent(state), bridge)
+            return payload(controls.sent_state(state), bridge)
         except StateError as error:
             return {"error": str(error), "state": state}
 
@@ -249,13 +249,6 @@ def register(app: Dash, bridge: Bridge) -> None:
         Output("lag-message", "children"),
         Input("lag-data", "data"),
     )
-
-
-def _sent(values: Any) -> ViewState:
-    """Return the state that a page sent."""
-    if not isinstance(values, dict) or not values.keys() <= asdict(ViewState()).keys():
-        raise StateError("the page must send the fields of a view, but did not; load it anew")
-    return ViewState(**values)
 
 
 def p_map(state: ViewState, bridge: Bridge) -> FloatArray | None:

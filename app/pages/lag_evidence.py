@@ -123,8 +123,8 @@ def register(app: Dash, bridge: Bridge) -> None:
         if not state or data.get("error"):
             return [], "", *empty, None
         try:
-            return answer(ViewState(**state), bridge, tuple(opened or ()))
-        except (ValueError, TypeError) as error:
+            return answer(controls.sent_state(state), bridge, tuple(opened or ()))
+        except ValueError as error:
             nothing = {"figures": {}, "jobs": [], "support": [], "set": []}
             return [], f"{error}.", *empty, {"state": state, **nothing}
 
