@@ -15,6 +15,7 @@ from typing import Any, NoReturn
 
 import click
 
+from app.cli_workspace import workspace
 from app.places import software_version
 from app.state import StateError, ViewState, kind_of
 
@@ -44,6 +45,7 @@ LAG_FIELDS = (
     "surrogates",
     "seed",
     "without",
+    "as_of",
 )
 
 
@@ -61,7 +63,8 @@ def _state_options(names: tuple[str, ...]) -> Callable[[Callable[..., Any]], Cal
 
     def decorate(command: Callable[..., Any]) -> Callable[..., Any]:
         for item in reversed([f for f in fields(ViewState) if f.name in names]):
-            flag = click.option(f"--{item.name}", metavar="TEXT", help=kind_of(item).help)
+            words = f"--{item.name.replace('_', '-')}"
+            flag = click.option(words, metavar="TEXT", help=kind_of(item).help)
             command = flag(command)
         return command
 
@@ -73,6 +76,19 @@ _as_json = click.option(
     "--json", "as_json", is_flag=True, help="Print one JSON object and nothing else."
 )
 _csv = click.option("--csv", "csv_path", type=click.Path(path_type=Path), help="Write a CSV file.")
+_kept_in = click.option(
+    "--workspace",
+    "kept_in",
+    metavar="PATH",
+    help="Workspace file whose series are used, and in which FILES are kept. Without it FILES alone"
+    " count.",
+)
+_desk = click.option(
+    "--workspace",
+    "kept_in",
+    metavar="PATH",
+    help="Workspace file; the usual one lies in your data folder, and :memory: keeps nothing.",
+)
 
 
 @click.group(cls=_ServeUnlessNamed)
@@ -95,7 +111,8 @@ def pricewake() -> None:
     help="Port to serve on; where it is taken, the next one that is free.",
 )
 @click.option("--no-browser", is_flag=True, help="Do not open the browser.")
-def serve(files: tuple[Path, ...], port: int, no_browser: bool) -> None:
+@_desk
+def serve(files: tuple[Path, ...], port: int, no_browser: bool, kept_in: str | None) -> None:
     """Serve the dashboard on this machine and open the browser (the command when none is named)."""
     free = _free_port(port)
     if free != port:
@@ -103,8 +120,10 @@ def serve(files: tuple[Path, ...], port: int, no_browser: bool) -> None:
     from waitress.server import create_server
 
     from app.server import build_app
+    from app.store import default_path
 
-    app = build_app(_workspace(files))
+    desk = _workspace(files, kept_in or str(default_path()), at_desk=True)
+    app = build_app(desk)
     server = create_server(app.server, host="127.0.0.1", port=free, threads=8, ident=None)
     address = f"http://127.0.0.1:{free}/lag"
     click.echo(f"Pricewake is at {address}  (Ctrl-C ends it)")
@@ -117,6 +136,7 @@ def serve(files: tuple[Path, ...], port: int, no_browser: bool) -> None:
         pass
     finally:
         server.close()
+        desk.close()
         click.echo("Pricewake has ended.")
 
 
@@ -124,12 +144,15 @@ def serve(files: tuple[Path, ...], port: int, no_browser: bool) -> None:
 @_files
 @_as_json
 @_csv
-def inspect(files: tuple[Path, ...], as_json: bool, csv_path: Path | None) -> int:
+@_kept_in
+def inspect(
+    files: tuple[Path, ...], as_json: bool, csv_path: Path | None, kept_in: str | None
+) -> int:
     """Say what was understood in the files and what is wrong with them."""
     from app.intake.reading import inspection
 
-    workspace = _workspace(files)
-    report = inspection(workspace.releases)
+    desk = _workspace(files, kept_in)
+    report = inspection(desk.releases)
     if csv_path:
         rows = [list(report["series"][0])] if report["series"] else []
         rows += [[_flat(v) for v in series.values()] for series in report["series"]]
@@ -142,9 +165,9 @@ def inspect(files: tuple[Path, ...], as_json: bool, csv_path: Path | None) -> in
                 f"{series['name']}: {series['frequency']} {series['kind']}, {series['first']} to"
                 f" {series['last']}, {series['n']} values, {len(series['gaps'])} missing"
             )
-        for problem in workspace.problems:
+        for problem in desk.problems:
             click.echo(f"{problem.severity}: {problem}")
-    return int(bool(_errors(workspace)))
+    return int(bool(_errors(desk)))
 
 
 @pricewake.command()
@@ -159,8 +182,14 @@ def inspect(files: tuple[Path, ...], as_json: bool, csv_path: Path | None) -> in
     show_default=True,
     help="Which view --csv writes.",
 )
+@_kept_in
 def lag(
-    files: tuple[Path, ...], as_json: bool, csv_path: Path | None, view: str, **flags: str | None
+    files: tuple[Path, ...],
+    as_json: bool,
+    csv_path: Path | None,
+    view: str,
+    kept_in: str | None,
+    **flags: str | None,
 ) -> int:
     """Pair a driver with a response: one cell, the whole map, and what the search was worth."""
     from app import exports
@@ -171,9 +200,9 @@ def lag(
     from app.verdict import effective_words
     from app.words import p_words, plain, signed
 
-    workspace = _workspace(files)
-    bridge = Bridge(workspace)
-    state = _state(workspace.opening_state(), flags)
+    desk = _workspace(files, kept_in)
+    bridge = Bridge(desk)
+    state = _state(desk.as_of(flags["as_of"] or "").opening_state(), flags)
     shown = page.view(state, bridge, asked={name for name, text in flags.items() if text})
     if csv_path:
         _write(csv_path, exports.view_text(view, shown, bridge))
@@ -192,9 +221,12 @@ def lag(
             f" {effective_words(cell['n'], cell['effective_months'], noun(shown.pair))}."
         )
         click.echo(page.CAUTION)
-    for problem in _errors(workspace):
+    for problem in _errors(desk):
         click.echo(f"pricewake: {problem}", err=True)
-    return int(bool(_errors(workspace)))
+    return int(bool(_errors(desk)))
+
+
+pricewake.add_command(workspace)
 
 
 def main(arguments: list[str] | None = None) -> NoReturn:
@@ -217,20 +249,28 @@ def _refuse(sentence: str) -> NoReturn:
     sys.exit(2)
 
 
-def _workspace(files: tuple[Path, ...]) -> Any:
-    """Read the files, or the invented economy if there are none."""
+def _workspace(
+    files: tuple[Path, ...], kept_in: str | None = None, *, at_desk: bool = False
+) -> Any:
+    """Read the files, into the workspace named if one is; the invented economy if there are none.
+
+    Without a workspace the answer depends on the files alone. Only the dashboard, which is
+    `at_desk`, makes an empty workspace, and shows the invented economy while it is empty.
+    """
     from app.demo import demo_releases
     from app.intake.reading import read_path
+    from app.store import MEMORY
     from app.workspace import Workspace
 
-    if not files:
-        return Workspace(placeholder=demo_releases())
     releases = tuple(read_path(path) for path in files)
     names = [release.name for release in releases]
     for name in names:
         if names.count(name) > 1:
             raise click.UsageError(f"files must have different names, but {name!r} stands twice")
-    return Workspace(releases)
+    if kept_in and not (files or at_desk or kept_in == MEMORY or Path(kept_in).exists()):
+        raise click.UsageError(f"there is no workspace at {kept_in!r} yet")
+    placeholder = demo_releases() if not releases and (at_desk or not kept_in) else ()
+    return Workspace(releases, placeholder, kept_in or MEMORY)
 
 
 def _state(opening: ViewState, flags: dict[str, str | None]) -> ViewState:
@@ -242,8 +282,8 @@ def _state(opening: ViewState, flags: dict[str, str | None]) -> ViewState:
         raise click.UsageError(str(error)) from error
 
 
-def _errors(workspace: Any) -> list[Any]:
-    return [problem for problem in workspace.problems if problem.severity == "error"]
+def _errors(desk: Any) -> list[Any]:
+    return [problem for problem in desk.problems if problem.severity == "error"]
 
 
 def _free_port(port: int) -> int:

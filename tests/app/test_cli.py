@@ -206,7 +206,7 @@ def test_json_holds_no_nan():
 def test_flags_come_from_the_table_of_the_state():
     flags = {option.name: option for option in pricewake.commands["lag"].params}
     for name in LAG_FIELDS:
-        assert flags[name].opts == [f"--{name}"]
+        assert flags[name].opts == [f"--{name.replace('_', '-')}"]
         assert flags[name].help == field_kind(name).help
     shown_only = {item.name for item in fields(ViewState)} - set(LAG_FIELDS)
     assert all(field_kind(name).display for name in shown_only)  # nothing numeric has no flag

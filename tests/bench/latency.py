@@ -180,7 +180,16 @@ def first_byte() -> tuple[str, str, str, bool]:
     """Start the command and wait for its first answer."""
     start = time.perf_counter()
     process = subprocess.Popen(
-        [sys.executable, "-m", "app", "serve", "--no-browser", "--port", "18391"],
+        [
+            sys.executable,
+            "-m",
+            "app",
+            "serve",
+            "--no-browser",
+            "--port",
+            "18391",
+            "--workspace=:memory:",
+        ],
         stdout=subprocess.PIPE,
         text=True,
     )
