@@ -1,0 +1,150 @@
+"""Files of weights: a row a year and a column a component, or a row a weight.
+
+Weights are read as any table is and kept as annual series named "Weight of ...", so that they have
+vintages as prices have.
+"""
+
+import re
+from collections.abc import Iterable, Sequence
+from dataclasses import replace
+from pathlib import PurePath
+
+import numpy as np
+import pandas as pd
+
+from analytics.series import Series
+from analytics.weights import TOTALS, WeightTable
+from app.intake.problems import Problem, counted, refusal
+
+PREFIX = "Weight of "
+UNIT = "weight"
+_HEADER = {  # words of a long header, and what the reader of tables calls them
+    "period": ("period", "year", "date", "time", "time_period"),
+    "series": ("series", "component", "name", "item", "division", "group", "code"),
+    "value": ("value", "weight", "weights", "share", "obs_value"),
+}
+_CELL = re.compile(r"[^,;\t]+")
+
+
+def is_weight(series: Series) -> bool:
+    """Tell whether a series holds the weights of a component."""
+    return series.unit == UNIT and series.name.startswith(PREFIX)
+
+
+def recognised(file: str, series: Sequence[Series]) -> tuple[Series, ...]:
+    """Return the series of a file, as weights where they are weights.
+
+    Weights are at least two annual series, none negative, in a file with "weight" in its name or
+    whose rows sum to 1, 100 or 1000.
+    """
+    if len(series) < 2 or all(map(is_weight, series)):
+        return tuple(series)
+    table = _table(series)
+    if table is None or table.min(axis=None) < 0:
+        return tuple(series)
+    sums = _sums(table).to_numpy()
+    even = any(np.all(np.abs(sums / total - 1.0) <= 0.002) for total in TOTALS)
+    if not even and "weight" not in PurePath(file).stem.lower():
+        return tuple(series)
+    return tuple(_as_weight(one) for one in series)
+
+
+def weight_series(
+    file: str, series: Sequence[Series], problems: Iterable[Problem] = ()
+) -> tuple[Series, ...]:
+    """Return the series of a file that is to be weights.
+
+    Raises
+    ------
+    IntakeError
+        They are not annual, one is negative, or a year has none; one sentence.
+    """
+    for problem in problems:
+        if problem.severity == "error":
+            raise refusal(
+                file,
+                f"weights must all be read, but {problem.message}",
+                row=problem.row,
+                column=problem.column,
+            )
+    if not series:
+        raise refusal(file, "must hold weights, but holds no series")
+    for one in series:
+        name = one.name.removeprefix(PREFIX)
+        if one.frequency != "annual":
+            raise refusal(
+                file,
+                "a row of weights must begin with its year, such as 2024, but the file is"
+                f" {one.frequency}",
+                column=name,
+            )
+        low = np.flatnonzero(one.values < 0)
+        if low.size:
+            year = one.first.year + int(low[0])
+            raise refusal(
+                file,
+                f"a weight must not be negative, but that of {year} is {one.values[low[0]]:g}",
+                column=name,
+            )
+    empty = [year for year, total in _sums(_table(series)).items() if not total > 0]
+    if empty:
+        raise refusal(
+            file,
+            "the weights of a year must sum to more than 0, but those of"
+            f" {counted(str(empty[0]), len(empty) - 1, 'year')} do not",
+        )
+    return tuple(_as_weight(one) for one in series)
+
+
+def weight_table(series: Iterable[Series], source: str = "") -> WeightTable | None:
+    """Return the weights among some series as a table; None where there are none.
+
+    Years without any weight between the first and the last are left out.
+    """
+    table = _table([one for one in series if is_weight(one)])
+    if table is None:
+        return None
+    table = table[table.sum(axis=1) > 0]
+    if table.empty:
+        return None
+    names = tuple(str(name).removeprefix(PREFIX) for name in table.columns)
+    return WeightTable(tuple(int(year) for year in table.index), names, table.to_numpy(), source)
+
+
+def canonical(content: bytes) -> bytes:
+    """Return a long file of weights under the header that the reader of tables knows.
+
+    Year, component and weight become period, series and value; another file stays as it is.
+    """
+    start = 0
+    for line in content.splitlines(keepends=True)[:20]:
+        text = line.decode("utf-8-sig", errors="replace")
+        words = [cell.strip().strip('"').strip().lower() for cell in _CELL.findall(text)]
+        known = [next((new for new, old in _HEADER.items() if word in old), None) for word in words]
+        if len(known) == 3 and set(known) == set(_HEADER):
+            separator = next((sign for sign in ("\t", ";") if sign in text), ",")
+            header = separator.join(str(word) for word in known) + "\n"
+            return content[:start] + header.encode() + content[start + len(line) :]
+        start += len(line)
+    return content
+
+
+def _as_weight(series: Series) -> Series:
+    name = series.name if series.name.startswith(PREFIX) else PREFIX + series.name
+    return replace(series, name=name, kind="level", unit=UNIT, adjustment="unknown")
+
+
+def _sums(table: pd.DataFrame) -> pd.Series:
+    """Sum of each year that has any weight."""
+    return table.dropna(how="all").sum(axis=1)
+
+
+def _table(series: Sequence[Series]) -> pd.DataFrame | None:
+    """Lay annual series side by side by year; None where one is not annual or there is none."""
+    if not series or any(one.frequency != "annual" for one in series):
+        return None
+    columns = {
+        one.name: pd.Series(one.values, index=range(one.first.year, one.last.year + 1))
+        for one in series
+    }
+    return pd.DataFrame(columns).sort_index()
