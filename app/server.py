@@ -21,6 +21,7 @@ from app.state import ViewState
 from app.workspace import Workspace
 
 PAGES = (data, lag)
+WORKS = {"lag": WORK}  # page name -> kind -> (state, bridge) -> long work
 EXPORTS = {"lag": exports.csv_export}  # page name -> (view, query, bridge) -> file name, text
 HOSTS = ("127.0.0.1", "localhost", "[::1]")
 INDEX = """<!DOCTYPE html>
@@ -138,13 +139,13 @@ def _register_routes(server: Flask, bridge: Bridge) -> None:
         response.headers["Content-Disposition"] = f'attachment; filename="{name}"'
         return response
 
-    @server.get("/lag/work/<kind>")
-    def _work(kind: str) -> tuple[dict[str, Any], int]:
-        if kind not in WORK:
+    @server.get("/<page>/work/<kind>")
+    def _work(page: str, kind: str) -> tuple[dict[str, Any], int]:
+        if kind not in WORKS.get(page, {}):
             return {"message": f"there is no work named {kind!r}"}, 404
         try:
             state = ViewState.from_query(request.query_string.decode(errors="replace"))
-            progress = bridge.jobs.step(WORK[kind](state, bridge))
+            progress = bridge.jobs.step(WORKS[page][kind](state, bridge))
         except ValueError as error:
             return {"message": str(error)}, 422
         return {"done": progress.done, "total": progress.total}, 200

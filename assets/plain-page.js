@@ -30,11 +30,81 @@
       page.state = data.state;
       controls.publish(name, page.state, data.defaults);
     }
-    for (const [view, figure] of Object.entries(data.figures || {})) {
-      if (document.getElementById(`${name}-${view}`)) pricewake.theme.show(`${name}-${view}`, figure);
+    for (const place of root().querySelectorAll(".plain-plot")) {
+      const view = place.id.slice(name.length + 1, -"-place".length);
+      const figure = (data.figures || {})[view];
+      const section = place.closest(".view");
+      place.hidden = !figure;
+      if (section) section.querySelector(".save").hidden = !figure;
+      if (figure) pricewake.theme.show(`${name}-${view}`, figure);
+      else pricewake.theme.figures.delete(`${name}-${view}`);
     }
+    work(name, data);
     return window.dash_clientside.no_update;
   }
+
+  /* Long work: one chunk after another until it is done, the state changes or it is stopped. */
+  const job = { running: null, stopped: new Set() };
+
+  function say(name, kind, done, total) {
+    const at = (part) => document.getElementById(`${name}-${part}`);
+    if (!at("work")) return;
+    at("work").hidden = kind === null;
+    if (kind === null) return;
+    const stopped = done === null;
+    for (const part of ["progress", "cancel"]) at(part).hidden = stopped;
+    at("resume").hidden = !stopped;
+    const words = (page.data.jobWords || {})[kind] || kind.replaceAll("_", " ");
+    at("progress-words").textContent = stopped ? `Stopped: ${words}.` : `${words}, ${done} of ${total}`;
+    if (!stopped) { at("progress").max = total; at("progress").value = done; }
+  }
+
+  function work(name, data) {
+    const query = controls.query(data.state, data.defaults);
+    const wanted = (data.jobs || []).map((kind) => [kind, `/${name}/work/${kind}?${query}`]);
+    const next = wanted.find(([, address]) => !job.stopped.has(address));
+    if (next) run(name, ...next);
+    else {
+      job.running = null;
+      if (wanted.length) say(name, wanted[0][0], null); else say(name, null);
+    }
+  }
+
+  async function run(name, kind, address) {
+    if (job.running === address) return;
+    job.running = address;
+    say(name, kind, 0, 1);
+    try {
+      for (;;) {
+        const answer = await fetch(address);
+        const progress = await answer.json();
+        if (job.running !== address) return;
+        if (!answer.ok) { job.stopped.add(address); break; }
+        say(name, kind, progress.done, progress.total);
+        if (progress.done === progress.total) break;
+      }
+    } catch (_) {
+      if (job.running === address) job.stopped.add(address);
+    }
+    if (job.running !== address) return;
+    job.running = null;
+    say(name, null);
+    window.dash_clientside.set_props(`${name}-tick`, { data: Date.now() });
+  }
+
+  document.addEventListener("click", (event) => {
+    if (!root() || !page.data) return;
+    const name = root().dataset.page;
+    if (event.target.id === `${name}-cancel` && job.running) {
+      job.stopped.add(job.running);
+      job.running = null;
+      work(name, page.data);
+    }
+    if (event.target.id === `${name}-resume`) {
+      job.stopped.clear();
+      work(name, page.data);
+    }
+  });
 
   controls.on("change", (field, element) => change(field, element, 0));
   controls.on("input", (field, element) => { if (element.type === "range") change(field, element, DRAGGING); });
@@ -51,7 +121,7 @@
     subtitle: (view) => (page.data.subtitles || {})[view] || "",
     source: () => page.data.source,
     stem: (view) => `${view} ${page.data.stem}`,
-    busy: () => Boolean(page.timer),
+    busy: () => Boolean(page.timer || job.running),
   });
   pricewake.plain = page;
 })();

@@ -40,6 +40,8 @@ class Answer:
         Second line of saved charts.
     words : mapping of str to component
         Children of each place named in `places` of `frame`.
+    jobs : sequence of str
+        Long work that the page is to ask for, chunk by chunk, before it asks again.
     """
 
     state: ViewState
@@ -50,6 +52,7 @@ class Answer:
     charts: Mapping[str, Figure]
     subtitles: Mapping[str, str] = field(default_factory=dict)
     words: Mapping[str, Any] = field(default_factory=dict)
+    jobs: Sequence[str] = ()
 
 
 def frame(
@@ -66,11 +69,23 @@ def frame(
             dcc.Store(id=f"{name}-state", data=asdict(state)),
             dcc.Store(id=f"{name}-answer"),
             dcc.Store(id=f"{name}-adopted"),
+            dcc.Store(id=f"{name}-tick", data=0),
             html.Header(
                 [
                     html.H1(id=f"{name}-sentence"),
                     html.P(id=f"{name}-verdict", className="verdict", **{"aria-live": "polite"}),
                     html.P(" ".join(refused), id=f"{name}-message", className="message"),
+                    html.Div(
+                        [
+                            html.Progress(id=f"{name}-progress", value="0", max="1"),
+                            html.Span(id=f"{name}-progress-words"),
+                            html.Button("Stop", id=f"{name}-cancel", type="button"),
+                            html.Button("Go on", id=f"{name}-resume", type="button", hidden=True),
+                        ],
+                        id=f"{name}-work",
+                        className="work",
+                        hidden=True,
+                    ),
                 ],
                 className="headline",
             ),
@@ -85,12 +100,15 @@ def frame(
     )
 
 
-def view(name: str, chart: str, words: str, *, wide: bool = False) -> html.Section:
-    """Return a section with a heading, save buttons, a place for words and a chart."""
+def view(
+    name: str, chart: str, words: str, *, wide: bool = False, tools: Sequence[Any] = ()
+) -> html.Section:
+    """Return a section with a heading, save buttons, its own controls, words and a chart."""
     graph = dcc.Graph(id=f"{name}-{chart}", config=CONFIG, responsive=True)
     return html.Section(
         [
             controls.view_head(chart, words),
+            *([html.Div(list(tools), className="controls")] if tools else []),
             html.Div(id=f"{name}-{chart}-words", className="view-words"),
             html.Div(graph, className=f"plot plain-plot {chart}", id=f"{name}-{chart}-place"),
         ],
@@ -115,8 +133,9 @@ def register(
         *[Output(f"{name}-{place}", "children") for place in places],
         Output(f"{name}-answer", "data"),
         Input(f"{name}-state", "data"),
+        Input(f"{name}-tick", "data"),
     )
-    def _answer(values: dict[str, Any]) -> tuple[Any, ...]:
+    def _answer(values: dict[str, Any], _tick: int) -> tuple[Any, ...]:
         nothing = [[] for _ in places]
         defaults = asdict(ViewState())
         try:
@@ -131,6 +150,7 @@ def register(
             "subtitles": dict(shown.subtitles),
             "source": shown.source,
             "stem": shown.stem,
+            "jobs": list(shown.jobs),
             "figures": {view: json.loads(chart.to_json()) for view, chart in shown.charts.items()},
         }
         words = [shown.words.get(place, []) for place in places]
