@@ -8,7 +8,7 @@ from dataclasses import Field, dataclass, field, fields, replace
 from typing import Any, cast
 from urllib.parse import parse_qsl, urlencode
 
-from app import breadth_fields
+from app import breadth_fields, reading_fields
 from app.state_kinds import (
     NAME,
     PERIOD,
@@ -199,6 +199,25 @@ class ViewState:
     sort: str = _state("points-down", breadth_fields.SORT)
     rows: str = _state("top", breadth_fields.ROWS)
 
+    series: str = _state("", reading_fields.SERIES)
+    newest: str = _state("", reading_fields.NEWEST)
+    formula: str = _state("percent", reading_fields.FORMULA)
+    measure: str = _state("1m", reading_fields.MEASURE)
+    among: str = _state("all", reading_fields.AMONG)
+    rank_kind: str = _state("mean", reading_fields.RANK_KIND)
+    rank_window: int = _state(120, reading_fields.RANK_WINDOW)
+    since: str = _state("", reading_fields.SINCE)
+    split: str = _state("", reading_fields.SPLIT)
+    family: str = _state("laplace", reading_fields.FAMILY)
+    draws: int = _state(2000, reading_fields.DRAWS)
+    coming: float = _state(0.2, reading_fields.COMING)
+    beyond: str = _state("rank", reading_fields.BEYOND)
+    level: float = _state(5, reading_fields.LEVEL)
+    rank_level: float = _state(90, reading_fields.RANK_LEVEL)
+    shortest: int = _state(3, reading_fields.SHORTEST)
+    gap: int = _state(1, reading_fields.GAP)
+    timeline: str = _state("rates", reading_fields.TIMELINE)
+
     def __post_init__(self) -> None:
         for item in fields(self):
             kind_of(item).check(getattr(self, item.name))
@@ -232,7 +251,7 @@ class ViewState:
         """Write the fields that differ from their default, in field order."""
         return urlencode(
             [
-                (item.name, str(getattr(self, item.name)))
+                (item.name, kind_of(item).write(getattr(self, item.name)))
                 for item in fields(self)
                 if getattr(self, item.name) != item.default
             ]

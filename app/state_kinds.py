@@ -29,6 +29,10 @@ class FieldKind:
         """Turn the text of an address or a flag into the field's value."""
         return text.strip()
 
+    def write(self, value: Any) -> str:
+        """Turn the value into the text of an address; equal values give equal texts."""
+        return str(value)
+
     def check(self, value: Any) -> None:
         """Raise StateError unless the value is allowed."""
         raise NotImplementedError

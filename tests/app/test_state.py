@@ -8,6 +8,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from app.reading_fields import Number
 from app.state import CELL_FIELDS, Choice, StateError, Text, ViewState, Whole, field_kind, kind_of
 
 NAMES = [item.name for item in fields(ViewState)]
@@ -25,6 +26,10 @@ OTHER_TEXT = {
     "trim": "24:31.5",
     "excluded": "01 Food|04 Energy",
     "pace": "-2.5",
+    "series": "Narrow money",
+    "newest": "2024-Q3",
+    "since": "1995-01",
+    "split": "1995",
 }
 
 
@@ -33,7 +38,7 @@ def other_values(name):
     kind = field_kind(name)
     if isinstance(kind, Choice):
         allowed = list(kind.options)
-    elif isinstance(kind, Whole):
+    elif isinstance(kind, Whole | Number):
         allowed = [kind.low, kind.high]
     else:
         allowed = [OTHER_TEXT[name]]
@@ -67,6 +72,10 @@ BY_NAME = {
     "without": spans,
     "as_of": st.one_of(st.just(""), st.dates().map(str)),
     "aggregate": st.one_of(st.just(""), names),
+    "series": st.one_of(st.just(""), names),
+    "newest": periods,
+    "since": periods,
+    "split": periods,
     "trim": st.integers(0, 99).map(str),
     "excluded": st.one_of(st.just(""), st.lists(names, min_size=1, max_size=3).map("|".join)),
     "pace": st.integers(-999, 999).map(str),
@@ -77,6 +86,9 @@ def drawn(name):
     kind = field_kind(name)
     if isinstance(kind, Whole):
         return st.integers(kind.low, kind.high)
+    if isinstance(kind, Number):
+        steps = st.integers(int(kind.low * 1e4), int(kind.high * 1e4))
+        return steps.map(lambda step: step / 1e4)
     return st.sampled_from(list(kind.options)) if isinstance(kind, Choice) else BY_NAME[name]
 
 
@@ -193,6 +205,14 @@ BAD = [
     ("first", "1965-03-01"),
     ("last", "yesterday"),
     ("last", "99999"),
+    ("newest", "2024-13"),
+    ("coming", "1e2"),
+    ("coming", "nan"),
+    ("coming", "inf"),
+    ("coming", "101"),
+    ("coming", "0.12345"),
+    ("level", "5 %"),
+    ("rank_level", "-1"),
     ("windows", "1-60"),
     ("windows", "1:"),
     ("windows", "1:6:9"),
