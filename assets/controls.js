@@ -44,6 +44,18 @@
     return new URLSearchParams(pairs).toString().replaceAll("%7E", "~").replaceAll("*", "%2A");
   }
 
+  /* Give the links of the other pages the date whose vintages are shown. */
+  function carry(page, day) {
+    for (const link of document.querySelectorAll("[id^='nav-']")) {
+      if (link.id === `nav-${page}`) continue;
+      const address = new URL(link.href);
+      if ((address.searchParams.get("as_of") || "") === (day || "")) continue;
+      if (day) address.searchParams.set("as_of", day);
+      else address.searchParams.delete("as_of");
+      window.dash_clientside.set_props(link.id, { href: address.pathname + address.search });
+    }
+  }
+
   /* Put the state into the address bar, the CSV links and the navigation. */
   function publish(page, state, defaults) {
     const text = query(state, defaults);
