@@ -6,8 +6,10 @@ from dataclasses import dataclass, field
 from functools import cached_property
 
 from analytics.series import Series
+from analytics.weights import WeightTable
 from app.intake.problems import Problem
 from app.intake.reading import Release
+from app.intake.weights import is_weight, weight_table
 from app.opening import opening_state
 from app.state import ViewState
 
@@ -83,8 +85,20 @@ class WorkspaceView:
     @cached_property
     def _by_name(self) -> dict[str, tuple[Series, str]]:
         return {
-            one.name: (one, release.name) for release in self.releases for one in release.series
+            one.name: (one, release.name)
+            for release in self.releases
+            for one in release.series
+            if not is_weight(one)
         }
+
+    @cached_property
+    def weights(self) -> WeightTable | None:
+        """Weights of components, from the newest file that holds any; they are no `series`."""
+        for release in reversed(self.releases):
+            table = weight_table(release.series, release.name)
+            if table is not None:
+                return table
+        return None
 
     @property
     def series(self) -> dict[str, Series]:

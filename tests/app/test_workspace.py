@@ -8,7 +8,7 @@ import pandas as pd
 import pytest
 
 from analytics.series import Series
-from app.demo import FILES, demo_releases
+from app.demo import FILES, WEIGHTS, demo_releases
 from app.intake.problems import Problem
 from app.intake.reading import Release
 from app.state import ViewState
@@ -160,7 +160,8 @@ def test_threads_may_add_and_read_at_once():
 def test_the_invented_economy_is_read_without_a_fault():
     releases = demo_releases()
     here = Workspace(releases)
-    assert tuple(each.name for each in releases) == FILES
+    assert tuple(each.name for each in releases) == (*FILES, WEIGHTS)
+    assert here.as_of().weights.years == tuple(range(1960, 2027))
     assert here.problems == ()
     assert here.opening_state() == ViewState()
     assert len(here.series) == 19
