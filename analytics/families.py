@@ -146,7 +146,7 @@ def _student_estimate(rows: FloatArray) -> FloatArray:
 
     One sample is fitted to rounding; the many of a bootstrap only as far as its test needs.
     """
-    searches, steps = (30, 40) if len(rows) == 1 else (16, 2)
+    searches, steps = (30, 40) if len(rows) == 1 else (12, 2)
     location: FloatArray = _middle(rows)[:, None]
     n = rows.shape[1]
     quarter = rows[:, (3 * n) // 4] - rows[:, n // 4]
@@ -170,7 +170,7 @@ def _student_estimate(rows: FloatArray) -> FloatArray:
         return loglik[:, None]
 
     left, right = high - ratio * (high - low), low + ratio * (high - low)
-    at_left, at_right = profile(left, 6), profile(right, 6)
+    at_left, at_right = profile(left, 4), profile(right, 4)
     for _ in range(searches):
         better = at_left > at_right
         high, low = np.where(better, right, high), np.where(better, low, left)
@@ -179,7 +179,7 @@ def _student_estimate(rows: FloatArray) -> FloatArray:
         left, right = np.where(better, new, right), np.where(better, left, new)
         at_left, at_right = np.where(better, value, at_right), np.where(better, at_left, value)
     place = 0.5 * (low + high)
-    profile(place, 8)
+    profile(place, 4)
     return np.stack([location[:, 0], scale[:, 0], np.exp(-place[:, 0])])
 
 
