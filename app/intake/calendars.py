@@ -67,13 +67,18 @@ class RowCalendar:
 
 
 def row_calendar(
-    file: str, texts: Sequence[str], lines: Sequence[int], column: str | None = None
+    file: str,
+    texts: Sequence[str],
+    lines: Sequence[int],
+    column: str | None = None,
+    stated: Calendar | None = None,
 ) -> RowCalendar:
     """Read the period of every row and decide the calendar.
 
     A single row whose period is no period is left out with an error; a calendar that is not read
     refuses the file, and so do rows of several calendars and several days of one month.
-    Months that all lie three (twelve) apart are quarters (years).
+    Months that all lie three (twelve) apart are quarters (years), unless the file has `stated`
+    its calendar; then that one holds.
 
     Raises
     ------
@@ -106,7 +111,15 @@ def row_calendar(
             )
     _refuse_days(file, texts, lines, column, kept, periods)
     ordinals = np.array([item.ordinal for item in periods], dtype=np.int64)
-    if calendar == "M":
+    if stated is not None and stated != calendar:
+        if calendar != "M":
+            raise refused(
+                f"periods must be {_CALENDAR_NAME[stated]} as the file states, but"
+                f" {quoted(texts[kept[0]].strip())} is {_CALENDAR_NAME[calendar]}",
+                kept[0],
+            )
+        calendar, ordinals = stated, ordinals // (3 if stated == "Q" else 12)
+    elif stated is None and calendar == "M":
         calendar, ordinals = _longer_calendar(ordinals)
         if calendar != "M":
             apart = "three" if calendar == "Q" else "twelve"

@@ -15,6 +15,7 @@ MAX_CELLS = 8_000_000
 MAX_COLUMNS = 20_000
 MAX_ROWS = 2_000_000
 
+FORMATS = "CSV, XLSX, SDMX or a zip of them"
 SEPARATORS = {",": "comma", ";": "semicolon", "\t": "tab"}
 _SAMPLE = 200
 _MAGIC = (
@@ -23,7 +24,7 @@ _MAGIC = (
     (b"GIF8", "a GIF picture"),
     (b"%PDF", "a PDF document"),
     (b"\x1f\x8b", "a gzip archive"),
-    (b"\xd0\xcf\x11\xe0", "an old binary workbook"),
+    (b"\xd0\xcf\x11\xe0", "an old or locked binary workbook"),
     (b"SQLite format 3\x00", "a database"),
 )
 _BYTE_ORDER = (
@@ -53,7 +54,7 @@ class Sheet:
     lines : list of int
         Line of the file on which each row begins, counted from 1.
     separator : str
-        Comma, semicolon or tab.
+        Comma, semicolon or tab; empty for the sheet of a workbook.
     quotes : bool
         Whether any cell may be quoted, and so hold a separator.
     """
@@ -65,13 +66,13 @@ class Sheet:
     quotes: bool = True
 
 
-def read_csv_sheet(file: str, content: bytes) -> tuple[Sheet, list[Problem]]:
-    """Split the bytes of a CSV file into rows.
+def read_text(file: str, content: bytes) -> tuple[str, list[Problem]]:
+    """Turn the bytes of a text file into text, and note the encoding where it is not UTF-8.
 
     Raises
     ------
     IntakeError
-        The file is too large, empty, no text, or its quotes do not close.
+        The file is too large, or is no text.
     """
     if len(content) > MAX_BYTES:
         raise refusal(
@@ -79,19 +80,28 @@ def read_csv_sheet(file: str, content: bytes) -> tuple[Sheet, list[Problem]]:
             f"a file must not be larger than {MAX_BYTES / 1024**2:g} MB,"
             f" but this one has {len(content) / 1024**2:.1f} MB",
         )
-    _refuse_other_formats(file, content)
-    text, notes = _decoded(file, content)
-    head = text.lstrip()[:1]
-    if head in ("<", "{"):
-        what = "HTML or XML" if head == "<" else "JSON"
-        raise refusal(file, f"must be comma-separated text, but this looks like {what}")
+    what = next((name for magic, name in _MAGIC if content.startswith(magic)), None)
+    if what:
+        raise refusal(file, f"must be {FORMATS}, but this is {what}")
+    return _decoded(file, content)
+
+
+def split_rows(file: str, text: str, separator: str | None = None) -> Sheet:
+    """Split the text of a CSV file into rows, at the separator given or else at the likeliest.
+
+    Raises
+    ------
+    IntakeError
+        The text is empty, holds control codes or too much, or its quotes do not close.
+    """
     found = _CONTROL.search(text)
     if found:
         row = _line_ends(text[: found.start()]) + 1
         raise refusal(file, f"must be text, but holds the control code {ord(found[0])}", row=row)
     if _line_ends(text) > MAX_ROWS:
         raise refusal(file, f"a file must not have more than {MAX_ROWS:,} lines, but this one has")
-    start, skipped, separator = _below_comments(text)
+    start, skipped, declared = _below_comments(text)
+    separator = separator or declared
     if separator is None:
         separator = _separator(text[start : start + 1_000_000])
     if text.count(separator, start) > MAX_CELLS:
@@ -99,18 +109,7 @@ def read_csv_sheet(file: str, content: bytes) -> tuple[Sheet, list[Problem]]:
     rows, lines = _rows(file, text[start:] if start else text, separator, skipped)
     if not rows:
         raise refusal(file, "must hold a header and rows below it, but the file is empty")
-    return Sheet(file, rows, lines, separator, '"' in text), notes
-
-
-def _refuse_other_formats(file: str, content: bytes) -> None:
-    """Raise where the first bytes tell of a picture, an archive, a document."""
-    what = next((name for magic, name in _MAGIC if content.startswith(magic)), None)
-    if content.startswith(b"PK\x03\x04"):
-        what = "a zip archive"
-        if b"[Content_Types].xml" in content[:4096] or b"xl/" in content[:65536]:
-            what = "a spreadsheet workbook (XLSX)"
-    if what:
-        raise refusal(file, f"must be comma-separated text, but this is {what}")
+    return Sheet(file, rows, lines, separator, '"' in text)
 
 
 def _decoded(file: str, content: bytes) -> tuple[str, list[Problem]]:

@@ -16,7 +16,7 @@ _INDEX = re.compile(
     re.IGNORECASE,
 )
 _NOT_ADJUSTED = re.compile(
-    r"\b(?:not (?:seasonally )?adjusted|unadjusted|nsa|n\.s\.a\b)", re.IGNORECASE
+    r"\b(?:not (?:seasonally )?adjusted|neither seasonally|unadjusted|nsa|n\.s\.a\b)", re.IGNORECASE
 )
 _ADJUSTED = re.compile(r"\b(?:seasonally adjusted|adjusted|sa|swda|s\.a\b)", re.IGNORECASE)
 _UNIT = re.compile(r"[(\[]([^()\[\]]*[^\W\d_][^()\[\]]*|[^()\[\]]*[%=][^()\[\]]*)[)\]]\s*$")
@@ -43,15 +43,21 @@ def inferred_kind(name: str, values: FloatArray, *, percent: bool = False) -> Ki
     ('rate', 'level')
     """
     known = values[~np.isnan(values)]
-    if percent or (_RATE.search(name) and not _LEVEL.search(name)):
-        return "rate"
-    if _INDEX.search(name):
-        return "index"
+    said = "rate" if percent else kind_in_words(name)
+    if said is not None:
+        return said
     if (known < 0).any() and float(np.median(np.abs(known))) < 30:
         return "rate"
     if (known > 0).all() and (np.abs(known - 100.0) <= 0.5).any():
         return "index"
     return "level"
+
+
+def kind_in_words(text: str) -> Kind | None:
+    """Tell the kind from a name or a unit by rules 1 and 2 of `inferred_kind`; None if silent."""
+    if _RATE.search(text) and not _LEVEL.search(text):
+        return "rate"
+    return "index" if _INDEX.search(text) else None
 
 
 def inferred_unit(name: str, kind: Kind) -> str:

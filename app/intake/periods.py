@@ -13,6 +13,8 @@ from typing import Literal, NamedTuple
 
 import pandas as pd
 
+from app.intake.problems import quoted
+
 Calendar = Literal["M", "Q", "Y"]
 
 _MONTHS = ("jan", "feb", "mar", "apr", "may", "jun", "jul", "aug", "sep", "oct", "nov", "dec")
@@ -53,6 +55,11 @@ _REFUSED = tuple(
         (rf"{_MONTH_NAME}[-/ .']{{1,2}}\d{{2}}", "a year of two digits"),
         (r"\d{1,2}[-/.]\d{1,2}[-/.]\d{2}", "a year of two digits"),
     )
+)
+_DURATION = re.compile(
+    rf"{_YEAR}-(?P<month>\d{{2}})(?:-(?P<day>\d{{2}}))?(?:T00:00:00(?:\.0+)?)?Z?"
+    r"/P(?:(?P<months>\d{1,2})M|(?P<years>1)Y)",
+    re.ASCII,
 )
 _FISCAL = re.compile(r"([12]\d)(\d\d)[-/](?:\1)?(\d\d)", re.ASCII)
 
@@ -106,7 +113,10 @@ def read_period(text: str) -> ReadPeriod | PeriodTrouble:
         match = pattern.fullmatch(stripped)
         if match:
             return _period_of(match.groupdict(), stripped)
-    found = f"{RULE}, but got '{stripped[:40]}'"
+    lasting = _lasting(stripped)
+    if lasting is not None:
+        return lasting
+    found = f"{RULE}, but got {quoted(stripped)}"
     for pattern, what in _REFUSED:
         if pattern.fullmatch(stripped):
             return PeriodTrouble(f"{found}, {what}", calendar=True)
@@ -144,6 +154,23 @@ def _period_of(parts: dict[str, str | None], text: str) -> ReadPeriod | PeriodTr
         except ValueError:
             return PeriodTrouble(f"the day must be one of its month, but got '{text}'")
     return ReadPeriod("M", 12 * (year - 1970) + month - 1, day)
+
+
+def _lasting(text: str) -> ReadPeriod | None:
+    """Read a start with a duration, such as 2024-04-01/P3M, where it is a period of the calendar.
+
+    The day counts from the first: one month, a quarter from its first month, a year from January.
+    """
+    match = _DURATION.fullmatch(text)
+    if match is None or int(match["day"] or 1) != 1:
+        return None
+    year, month = int(match["year"]) - 1970, int(match["month"]) - 1
+    months = 12 if match["years"] else int(match["months"])
+    if months == 1 and 0 <= month < 12:
+        return ReadPeriod("M", 12 * year + month)
+    if months == 3 and month in (0, 3, 6, 9):
+        return ReadPeriod("Q", 4 * year + month // 3)
+    return ReadPeriod("Y", year) if months == 12 and month == 0 else None
 
 
 def _is_fiscal(text: str) -> bool:

@@ -2,8 +2,9 @@
 
 import csv
 import io
+from collections import Counter
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any, get_args
 
@@ -11,9 +12,14 @@ import numpy as np
 
 from analytics.series import Adjustment, Kind, Series, period_code
 from app.intake import csv_files
-from app.intake.csv_files import read_csv_sheet
+from app.intake.archives import archive_names, is_archive, read_archive
+from app.intake.csv_files import FORMATS, read_text, split_rows
 from app.intake.problems import IntakeError, Problem, display_name, quoted, refusal
+from app.intake.sdmx_csv import is_sdmx_csv, read_sdmx_csv
+from app.intake.sdmx_json import read_sdmx_json
+from app.intake.sdmx_xml import read_sdmx_xml
 from app.intake.sheets import Metadata, read_sheet
+from app.intake.xlsx_files import is_workbook, read_workbook
 
 __all__ = [
     "IntakeError",
@@ -26,6 +32,9 @@ __all__ = [
     "read_release",
 ]
 
+_OTHER_OFFICE = frozenset(
+    ("mimetype", "xl/workbook.bin", "word/document.xml", "Index/Document.iwa")
+)
 _METADATA_COLUMNS = ("file", "name", "kind", "unit", "adjustment", "source", "note")
 
 
@@ -48,12 +57,17 @@ class Release:
     problems: tuple[Problem, ...]
 
 
-def read_release(name: str, content: bytes, metadata: Metadata | None = None) -> Release:
-    r"""Read the series of a release file.
+def read_release(
+    name: str, content: bytes, metadata: Metadata | None = None, sheet: str | None = None
+) -> Release:
+    r"""Read the series of a release file: CSV, a workbook (XLSX), SDMX, or a zip of them.
 
-    The first column holds periods (2024-03, 2024-Q1, 2024, Mar 2024, ...), each further column a
-    series under its name; or the header is period, series, value and perhaps economy, and each
-    row holds one value. Kind, unit and adjustment are told from name and values by the rule in
+    What a file is, its content tells, not its name. In CSV and workbooks the first column holds
+    periods (2024-03, 2024-Q1, 2024, Mar 2024, ...), each further column a series under its name;
+    or the header is period, series, value and perhaps economy, and each row holds one value.
+    SDMX is read as CSV (1.0, 2.x), as XML (2.1, generic and structure-specific) and as JSON
+    (1.0, 2.0); the labels of the dimensions that vary make the name. Kind, unit and adjustment
+    are what the file states, else told from name and values by the rule in
     `app.intake.kinds.inferred_kind`, unless `metadata` gives them.
 
     Parameters
@@ -64,6 +78,8 @@ def read_release(name: str, content: bytes, metadata: Metadata | None = None) ->
         The file.
     metadata : mapping of str to mapping, optional
         Name of a series to any of its `kind`, `unit`, `adjustment` and `source`.
+    sheet : str, optional
+        Sheet of a workbook; the first that holds a readable table if not given.
 
     Raises
     ------
@@ -76,14 +92,79 @@ def read_release(name: str, content: bytes, metadata: Metadata | None = None) ->
     (Series('Prices', monthly index, Jan 2024 to Feb 2024, 2 values),)
     """
     file = display_name(name)
-    sheet, notes = read_csv_sheet(file, content)
-    series, problems = read_sheet(sheet, metadata)
+    if is_archive(content) and not is_workbook(archive_names(file, content)):
+        return _archive_release(file, content, metadata, sheet)
+    series, problems = _read_file(file, content, metadata, sheet)
+    return _release(file, series, problems)
+
+
+def _release(file: str, series: Iterable[Series], problems: Iterable[Problem]) -> Release:
+    """Put problems in order of weight."""
     rank = {"error": 0, "warning": 1, "note": 2}
-    found = sorted((*notes, *problems), key=lambda problem: rank[problem.severity])
+    found = sorted(problems, key=lambda problem: rank[problem.severity])
     return Release(file, tuple(series), tuple(found))
 
 
-def read_path(path: str | Path, metadata: Metadata | None = None) -> Release:
+def _read_file(
+    file: str, content: bytes, metadata: Metadata | None, sheet: str | None
+) -> tuple[list[Series], list[Problem]]:
+    """Read a file that is no archive by the reader that its first signs ask for."""
+    if is_archive(content):
+        return read_workbook(file, content, metadata, sheet)
+    if sheet is not None:
+        raise refusal(file, f"must be a workbook to have a sheet {quoted(sheet)}, but is not")
+    text, notes = read_text(file, content)
+    head = text.lstrip()[:1]
+    if head == "<":
+        series, problems = read_sdmx_xml(file, content, text, metadata)
+    elif head == "{":
+        series, problems = read_sdmx_json(file, text, metadata)
+    elif is_sdmx_csv(text):
+        series, problems = read_sdmx_csv(file, text, metadata)
+    else:
+        series, problems = read_sheet(split_rows(file, text), metadata)
+    return series, [*notes, *problems]
+
+
+def _archive_release(
+    file: str, content: bytes, metadata: Metadata | None, sheet: str | None
+) -> Release:
+    """Read all files of an archive into one release; names that clash carry their file's name."""
+    if archive_names(file, content) & _OTHER_OFFICE:
+        raise refusal(file, f"must be {FORMATS}, but this is an office document of another kind")
+
+    def member(name: str, inside: bytes) -> Release:
+        if is_archive(inside) and not is_workbook(archive_names(name, inside)):
+            raise refusal(name, "an archive must not hold another archive, but this one does")
+        return _release(name, *_read_file(name, inside, metadata, sheet))
+
+    releases, warnings = read_archive(file, content, member)
+    counts = Counter(one.name for release in releases for one in release.series)
+    taken: set[str] = set()
+    series: list[Series] = []
+    problems: list[Problem] = [*warnings]
+    for release in releases:
+        stem = Path(release.name.rpartition(", ")[2]).stem
+        new: dict[str | None, str] = {}
+        for one in release.series:
+            name = base = f"{stem}: {one.name}" if counts[one.name] > 1 else one.name
+            number = 1
+            while name in taken:
+                number += 1
+                name = f"{base} ({number})"
+            taken.add(name)
+            new[one.name] = name
+            series.append(one if name == one.name else replace(one, name=name))
+        problems += (
+            replace(problem, column=new.get(problem.column, problem.column))
+            for problem in release.problems
+        )
+    return _release(file, series, problems)
+
+
+def read_path(
+    path: str | Path, metadata: Metadata | None = None, sheet: str | None = None
+) -> Release:
     """Read the release file at a path.
 
     Raises
@@ -104,7 +185,7 @@ def read_path(path: str | Path, metadata: Metadata | None = None) -> Release:
         if isinstance(error, IntakeError):
             raise
         raise refusal(file, "must be a file that may be read, but it could not be opened") from None
-    return read_release(str(path), content, metadata)
+    return read_release(str(path), content, metadata, sheet)
 
 
 def demo_metadata(text: str) -> dict[str, dict[str, dict[str, str]]]:

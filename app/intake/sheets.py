@@ -39,30 +39,56 @@ def read_sheet(
         There is no header, no row with a period, or no calendar of months, quarters or years.
     """
     blocks = blocks_of(sheet)
+    marks, problems = decimal_marks(
+        sheet.file,
+        [column for block in blocks for column in block.columns],
+        sheet.separator,
+        sheet.quotes,
+    )
+    series, found = read_blocks(sheet.file, blocks, marks, metadata)
+    return series, [*problems, *found]
+
+
+def read_blocks(
+    file: str,
+    blocks: Sequence[Block],
+    marks: Sequence[Mark],
+    metadata: Metadata | None = None,
+) -> tuple[list[Series], list[Problem]]:
+    """Read the columns of blocks; `marks` holds the decimal mark of each column, block by block.
+
+    Where there are several blocks, one without a calendar is left out with an error.
+
+    Raises
+    ------
+    IntakeError
+        The only block has no calendar, or the periods of one lie too far apart.
+    """
     long = len(blocks) > 1
-    marks, problems = _marks(sheet, [column for block in blocks for column in block.columns])
     series: list[Series] = []
-    given = iter(marks)
+    problems: list[Problem] = []
+    given, laid = iter(marks), 0
     for block in blocks:
         name = block.columns[0][0] if long else None
         marks_here = [next(given) for _ in block.columns]
         problems += block.problems
         try:
-            rows = row_calendar(sheet.file, block.periods, block.lines, name)
+            rows = row_calendar(file, block.periods, block.lines, name, block.calendar)
         except IntakeError as error:
             if not long:
                 raise
             problems.append(error.problem)
             continue
-        if rows.span * len(block.columns) > 2 * MAX_CELLS:
+        laid += rows.span * len(block.columns)
+        if laid > 2 * MAX_CELLS:
             raise refusal(
-                sheet.file,
+                file,
                 f"periods must lie closer together, but the file spans {rows.span:,} of them for"
-                f" {len(block.columns):,} series",
+                f" {sum(len(one.columns) for one in blocks):,} series",
             )
         problems += rows.problems
         for column, mark in zip(block.columns, marks_here, strict=True):
-            one, found = _series(sheet.file, block, column, mark, rows, metadata or {})
+            one, found = _series(file, block, column, mark, rows, metadata or {})
             series += [] if one is None else [one]
             problems += found
     return series, problems
@@ -137,15 +163,15 @@ def _empty_cells(file: str, block: Block, rows: RowCalendar, series: Series) -> 
     return [Problem("warning", file, block.lines[rows.kept[earliest]], series.name, message)]
 
 
-def _marks(
-    sheet: Sheet, columns: Sequence[tuple[str, Sequence[str]]]
+def decimal_marks(
+    file: str, columns: Sequence[tuple[str, Sequence[str]]], separator: str, quotes: bool
 ) -> tuple[list[Mark], list[Problem]]:
     """Decide the decimal mark of each column: what it proves, else what all others prove.
 
     Where nothing is proved anywhere, 1.234 has a decimal point, and 1,234 a decimal comma in a
     file with semicolons and grouped thousands in any other; a warning says so if in doubt.
     """
-    if sheet.separator == "," and not sheet.quotes:
+    if separator == "," and not quotes:
         return ["."] * len(columns), []
     proved = [decimal_mark(cells) for _, cells in columns]
     others = {mark for mark in proved if mark is not None}
@@ -154,11 +180,11 @@ def _marks(
     problems: list[Problem] = []
     for (name, cells), own in zip(columns, proved, strict=True):
         mark, doubt = own or shared, None if own or shared else undecided(cells)
-        if doubt is not None and ("," in doubt or sheet.separator == ";"):
+        if doubt is not None and ("," in doubt or separator == ";"):
             comma = "," in doubt
-            mark = "," if comma and sheet.separator == ";" else "."
+            mark = "," if comma and separator == ";" else "."
             how = "thousands" if comma and mark == "." else "decimals"
             message = f"the mark in {quoted(doubt)} may part decimals or thousands; read as {how}"
-            problems.append(Problem("warning", sheet.file, None, name, message))
+            problems.append(Problem("warning", file, None, name, message))
         marks.append(mark or ".")
     return marks, problems

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from typing import NoReturn
 
 from app.intake.csv_files import MAX_COLUMNS, SEPARATORS, Sheet
-from app.intake.periods import RULE, PeriodTrouble, looks_like_period, read_period
+from app.intake.periods import RULE, Calendar, PeriodTrouble, looks_like_period, read_period
 from app.intake.problems import MAX_NAME, Problem, counted, plain_text, quoted, refusal
 
 _LONG = ({"period", "series", "value"}, {"economy", "period", "series", "value"})
@@ -28,12 +28,15 @@ class Block:
         Name of each series and its n cells.
     problems : tuple of Problem
         What was found while the block was cut out.
+    calendar : {"M", "Q", "Y"} or None
+        The calendar, where the file states it.
     """
 
     lines: Sequence[int]
     periods: Sequence[str]
     columns: list[tuple[str, Sequence[str]]]
     problems: tuple[Problem, ...] = ()
+    calendar: Calendar | None = None
 
 
 def blocks_of(sheet: Sheet) -> list[Block]:
@@ -46,13 +49,27 @@ def blocks_of(sheet: Sheet) -> list[Block]:
     IntakeError
         There is no header, no period, no column of values, or the rows do not fit the header.
     """
-    for place, row in enumerate(sheet.rows[:_TOP]):
-        header = [cell.strip().lower() for cell in row]
-        while header and not header[-1]:
-            header.pop()
+    place = long_header(sheet.rows)
+    if place is None:
+        return [_wide_block(sheet)]
+    return _long_blocks(sheet, place, _words(sheet.rows[place]))
+
+
+def long_header(rows: Sequence[Sequence[str]]) -> int | None:
+    """Return which of the first rows heads a long table, if one does."""
+    for place, row in enumerate(rows[:_TOP]):
+        header = _words(row)
         if set(header) in _LONG and len(set(header)) == len(header):
-            return _long_blocks(sheet, place, header)
-    return [_wide_block(sheet)]
+            return place
+    return None
+
+
+def _words(row: Sequence[str]) -> list[str]:
+    """Return the cells of a header, bare and in small letters, without blank ones at the end."""
+    header = [cell.strip().lower() for cell in row]
+    while header and not header[-1]:
+        header.pop()
+    return header
 
 
 def _wide_block(sheet: Sheet) -> Block:
@@ -169,7 +186,7 @@ def _refuse_without_period(sheet: Sheet) -> NoReturn:
     """Raise the sentence for a sheet in which no row begins with a period."""
     file, rows, lines = sheet.file, sheet.rows, sheet.lines
     if max(map(len, rows)) < 2:
-        raise refusal(file, _two_columns(), row=lines[0])
+        raise refusal(file, _two_columns(sheet), row=lines[0])
     across = sum(looks_like_period(cell[:60]) for cell in rows[0])
     if across > 1:
         raise refusal(file, "periods must run down the first column, but run across", row=lines[0])
@@ -186,7 +203,7 @@ def _refuse_without_header(sheet: Sheet, first: int) -> NoReturn:
     """Raise the sentence for a sheet whose first period has no names above it."""
     file, rows, lines = sheet.file, sheet.rows, sheet.lines
     if max(map(len, rows)) < 2:
-        raise refusal(file, _two_columns(), row=lines[0])
+        raise refusal(file, _two_columns(sheet), row=lines[0])
     if first == 0:
         raise refusal(
             file,
@@ -201,12 +218,10 @@ def _refuse_without_header(sheet: Sheet, first: int) -> NoReturn:
     )
 
 
-def _two_columns() -> str:
+def _two_columns(sheet: Sheet) -> str:
     *most, last = SEPARATORS.values()
-    return (
-        "must have a column of periods and at least one of values, parted by"
-        f" {', '.join(most)} or {last}, but got one column"
-    )
+    parted = f", parted by {', '.join(most)} or {last}" if sheet.separator else ""
+    return f"must have a column of periods and at least one of values{parted}, but got one column"
 
 
 def _long_blocks(sheet: Sheet, top: int, header: Sequence[str]) -> list[Block]:

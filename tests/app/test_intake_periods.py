@@ -46,14 +46,19 @@ READ = {
             "2024-03-01 00:00:00",
             "2024-03-01T00:00:00Z",
             "  2024-03 ",
+            "2024-03-01/P1M",
+            "2024-03-01T00:00:00/P1M",
+            "2024-03-01T00:00:00Z/P1M",
+            "2024-03/P1M",
         ],
         MARCH,
     ),
     **dict.fromkeys(
-        ["2024-Q1", "2024Q1", "2024q1", "Q1 2024", "q1-2024", "2024 Q1", "2024:Q1", "1Q2024"],
+        ["2024-Q1", "2024Q1", "2024q1", "Q1 2024", "q1-2024", "2024 Q1", "2024:Q1", "1Q2024"]
+        + ["2024-01-01/P3M"],
         QUARTER,
     ),
-    **dict.fromkeys(["2024", "2024-A1", "2024A1", " 2024"], YEAR),
+    **dict.fromkeys(["2024", "2024-A1", "2024A1", " 2024", "2024-01-01/P1Y", "2024-01-01/P12M"], YEAR),
 }
 
 
@@ -85,7 +90,13 @@ REFUSED = {
     "2024-D010": "a day of the year",
     "2024-D366": "a day of the year",
     "2024-A2": "a part of a year",
-    "2024-01-01/P1M": "a start with a duration",
+    "2024-01-15/P1M": "a start with a duration",
+    "2024-02-01/P3M": "a start with a duration",
+    "2024-04-01/P1Y": "a start with a duration",
+    "2024-13-01/P1M": "a start with a duration",
+    "2024-01-01/P2M": "a start with a duration",
+    "2024-01-01/P7D": "a start with a duration",
+    "2024-01-01T00:00:00/P0Y1M": "a start with a duration",
     "2024-03-01T12:30:00": "a time of day",
     "Mar-24": "a year of two digits",
     "01/03/24": "a year of two digits",

@@ -24,6 +24,7 @@ def _zip(*names: str) -> bytes:
     return stream.getvalue()
 
 
+FORMS = "must be CSV, XLSX, SDMX or a zip of them, but this"
 REFUSED: dict[str, tuple[str | bytes, str]] = {
     "empty": ("", "a.csv: must hold a header and rows below it, but the file is empty"),
     "blank": (" \n\n", "a.csv: must hold a header and rows below it, but the file is empty"),
@@ -75,16 +76,13 @@ REFUSED: dict[str, tuple[str | bytes, str]] = {
         "month,Prices\n2024-01," + "9" * 200_000,
         "a.csv, row 2: a cell must not have more than 131,072 signs, but one has",
     ),
-    "PNG": (b"\x89PNG\r\n\x1a\n" + bytes(40), "a.csv: must be comma-separated text, but this is a"),
-    "PDF": (b"%PDF-1.7\n", "a.csv: must be comma-separated text, but this is a PDF document"),
-    "ZIP": (_zip("a.txt"), "a.csv: must be comma-separated text, but this is a zip archive"),
-    "XLSX": (
-        _zip("[Content_Types].xml", "xl/workbook.xml"),
-        "a.csv: must be comma-separated text, but this is a spreadsheet workbook (XLSX)",
-    ),
-    "gzip": (b"\x1f\x8b\x08\x00", "a.csv: must be comma-separated text, but this is a gzip"),
-    "HTML": ("<!doctype html><p>", "a.csv: must be comma-separated text, but this looks like HTML"),
-    "JSON": ('{"a": 1}', "a.csv: must be comma-separated text, but this looks like JSON"),
+    "PNG": (b"\x89PNG\r\n\x1a\n" + bytes(40), f"a.csv: {FORMS} is a PNG picture"),
+    "PDF": (b"%PDF-1.7\n", f"a.csv: {FORMS} is a PDF document"),
+    "locked": (b"\xd0\xcf\x11\xe0", f"a.csv: {FORMS} is an old or locked binary workbook"),
+    "gzip": (b"\x1f\x8b\x08\x00", f"a.csv: {FORMS} is a gzip"),
+    "HTML": ("<!doctype html><p>", f"a.csv: {FORMS} looks like HTML"),
+    "JSON": ('{"a": 1}', f"a.csv: {FORMS} is JSON of another kind"),
+    "OpenDocument": (_zip("mimetype", "content.xml"), f"a.csv: {FORMS} is an office document of"),
     "zero bytes": (PLAIN.encode("utf-16-le"), "a.csv: must be text, but holds zero bytes"),
     "control code": (
         "month,Prices\n2024-01,1\x07\n",
@@ -129,3 +127,6 @@ def test_a_span_of_centuries_for_many_series_is_refused() -> None:
     content = f"p,{names}\n1000-01,{ones}\n2999-12,{ones}\n".encode()
     with pytest.raises(IntakeError, match="periods must lie closer together"):
         read_release("a.csv", content)
+    pairs = "".join(f"1000-01,S{n},1\n2999-12,S{n},2\n" for n in range(800))
+    with pytest.raises(IntakeError, match="24,000 of them for 800 series"):
+        read_release("a.csv", f"period,series,value\n{pairs}".encode())
