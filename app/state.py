@@ -217,6 +217,16 @@ class ViewState:
     shortest: int = _state(3, reading_fields.SHORTEST)
     gap: int = _state(1, reading_fields.GAP)
     timeline: str = _state("rates", reading_fields.TIMELINE)
+    # The Data page
+    revised: str = _state(
+        "growth",
+        Choice(
+            label="Revisions of",
+            options={"growth": "growth over one period", "values": "values as published"},
+            help="Growth over one period, or values; growth stays when an index is re-referenced.",
+            display=True,
+        ),
+    )
 
     def __post_init__(self) -> None:
         for item in fields(self):
