@@ -10,7 +10,7 @@
     opinions: "Asking other methods",
     stability: "Following the slope through time",
   };
-  const work = { running: null, stopped: new Set() };
+  const work = { running: null, turn: 0, stopped: new Set(), refused: new Set() };
   const byId = (id) => document.getElementById(id);
 
   function say(kind, done, total) {
@@ -26,23 +26,29 @@
     if (!stopped) { byId("lag-progress").max = total; byId("lag-progress").value = done; }
   }
 
+  /* What was stopped stays so while sliders move: another cell is the same search. */
+  const stopName = (kind) => `${kind} ${pricewake.lag.question}`;
+
   /* Ask for one chunk after another until the work is done, the question changes or it is stopped. */
   async function run(kind, query) {
     const name = `${kind}?${query}`;
     if (work.running === name) return;
     work.running = name;
+    const turn = (work.turn += 1);
+    const over = () => work.running !== name || work.turn !== turn;
     say(kind, 0, 1);
     try {
       for (;;) {
         const answer = await fetch(`/lag/work/${name}`);
         const progress = await answer.json();
-        if (work.running !== name) return;
-        if (!answer.ok) { byId("lag-progress-words").textContent = progress.message; work.stopped.add(name); break; }
+        if (over()) return;
+        if (!answer.ok) { work.refused.add(name); break; } // the page is told why with the next answer
         say(kind, progress.done, progress.total);
         if (progress.done === progress.total) break;
       }
     } catch (_) {
-      if (work.running === name) byId("lag-progress-words").textContent = "The program does not answer; is it still running?";
+      if (over()) return;
+      byId("lag-progress-words").textContent = "The program does not answer; is it still running?";
       work.running = null;
       return;
     }
@@ -66,11 +72,12 @@
     }
     page.layOver(data);
     const query = page.query();
-    const next = data.jobs.find((kind) => !work.stopped.has(`${kind}?${query}`));
+    const jobs = data.jobs.filter((kind) => !work.refused.has(`${kind}?${query}`));
+    const next = jobs.find((kind) => !work.stopped.has(stopName(kind)));
     if (next) run(next, query);
     else {
       work.running = null;
-      if (data.jobs.length) say(data.jobs[0], null); else say(null);
+      if (jobs.length) say(jobs[0], null); else say(null);
     }
     return window.dash_clientside.no_update;
   }
@@ -81,7 +88,7 @@
     const page = pricewake.lag;
     if (event.target.id === "lag-cancel" && work.running) {
       const [kind] = work.running.split("?");
-      work.stopped.add(work.running);
+      work.stopped.add(stopName(kind));
       work.running = null;
       say(kind, null);
     }
