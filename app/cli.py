@@ -17,6 +17,7 @@ import click
 
 from app.cli_workspace import workspace
 from app.places import software_version
+from app.reading_fields import READING_FIELDS, READING_VIEWS
 from app.state import StateError, ViewState, kind_of
 
 DEFAULT_PORT = 8391
@@ -224,6 +225,64 @@ def lag(
     for problem in _errors(desk):
         click.echo(f"pricewake: {problem}", err=True)
     return int(bool(_errors(desk)))
+
+
+@pricewake.command()
+@_files
+@_state_options(READING_FIELDS)
+@click.option(
+    "--as-of",
+    "newest",
+    metavar="TEXT",
+    help="Period such as 2024-03 that is read as the print, or a date such as 2024-03-12 whose"
+    " vintages are used.",
+)
+@click.option(
+    "--alert",
+    "rules",
+    multiple=True,
+    metavar="RULE",
+    help="Rule such as 'rate_12m above 5', in place of the usual ones; may be given again.",
+)
+@_as_json
+@_csv
+@click.option(
+    "--view",
+    type=click.Choice(READING_VIEWS),
+    default="rates",
+    show_default=True,
+    help="Which view --csv writes.",
+)
+@_kept_in
+def reading(
+    files: tuple[Path, ...],
+    newest: str | None,
+    rules: tuple[str, ...],
+    as_json: bool,
+    csv_path: Path | None,
+    view: str,
+    kept_in: str | None,
+    **flags: str | None,
+) -> int:
+    """Read the newest value of a series: rates, rank, distribution, base effects, alerts."""
+    from app.cli_reading import as_of_fields, report, rules_of
+    from app.compute import Bridge
+    from app.reading_exports import view_text
+
+    asked = rules_of(rules)
+    desk = _workspace(files, kept_in)
+    state = _state(ViewState(), {**flags, **as_of_fields(newest)})
+    known, answer, lines = report(state, Bridge(desk), asked)
+    if csv_path:
+        _write(csv_path, view_text(view, known))
+    if as_json:
+        _print_json(answer)
+    else:
+        for line in lines:
+            click.echo(line)
+    for problem in _errors(desk):
+        click.echo(f"pricewake: {problem}", err=True)
+    return int(bool(_errors(desk) or answer["alerts"]))
 
 
 pricewake.add_command(workspace)

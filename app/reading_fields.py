@@ -160,3 +160,33 @@ TIMELINE = Choice(
     help="What is drawn through time: rates, or the level as a multiple of its first value.",
     display=True,
 )
+
+READING_VIEWS = (
+    "rates",
+    "base",
+    "whatif",
+    "rank",
+    "history",
+    "distribution",
+    "quantiles",
+    "episodes",
+)
+READING_FIELDS = (
+    "series",
+    "formula",
+    "measure",
+    "among",
+    "rank_kind",
+    "rank_window",
+    "since",
+    "split",
+    "family",
+    "draws",
+    "seed",
+    "coming",
+    "beyond",
+    "level",
+    "rank_level",
+    "shortest",
+    "gap",
+)
