@@ -20,11 +20,12 @@ class LevelShifts:
     Attributes
     ----------
     steps : tuple of int
-        Positions where a new level begins: one or two, increasing, counted from 0.
+        Positions where a new level begins: one or two, increasing, counted from 0; none where a
+        trend was taken for them.
     levels : ndarray of float, shape (n,), read-only
-        The step function, in the unit of the series.
+        The step function or the trend, in the unit of the series.
     residual : ndarray of float, shape (n,), read-only
-        The series less the step function.
+        The series less `levels`.
     strength : float
         The F of the steps over the 5 % point of its largest value when there is no step, with
         the long-run variance of the residual below the line. Above 1 means steps more than
@@ -37,17 +38,22 @@ class LevelShifts:
     strength: float
 
 
-def level_shifts(values: ArrayLike) -> LevelShifts:
+def level_shifts(values: ArrayLike, *, trend: bool = False) -> LevelShifts:
     """Fit one step and two steps in the mean, and keep the stronger.
 
     Parameters
     ----------
     values : array_like of float, shape (n,)
         One a period, no gaps, at least 24.
+    trend : bool, default False
+        Let a straight line take the place of the steps, unless two steps explain more than it
+        does by over 7.6 long-run variances: steps cut from a trend leave teeth, and two trends
+        leave them at the same dates.
 
     Returns
     -------
     LevelShifts
+        Without steps where the line was taken.
 
     Raises
     ------
@@ -101,7 +107,16 @@ def level_shifts(values: ArrayLike) -> LevelShifts:
         noise = long_run_variance(residual)
         strength = fall / (len(steps) * noise * critical) if noise > 0 else np.inf
         candidates.append(LevelShifts(steps, read_only(levels), read_only(residual), strength))
-    return max(candidates, key=lambda found: found.strength)
+    found = max(candidates, key=lambda found: found.strength)
+    if trend:
+        time = np.arange(n) - (n - 1) / 2
+        line = array.mean() + time * float(time @ array) / float(time @ time)
+        residual = array - line
+        two_steps = candidates[1].residual
+        gain = residual @ residual - two_steps @ two_steps
+        if gain <= _TWO_STEPS * long_run_variance(two_steps):
+            return LevelShifts((), read_only(line), read_only(residual), found.strength)
+    return found
 
 
 def long_run_variance(residual: FloatArray) -> float:

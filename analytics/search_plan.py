@@ -117,7 +117,8 @@ def search_plan(
     level or of spread are what phase surrogates do not survive, and a single shift that both
     series have is one event, not evidence of a lag. Where the one or two steps of `level_shifts`
     have a strength above 1.5 in both series, both are freed of them; where the same holds for
-    the absolute residuals, these are also divided by their spread.
+    the absolute residuals, these are also divided by their spread. A trend that explains
+    about as much as two steps is taken out in their place.
     """
     x, y = growth_pair(driver, response)
     count = whole("surrogates", surrogates, 1)
@@ -142,7 +143,7 @@ def search_plan(
     if abs(np.corrcoef(x, y)[0, 1]) > 1.0 - 1e-9:
         raise ValueError("driver and response must differ, but they are the same series (r = 1)")
     runs = [_run(x, kernel)]
-    levels = level_shifts(x), level_shifts(y)
+    levels = level_shifts(x, trend=True), level_shifts(y, trend=True)
     spreads = tuple(level_shifts(np.abs(found.residual)) for found in levels)
     evened = _strong(spreads)
     if evened or _strong(levels):

@@ -76,6 +76,21 @@ def test_long_run_variance_of_short_series():
     assert long_run_variance(residual) == pytest.approx(plain_long_run_variance(residual))
 
 
+def test_a_trend_takes_the_place_of_its_steps_when_asked():
+    rng = np.random.default_rng(3)
+    months = np.arange(600)
+    values = 0.01 * months + rng.standard_normal(600)
+    steps, line = level_shifts(values), level_shifts(values, trend=True)
+    assert len(steps.steps) == 2
+    assert line.steps == ()
+    assert line.strength == steps.strength > 1.5
+    slope, start = np.polyfit(months, values, 1)
+    np.testing.assert_allclose(line.levels, start + slope * months, atol=1e-9)
+    np.testing.assert_allclose(line.residual, values - line.levels, atol=1e-12)
+    shifted = rng.standard_normal(600) + 3.0 * (months >= 250)
+    assert level_shifts(shifted, trend=True).steps == level_shifts(shifted).steps == (250,)
+
+
 def test_errors():
     with pytest.raises(ValueError, match="values must be at least 24 finite numbers"):
         level_shifts(np.arange(23.0))
