@@ -50,7 +50,7 @@ RULES = {
     "app/": rule(
         "analytics app click dash flask flask_caching numpy pandas plotly waitress werkzeug"
     ),
-    "app/state.py": rule("analytics app.state_kinds app.breadth_fields"),
+    "app/state.py": rule("analytics app.state_kinds app.breadth_fields app.reading_fields"),
     "app/state_kinds.py": rule("analytics"),
     "app/breadth_fields.py": rule("app.state_kinds"),
     "app/intake/": rule("analytics app.intake app.places numpy openpyxl pandas"),
