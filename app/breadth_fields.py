@@ -60,7 +60,7 @@ EXCLUDED = Text(
 )
 PACE = Text(
     label="Pace",
-    pattern=r"-?[0-9]{1,3}(\.[0-9]{1,3})?",
+    pattern=r"(-?[0-9]{1,2}|[0-9]{3})(\.[0-9]{1,3})?",
     shape="a number of percent a year such as 2 or 2.5",
     help="Percent a year; diffusion also counts the components that rise faster.",
 )

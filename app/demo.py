@@ -1,9 +1,6 @@
 """The invented economy that opens when no file is given."""
 
-from dataclasses import replace
-
 from app.intake.reading import Release, demo_metadata, read_release
-from app.intake.weights import weight_series
 from app.places import bundled
 
 FILES = ("economy_monthly.csv", "divisions.csv", "output_quarterly.csv")
@@ -14,8 +11,7 @@ def demo_releases() -> tuple[Release, ...]:
     """Read the files of the invented economy, with what its publisher says of each series."""
     folder = bundled("data_samples")
     notes = demo_metadata((folder / "series.csv").read_text(encoding="utf-8"))
-    releases = [
-        read_release(name, (folder / name).read_bytes(), metadata=notes.get(name)) for name in FILES
-    ]
-    weights = read_release(WEIGHTS, (folder / WEIGHTS).read_bytes())
-    return (*releases, replace(weights, series=weight_series(WEIGHTS, weights.series)))
+    return tuple(
+        read_release(name, (folder / name).read_bytes(), metadata=notes.get(name))
+        for name in (*FILES, WEIGHTS)
+    )

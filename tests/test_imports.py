@@ -53,6 +53,7 @@ RULES = {
     "app/state.py": rule("analytics app.state_kinds app.breadth_fields app.reading_fields"),
     "app/state_kinds.py": rule("analytics"),
     "app/breadth_fields.py": rule("app.state_kinds"),
+    "app/reading_fields.py": rule("app.state_kinds"),
     "app/intake/": rule("analytics app.intake app.places numpy openpyxl pandas"),
     "app/figures/": rule(
         "analytics app.compute app.state app.figures app.places numpy pandas plotly",

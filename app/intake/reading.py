@@ -19,6 +19,7 @@ from app.intake.sdmx_csv import is_sdmx_csv, read_sdmx_csv
 from app.intake.sdmx_json import read_sdmx_json
 from app.intake.sdmx_xml import read_sdmx_xml
 from app.intake.sheets import Metadata, read_sheet
+from app.intake.weights import canonical, recognised
 from app.intake.xlsx_files import is_workbook, read_workbook
 
 __all__ = [
@@ -68,7 +69,8 @@ def read_release(
     SDMX is read as CSV (1.0, 2.x), as XML (2.1, generic and structure-specific) and as JSON
     (1.0, 2.0); the labels of the dimensions that vary make the name. Kind, unit and adjustment
     are what the file states, else told from name and values by the rule in
-    `app.intake.kinds.inferred_kind`, unless `metadata` gives them.
+    `app.intake.kinds.inferred_kind`, unless `metadata` gives them. A file of weights, a row a
+    year, gives series named "Weight of ..." (`app.intake.weights.recognised`).
 
     Parameters
     ----------
@@ -102,7 +104,7 @@ def _release(file: str, series: Iterable[Series], problems: Iterable[Problem]) -
     """Put problems in order of weight."""
     rank = {"error": 0, "warning": 1, "note": 2}
     found = sorted(problems, key=lambda problem: rank[problem.severity])
-    return Release(file, tuple(series), tuple(found))
+    return Release(file, recognised(file, tuple(series)), tuple(found))
 
 
 def _read_file(
@@ -122,7 +124,7 @@ def _read_file(
     elif is_sdmx_csv(text):
         series, problems = read_sdmx_csv(file, text, metadata)
     else:
-        series, problems = read_sheet(split_rows(file, text), metadata)
+        series, problems = read_sheet(split_rows(file, canonical(text)), metadata)
     return series, [*notes, *problems]
 
 

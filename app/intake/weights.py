@@ -21,7 +21,7 @@ UNIT = "weight"
 _HEADER = {  # words of a long header, and what the reader of tables calls them
     "period": ("period", "year", "date", "time", "time_period"),
     "series": ("series", "component", "name", "item", "division", "group", "code"),
-    "value": ("value", "weight", "weights", "share", "obs_value"),
+    "value": ("weight", "weights", "share"),
 }
 _CELL = re.compile(r"[^,;\t]+")
 
@@ -111,22 +111,26 @@ def weight_table(series: Iterable[Series], source: str = "") -> WeightTable | No
     return WeightTable(tuple(int(year) for year in table.index), names, table.to_numpy(), source)
 
 
-def canonical(content: bytes) -> bytes:
-    """Return a long file of weights under the header that the reader of tables knows.
+def canonical(text: str) -> str:
+    r"""Return a long file of weights under the header that the reader of tables knows.
 
     Year, component and weight become period, series and value; another file stays as it is.
+
+    Examples
+    --------
+    >>> canonical("Year,Component,Weight\n2024,Food,600\n")
+    'period,series,value\n2024,Food,600\n'
     """
     start = 0
-    for line in content.splitlines(keepends=True)[:20]:
-        text = line.decode("utf-8-sig", errors="replace")
-        words = [cell.strip().strip('"').strip().lower() for cell in _CELL.findall(text)]
+    for line in text.splitlines(keepends=True)[:20]:
+        words = [cell.strip().strip('"').strip().lower() for cell in _CELL.findall(line)]
         known = [next((new for new, old in _HEADER.items() if word in old), None) for word in words]
         if len(known) == 3 and set(known) == set(_HEADER):
-            separator = next((sign for sign in ("\t", ";") if sign in text), ",")
+            separator = next((sign for sign in ("\t", ";") if sign in line), ",")
             header = separator.join(str(word) for word in known) + "\n"
-            return content[:start] + header.encode() + content[start + len(line) :]
+            return text[:start] + header + text[start + len(line) :]
         start += len(line)
-    return content
+    return text
 
 
 def _as_weight(series: Series) -> Series:

@@ -78,7 +78,7 @@ BY_NAME = {
     "split": periods,
     "trim": st.integers(0, 99).map(str),
     "excluded": st.one_of(st.just(""), st.lists(names, min_size=1, max_size=3).map("|".join)),
-    "pace": st.integers(-999, 999).map(str),
+    "pace": st.integers(-99, 999).map(str),
 }
 
 
@@ -239,6 +239,7 @@ BAD = [
     ("trim", "1:2:3"),
     ("pace", "fast"),
     ("pace", "2,5"),
+    ("pace", "-100"),
     ("link", "0"),
     ("link", "13"),
     ("excluded", "a\x00"),

@@ -1,0 +1,288 @@
+"""Charts of the Breadth page: contributions, strip, core measures, diffusion, weights."""
+
+from html import escape
+
+import numpy as np
+import pandas as pd
+import plotly.graph_objects as go
+
+from analytics.series import period_label
+from app.figures.theme import colour, diverging, template
+
+PARTS = tuple(f"part-{number}" for number in range(1, 8))
+DASHES = ("solid", "solid", "dash", "dot", "dashdot")
+MOST_LABELS = 45  # components that the strip names on its axis
+RATES_SHOWN = 95  # percentile of absolute rates at which the colours of the strip end
+
+
+def contribution_bars(names: list[str], points: np.ndarray, unit: str) -> go.Figure:
+    """Draw a bar a component for one print, in the order given, the first on top."""
+    shown = [_label(name) for name in names]
+    figure = go.Figure(
+        go.Bar(
+            x=points,
+            y=[escape(name, False) for name in names],
+            orientation="h",
+            marker={"color": [colour("high-2") if p >= 0 else colour("low-2") for p in points]},
+            text=[f"{p:+.2f}".replace("-", "−") for p in points],
+            textposition="outside",
+            cliponaxis=False,
+            hovertemplate="%{y}: %{x:+.3f} points<extra></extra>",
+        )
+    )
+    low, high = min(0.0, float(points.min())), max(0.0, float(points.max()))
+    room = 0.16 * max(high - low, 1e-9)
+    figure.update_layout(
+        template=template(),
+        margin={"l": _room(shown), "r": 12, "t": 8, "b": 44},
+        bargap=0.3,
+        xaxis={
+            "title": {"text": unit},
+            "range": [low - (room if low < 0 else 0), high + room],
+            "zeroline": True,
+            "zerolinecolor": colour("ink"),
+            "zerolinewidth": 1,
+        },
+        yaxis={
+            "type": "category",
+            "tickvals": [escape(name, False) for name in names],
+            "ticktext": shown,
+            "autorange": "reversed",
+            "showgrid": False,
+            "ticks": "",
+        },
+    )
+    return figure
+
+
+def contribution_history(
+    periods: pd.PeriodIndex, parts: dict[str, np.ndarray], rate: np.ndarray, total: str, unit: str
+) -> go.Figure:
+    """Draw contributions stacked through time, and the rate they add up to.
+
+    `parts` is in the order of the stack; its last entry is the rest.
+    """
+    when = periods.to_timestamp()
+    labels = [period_label(period) for period in periods]
+    figure = go.Figure()
+    for place, (name, values) in enumerate(parts.items()):
+        token = "rest" if place == len(parts) - 1 and place > 0 else PARTS[place % len(PARTS)]
+        figure.add_trace(
+            go.Bar(
+                x=when,
+                y=values,
+                text=labels,
+                textposition="none",
+                name=_label(name),
+                marker={"color": colour(token), "line": {"width": 0}},
+                hovertemplate=f"%{{text}}: {escape(name, False)} %{{y:+.2f}}<extra></extra>",
+            )
+        )
+    figure.add_trace(
+        go.Scatter(
+            x=when,
+            y=rate,
+            text=labels,
+            mode="lines",
+            line={"color": colour("ink"), "width": 1.8},
+            name=_label(total),
+            hovertemplate="%{text}: rate %{y:+.2f}<extra></extra>",
+        )
+    )
+    figure.update_layout(
+        template=template(),
+        margin={"l": 56, "r": 12, "t": 54, "b": 28},
+        barmode="relative",
+        bargap=0,
+        showlegend=True,
+        legend=_above(),
+        yaxis={"title": {"text": unit}, "zeroline": True, "zerolinecolor": colour("ink")},
+    )
+    return figure
+
+
+def component_strip(
+    periods: pd.PeriodIndex,
+    names: list[str],
+    rates: np.ndarray,
+    ranks: np.ndarray,
+    *,
+    by_rank: bool,
+    over: str,
+) -> go.Figure:
+    """Draw a row a component and a column a period, coloured by rank or by rate.
+
+    `rates` and `ranks` have shape (periods, components).
+    """
+    values, other = (ranks, rates) if by_rank else (rates, ranks)
+    known = np.abs(rates[~np.isnan(rates)])
+    top = 50.0 if by_rank else float(np.percentile(known, RATES_SHOWN)) if known.size else 1.0
+    top = top or 1.0
+    middle = 50.0 if by_rank else 0.0
+    hover = (
+        f"rank %{{z:.0f}} of its own history, {over} rate %{{customdata:.2f}} %"
+        if by_rank
+        else f"{over} rate %{{z:.2f}} %, rank %{{customdata:.0f}} of its own history"
+    )
+    few = len(names) <= MOST_LABELS
+    shown = [_label(name) for name in names]
+    figure = go.Figure(
+        go.Heatmap(
+            x=periods.to_timestamp(),
+            y=[escape(name, False) for name in names],
+            z=values.T.astype(np.float32),
+            customdata=other.T.astype(np.float32),
+            zmin=middle - top,
+            zmax=middle + top,
+            colorscale=diverging(),
+            xgap=0,
+            ygap=1 if few else 0,
+            colorbar={
+                "thickness": 10,
+                "outlinewidth": 0,
+                "xpad": 4,
+                "title": {
+                    "text": "rank in own history" if by_rank else f"{over} rate (%)",
+                    "side": "right",
+                },
+            },
+            hovertemplate="%{x|%b %Y}<br>%{y}: " + hover + "<extra></extra>",
+        )
+    )
+    figure.update_layout(
+        template=template(),
+        margin={"l": _room(shown) if few else 56, "r": 70, "t": 8, "b": 28},
+        xaxis={"showgrid": False},
+        yaxis={
+            "autorange": "reversed",
+            "showgrid": False,
+            "ticks": "",
+            "type": "category",
+            "tickvals": [escape(name, False) for name in names],
+            "ticktext": shown,
+            "showticklabels": few,
+            **({} if few else {"title": {"text": f"{len(names)} components, largest on top"}}),
+        },
+    )
+    return figure
+
+
+def core_lines(
+    periods: pd.PeriodIndex, measures: dict[str, np.ndarray], trend: np.ndarray | None, over: str
+) -> go.Figure:
+    """Draw core measures beside the rate of all items, which comes first in `measures`."""
+    when = periods.to_timestamp()
+    labels = [period_label(period) for period in periods]
+    tokens = ("response", "fit", "other", "mark", "low-2")
+    figure = go.Figure()
+    if trend is not None:
+        figure.add_trace(
+            go.Scatter(
+                x=when,
+                y=trend,
+                mode="lines",
+                line={"color": colour("rule"), "width": 6},
+                name="centred trend of all items",
+                hoverinfo="skip",
+            )
+        )
+    for place, (name, values) in enumerate(measures.items()):
+        figure.add_trace(
+            go.Scatter(
+                x=when,
+                y=values,
+                text=labels,
+                mode="lines",
+                name=_label(name),
+                line={
+                    "color": colour(tokens[place % len(tokens)]),
+                    "width": 2.2 if place == 0 else 1.6,
+                    "dash": DASHES[place % len(DASHES)],
+                },
+                hovertemplate=f"%{{text}}: {escape(name, False)} %{{y:.2f}} %<extra></extra>",
+            )
+        )
+    figure.update_layout(
+        template=template(),
+        margin={"l": 56, "r": 12, "t": 54, "b": 28},
+        showlegend=True,
+        legend=_above(),
+        yaxis={"title": {"text": f"{over} rate (%)"}},
+    )
+    return figure
+
+
+def diffusion_lines(periods: pd.PeriodIndex, lines: dict[str, np.ndarray]) -> go.Figure:
+    """Draw shares of components that rise; 50 is where rises and falls balance."""
+    when = periods.to_timestamp()
+    labels = [period_label(period) for period in periods]
+    tokens = ("ink", "fit", "mark", "other")
+    figure = go.Figure(
+        [
+            go.Scatter(
+                x=when,
+                y=values,
+                text=labels,
+                mode="lines",
+                name=_label(name),
+                line={
+                    "color": colour(tokens[place % len(tokens)]),
+                    "width": 1.6,
+                    "dash": ("solid", "dash")[place % 2],
+                },
+                hovertemplate=f"%{{text}}: {escape(name, False)} %{{y:.0f}}<extra></extra>",
+            )
+            for place, (name, values) in enumerate(lines.items())
+        ]
+    )
+    figure.add_hline(y=50, line={"color": colour("ink"), "width": 0.7, "dash": "dot"})
+    figure.update_layout(
+        template=template(),
+        margin={"l": 56, "r": 12, "t": 54, "b": 28},
+        showlegend=True,
+        legend=_above(),
+        yaxis={"title": {"text": "share (0 to 100)"}, "range": [-2, 102]},
+    )
+    return figure
+
+
+def weight_areas(periods: pd.PeriodIndex, parts: dict[str, np.ndarray]) -> go.Figure:
+    """Draw effective weights through time, stacked to 100 percent; the last part is the rest."""
+    when = periods.to_timestamp()
+    labels = [period_label(period) for period in periods]
+    figure = go.Figure()
+    for place, (name, values) in enumerate(parts.items()):
+        token = "rest" if place == len(parts) - 1 and place > 0 else PARTS[place % len(PARTS)]
+        figure.add_trace(
+            go.Scatter(
+                x=when,
+                y=100.0 * values,
+                text=labels,
+                mode="lines",
+                stackgroup="one",
+                line={"color": colour("paper"), "width": 0.6},
+                fillcolor=colour(token),
+                name=_label(name),
+                hovertemplate=f"%{{text}}: {escape(name, False)} %{{y:.2f}} %<extra></extra>",
+            )
+        )
+    figure.update_layout(
+        template=template(),
+        margin={"l": 56, "r": 12, "t": 54, "b": 28},
+        showlegend=True,
+        legend=_above(),
+        yaxis={"title": {"text": "weight (%)"}, "range": [0, 100]},
+    )
+    return figure
+
+
+def _label(name: str) -> str:
+    return escape(name if len(name) <= 34 else name[:32] + "…", False)
+
+
+def _room(labels: list[str]) -> int:
+    return min(250, 20 + int(6.6 * max(map(len, labels), default=8)))
+
+
+def _above() -> dict[str, object]:
+    return {"orientation": "h", "x": 0, "y": 1, "yanchor": "bottom", "font": {"size": 11}}
