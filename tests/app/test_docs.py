@@ -111,7 +111,7 @@ REGISTRY = re.compile(
     r"|deb\.deb[i]an|conda-f[o]rge\.org|proxy\.golan[g]|rubyg[e]ms\.org",
     re.IGNORECASE,
 )
-MACHINE = re.compile(r"(?<![\w.:/-])/(work|tmp|root|mnt|Users|home/(?!desk))(?=[/\s\"'`]|$)")
+MACHINE = re.compile(r"(?<![\w.:/>}-])/(work|tmp|root|mnt|Users|home/(?!desk))(?=[/\s\"'`]|$)")
 
 
 def test_no_file_names_a_package_registry_or_a_path_of_a_machine():
@@ -139,7 +139,16 @@ def test_the_search_finds_what_it_looks_for(line):
 
 
 @pytest.mark.parametrize(
-    "line", ["app/work/x", "a network/path", "/root_cause", "http://127.0.0.1/tmp-page", "a/tmp/b"]
+    "line",
+    [
+        "app/work/x",
+        "/<page>/work/<kind>",
+        "${page}/work/${kind}",
+        "a network/path",
+        "/root_cause",
+        "http://127.0.0.1/tmp-page",
+        "a/tmp/b",
+    ],
 )
 def test_the_search_leaves_other_words_alone(line):
     assert not REGISTRY.search(line)
