@@ -17,6 +17,7 @@ from analytics.series import period_code
 from analytics.shiftset import shift_set
 from analytics.stability import rolling_stability
 from app import evidence as ev
+from app.cli import LAG_FIELDS
 from app.compute import Bridge, cell_span, grid
 from app.demo import demo_releases
 from app.state import StateError, ViewState
@@ -39,6 +40,7 @@ EVERY_CHANGE = {
     "seed": 2,
     "without": "2000-03:2001-03",
     "quantity": "slope",
+    "as_of": "2100-01-01",
 }
 
 
@@ -308,7 +310,7 @@ def test_a_key_changes_with_everything_its_work_depends_on(kind, free):
     money, prices = planted()
     bridge = fresh(money, prices, replace(prices, name="Other"))
     whole = keys(kind, bridge)
-    assert set(EVERY_CHANGE) | {"driver"} == set(ViewState.__dataclass_fields__)
+    assert set(EVERY_CHANGE) | {"driver"} == {*LAG_FIELDS, "quantity"}
     for name, value in EVERY_CHANGE.items():
         assert (keys(kind, bridge, **{name: value}) == whole) is (name in free), name
     assert keys(kind, bridge, driver="Other") != whole
