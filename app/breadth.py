@@ -68,6 +68,10 @@ class Breadth:
         Components.
     periods : PeriodIndex, shape (n,)
         Up to the print, which is the last.
+    per_year : int
+        Periods in a year.
+    noun : str
+        Month, quarter or year.
     start : int
         First period of the sample of the state.
     span : int
@@ -92,6 +96,8 @@ class Breadth:
         Why there is nothing weighted; empty otherwise.
     prices : mapping of str to Series
         The components as loaded.
+    weights_source, weights_fingerprint : str
+        File and content of the weights.
     """
 
     state: ViewState
@@ -115,6 +121,7 @@ class Breadth:
     refusal: str
     prices: Mapping[str, Series]
     weights_source: str
+    weights_fingerprint: str
 
     @property
     def drawn(self) -> slice:
@@ -235,6 +242,7 @@ def _computed(
         refusal,
         found,
         table.source,
+        table.fingerprint,
     )
 
 

@@ -45,7 +45,7 @@ class Row:
 
 
 def rows(shown: Breadth) -> list[Row]:
-    """Return every component in the order that the state asks for; what has no number comes last."""
+    """Return every component in the order of the state; what has no number comes last."""
     k = len(shown.names)
     none = np.full(k, np.nan)
     found = shown.weighted
