@@ -10,24 +10,19 @@ from typing import Any
 from dash import Dash, Input, Output, State, dcc, html
 from plotly.graph_objects import Figure
 
-from analytics.series import Pair, period_label
 from app import controls
 from app.compute import Bridge, cell_span, noun
 from app.evidence import (
     WORK,
-    Directions,
-    Evidence,
-    episode_code,
     evidence,
     without_episode,
 )
 from app.figures import evidence as figures
 from app.figures.theme import CONFIG
+from app.pages import lag_words
 from app.state import StateError, ViewState
-from app.verdict import effective_words, fragility, verdict
-from app.words import counted, p_words, percent, plain, runs_words, shift_words, signed
+from app.verdict import verdict
 
-MOST_EPISODES = 8
 FOLDS = {
     "profile": "Which shifts fit as well",
     "plane": "Where intercept and slope may lie",
@@ -166,12 +161,12 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
     if results.get("stability") is not None:
         charts["stability"] = figures.stability_courses(results["stability"], pair, start)
     words = {
-        "profile": _profile_words(known, pair, state),
-        "plane": _plane_words(known, pair),
-        "episodes": _episode_words(known, pair, state, refused),
-        "opinions": _opinion_words(results, refusals, pair),
-        "stability": _stability_words(results, refusals, pair),
-        "method": _method_words(known, pair),
+        "profile": lag_words.profile_words(known, pair, state),
+        "plane": lag_words.plane_words(known, pair),
+        "episodes": lag_words.episode_words(known, pair, state, refused),
+        "opinions": lag_words.opinion_words(results, refusals, pair),
+        "stability": lag_words.stability_words(results, refusals, pair),
+        "method": lag_words.method_words(known, pair),
     }
     data = {
         "state": vars(state),
@@ -187,246 +182,11 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
         ),
     }
     return (
-        _strip(known, state, noun(pair)),
+        lag_words.p_strip(known, state, noun(pair)),
         " ".join(verdict(known, pair, state)),
         *[words[name] for name in FOLDS],
         data,
     )
-
-
-def _strip(known: Evidence, state: ViewState, unit: str) -> list[html.Div]:
-    inference, found = known.inference, known.search
-    whole = p_words(found.p) if found else "not searched"
-    return [
-        _figure(
-            "naive p",
-            p_words(known.naive_p),
-            "As if the overlapping months of this cell were independent. They are not.",
-        ),
-        _figure(
-            "per-cell p",
-            p_words(inference.p),
-            f"{effective_words(inference.n, inference.effective_months, unit)};"
-            " as if this cell had been the only one looked at.",
-        ),
-        _figure(
-            "search-adjusted p",
-            whole,
-            "For the best cell of the whole map, the search paid for; two-sided."
-            + (f" One-sided {p_words(found.p_one_sided)}." if found else ""),
-        ),
-        html.Div(
-            html.Dd(effective_words(inference.n, inference.effective_months, unit)),
-            title="What overlapping, smoothed months are worth (Bartlett 1946).",
-            className="strip-item worth",
-        ),
-    ]
-
-
-def _figure(name: str, value: str, meaning: str) -> html.Div:
-    return html.Div(
-        [html.Dt(name), html.Dd(value), html.Span(meaning, className="hidden-label")],
-        title=meaning,
-        className="strip-item",
-    )
-
-
-def _profile_words(known: Evidence, pair: Pair, state: ViewState) -> list[Any]:
-    if known.refusal:
-        return [html.P(f"There is no search here: {known.refusal}.")]
-    if known.search is None:
-        return [html.P("This is shown once the search is done.")]
-    if not known.found:
-        return [
-            html.P(
-                "A set of shifts means something only where the search holds at 5 %. It does not"
-                f" here (p {p_words(known.search.p)}), so none is shown."
-            )
-        ]
-    if known.set_refusal:
-        return [html.P(f"There is no set here: {known.set_refusal}.")]
-    if known.shift_set is None:
-        return [html.P("Being worked out.")]
-    return [
-        html.P(
-            f"Filled points: shifts that a simulated test at window {state.window} does not"
-            f" reject ({known.shift_set.level:.0%}, {known.shift_set.draws} simulated responses"
-            " a shift). Rings: the quick closed-form preview. The window is taken as chosen"
-            " beforehand; having looked at many is not paid for here."
-        )
-    ]
-
-
-def _plane_words(known: Evidence, pair: Pair) -> list[Any]:
-    inference, unit = known.inference, noun(pair)
-    low, high = inference.slope_interval
-    return [
-        html.P(
-            f"Slope {plain(inference.slope, 3)}, {inference.level:.0%} interval"
-            f" {plain(low, 3)} to {plain(high, 3)}; correlation"
-            f" {signed(inference.correlation)} ({signed(inference.correlation_interval.low)} to"
-            f" {signed(inference.correlation_interval.high)}). "
-            f"{effective_words(inference.n, inference.effective_months, unit).capitalize()}."
-            " Seasonal means are taken out first."
-        )
-    ]
-
-
-def _episode_words(known: Evidence, pair: Pair, state: ViewState, refused: str) -> list[Any]:
-    influence, start = known.influence, cell_span(pair, state)[0]
-    ranked = sorted(influence.episodes, key=lambda e: -max(abs(e.share), e.weight))
-    rows = []
-    for episode in ranked[:MOST_EPISODES]:
-        code = episode_code(episode, pair, state)
-        first = period_label(pair.periods[start + episode.first_month])
-        last = period_label(pair.periods[start + episode.stop_month - 1])
-        chosen = state.without == code
-        rows.append(
-            html.Tr(
-                [
-                    html.Td(
-                        html.Button(
-                            f"{first} to {last}",
-                            type="button",
-                            className="episode",
-                            **{
-                                "data-without": "" if chosen else code,
-                                "aria-pressed": str(chosen).lower(),
-                            },
-                        )
-                    ),
-                    html.Td("high" if episode.high else "low"),
-                    html.Td(percent(episode.share)),
-                    html.Td("too few left" if episode.too_few_left else percent(episode.change)),
-                    html.Td(p_words(episode.p_without)),
-                ]
-            )
-        )
-    head = ("Episode of the driver", "Driver", "Share", "Slope without it", "Per-cell p without it")
-    return [
-        html.P(fragility(known, pair, state)),
-        *([html.P(refused, className="message")] if refused else []),
-        html.Table(
-            [
-                html.Thead(html.Tr([html.Th(text, scope="col") for text in head])),
-                html.Tbody(rows),
-            ],
-            className="table",
-        ),
-        html.P(
-            f"The {min(MOST_EPISODES, len(ranked))} of {counted(len(ranked), 'episode')} that"
-            " matter most. Choose one to see the cell without it.",
-            className="quiet",
-        ),
-    ]
-
-
-def _opinion_words(results: dict[str, Any], refusals: dict[str, str], pair: Pair) -> list[Any]:
-    unit = noun(pair)
-    opinions, directions = results.get("opinions"), results.get("directions")
-    if refusals.get("opinions"):
-        return [html.P(f"Other methods cannot be asked here: {refusals['opinions']}.")]
-    if opinions is None:
-        return [html.P("Being worked out.")]
-    rows = [
-        (
-            o.method,
-            shift_words(o.shift, unit),
-            f"{plain(o.estimate)} ({plain(o.low)} to {plain(o.high)})",
-            "yes" if o.clear else "no",
-        )
-        for o in opinions.opinions
-    ]
-    samples = dict(opinions.variants)
-    if opinions.halves is not None:
-        samples |= {"first half": opinions.halves.first, "second half": opinions.halves.second}
-    rows += [
-        (
-            name,
-            shift_words(best.best_shift, unit),
-            f"chosen cell r {signed(best.correlation)}, slope {plain(best.slope)}",
-            f"p {p_words(best.p)}",
-        )
-        for name, best in samples.items()
-    ]
-    parts: list[Any] = [
-        html.P(
-            "Other ways to ask for the lag. They are put side by side and not averaged: where they"
-            " disagree, the lag depends on how it is asked for."
-        ),
-        html.Table(
-            [
-                html.Thead(
-                    html.Tr(
-                        [
-                            html.Th(text, scope="col")
-                            for text in ("Method", "Strongest at", "Estimate", "Clear of zero")
-                        ]
-                    )
-                ),
-                html.Tbody([html.Tr([html.Td(text) for text in row]) for row in rows]),
-            ],
-            className="table",
-        ),
-    ]
-    parts += [
-        html.P(f"{name}: {why}.", className="quiet") for name, why in opinions.missing.items()
-    ]
-    if isinstance(directions, Directions):
-        forward, backward = directions.forward, directions.backward
-        parts.append(
-            html.P(
-                "Direction, both searched as strictly over shifts 1 to"
-                f" {forward.shifts[-1]}: driver first, search-adjusted p {p_words(forward.p)}"
-                f" (best at {shift_words(forward.best_shift, unit)}); response first,"
-                f" p {p_words(backward.p)} (best at {shift_words(backward.best_shift, unit)})."
-            )
-        )
-    return parts
-
-
-def _stability_words(results: dict[str, Any], refusals: dict[str, str], pair: Pair) -> list[Any]:
-    stable = results.get("stability")
-    if refusals.get("stability"):
-        return [html.P(f"The slope cannot be followed here: {refusals['stability']}.")]
-    if stable is None:
-        return [html.P("Being worked out.")]
-    return [
-        html.P(
-            f"If the relation had been the same throughout, a slope over {stable.span}"
-            f" {noun(pair)}s would stray this far somewhere with probability"
-            f" {p_words(stable.rolling_slope.p_constant)}."
-        )
-    ]
-
-
-def _method_words(known: Evidence, pair: Pair) -> list[Any]:
-    found, unit = known.search, noun(pair)
-    if found is None:
-        return [html.P("This is shown once the search is done.")]
-    dropped = (
-        f" The {counted(found.months_dropped, f'oldest {unit}')} were left out, so that whole years"
-        " are searched."
-        if found.months_dropped
-        else ""
-    )
-    return [
-        html.P(found.method),
-        html.P(
-            f"Searched: windows {found.windows[0]} to {found.windows[-1]}, shifts"
-            f" {runs_words([int(found.shifts[0])])} to {runs_words([int(found.shifts[-1])])}"
-            f" {unit}s, each cell with all {unit}s it has; {found.months_used} {unit}s,"
-            f" {found.surrogates} surrogates, seed {found.seed}.{dropped}"
-        ),
-        html.P(
-            f"Two-sided p {p_words(found.p)}; one-sided, for a positive relation,"
-            f" {p_words(found.p_one_sided)}. Largest correlation of the map:"
-            f" {signed(found.largest_correlation)} at window {found.largest_window} and shift"
-            f" {shift_words(found.largest_shift, unit)}; wide windows at far shifts have few"
-            f" independent {unit}s and often own it by chance, so the search weighs each cell by"
-            " what unrelated drivers reach there."
-        ),
-    ]
 
 
 def _plot(name: str) -> html.Div:

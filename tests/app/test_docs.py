@@ -161,11 +161,7 @@ def test_the_search_sees_the_files():
 
 
 LONGEST = 400
-STILL_LONGER = {
-    "app/pages/lag.py": 430,
-    "app/pages/lag_evidence.py": 450,
-    "assets/page-lag.js": 420,
-}  # to be split; may not grow
+STILL_LONGER: dict[str, int] = {}  # to be split; may not grow
 
 
 def test_no_file_of_code_is_longer_than_400_lines():

@@ -19,7 +19,8 @@ from app.evidence import (
     stability_work,
 )
 from app.figures import evidence as figures
-from app.pages.lag_evidence import FOLDS, MOST_EPISODES, answer
+from app.pages.lag_evidence import FOLDS, answer
+from app.pages.lag_words import MOST_EPISODES
 from app.server import build_app
 from app.verdict import fragility, verdict
 from app.words import p_words, percent, shift_words
