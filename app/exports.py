@@ -128,14 +128,18 @@ def csv_text(head: Iterable[tuple[str, str]], rows: Iterable[Sequence[Any]]) -> 
 
 
 def file_stem(name: str, state: ViewState) -> str:
-    """Return a file name without ending: view, series, window and shift, in plain letters."""
-    words = (
-        f"{name} {state.driver} {state.response} window {state.window} shift {state.shift}".replace(
-            "shift -", "shift minus "
-        )
-    )
-    ascii_words = unicodedata.normalize("NFKD", words).encode("ascii", "ignore").decode()
-    return re.sub(r"[^A-Za-z0-9]+", "-", ascii_words).strip("-").lower()[:120]
+    """Return a file name without ending: view, series, window and shift, in plain letters.
+
+    Long series names are cut, so that window and shift always stay in the name.
+    """
+    sides = f"{_plain(state.driver)[:40]}-{_plain(state.response)[:40]}"
+    shift = f"minus-{-state.shift}" if state.shift < 0 else str(state.shift)
+    return re.sub("-+", "-", f"{name}-{sides}-window-{state.window}-shift-{shift}")
+
+
+def _plain(text: str) -> str:
+    ascii_text = unicodedata.normalize("NFKD", text).encode("ascii", "ignore").decode()
+    return re.sub(r"[^A-Za-z0-9]+", "-", ascii_text).strip("-").lower()
 
 
 def _field(value: Any) -> str:

@@ -4,14 +4,12 @@
 (function () {
   "use strict";
   const pricewake = (window.pricewake = window.pricewake || {});
-  const { numbers, calendar, ghost, theme, controls } = pricewake;
+  const { numbers, calendar, ghost, theme, controls, words } = pricewake;
   const RESTING = 140; // milliseconds without a move
   const page = { data: null, state: null, cell: null, timer: 0, frame: 0, moves: 0 };
 
   const byId = (id) => document.getElementById(id);
-  const signed = (value, digits) => (value < 0 ? "−" : "+") + Math.abs(value).toFixed(digits);
-  const plain = (value, digits) => (value < 0 ? "−" : "") + Math.abs(value).toFixed(digits);
-  const counted = (n, noun) => `${n} ${noun}${n === 1 ? "" : "s"}`;
+  const { counted, signed } = pricewake.words;
 
   /* The part of the sample that a cell may use: compute.cell_span. */
   function span(data, window, shift) {
@@ -52,24 +50,11 @@
 
   /* Words ------------------------------------------------------------------------------------ */
 
-  function sentenceParts({ window, shift }) {
-    const { driver, response, noun } = page.data;
-    const smoothed = window === 1 ? `one ${noun} at a time` : `averaged over ${window} ${noun}s`;
-    const later = shift > 0 ? `${counted(shift, noun)} later` : shift < 0 ? `${counted(-shift, noun)} earlier` : `of the same ${noun}`;
-    return [driver.name, ", ", ["window", smoothed, ","], " against ", response.name, " ", ["shift", later, "."]];
-  }
-
-  function equation(cell) {
-    const { noun } = page.data;
-    const slope = `${cell.slope < 0 ? "−" : "+"} ${Math.abs(cell.slope).toFixed(3)} × driver`;
-    return `response = ${plain(cell.intercept, 3)} ${slope}    r = ${signed(cell.correlation, 2)}    n = ${counted(cell.n, noun)}`;
-  }
-
   function showWords() {
     const { state, cell, data } = page;
     const head = byId("lag-sentence");
     head.replaceChildren(
-      ...sentenceParts(state).map((part) => {
+      ...words.sentenceParts(page.data, state).map((part) => {
         if (typeof part === "string") return document.createTextNode(part);
         const button = document.createElement("button");
         button.type = "button";
@@ -83,7 +68,7 @@
         return unbroken;
       }),
     );
-    byId("lag-equation").textContent = cell ? equation(cell) : "";
+    byId("lag-equation").textContent = cell ? words.equation(data, cell) : "";
     byId("lag-readout").textContent = cell
       ? `Correlation ${signed(cell.correlation, 2)} over ${counted(cell.n, data.noun)}, ${data.span}.`
       : `This cell is undefined: it leaves fewer than ${data.minPairs} ${data.noun}s, or one side does not vary.`;
@@ -91,11 +76,11 @@
     const moved = state.shift === 0 ? "" : `, moved ${state.shift > 0 ? "back" : "forward"} by ${away}`;
     byId("lag-driver-words").textContent = data.driver.name;
     byId("lag-response-words").textContent = data.response.name + moved;
-    for (const [name, words] of [
+    for (const [name, said] of [
       ["window", counted(state.window, data.noun)],
       ["shift", `${signed(state.shift, 0)} ${data.noun}${Math.abs(state.shift) === 1 ? "" : "s"}`],
     ]) {
-      controls.field(name).setAttribute("aria-valuetext", words);
+      controls.field(name).setAttribute("aria-valuetext", said);
     }
   }
 
@@ -389,15 +374,9 @@
   Object.assign(page, { move, publish, layOver, query });
   page.busy = () => Boolean(page.timer || page.frame || document.querySelector(".plot.moving"));
   page.settle = settle;
-  page.sentence = () => sentenceParts(page.state).map((p) => (typeof p === "string" ? p : p[1] + p[2])).join("");
-  page.subtitle = (view) =>
-    view === "surface"
-      ? `${page.data.span}. The cross marks the chosen cell.${page.known && page.known.support.length ? " Outside the black line the search-adjusted p is above 5 % (paler)." : ""}`
-      : `${page.equation()}    ${page.data.span}`;
+  page.sentence = () => words.sentenceParts(page.data, page.state).map((p) => (typeof p === "string" ? p : p[1] + p[2])).join("");
+  page.subtitle = (view) => words.subtitle(page, view);
   page.source = () => page.data.source;
-  page.stem = (view) => {
-    const { driver, response, window, shift } = page.state;
-    return `${view} ${driver} ${response} window ${window} shift ${shift < 0 ? "minus " : ""}${Math.abs(shift)}`;
-  };
-  page.equation = () => (page.cell ? equation(page.cell) : "");
+  page.stem = (view, letters) => words.stem(page.state, view, letters);
+  page.equation = () => (page.cell ? words.equation(page.data, page.cell) : "");
 })();

@@ -120,7 +120,7 @@
     sentence: () => page.data.sentence,
     subtitle: (view) => (page.data.subtitles || {})[view] || "",
     source: () => page.data.source,
-    stem: (view) => `${view} ${page.data.stem}`,
+    stem: (view, letters) => `${view}-${letters(page.data.stem).slice(0, 100)}`,
     busy: () => Boolean(page.timer || job.running),
   });
   pricewake.plain = page;

@@ -1,5 +1,5 @@
 /* Save a view as PNG or SVG: the light chart with the state's sentence on top and sources below.
-   A page offers sentence(), subtitle(view), source() and stem(view). */
+   A page offers sentence(), subtitle(view), source() and stem(view, letters). */
 (function () {
   "use strict";
   const pricewake = window.pricewake;
@@ -57,8 +57,9 @@
     return Object.assign(figure, { layout: { ...layout, width, height, autosize: false } });
   }
 
-  const stem = (text) =>
-    text.normalize("NFKD").replace(/[^\x00-\x7f]/g, "").replace(/[^A-Za-z0-9]+/g, "-").replace(/^-+|-+$/g, "").toLowerCase().slice(0, 120);
+  /* Plain letters only: exports._plain. */
+  const letters = (text) =>
+    text.normalize("NFKD").replace(/[^\x00-\x7f]/g, "").replace(/[^A-Za-z0-9]+/g, "-").replace(/^-+|-+$/g, "").toLowerCase();
 
   document.addEventListener("click", (event) => {
     const button = event.target.closest && event.target.closest("[data-save]");
@@ -68,7 +69,7 @@
     const { view, save } = button.dataset;
     const figure = printed(view, page, prefix);
     window.Plotly.downloadImage(figure, {
-      format: save, scale: 2, width: figure.layout.width, height: figure.layout.height, filename: stem(page.stem(view)),
+      format: save, scale: 2, width: figure.layout.width, height: figure.layout.height, filename: page.stem(view, letters).replace(/-+/g, "-"),
     });
   });
 
