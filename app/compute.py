@@ -23,6 +23,7 @@ from analytics.series import (
 from analytics.surface import LagSurface, lag_surface
 from app.jobs import Jobs
 from app.memory import Memory
+from app.pending import Pending
 from app.state import StateError, ViewState, field_kind
 from app.workspace import Workspace, WorkspaceView
 
@@ -53,6 +54,7 @@ class Bridge:
         self.workspace = workspace
         self.memory = Memory(cache)
         self.jobs = Jobs(self.memory)
+        self.pending = Pending()
 
     def in_view(self, state: ViewState) -> WorkspaceView:
         """Return the loaded series, as they stood on the date of the state where it names one."""

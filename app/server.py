@@ -9,20 +9,24 @@ from flask import Flask, Response, abort, request
 from flask_caching import Cache
 from werkzeug.exceptions import HTTPException
 
-from app import exports
+from app import breadth_exports, data_exports, desk_routes, exports, reading_exports
 from app.compute import Bridge
 from app.evidence import WORK
 from app.intake.csv_files import MAX_BYTES
-from app.intake.problems import IntakeError
-from app.intake.reading import read_release
-from app.pages import data, lag
+from app.pages import breadth, data, lag, reading
 from app.places import bundled, software_version
+from app.reading import WORK as READING_WORK
 from app.state import ViewState
 from app.workspace import Workspace
 
-PAGES = (data, lag)
-WORKS = {"lag": WORK}  # page name -> kind -> (state, bridge) -> long work
-EXPORTS = {"lag": exports.csv_export}  # page name -> (view, query, bridge) -> file name, text
+PAGES = (data, reading, breadth, lag)
+WORKS = {"lag": WORK, "reading": READING_WORK}  # page name -> kind -> (state, bridge) -> long work
+EXPORTS = {
+    "breadth": breadth_exports.csv_export,
+    "lag": exports.csv_export,
+    "data": data_exports.csv_export,
+    "reading": reading_exports.csv_export,
+}  # page name -> (view, query, bridge) -> file name, text
 HOSTS = ("127.0.0.1", "localhost", "[::1]")
 INDEX = """<!DOCTYPE html>
 <html lang="en">
@@ -150,21 +154,7 @@ def _register_routes(server: Flask, bridge: Bridge) -> None:
             return {"message": str(error)}, 422
         return {"done": progress.done, "total": progress.total}, 200
 
-    @server.post("/intake")
-    def _intake() -> tuple[dict[str, Any], int]:
-        name = request.args.get("name", "upload.csv")
-        try:
-            release = read_release(name, request.get_data(cache=False))
-        except IntakeError as error:
-            return {"message": str(error)}, 422
-        if not release.series:
-            return {"message": " ".join(str(problem) for problem in release.problems[:3])}, 422
-        bridge.workspace.add(release)
-        return {
-            "file": release.name,
-            "series": [series.name for series in release.series],
-            "problems": len(release.problems),
-        }, 200
+    desk_routes.register(server, bridge)
 
     @server.errorhandler(Exception)
     def _failed(error: Exception) -> tuple[dict[str, str], int] | HTTPException:

@@ -1,6 +1,8 @@
 """Numbers as people read them: the same rules on screen, in verdicts and in the command."""
 
 import math
+import re
+import unicodedata
 
 MINUS = "\N{MINUS SIGN}"
 
@@ -57,3 +59,9 @@ def runs_words(numbers: list[int]) -> str:
             runs.append([number])
     parts = [f"{r[0]:+d}" if len(r) == 1 else f"{r[0]:+d} to {r[-1]:+d}" for r in runs]
     return ", ".join(parts).replace("-", MINUS).replace("+0", "0")
+
+
+def slug(text: str, longest: int = 60) -> str:
+    """Return a name in plain letters for the name of a file: ``consumer-prices``, or nothing."""
+    letters = unicodedata.normalize("NFKD", text).encode("ascii", "ignore").decode().lower()
+    return re.sub(r"[^a-z0-9]+", "-", letters).strip("-")[:longest].strip("-")

@@ -11,7 +11,6 @@ import re
 import shutil
 import sqlite3
 import tempfile
-import unicodedata
 from pathlib import Path
 from typing import Any
 
@@ -21,6 +20,7 @@ from analytics.series import period_code
 from app.intake.problems import plain_text, quoted
 from app.migrations import TABLES, VERSION
 from app.store import Store, WorkspaceError, row_values
+from app.words import slug
 from app.workspace_rows import content_of, period_of, read_series
 
 FORMAT = "pricewake workspace"
@@ -67,7 +67,8 @@ def _write(store: Store, folder: Path) -> int:
             rows = db.execute(f"SELECT * FROM {table} ORDER BY rowid").fetchall()
             index[table] = [row_values(row) for row in rows]
     for row in index["vintages"]:
-        row["values"] = f"vintages/{row['id']:04d}{_slug(row['series'])}.csv"
+        words = slug(row["series"])
+        row["values"] = f"vintages/{row['id']:04d}{'-' if words else ''}{words}.csv"
         series = read_series(
             {**row, "source": ""}, {"kind": row["kind"], "unit": "", "adjustment": "unknown"}
         )
@@ -181,10 +182,3 @@ def _no_export(folder: Path, why: str) -> WorkspaceError:
         f"an import must be the folder of an export, but of {str(folder)!r} {why};"
         " nothing was imported"
     )
-
-
-def _slug(name: str) -> str:
-    """Return the name in plain letters, for people who look into the folder."""
-    plain = unicodedata.normalize("NFKD", name).encode("ascii", "ignore").decode().lower()
-    text = re.sub(r"[^a-z0-9]+", "-", plain).strip("-")[:60].strip("-")
-    return f"-{text}" if text else ""

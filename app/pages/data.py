@@ -1,122 +1,202 @@
-"""The Data page: files in, what was understood, what is wrong with them and where."""
+"""The Data page: files in, what was understood, what is wrong with them, vintages and revisions.
+
+Files are read, shown and only then kept: assets/intake.js sends them, app/desk_routes.py answers,
+and the buttons of the preview decide.
+"""
 
 from typing import Any
 
 from dash import Dash, Input, Output, dcc, html
 
-from analytics.series import Series, period_label
+from app import controls, desk
 from app.compute import Bridge
-from app.intake.problems import Problem
+from app.figures.data import revisions_chart
+from app.pages import data_parts as parts
+from app.pages import plain
+from app.pages.as_of import day_words
+from app.places import software_version
+from app.state import ViewState
+from app.words import counted, signed
+from app.workspace import WorkspaceView, today
 
 PATH, TITLE = "/data", "Data"
+PLACES = ("problems", "series", "files", "revisions-words", "prints")
+CAUTION = (
+    "A first print is the newest value of the vintage in which it first stands here; what was "
+    "published between two files that were loaded is not known. Past revisions say little of the "
+    "next one where the source has changed its method. Files stay on this machine."
+)
 
 
-def layout(_query: str, bridge: Bridge) -> html.Div:
-    """Return the page for what is loaded now."""
-    return html.Div(
-        [
-            html.Header(
-                [
-                    html.H1("Open the files of a release"),
-                    html.P(
-                        "Comma, semicolon or tab separated text: the first column names the "
-                        "periods, every further column is one series. Files stay on this machine.",
-                        className="readout",
-                    ),
-                ],
-                className="headline",
-            ),
-            html.Div(
-                [
-                    html.Span(
-                        className="native",
-                        **{"data-native": "files", "data-type": "file", "data-accept": ".csv,.txt"},
-                    ),
-                    html.P("or drop them here", className="quiet"),
-                    html.P(id="data-message", className="message", role="alert"),
-                ],
-                id="data-drop",
-                className="drop",
-            ),
-            dcc.Store(id="data-tick", data=0),
-            html.Div(_loaded(bridge), id="data-loaded"),
-        ],
-        className="data-page",
+def layout(query: str, bridge: Bridge) -> html.Div:
+    """Return the page for an address; refused values are named and replaced by the usual ones."""
+    state, refused = ViewState.from_query_or_default(query)
+    clear = html.Button("Now", type="button", **{"data-set": "as_of", "data-value": ""})
+    body = [
+        _drop(),
+        dcc.Store(id="data-pending", data=[]),
+        html.Div(id="data-preview", className="preview"),
+        html.Div(id="data-problems"),
+        html.Section(
+            [
+                html.Div(
+                    [html.H2("What was understood"), _csv("series")],
+                    className="view-head",
+                ),
+                html.Div(html.P("Reading what is kept …", className="opening"), id="data-series"),
+            ]
+        ),
+        plain.view(
+            "data",
+            "revisions",
+            "First prints and revisions",
+            wide=True,
+            tools=[controls.select(state, "revised")],
+        ),
+        html.Div(id="data-prints"),
+        html.Div(id="data-files"),
+        html.P(_kept_words(bridge), className="quiet"),
+    ]
+    tools = [controls.day(state, "as_of"), clear]
+    return plain.frame("data", state, tools, body, CAUTION, refused)
+
+
+def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
+    """Return what the page shows for a state."""
+    in_view = bridge.in_view(state)
+    shown = desk.all_series(in_view)
+    found = desk.revised(state, bridge)
+    names = desk.revised_names(in_view)
+    charts, subtitles = {}, {}
+    if found is not None and found.result is not None:
+        charts["revisions"] = revisions_chart(found.result, found.start, found.unit)
+        subtitles["revisions"] = (
+            f"{found.name}, {found.unit}. " + parts.revision_sentences(found)[0]
+        )
+    problems = in_view.problems
+    hidden = bridge.workspace.hidden_files()
+    files = parts.files_table(in_view, hidden)
+    return plain.Answer(
+        state=state,
+        sentence=_sentence(in_view, len(shown)),
+        verdict=_verdict(in_view, found, names),
+        source=f"Source: {found.vintages[-1].series.source if found else 'files in view'}."
+        f" Pricewake {software_version()}.",
+        stem=f"{found.name if found else ''} {state.revised} {state.as_of}",
+        charts=charts,
+        subtitles=subtitles,
+        words={
+            "problems": [html.H2("Found in the files"), *parts.problem_table(problems)]
+            if problems
+            else [],
+            "series": parts.series_table(in_view, shown) if shown else _nothing(in_view),
+            "files": [html.H2("Files"), *files] if files else [],
+            "prints": parts.prints_table(found),
+            "revisions-words": parts.revisions_words(found, names, in_view.placeholder),
+        },
     )
 
 
 def register(app: Dash, bridge: Bridge) -> None:
     """Register the callbacks of this page on an app."""
+    plain.register(app, bridge, "data", answer, PLACES)
 
     @app.callback(
-        Output("data-loaded", "children"),
-        Input("data-tick", "data"),
+        Output("data-preview", "children"),
+        Input("data-pending", "data"),
         prevent_initial_call=True,
     )
-    def _refresh(_tick: int) -> list[Any]:
-        return _loaded(bridge)
+    def _preview(tokens: list[str]) -> list[Any]:
+        found = [(token, bridge.pending.found(token)) for token in tokens or ()]
+        return preview([(t, r) for t, r in found if r is not None], bridge)
 
 
-def _loaded(bridge: Bridge) -> list[Any]:
-    releases = bridge.workspace.releases
-    if not releases:
-        return [html.P("Nothing is loaded yet.", className="empty")]
-    problems = bridge.workspace.problems
-    parts: list[Any] = []
-    if problems:
-        parts += [html.H2("Found in the files"), _problem_table(problems)]
-    rows = [(series, release.name) for release in releases for series in release.series]
-    return [*parts, html.H2("What was understood"), _series_table(rows)]
+def preview(found: list[tuple[str, Any]], bridge: Bridge) -> list[Any]:
+    """Return what was understood in files that are not kept yet, by token."""
+    releases = [(t, desk.corrected(release, bridge.workspace)) for t, release in found]
+    return parts.preview(releases, bridge.workspace.as_of(), today())
 
 
-def _series_table(rows: list[tuple[Series, str]]) -> html.Table:
-    head = ("Series", "Kind", "Unit", "Every", "From", "To", "Values", "Missing", "File")
-    return _table(
-        head,
+def _drop() -> html.Section:
+    return html.Section(
         [
-            (
-                series.name,
-                series.kind,
-                series.unit or "not named",
-                {"monthly": "month", "quarterly": "quarter", "annual": "year"}[series.frequency],
-                period_label(series.first),
-                period_label(series.last),
-                f"{series.values.size - series.gaps.size}",
-                f"{series.gaps.size}",
-                file,
-            )
-            for series, file in rows
+            html.H2("Open the files of a release"),
+            html.P(
+                "Choose one or several files, or drop them here. What was understood is shown "
+                "before anything is kept.",
+                className="quiet",
+            ),
+            html.Span(className="native", **{"data-native": "files", "data-type": "file"}),
+            html.Div(
+                [
+                    html.Progress(id="intake-progress", max="1", **{"aria-label": "Files read"}),
+                    html.Span(id="intake-progress-words"),
+                    html.Button("Cancel", id="intake-cancel", type="button"),
+                ],
+                id="intake-work",
+                className="work",
+                hidden=True,
+            ),
+            html.Div(id="intake-message", className="message said", role="alert"),
         ],
+        id="data-drop",
+        className="drop",
+        **{"aria-label": "Open the files of a release"},
     )
 
 
-def _problem_table(problems: tuple[Problem, ...]) -> html.Table:
-    return _table(
-        ("Weight", "Place", "What was found"),
-        [
-            (
-                problem.severity,
-                ", ".join(
-                    part
-                    for part in (
-                        problem.file,
-                        f"row {problem.row}" if problem.row else "",
-                        f"column {problem.column}" if problem.column else "",
-                    )
-                    if part
-                ),
-                problem.message,
-            )
-            for problem in problems[:200]
-        ],
+def _csv(view: str) -> html.Div:
+    return html.Div(
+        html.A("Save CSV", id=f"csv-{view}", className="button", **{"data-csv": view}),
+        className="save",
     )
 
 
-def _table(head: tuple[str, ...], rows: list[tuple[str, ...]]) -> html.Table:
-    return html.Table(
-        [
-            html.Thead(html.Tr([html.Th(text, scope="col") for text in head])),
-            html.Tbody([html.Tr([html.Td(text) for text in row]) for row in rows]),
-        ],
-        className="table",
-    )
+def _kept_words(bridge: Bridge) -> str:
+    path = bridge.workspace.store.path
+    if path is None:
+        return "This workspace is in memory: what is loaded is gone when the program ends."
+    return f"Every vintage is kept in {path}."
+
+
+def _sentence(in_view: WorkspaceView, series: int) -> str:
+    stood = f", as they stood on {day_words(in_view.day)}" if in_view.day else ""
+    if in_view.placeholder:
+        return "An invented economy stands here until you open files of your own."
+    if not series:
+        return f"Nothing is in view{stood}."
+    files = counted(len(in_view.releases), "file")
+    return f"{series} series from {files}{stood or ', as they stand now'}."
+
+
+def _verdict(in_view: WorkspaceView, found: desk.Revised | None, names: list[str]) -> str:
+    if in_view.placeholder:
+        return "Every page shows it. It is put away with the first file of yours, and never kept."
+    said = []
+    for weight in ("error", "warning"):
+        count = sum(problem.severity == weight for problem in in_view.problems)
+        if count:
+            said.append(counted(count, weight))
+    verb = "was" if said == ["1 error"] or said == ["1 warning"] else "were"
+    words = [f"{' and '.join(said)} {verb} found in the files." if said else ""]
+    if not said and in_view.releases:
+        words = ["No error and no warning was found in the files."]
+    if names:
+        words.append(f"{len(names)} series {'has' if len(names) == 1 else 'have'} been revised.")
+    if found is not None and found.result is not None and found.result.n:
+        words.append(
+            f"First prints of {found.name} were revised by {signed(found.result.mean, 3)} on"
+            f" average ({found.unit})."
+        )
+    return " ".join(word for word in words if word)
+
+
+def _nothing(in_view: WorkspaceView) -> list[Any]:
+    if in_view.day and in_view.started:
+        words = (
+            f"Nothing was loaded yet on {day_words(in_view.day)}; the first file stands from"
+            f" {day_words(in_view.started)}. Choose a later date above."
+        )
+    else:
+        words = "Nothing is loaded yet. Open the files of a release above."
+    return [html.P(words, className="empty")]

@@ -9,7 +9,6 @@ from app.compute import MIN_PAIRS, Bridge
 from app.demo import demo_releases
 from app.evidence import completed
 from app.lag_answer import answer
-from app.pages import data as data_page
 from app.pages.lag import CAUTION, layout, payload, view
 from app.state import ViewState, field_kind
 from app.workspace import Workspace
@@ -272,19 +271,3 @@ def test_an_empty_workspace_has_a_page():
     page = layout("", Bridge(Workspace()))
     assert "nothing is loaded yet" in by_id(page, "lag-data").data["error"]
     assert by_id(page, "lag-sentence") is not None
-
-
-# The Data page -------------------------------------------------------------------------------
-
-
-def test_the_data_page_lists_every_series_and_problem():
-    page = data_page.layout("", Bridge(Workspace(demo_releases())))
-    text = words(page)
-    for series in Workspace(demo_releases()).series.values():
-        assert series.name in text
-        assert series.unit in text
-    assert "Found in the files" not in text
-
-
-def test_the_data_page_of_an_empty_workspace_says_so():
-    assert "Nothing is loaded yet." in words(data_page.layout("", Bridge(Workspace())))

@@ -1,0 +1,92 @@
+"""Requests of the Data page: a file in, kept or discarded; a file out of view; a correction."""
+
+from typing import Any
+
+from flask import Flask, request
+
+from app.compute import Bridge
+from app.intake.problems import IntakeError
+from app.intake.reading import Release, read_release
+from app.state import StateError
+
+Reply = tuple[dict[str, Any], int]
+
+
+def register(server: Flask, bridge: Bridge) -> None:
+    """Register the routes; each answers JSON, and a refusal is one sentence."""
+    desk, pending = bridge.workspace, bridge.pending
+
+    @server.post("/intake")
+    def _intake() -> Reply:
+        """Read a file; with ``preview=1`` it is held, else it is kept at once."""
+        name = request.args.get("name", "upload.csv")
+        try:
+            release = read_release(name, request.get_data(cache=False))
+            if not release.series:
+                said = " ".join(str(problem) for problem in release.problems[:3])
+                return {"message": said or f"{release.name}: no series was found in it"}, 422
+            if request.args.get("preview") == "1":
+                return {**_described(release), "token": pending.hold(release)}, 200
+            desk.add(release)
+        except (IntakeError, ValueError) as error:
+            return {"message": str(error)}, 422
+        return _described(release), 200
+
+    @server.post("/intake/keep")
+    def _keep() -> Reply:
+        """Keep held files, in the order of their tokens."""
+        sent = _sent()
+        tokens, day = sent.get("tokens"), sent.get("day", "")
+        if not isinstance(tokens, list) or not all(isinstance(each, str) for each in tokens):
+            return {"message": "the page must send the files to keep, but did not"}, 422
+        kept, lost = [], 0
+        try:
+            for token in tokens:
+                release = pending.found(token)
+                if release is None:
+                    lost += 1
+                    continue
+                desk.add(release, day)
+                pending.drop(token)
+                kept.append(_described(release))
+        except ValueError as error:
+            return {"message": str(error), "kept": kept}, 422
+        if lost:
+            said = "a file is no longer held for a look; open it again"
+            return {"message": said, "kept": kept}, 422
+        return {"kept": kept}, 200
+
+    @server.post("/intake/discard")
+    def _discard() -> Reply:
+        for token in _sent().get("tokens") or ():
+            pending.drop(str(token))
+        return {}, 200
+
+    @server.post("/workspace/<act>")
+    def _change(act: str) -> Reply:
+        sent = {key: value for key, value in _sent().items() if isinstance(value, str)}
+        try:
+            if act == "correct":
+                desk.correct(sent["series"], sent["field"], sent["value"])
+            elif act in ("hide", "show"):
+                getattr(desk, act)(sent["file"])
+            else:
+                return {"message": f"there is nothing named {act!r} to do"}, 404
+        except KeyError:
+            return {"message": "the page must say what is to change, but did not"}, 422
+        except (StateError, ValueError) as error:
+            return {"message": str(error)}, 422
+        return {}, 200
+
+
+def _sent() -> dict[str, Any]:
+    found = request.get_json(silent=True)
+    return found if isinstance(found, dict) else {}
+
+
+def _described(release: Release) -> dict[str, Any]:
+    return {
+        "file": release.name,
+        "series": [series.name for series in release.series],
+        "problems": len(release.problems),
+    }

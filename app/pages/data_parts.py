@@ -1,0 +1,373 @@
+"""Parts of the Data page: tables of series, files, problems and revisions, and the preview."""
+
+from collections.abc import Sequence
+from typing import Any, get_args
+
+from dash import html
+
+from analytics.series import PERIOD_NOUN, Adjustment, Kind, Series, period_label
+from app.desk import Revised, against_kept, all_series
+from app.figures.data import sparkline
+from app.intake.problems import Problem
+from app.intake.reading import Release
+from app.pages.as_of import day_words
+from app.words import MINUS, counted, p_words, plain, signed
+from app.workspace import LoadedFile, WorkspaceView
+
+MOST_ROWS = 300
+MOST_PROBLEMS = 200
+MOST_PRINTS = 24
+ADJUSTED = {"yes": "adjusted", "no": "not adjusted", "unknown": "not said"}
+
+
+def table(
+    head: Sequence[str], rows: Sequence[Sequence[Any]], label: str, *, cards: bool = True
+) -> html.Table:
+    """Return a table; with `cards` it becomes a list of cards where the page is narrow."""
+    names = [name or "Picture" for name in head]
+    return html.Table(
+        [
+            html.Thead(
+                html.Tr(
+                    [html.Th(name, scope="col", role="columnheader") for name in head], role="row"
+                ),
+                role="rowgroup",
+            ),
+            html.Tbody(
+                [
+                    html.Tr(
+                        [
+                            html.Td(cell, role="cell", **{"data-label": name})
+                            for name, cell in zip(names, row, strict=True)
+                        ],
+                        role="row",
+                    )
+                    for row in rows
+                ],
+                role="rowgroup",
+            ),
+        ],
+        className="table cards" if cards else "table",
+        role="table",
+        **{"aria-label": label},
+    )
+
+
+def series_table(in_view: WorkspaceView, shown: dict[str, tuple[Series, str]]) -> list[Any]:
+    """Return the series in view, with what can be corrected."""
+    fixed = in_view.placeholder
+    rows = [
+        (
+            spark(one),
+            [html.Strong(name), html.Span(_origin(one, file), className="quiet under")],
+            one.kind if fixed else _choice(one, "kind", {k: k for k in get_args(Kind)}),
+            (one.unit or "not named") if fixed else _entry(one),
+            ADJUSTED[one.adjustment]
+            if fixed
+            else _choice(one, "adjustment", {k: ADJUSTED[k] for k in get_args(Adjustment)}),
+            PERIOD_NOUN[one.frequency],
+            f"{period_label(one.first)} to {period_label(one.last)}",
+            _values(one),
+            f"{in_view.vintages.get(name, 1)}",
+        )
+        for name, (one, file) in list(shown.items())[:MOST_ROWS]
+    ]
+    head = ("", "Series", "Kind", "Unit", "Season", "Every", "Span", "Values", "Vintages")
+    more = len(shown) - MOST_ROWS
+    note = [html.P(f"{more} more series are in the CSV.", className="quiet")] if more > 0 else []
+    return [table(head, rows, "Series in view"), *note]
+
+
+def spark(series: Series) -> html.Span:
+    """Return the small line of a series, with its ends in words."""
+    first, last = (f"{series.values[place]:.4g}" for place in (0, -1))
+    words = f"{series.name}: from {first} in {period_label(series.first)} to {last}"
+    return html.Span(
+        className="spark",
+        role="img",
+        style={"--line": f'url("{sparkline(series.values)}")'},
+        **{"aria-label": f"{words} in {period_label(series.last)}"},
+    )
+
+
+def _origin(series: Series, file: str) -> str:
+    return file if series.source in ("", file) else f"{series.source}; {file}"
+
+
+def _values(series: Series) -> str:
+    missing = series.gaps.size
+    return f"{series.values.size - missing}" + (f", {missing} missing" if missing else "")
+
+
+def _choice(series: Series, field: str, options: dict[str, str]) -> html.Select:
+    current = getattr(series, field)
+    words = {"kind": "Kind", "adjustment": "Seasonal adjustment"}[field]
+    return html.Select(
+        [
+            html.Option(text, value=value, selected=value == current)
+            for value, text in options.items()
+        ],
+        **{
+            "aria-label": f"{words} of {series.name}",
+            "data-correct": field,
+            "data-series": series.name,
+            "data-value": current,
+        },
+    )
+
+
+def _entry(series: Series) -> html.Span:
+    return html.Span(
+        className="native",
+        **{
+            "data-entry": "text",
+            "data-correct": "unit",
+            "data-series": series.name,
+            "data-value": series.unit,
+            "data-label": f"Unit of {series.name}",
+            "data-placeholder": "not named",
+        },
+    )
+
+
+def problem_table(problems: Sequence[Problem]) -> list[Any]:
+    """Return what intake found, with the place of each thing."""
+    rows = [
+        (
+            html.Span(problem.severity, className=f"weight {problem.severity}"),
+            problem.file,
+            f"{problem.row}" if problem.row else "whole file",
+            problem.column or "",
+            problem.message,
+        )
+        for problem in problems[:MOST_PROBLEMS]
+    ]
+    more = len(problems) - MOST_PROBLEMS
+    note = [html.P(f"{more} more were found.", className="quiet")] if more > 0 else []
+    head = ("Weight", "File", "Row", "Column", "What was found")
+    return [table(head, rows, "What was found in the files"), *note]
+
+
+def files_table(in_view: WorkspaceView, hidden: Sequence[LoadedFile]) -> list[Any]:
+    """Return the files in view and those taken out of it, each with what can be done."""
+    used = {file for _, file in all_series(in_view).values()}
+    current = [file for file in reversed(in_view.files) if file.name in used]
+    earlier = [file for file in reversed(in_view.files) if file.name not in used]
+    parts: list[Any] = [_files(current, "Files in view")] if current else []
+    if earlier:
+        words = f"Earlier files ({len(earlier)}): every series of theirs has a newer file"
+        parts.append(html.Details([html.Summary(words), _files(earlier, "Earlier files")]))
+    if hidden:
+        out = [
+            (
+                file.name,
+                day_words(file.day),
+                day_words(file.hidden),
+                _button("Bring back", "show", file.name),
+            )
+            for file in hidden
+        ]
+        head = ("File", "Stands from", "Removed", "Change")
+        words = f"Out of view ({len(hidden)}): their vintages are kept"
+        parts.append(html.Details([html.Summary(words), table(head, out, "Files out of view")]))
+    return parts
+
+
+def _files(files: Sequence[LoadedFile], label: str) -> html.Table:
+    rows = [
+        (
+            file.name,
+            day_words(file.day),
+            f"{len(file.series)} series",
+            counted(file.problems, "finding") if file.problems else "nothing",
+            _button("Remove from view", "hide", file.name),
+        )
+        for file in files
+    ]
+    return table(("File", "Stands from", "Holds", "Found in it", "Change"), rows, label)
+
+
+def _button(words: str, act: str, file: str) -> html.Button:
+    return html.Button(
+        words,
+        type="button",
+        **{"data-act": act, "data-file": file, "aria-label": f"{words}: {file}"},
+    )
+
+
+def preview(found: Sequence[tuple[str, Release]], in_view: WorkspaceView, today: str) -> list[Any]:
+    """Return what was understood in files that are not kept yet, with the two ways on."""
+    if not found:
+        return []
+    kept = {} if in_view.placeholder else {n: one for n, (one, _) in all_series(in_view).items()}
+    parts: list[Any] = [
+        html.H2("Understood, and not kept yet", id="data-preview-head", tabIndex="-1"),
+    ]
+    for token, release in found:
+        rows = [
+            (
+                spark(one),
+                html.Strong(one.name),
+                one.kind,
+                one.unit or "not named",
+                PERIOD_NOUN[one.frequency],
+                f"{period_label(one.first)} to {period_label(one.last)}",
+                _values(one),
+                against_kept(one, kept.get(one.name)),
+            )
+            for one in release.series[:MOST_ROWS]
+        ]
+        head = ("", "Series", "Kind", "Unit", "Every", "Span", "Values", "Against what is kept")
+        more = len(release.series) - MOST_ROWS
+        parts += [
+            html.Section(
+                [
+                    html.Div(
+                        [
+                            html.H3(release.name),
+                            html.Button(
+                                "Discard this file",
+                                type="button",
+                                **{
+                                    "data-act": "discard",
+                                    "data-token": token,
+                                    "aria-label": f"Discard {release.name}",
+                                },
+                            ),
+                        ],
+                        className="view-head",
+                    ),
+                    table(head, rows, f"Series understood in {release.name}"),
+                    *(
+                        [html.P(f"{more} more series are not listed.", className="quiet")]
+                        if more > 0
+                        else []
+                    ),
+                    *(problem_table(release.problems) if release.problems else []),
+                ],
+                className="previewed",
+            )
+        ]
+    parts.append(
+        html.Div(
+            [
+                html.Label(
+                    [
+                        html.Span("Stands from", title=STANDS),
+                        html.Span(
+                            className="native",
+                            **{
+                                "data-entry": "date",
+                                "data-name": "stands-from",
+                                "data-value": today,
+                                "data-label": "Stands from",
+                            },
+                        ),
+                    ],
+                    className="control",
+                ),
+                html.Button(
+                    "Keep these series", type="button", className="main", **{"data-act": "keep"}
+                ),
+                html.Button("Discard all", type="button", **{"data-act": "discard-all"}),
+                html.Span(STANDS, className="quiet"),
+            ],
+            className="keep",
+        )
+    )
+    return parts
+
+
+STANDS = "The date from which these vintages stand: today, or the day an older release came out."
+
+
+def revisions_words(found: Revised | None, names: Sequence[str], fixed: bool) -> list[Any]:
+    """Return the choice of the series, what its revisions say, and the newest of them."""
+    if found is None:
+        return [
+            html.P(
+                "The invented economy has one vintage of each series; with your own files, each "
+                "month's file adds one."
+                if fixed
+                else "No series has been loaded twice with different values yet. When the next "
+                "release is loaded, its values are compared with what stands here now.",
+                className="empty",
+            )
+        ]
+    chooser = html.Div(
+        [
+            html.Label("Series", htmlFor="field-series"),
+            html.Select(
+                [html.Option(name, value=name, selected=name == found.name) for name in names],
+                id="field-series",
+                **{"data-field": "series"},
+            ),
+        ],
+        className="control",
+    )
+    if found.result is None:
+        return [chooser, html.P(f"There are no revisions to show: {found.refusal}.")]
+    return [chooser, *[html.P(text) for text in revision_sentences(found)]]
+
+
+def revision_sentences(found: Revised) -> list[str]:
+    """Say how first prints were revised, and whether they were biased."""
+    result, noun = found.result, found.noun
+    assert result is not None
+    days = f"{day_words(found.vintages[0].day)} to {day_words(found.vintages[-1].day)}"
+    sentences = [f"{counted(len(found.vintages), 'vintage')}, {days}."]
+    if not result.n:
+        sentences.append(
+            f"No first print has been revised yet: a {noun} counts once a later vintage has it too."
+        )
+        return sentences
+    sentences.append(
+        f"{counted(result.n, 'first print')} with a later value: mean revision"
+        f" {signed(result.mean, 3)}, mean absolute revision {plain(result.mean_absolute, 3)}"
+        f" ({found.unit})."
+    )
+    bias = found.bias
+    if bias is None:
+        sentences.append(f"Whether first prints are biased cannot be told: {found.bias_refusal}.")
+    else:
+        sentences.append(
+            f"Regression of the revision on the first print: intercept {signed(bias.intercept, 3)}"
+            f" (standard error {plain(bias.se_intercept, 3)}), slope {signed(bias.slope, 3)}"
+            f" ({plain(bias.se_slope, 3)}); both zero, as unbiased first prints have it: p"
+            f" {p_words(bias.p)} (Newey-West errors, {counted(bias.lags, 'lag')}; with fewer than"
+            " 60 first prints this p is too small)."
+        )
+    return sentences
+
+
+def prints_table(found: Revised | None) -> list[Any]:
+    """Return the newest first prints and revised values."""
+    result = found.result if found is not None else None
+    if found is None or result is None:
+        return []
+    places = found.moved[::-1]
+    rows = [
+        (
+            period_label(result.periods[place]),
+            f"{plain(result.first[place], 3)}"
+            + ("" if result.first_print[place] else " (came with its history)"),
+            day_words(found.loaded[place]),
+            plain(result.latest[place], 3),
+            _change(result.revision[place]) if result.held[place] > 1 else "not yet",
+            f"{result.held[place]}",
+        )
+        for place in places[:MOST_PRINTS]
+    ]
+    if not rows:
+        return []
+    head = ("Period", "First value", "Stood from", "Latest", "Revision", "Vintages")
+    cut = f"The newest {len(rows)} of {len(places)}; " if len(places) > len(rows) else ""
+    note = html.P(f"{cut}the CSV has every period.".capitalize(), className="quiet")
+    label = "First prints and revisions"
+    return [
+        html.Details([html.Summary("The numbers"), table(head, rows, label, cards=False), note])
+    ]
+
+
+def _change(value: float) -> str:
+    return f"{value:+z.3f}".replace("-", MINUS)
