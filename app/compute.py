@@ -203,7 +203,9 @@ def grid(pair: Pair, state: ViewState) -> tuple[range, range]:
         asked = getattr(state, name)
         if asked:
             low, high = (int(part) for part in asked.split(":"))
-            least = 1 if name == "windows" else -most
+            bounds = field_kind(name.removesuffix("s"))
+            most = min(most, getattr(bounds, "high", most))
+            least = max(-most, getattr(bounds, "low", -most))
             if low > high or low < least or high > most:
                 raise StateError(
                     f"{field_kind(name).label} must be a range within {least}:{most} for"
