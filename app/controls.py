@@ -10,17 +10,23 @@ from typing import Any
 
 from dash import html
 
+from app.reading_fields import Number
 from app.state import Choice, Day, StateError, Text, ViewState, Whole, field_kind
 
 
-def select(state: ViewState, name: str, options: Iterable[str] = ()) -> html.Div:
-    """Return a drop-down for a choice, or for a series name out of `options`."""
+def select(
+    state: ViewState, name: str, options: Iterable[str] = (), *, empty: str = ""
+) -> html.Div:
+    """Return a drop-down for a choice, or for a series name out of `options`.
+
+    `empty` is what the empty option stands for.
+    """
     kind = field_kind(name)
     current = getattr(state, name)
     words = (
         dict(kind.options)
         if isinstance(kind, Choice)
-        else {option: option for option in dict.fromkeys([*options, current])}
+        else {option: option or empty for option in dict.fromkeys([*options, current])}
     )
     return _labelled(
         name,
@@ -44,18 +50,6 @@ def text(state: ViewState, name: str, placeholder: str = "") -> html.Div:
     )
 
 
-def number(state: ViewState, name: str) -> html.Div:
-    """Return a field for a whole number within the bounds of the table."""
-    kind = field_kind(name)
-    assert isinstance(kind, Whole)
-    return _labelled(
-        name,
-        _native(
-            name, type="number", value=getattr(state, name), min=kind.low, max=kind.high, step=1
-        ),
-    )
-
-
 def day(state: ViewState, name: str) -> html.Div:
     """Return a field for a date, with the browser's own calendar."""
     kind = field_kind(name)
@@ -63,10 +57,28 @@ def day(state: ViewState, name: str) -> html.Div:
     return _labelled(name, _native(name, type="date", value=getattr(state, name)))
 
 
-def slider(state: ViewState, name: str, low: int, high: int, *, vertical: bool = False) -> html.Div:
-    """Return a slider over whole periods, lying along an axis of the map."""
+def number(state: ViewState, name: str, step: float = 1) -> html.Div:
+    """Return a field for a number within the bounds of the table."""
     kind = field_kind(name)
-    assert isinstance(kind, Whole)
+    assert isinstance(kind, Whole | Number)
+    value = getattr(state, name)
+    return _labelled(
+        name, _native(name, type="number", value=value, min=kind.low, max=kind.high, step=step)
+    )
+
+
+def slider(
+    state: ViewState,
+    name: str,
+    low: float,
+    high: float,
+    *,
+    step: float = 1,
+    vertical: bool = False,
+) -> html.Div:
+    """Return a slider over whole periods, lying along an axis of the map, or over numbers."""
+    kind = field_kind(name)
+    assert isinstance(kind, Whole | Number)
     return html.Div(
         [
             html.Label(kind.label, htmlFor=f"field-{name}", className="hidden-label"),
@@ -76,7 +88,7 @@ def slider(state: ViewState, name: str, low: int, high: int, *, vertical: bool =
                 value=getattr(state, name),
                 min=low,
                 max=high,
-                step=1,
+                step=step,
                 orient="vertical" if vertical else "horizontal",
             ),
             html.Span(kind.help, id=f"help-{name}", className="hidden-label"),

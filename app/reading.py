@@ -34,7 +34,7 @@ def reading(state: ViewState, bridge: Bridge) -> Reading:
     """
     loaded = chosen_series(state, bridge)
     core = bridge.memory.once(
-        _key("reading", state, loaded, CORE), lambda: core_reading(state, loaded)
+        reading_key("reading", state, loaded, CORE), lambda: core_reading(state, loaded)
     )
     refused = dict(core.refused)
     path = goodness = fitted = None
@@ -74,20 +74,21 @@ def goodness_work(state: ViewState, bridge: Bridge) -> Work:
 
     def plan() -> Any:
         known = bridge.memory.once(
-            _key("reading", state, loaded, CORE), lambda: core_reading(state, loaded)
+            reading_key("reading", state, loaded, CORE), lambda: core_reading(state, loaded)
         )
         if known.sample is None:
             raise StateError(known.refused.get("rank", "there is no rate to fit a distribution to"))
         return goodness_plan(known.sample, family=state.family, draws=state.draws, seed=state.seed)
 
-    return Work(_key("goodness", state, loaded, TEST), plan, goodness_chunk, goodness_result)
+    return Work(reading_key("goodness", state, loaded, TEST), plan, goodness_chunk, goodness_result)
 
 
 WORK: dict[str, Callable[[ViewState, Bridge], Work]] = {"goodness": goodness_work}
 
 
-def _key(part: str, state: ViewState, loaded: Series, names: tuple[str, ...]) -> str:
+def reading_key(part: str, state: ViewState, loaded: Series, names: tuple[str, ...]) -> str:
     """Return the key of a part: the data, then those fields of the state that it depends on."""
     kept = ViewState(**{name: getattr(state, name) for name in names})
-    text = "\n".join((part, loaded.fingerprint, loaded.name, kept.numbers().to_query()))
+    data = (loaded.fingerprint, loaded.name, loaded.unit, loaded.source)
+    text = "\n".join((part, *data, kept.to_query()))
     return f"{part}:{hashlib.sha256(text.encode()).hexdigest()[:32]}"

@@ -56,8 +56,8 @@
     }
   }
 
-  /* Put the state into the address bar, the CSV links and the navigation. */
-  function publish(page, state, defaults) {
+  /* Put the state into the address bar, the CSV links and the navigation; ask for its answer. */
+  function publish(page, state, defaults, ask = true) {
     const text = query(state, defaults);
     const search = text ? `?${text}` : "";
     history.replaceState(history.state, "", `${location.pathname}${search}`);
@@ -66,7 +66,7 @@
     }
     window.dash_clientside.set_props(`nav-${page}`, { href: `/${page}${search}` });
     carry(page, state.as_of);
-    window.dash_clientside.set_props(`${page}-state`, { data: state });
+    if (ask) window.dash_clientside.set_props(`${page}-state`, { data: state });
   }
 
   /* What a control holds, as the state takes it: a number where the field is one. */

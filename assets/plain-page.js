@@ -4,13 +4,16 @@
   "use strict";
   const pricewake = window.pricewake;
   const { controls } = pricewake;
-  const page = { data: null, state: null, timer: 0 };
+  const page = { data: null, state: null, timer: 0, waiting: null };
   const DRAGGING = 120; // milliseconds between answers while a slider is dragged
 
   const root = () => document.querySelector("[data-page]");
 
+  const key = (state) => JSON.stringify(Object.entries(state).sort(([a], [b]) => (a < b ? -1 : 1)));
+
   function send() {
     page.timer = 0;
+    page.waiting = key(page.state);
     if (root()) controls.publish(root().dataset.page, page.state, page.data.defaults);
   }
 
@@ -21,14 +24,16 @@
     page.timer = setTimeout(send, wait);
   }
 
-  /* What the server answered: {state, defaults, sentence, subtitles, source, stem, figures}. */
+  /* What the server answered: {asked, state, defaults, sentence, subtitles, source, stem, figures}. */
   function adopt(data) {
     if (!data || !root()) return window.dash_clientside.no_update;
     const name = root().dataset.page;
     page.data = data;
-    if (!page.timer) {
+    const late = page.waiting && data.asked && key(data.asked) !== page.waiting;
+    if (!page.timer && !late) { // else the hand has moved on, and its own answer is coming
+      page.waiting = null;
       page.state = data.state;
-      controls.publish(name, page.state, data.defaults);
+      controls.publish(name, page.state, data.defaults, false);
     }
     for (const place of root().querySelectorAll(".plain-plot")) {
       const view = place.id.slice(name.length + 1, -"-place".length);
@@ -121,7 +126,7 @@
     subtitle: (view) => (page.data.subtitles || {})[view] || "",
     source: () => page.data.source,
     stem: (view, letters) => `${view}-${letters(page.data.stem).slice(0, 100)}`,
-    busy: () => Boolean(page.timer || job.running),
+    busy: () => Boolean(page.timer || page.waiting || job.running),
   });
   pricewake.plain = page;
 })();

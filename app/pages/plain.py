@@ -34,8 +34,8 @@ class Answer:
         Foot of saved charts: sources and program.
     stem : str
         Words for file names, after the view's name.
-    charts : mapping of str to Figure
-        One a view; a view that is left out is not shown.
+    charts : mapping of str to Figure or str
+        One a view, as a figure or as its JSON; a view that is left out is not shown.
     subtitles : mapping of str to str
         Second line of saved charts.
     words : mapping of str to component
@@ -49,7 +49,7 @@ class Answer:
     verdict: str
     source: str
     stem: str
-    charts: Mapping[str, Figure]
+    charts: Mapping[str, Figure | str]
     subtitles: Mapping[str, str] = field(default_factory=dict)
     words: Mapping[str, Any] = field(default_factory=dict)
     jobs: Sequence[str] = ()
@@ -141,9 +141,16 @@ def register(
         try:
             shown = answer(ViewState(**values), bridge)
         except (StateError, ValueError, TypeError) as error:
-            data = {"state": values, "defaults": defaults, "figures": {}, "sentence": ""}
+            data = {
+                "asked": values,
+                "state": values,
+                "defaults": defaults,
+                "figures": {},
+                "sentence": "",
+            }
             return "Nothing to show for this choice.", "", str(error), True, *nothing, data
         data = {
+            "asked": values,
             "state": asdict(shown.state),
             "defaults": defaults,
             "sentence": shown.sentence,
@@ -151,7 +158,7 @@ def register(
             "source": shown.source,
             "stem": shown.stem,
             "jobs": list(shown.jobs),
-            "figures": {view: json.loads(chart.to_json()) for view, chart in shown.charts.items()},
+            "figures": {view: _plain(chart) for view, chart in shown.charts.items()},
         }
         words = [shown.words.get(place, []) for place in places]
         return shown.sentence, shown.verdict, "", False, *words, data
@@ -161,3 +168,7 @@ def register(
         Output(f"{name}-adopted", "data"),
         Input(f"{name}-answer", "data"),
     )
+
+
+def _plain(chart: Figure | str) -> Any:
+    return json.loads(chart if isinstance(chart, str) else chart.to_json())
