@@ -93,3 +93,27 @@ ROWS = Choice(
     help="Whether the table lists every component or sums up those far down.",
     display=True,
 )
+
+BREADTH_FIELDS = (
+    "aggregate",
+    "span",
+    "first",
+    "last",
+    "link",
+    "valued",
+    "scale",
+    "trim",
+    "core",
+    "excluded",
+    "pace",
+)
+BREADTH_VIEWS = (
+    "contributions",
+    "history",
+    "strip",
+    "core",
+    "diffusion",
+    "weights",
+    "table",
+    "tracking",
+)

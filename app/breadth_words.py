@@ -38,14 +38,15 @@ def _most(shown: Breadth) -> str:
     digits = 1 if shown.span > 1 else 2
     top, bottom = short_name(shown.names[high]), short_name(shown.names[low])
     least = 0.5 * 10.0**-digits
-    if rate >= least and points[high] >= least:
-        return f"; {top} gave {plain(points[high], digits)} of the {plain(rate, digits)} points"
-    if rate <= -least and points[low] <= -least:
-        return (
-            f"; {bottom} took {plain(-points[low], digits)} of the {plain(-rate, digits)} points"
-            " by which all items fell"
-        )
-    return f"; all items changed by {plain(abs(rate), digits)} %"
+    gave, took = plain(points[high], digits), plain(-points[low], digits)
+    if rate >= least and least <= points[high] <= rate:
+        return f"; {top} gave {gave} of the {plain(rate, digits)} points"
+    if rate <= -least and rate <= points[low] <= -least:
+        return f"; {bottom} took {took} of the {plain(-rate, digits)} points that all items lost"
+    total = f"all items {signed(rate, digits)} %" if abs(rate) >= least else "all items unchanged"
+    if points[high] >= least and points[low] <= -least:
+        return f"; {top} gave {gave} points and {bottom} took {took}, {total}"
+    return f"; {total}"
 
 
 def verdict(shown: Breadth) -> str:
@@ -111,7 +112,7 @@ def adding_up(shown: Breadth) -> str:
     gap = float(shown.residual[-1])
     return (
         f"The contributions add up to {plain(parts, 3)}; {shown.total.name} as published changed by"
-        f" {plain(rate, 3)}, so {signed(gap, 3)} points are rounding and anything else that the"
+        f" {plain(rate, 3)}, so {signed(gap, 4)} points are rounding and anything else that the"
         " components do not carry."
     )
 

@@ -1,24 +1,23 @@
 """The command `pricewake`: serve the dashboard, or answer without a browser."""
 
 import io
-import json
-import math
 import signal
 import socket
 import sys
 import threading
 import webbrowser
-from collections.abc import Callable
-from dataclasses import asdict, fields
 from pathlib import Path
 from typing import Any, NoReturn
 
 import click
 
+from app import cli_parts
+from app.cli_breadth import breadth
+from app.cli_parts import errors, print_json, state_of, workspace_of, write
 from app.cli_workspace import workspace
 from app.places import software_version
 from app.reading_fields import READING_FIELDS, READING_VIEWS
-from app.state import StateError, ViewState, kind_of
+from app.state import ViewState
 
 DEFAULT_PORT = 8391
 VIEW_NAMES = (
@@ -59,39 +58,6 @@ class _ServeUnlessNamed(click.Group):
         return super().parse_args(ctx, args)
 
 
-def _state_options(names: tuple[str, ...]) -> Callable[[Callable[..., Any]], Callable[..., Any]]:
-    """Give a command one flag a field of ViewState, from the table of the fields."""
-
-    def decorate(command: Callable[..., Any]) -> Callable[..., Any]:
-        for item in reversed([f for f in fields(ViewState) if f.name in names]):
-            words = f"--{item.name.replace('_', '-')}"
-            flag = click.option(words, metavar="TEXT", help=kind_of(item).help)
-            command = flag(command)
-        return command
-
-    return decorate
-
-
-_files = click.argument("files", nargs=-1, type=click.Path(path_type=Path))
-_as_json = click.option(
-    "--json", "as_json", is_flag=True, help="Print one JSON object and nothing else."
-)
-_csv = click.option("--csv", "csv_path", type=click.Path(path_type=Path), help="Write a CSV file.")
-_kept_in = click.option(
-    "--workspace",
-    "kept_in",
-    metavar="PATH",
-    help="Workspace file whose series are used, and in which FILES are kept. Without it FILES alone"
-    " count.",
-)
-_desk = click.option(
-    "--workspace",
-    "kept_in",
-    metavar="PATH",
-    help="Workspace file; the usual one lies in your data folder, and :memory: keeps nothing.",
-)
-
-
 @click.group(cls=_ServeUnlessNamed)
 @click.version_option(software_version(), prog_name="pricewake")
 def pricewake() -> None:
@@ -103,7 +69,7 @@ def pricewake() -> None:
 
 
 @pricewake.command()
-@_files
+@cli_parts.files
 @click.option(
     "--port",
     type=click.IntRange(1, 65535),
@@ -112,7 +78,7 @@ def pricewake() -> None:
     help="Port to serve on; where it is taken, the next one that is free.",
 )
 @click.option("--no-browser", is_flag=True, help="Do not open the browser.")
-@_desk
+@cli_parts.desk
 def serve(files: tuple[Path, ...], port: int, no_browser: bool, kept_in: str | None) -> None:
     """Serve the dashboard on this machine and open the browser (the command when none is named)."""
     free = _free_port(port)
@@ -123,7 +89,7 @@ def serve(files: tuple[Path, ...], port: int, no_browser: bool, kept_in: str | N
     from app.server import build_app
     from app.store import default_path
 
-    desk = _workspace(files, kept_in or str(default_path()), at_desk=True)
+    desk = workspace_of(files, kept_in or str(default_path()), at_desk=True)
     app = build_app(desk)
     server = create_server(app.server, host="127.0.0.1", port=free, threads=8, ident=None)
     address = f"http://127.0.0.1:{free}/lag"
@@ -142,24 +108,24 @@ def serve(files: tuple[Path, ...], port: int, no_browser: bool, kept_in: str | N
 
 
 @pricewake.command()
-@_files
-@_as_json
-@_csv
-@_kept_in
+@cli_parts.files
+@cli_parts.as_json
+@cli_parts.csv_path
+@cli_parts.kept_in
 def inspect(
     files: tuple[Path, ...], as_json: bool, csv_path: Path | None, kept_in: str | None
 ) -> int:
     """Say what was understood in the files and what is wrong with them."""
     from app.intake.reading import inspection
 
-    desk = _workspace(files, kept_in)
+    desk = workspace_of(files, kept_in)
     report = inspection(desk.releases)
     if csv_path:
         rows = [list(report["series"][0])] if report["series"] else []
         rows += [[_flat(v) for v in series.values()] for series in report["series"]]
-        _write(csv_path, _csv_text("what was understood in the files", rows))
+        write(csv_path, _csv_text("what was understood in the files", rows))
     if as_json:
-        _print_json(report)
+        print_json(report)
     else:
         for series in report["series"]:
             click.echo(
@@ -168,14 +134,14 @@ def inspect(
             )
         for problem in desk.problems:
             click.echo(f"{problem.severity}: {problem}")
-    return int(bool(_errors(desk)))
+    return int(bool(errors(desk)))
 
 
 @pricewake.command()
-@_files
-@_state_options(LAG_FIELDS)
-@_as_json
-@_csv
+@cli_parts.files
+@cli_parts.state_options(LAG_FIELDS)
+@cli_parts.as_json
+@cli_parts.csv_path
 @click.option(
     "--view",
     type=click.Choice(VIEW_NAMES),
@@ -183,7 +149,7 @@ def inspect(
     show_default=True,
     help="Which view --csv writes.",
 )
-@_kept_in
+@cli_parts.kept_in
 def lag(
     files: tuple[Path, ...],
     as_json: bool,
@@ -201,16 +167,16 @@ def lag(
     from app.verdict import effective_words
     from app.words import p_words, plain, signed
 
-    desk = _workspace(files, kept_in)
+    desk = workspace_of(files, kept_in)
     bridge = Bridge(desk)
-    state = _state(desk.as_of(flags["as_of"] or "").opening_state(), flags)
+    state = state_of(desk.as_of(flags["as_of"] or "").opening_state(), flags)
     shown = page.view(state, bridge, asked={name for name, text in flags.items() if text})
     if csv_path:
-        _write(csv_path, exports.view_text(view, shown, bridge))
+        write(csv_path, exports.view_text(view, shown, bridge))
     known = completed(shown.state, bridge)
     answer = lag_answer(shown, known)
     if as_json:
-        _print_json(answer)
+        print_json(answer)
     else:
         cell = answer["cell"]
         click.echo(shown.sentence)
@@ -222,21 +188,15 @@ def lag(
             f" {effective_words(cell['n'], cell['effective_months'], noun(shown.pair))}."
         )
         click.echo(page.CAUTION)
-    for problem in _errors(desk):
+    for problem in errors(desk):
         click.echo(f"pricewake: {problem}", err=True)
-    return int(bool(_errors(desk)))
+    return int(bool(errors(desk)))
 
 
 @pricewake.command()
-@_files
-@_state_options(READING_FIELDS)
-@click.option(
-    "--as-of",
-    "newest",
-    metavar="TEXT",
-    help="Period such as 2024-03 that is read as the print, or a date such as 2024-03-12 whose"
-    " vintages are used.",
-)
+@cli_parts.files
+@cli_parts.state_options(READING_FIELDS)
+@cli_parts.as_of
 @click.option(
     "--alert",
     "rules",
@@ -244,8 +204,8 @@ def lag(
     metavar="RULE",
     help="Rule such as 'rate_12m above 5', in place of the usual ones; may be given again.",
 )
-@_as_json
-@_csv
+@cli_parts.as_json
+@cli_parts.csv_path
 @click.option(
     "--view",
     type=click.Choice(READING_VIEWS),
@@ -253,7 +213,7 @@ def lag(
     show_default=True,
     help="Which view --csv writes.",
 )
-@_kept_in
+@cli_parts.kept_in
 def reading(
     files: tuple[Path, ...],
     newest: str | None,
@@ -270,21 +230,22 @@ def reading(
     from app.reading_exports import view_text
 
     asked = rules_of(rules)
-    desk = _workspace(files, kept_in)
-    state = _state(ViewState(), {**flags, **as_of_fields(newest)})
+    desk = workspace_of(files, kept_in)
+    state = state_of(ViewState(), {**flags, **as_of_fields(newest)})
     known, answer, lines = report(state, Bridge(desk), asked)
     if csv_path:
-        _write(csv_path, view_text(view, known))
+        write(csv_path, view_text(view, known))
     if as_json:
-        _print_json(answer)
+        print_json(answer)
     else:
         for line in lines:
             click.echo(line)
-    for problem in _errors(desk):
+    for problem in errors(desk):
         click.echo(f"pricewake: {problem}", err=True)
-    return int(bool(_errors(desk) or answer["alerts"]))
+    return int(bool(errors(desk) or answer["alerts"]))
 
 
+pricewake.add_command(breadth)
 pricewake.add_command(workspace)
 
 
@@ -308,43 +269,6 @@ def _refuse(sentence: str) -> NoReturn:
     sys.exit(2)
 
 
-def _workspace(
-    files: tuple[Path, ...], kept_in: str | None = None, *, at_desk: bool = False
-) -> Any:
-    """Read the files, into the workspace named if one is; the invented economy if there are none.
-
-    Without a workspace the answer depends on the files alone. Only the dashboard, which is
-    `at_desk`, makes an empty workspace, and shows the invented economy while it is empty.
-    """
-    from app.demo import demo_releases
-    from app.intake.reading import read_path
-    from app.store import MEMORY
-    from app.workspace import Workspace
-
-    releases = tuple(read_path(path) for path in files)
-    names = [release.name for release in releases]
-    for name in names:
-        if names.count(name) > 1:
-            raise click.UsageError(f"files must have different names, but {name!r} stands twice")
-    if kept_in and not (files or at_desk or kept_in == MEMORY or Path(kept_in).exists()):
-        raise click.UsageError(f"there is no workspace at {kept_in!r} yet")
-    placeholder = demo_releases() if not releases and (at_desk or not kept_in) else ()
-    return Workspace(releases, placeholder, kept_in or MEMORY)
-
-
-def _state(opening: ViewState, flags: dict[str, str | None]) -> ViewState:
-    kinds = {item.name: kind_of(item) for item in fields(ViewState)}
-    given = {name: kinds[name].read(text) for name, text in flags.items() if text is not None}
-    try:
-        return ViewState(**{**asdict(opening), **given})
-    except StateError as error:
-        raise click.UsageError(str(error)) from error
-
-
-def _errors(desk: Any) -> list[Any]:
-    return [problem for problem in desk.problems if problem.severity == "error"]
-
-
 def _free_port(port: int) -> int:
     """Return the first port from `port` on that nothing listens on."""
     for candidate in range(port, min(port + 100, 65536)):
@@ -358,40 +282,11 @@ def _free_port(port: int) -> int:
     raise click.UsageError(f"port must be free, but {port} and the 99 after it are taken")
 
 
-def _print_json(answer: dict[str, Any]) -> None:
-    click.echo(json.dumps(_finite(answer), allow_nan=False))  # ASCII: fits every console
-
-
-def _finite(value: Any) -> Any:
-    """Replace what JSON cannot hold: nan and infinities become null."""
-    if isinstance(value, dict):
-        return {key: _finite(each) for key, each in value.items()}
-    if isinstance(value, (list, tuple)):
-        return [_finite(each) for each in value]
-    if isinstance(value, float) and not math.isfinite(value):
-        return None
-    return value
-
-
-def _flat(value: Any) -> Any:
-    return " ".join(str(each) for each in value) if isinstance(value, (list, tuple)) else value
-
-
 def _csv_text(view: str, rows: list[list[Any]]) -> str:
     from app.exports import csv_text
 
     return csv_text([("Pricewake", software_version()), ("view", view)], rows)
 
 
-def _write(path: Path, text: str) -> None:
-    """Write a file whole or not at all."""
-    try:
-        if path.is_dir():
-            raise IsADirectoryError(0, "that is a folder")
-        part = path.with_name(f"{path.name}.part")
-        part.write_text(text, encoding="utf-8", newline="")
-        part.replace(path)
-    except OSError as error:
-        raise click.UsageError(
-            f"--csv must be a file that may be written, but got {str(path)!r}: {error.strerror}"
-        ) from error
+def _flat(value: Any) -> Any:
+    return " ".join(str(each) for each in value) if isinstance(value, (list, tuple)) else value

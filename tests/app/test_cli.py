@@ -12,7 +12,7 @@ import click
 import pytest
 
 from analytics.series import period_code
-from app import breadth_fields, cli
+from app import breadth_fields, cli, cli_parts
 from app.cli import LAG_FIELDS, main, pricewake
 from app.compute import Bridge
 from app.demo import demo_releases
@@ -195,7 +195,7 @@ def test_a_view_is_the_same_from_flags_as_from_an_address(run, tmp_path):
 
 
 def test_json_holds_no_nan():
-    assert cli._finite({"a": [float("nan"), 1.5], "b": (float("inf"),)}) == {
+    assert cli_parts.finite({"a": [float("nan"), 1.5], "b": (float("inf"),)}) == {
         "a": [None, 1.5],
         "b": [None],
     }
