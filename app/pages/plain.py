@@ -15,7 +15,7 @@ from plotly.graph_objects import Figure
 from app import controls
 from app.compute import Bridge
 from app.figures.theme import CONFIG
-from app.state import StateError, ViewState
+from app.state import ViewState
 
 
 @dataclass(frozen=True, eq=False)
@@ -139,8 +139,8 @@ def register(
         nothing = [[] for _ in places]
         defaults = asdict(ViewState())
         try:
-            shown = answer(ViewState(**values), bridge)
-        except (StateError, ValueError, TypeError) as error:
+            shown = answer(controls.sent_state(values), bridge)
+        except ValueError as error:
             data = {
                 "asked": values,
                 "state": values,
