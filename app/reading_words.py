@@ -144,12 +144,17 @@ def fit_words(known: Reading) -> str:
         return f"The fit cannot be tested: {known.refused['test']}."
     if goodness is None:
         return f"The {label} fit is being tested."
-    worst = min(goodness.p_anderson_darling, goodness.p_cramer_von_mises, goodness.p_kolmogorov)
-    judged = (
-        f"The {label} distribution is hard to hold to"
-        if goodness.p_anderson_darling <= 0.05
-        else f"Nothing here speaks clearly against the {label} distribution"
+    found = (
+        goodness.p_anderson_darling,
+        goodness.p_cramer_von_mises,
+        goodness.p_kolmogorov,
     )
+    if min(found) > 0.05:
+        judged = f"Nothing here speaks clearly against the {label} distribution"
+    elif max(found) <= 0.05:
+        judged = f"The {label} distribution does not fit"
+    else:
+        judged = f"The fit of the {label} distribution is in doubt"
     text = (
         f"{judged}: Anderson-Darling p {p_words(goodness.p_anderson_darling)}, Cramér-von Mises"
         f" p {p_words(goodness.p_cramer_von_mises)}, Kolmogorov p {p_words(goodness.p_kolmogorov)}."
@@ -167,7 +172,7 @@ def fit_words(known: Reading) -> str:
             )
             where = f"above {p_words(low)}" if high == 1.0 else where
             text += f" Taken as independent, the months would give p {where} (published table)."
-    if goodness.ties > 0.05 and worst <= 0.05:
+    if goodness.ties > 0.05 and min(found) <= 0.05:
         text += (
             f" {goodness.ties:.0%} of the readings occur more than once: rounding of the index"
             " alone can make a fit fail."

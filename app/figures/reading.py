@@ -37,7 +37,12 @@ def rate_lines(yearly: Series, quarter: Series | None) -> go.Figure:
         _mark(yearly.periods[-1:], yearly.values[-1:], "the print"),
     ]
     figure = go.Figure(traces)
-    _dress(figure, "percent" if quarter is not None else _unit(yearly), legend=True)
+    _dress(
+        figure,
+        "percent" if quarter is not None else _unit(yearly),
+        legend=True,
+        span=yearly.periods,
+    )
     figure.update_layout(hovermode="x unified")
     return figure
 
@@ -50,7 +55,11 @@ def factor_line(factor: Series) -> go.Figure:
             _mark(factor.periods[-1:], factor.values[-1:], "the print"),
         ]
     )
-    _dress(figure, f"times the level of {period_label(factor.periods[0])}, log scale")
+    _dress(
+        figure,
+        f"times the level of {period_label(factor.periods[0])}, log scale",
+        span=factor.periods,
+    )
     ticks, words = _log_ticks(float(np.nanmin(factor.values)), float(np.nanmax(factor.values)))
     figure.update_yaxes(type="log", tickvals=ticks, ticktext=words)
     return figure
@@ -153,7 +162,7 @@ def rank_line(through_time: Series) -> go.Figure:
             _mark(through_time.periods[-1:], through_time.values[-1:], "the print"),
         ]
     )
-    _dress(figure, "percentile rank as it read then")
+    _dress(figure, "percentile rank as it read then", span=through_time.periods)
     figure.update_yaxes(range=[-3, 104], tickvals=[0, 25, 50, 75, 100])
     return figure
 
@@ -200,7 +209,7 @@ def episode_bands(yearly: Series, mark: float, runs: Sequence[Run]) -> go.Figure
         )
     figure.add_hline(y=mark, line={"color": colour("ink"), "width": 1, "dash": "dot"})
     figure.add_hline(y=0, line={"color": colour("rule"), "width": 1})
-    _dress(figure, f"{YEAR[yearly.frequency]} rate, percent")
+    _dress(figure, f"{YEAR[yearly.frequency]} rate, percent", span=yearly.periods)
     figure.update_yaxes(range=[low - 0.04 * (top - low), top + 0.14 * (top - low)])
     return figure
 
@@ -237,7 +246,12 @@ def ring() -> dict[str, object]:
     return {"color": colour("paper"), "width": 1.5}
 
 
-def _dress(figure: go.Figure, unit: str, *, legend: bool = False) -> None:
+def _dress(
+    figure: go.Figure, unit: str, *, legend: bool = False, span: pd.PeriodIndex | None = None
+) -> None:
+    if span is not None:  # markers at the end would have plotly add years of white
+        ends = when(span[[0, -1]])
+        figure.update_xaxes(range=[ends[0], ends[1] + 0.012 * (ends[1] - ends[0])])
     figure.update_layout(
         template=template(),
         margin={"l": 56, "r": 16, "t": 40 if legend else 14, "b": 34},

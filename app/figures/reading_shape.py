@@ -118,7 +118,13 @@ def density_curves(
         )
     figure.add_vline(x=value, line={"color": colour("mark"), "width": 2})
     figure.add_annotation(
-        x=value, y=1, yref="paper", text="the print", showarrow=False, xanchor="left", xshift=4
+        x=value,
+        y=1,
+        yref="paper",
+        text="the print",
+        showarrow=False,
+        xanchor="right" if value < float(np.median(ordered)) else "left",
+        xshift=-4 if value < float(np.median(ordered)) else 4,
     )
     figure.update_layout(
         template=template(),

@@ -40,8 +40,8 @@ class Answer:
         Second line of saved charts.
     words : mapping of str to component
         Children of each place named in `places` of `frame`.
-    jobs : sequence of str
-        Long work that the page is to ask for, chunk by chunk, before it asks again.
+    jobs : mapping of str to str
+        Long work that the page is to ask for, chunk by chunk, before it asks again, in words.
     """
 
     state: ViewState
@@ -52,7 +52,7 @@ class Answer:
     charts: Mapping[str, Figure | str]
     subtitles: Mapping[str, str] = field(default_factory=dict)
     words: Mapping[str, Any] = field(default_factory=dict)
-    jobs: Sequence[str] = ()
+    jobs: Mapping[str, str] = field(default_factory=dict)
 
 
 def frame(
@@ -158,6 +158,7 @@ def register(
             "source": shown.source,
             "stem": shown.stem,
             "jobs": list(shown.jobs),
+            "jobWords": dict(shown.jobs),
             "figures": {view: _plain(chart) for view, chart in shown.charts.items()},
         }
         words = [shown.words.get(place, []) for place in places]

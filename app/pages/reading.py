@@ -14,7 +14,7 @@ from app.figures import reading as figures
 from app.figures import reading_shape as shapes
 from app.pages import plain
 from app.places import software_version
-from app.reading import CORE, chosen_series, goodness_work, reading, reading_key
+from app.reading import CORE, chosen_series, reading, reading_key
 from app.reading_result import Reading
 from app.reading_words import CAUTION, sentence, set_off, verdict
 from app.state import ViewState
@@ -71,20 +71,20 @@ def _views(state: ViewState) -> list[html.Section]:
             controls.text(state, "since", placeholder="the first"),
             wide=True,
         ),
-        view("base", "What moved the yearly rate, and what drops out next"),
+        view("base", "Base effects"),
         view(
             "whatif",
-            "If every coming period brings the same",
+            "What if",
             controls.slider(state, "coming", -1, 3, step=0.05),
         ),
         view(
             "rank",
-            "Where the print stands",
+            "Rank",
             controls.select(state, "among"),
             controls.select(state, "rank_kind"),
             controls.number(state, "rank_window"),
         ),
-        view("history", "The rank as it would have read then"),
+        view("history", "Rank through time"),
         view(
             "distribution",
             "Distribution",
@@ -135,7 +135,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
             "summary": reading_page_words.rate_table(known),
             **reading_page_words.view_words(known),
         },
-        jobs=("goodness",) if waiting and goodness_work(state, bridge) else (),
+        jobs={"goodness": "Testing the fit against drawn samples"} if waiting else {},
     )
 
 
