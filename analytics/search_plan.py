@@ -16,7 +16,9 @@ WINDOWS = range(1, 61)
 SHIFTS = range(-36, 61)
 CHUNK = 250  # surrogates drawn and judged at a time
 SHORTEST = 60
-STRONG = 1.5  # strength of the shifts, in both series, above which they are removed
+PEGGED = 0.05  # spread, as a share of the largest, below which a stretch is left as it is
+STRONG = 1.5  # strength of the level shifts, in both series, above which they are removed
+STRONG_SPREAD = 2.0  # the same for the shifts of spread
 
 
 @dataclass(frozen=True, eq=False)
@@ -116,9 +118,10 @@ def search_plan(
     The guard against shifts is our own, tuned and measured by tests/bench/calibration. Shifts of
     level or of spread are what phase surrogates do not survive, and a single shift that both
     series have is one event, not evidence of a lag. Where the one or two steps of `level_shifts`
-    have a strength above 1.5 in both series, both are freed of them; where the same holds for
-    the absolute residuals, these are also divided by their spread. A trend that explains
-    about as much as two steps is taken out in their place.
+    have a strength above 1.5 in both series, both are freed of them; where those of the absolute
+    residuals have one above 2 in both, these are also divided by their spread, unless a stretch
+    hardly moves at all. A trend that explains about as much as two steps is taken out in their
+    place.
     """
     x, y = growth_pair(driver, response)
     count = whole("surrogates", surrogates, 1)
@@ -145,8 +148,13 @@ def search_plan(
     runs = [_run(x, kernel)]
     levels = level_shifts(x, trend=True), level_shifts(y, trend=True)
     spreads = tuple(level_shifts(np.abs(found.residual)) for found in levels)
-    evened = _strong(spreads)
-    if evened or _strong(levels):
+    evened = _strong(spreads, STRONG_SPREAD) and all(
+        found.levels.min() > PEGGED * found.levels.max() for found in spreads
+    )
+    if evened or _strong(levels, STRONG):
+        for name, found, values in zip(("driver", "response"), levels, (x, y), strict=True):
+            if np.abs(found.residual).max() <= 1e-12 * np.abs(values).max():
+                raise ValueError(f"{name} must vary between its level shifts, but does not")
         pair = [found.residual for found in levels]
         if evened:
             pair = [v / found.levels for v, found in zip(pair, spreads, strict=True)]
@@ -161,9 +169,9 @@ def _run(driver: FloatArray, kernel: ResponseKernel) -> SearchRun:
     return SearchRun(read_only(driver), kernel, read_only(kernel.correlations(driver)[0]))
 
 
-def _strong(found: Sequence[LevelShifts]) -> bool:
-    """Whether the shifts of both series are stronger than chance makes them."""
-    return min(shifts.strength for shifts in found) > STRONG
+def _strong(found: Sequence[LevelShifts], threshold: float) -> bool:
+    """Whether the shifts of both series are stronger than the threshold."""
+    return min(shifts.strength for shifts in found) > threshold
 
 
 def whole(name: str, value: int, least: int) -> int:

@@ -127,6 +127,15 @@ def test_shifts_of_spread_are_evened():
     assert "spread" in found.method
 
 
+def test_long_flat_stretches_are_searched_as_they_are():
+    driver, response = unrelated(19)
+    driver[:90] = 0.0  # a pegged rate, say: cells inside it have no correlation
+    response[:80] = 1.0
+    found = lag_search(driver, response, **GRID, surrogates=99)
+    assert 0 < found.p <= 1
+    assert np.isfinite(found.z[:, 36]).all()
+
+
 def test_order_of_the_chunks_does_not_matter_and_the_seed_does():
     pair = planted_pair(np.random.default_rng(12), 240, lag=5, slope=0.2, noise=1.0)
     plan = search_plan(pair.driver, pair.response, **SMALL, surrogates=600, seed=3)
@@ -206,6 +215,8 @@ RNG = np.random.default_rng(17)
         ({"driver": np.full(120, 0.1)}, "driver must vary, but is 0.1 in every period searched"),
         ({"response": 2 + 3 * np.sin(np.arange(120.0)), "driver": np.sin(np.arange(120.0))},
          r"driver and response must differ, but they are the same series \(r = 1\)"),
+        ({"driver": np.repeat([0.0, 1.0], 60), "response": np.repeat([0.0, 3.0], (50, 70))},
+         "driver must vary between its level shifts, but does not"),
         ({"windows": (1, 98)}, "windows must leave at least 24 pairs, but window 98 leaves 23 of"),
         ({"driver": np.r_[np.nan, np.ones(119)]}, "driver must be finite, but got nan"),
         ({"surrogates": 0}, "surrogates must be 1 or more, but got 0"),
