@@ -90,13 +90,15 @@ def bars(shown: Breadth) -> tuple[list[str], FloatArray]:
 
 
 def parts(shown: Breadth, values: FloatArray) -> dict[str, FloatArray]:
-    """Return the columns with the largest values in what is drawn, and the rest summed up.
+    """Return the columns of the components that gave most in what is drawn, and the rest summed up.
 
-    `values` has shape (n, K); what is returned is cut to the periods drawn.
+    `values` has shape (n, K); what is returned is cut to the periods drawn. Every chart takes the
+    same components, so that a colour is one component.
     """
+    assert shown.weighted is not None
     drawn = np.nan_to_num(values[shown.drawn])
     absent = np.isnan(values[shown.drawn]).all(axis=1)
-    size = np.abs(drawn).mean(axis=0)
+    size = np.abs(np.nan_to_num(shown.weighted.points[shown.drawn])).mean(axis=0)
     if len(shown.names) <= TOP_PARTS + 1:
         kept = list(range(len(shown.names)))
     else:

@@ -30,7 +30,7 @@
     const title = wrapped(page.sentence(), Math.floor(width / 9.5));
     const source = wrapped(page.source(), Math.floor(width / 6.5));
     const { layout } = figure;
-    const legend = layout.showlegend || view === "scatter" || view === "overlay";
+    const legend = layout.showlegend || (layout.meta || {}).key || view === "scatter" || view === "overlay";
     const top = 50 + 24 * title.length + (legend ? 26 : 0), bottom = 62 + 15 * source.length;
     layout.margin = { ...layout.margin, t: top, b: bottom, l: Math.max(70, (layout.margin || {}).l || 0) };
     layout.title = {

@@ -1,4 +1,8 @@
-"""Charts of the Breadth page: contributions, strip, core measures, diffusion, weights."""
+"""Charts of the Breadth page: contributions, strip, core measures, diffusion, weights.
+
+``layout.meta["key"]`` lists (shape, colour token, words) of what is drawn; the page shows the key
+above the chart, and a saved chart has it as its legend.
+"""
 
 from html import escape
 
@@ -10,38 +14,36 @@ from analytics.series import period_label
 from app.figures.theme import colour, diverging, template
 
 PARTS = tuple(f"part-{number}" for number in range(1, 8))
-DASHES = ("solid", "solid", "dash", "dot", "dashdot")
+DASHES = ("solid", "solid", "dash", "dot")
+LONGEST = 24  # letters of a name on an axis or in a key
 MOST_LABELS = 45  # components that the strip names on its axis
 RATES_SHOWN = 95  # percentile of absolute rates at which the colours of the strip end
 
 
 def contribution_bars(names: list[str], points: np.ndarray, unit: str) -> go.Figure:
     """Draw a bar a component for one print, in the order given, the first on top."""
-    shown = [_label(name) for name in names]
+    signs = [f"{value:+.2f}".replace("-", "−") for value in points]
+    shown = [f"{_label(name)}  <b>{sign}</b>" for name, sign in zip(names, signs, strict=True)]
     figure = go.Figure(
         go.Bar(
             x=points,
             y=[escape(name, False) for name in names],
             orientation="h",
             marker={"color": [colour("high-2") if p >= 0 else colour("low-2") for p in points]},
-            text=[f"{p:+.2f}".replace("-", "−") for p in points],
-            textposition="outside",
-            cliponaxis=False,
             hovertemplate="%{y}: %{x:+.3f} points<extra></extra>",
         )
     )
-    low, high = min(0.0, float(points.min())), max(0.0, float(points.max()))
-    room = 0.16 * max(high - low, 1e-9)
     figure.update_layout(
         template=template(),
-        margin={"l": _room(shown), "r": 12, "t": 8, "b": 44},
+        margin={"l": _room(names) + 44, "r": 12, "t": 8, "b": 44},
         bargap=0.3,
         xaxis={
             "title": {"text": unit},
-            "range": [low - (room if low < 0 else 0), high + room],
             "zeroline": True,
             "zerolinecolor": colour("ink"),
             "zerolinewidth": 1,
+            "nticks": 6,
+            "tickangle": 0,
         },
         yaxis={
             "type": "category",
@@ -64,13 +66,18 @@ def contribution_history(
     """
     when = periods.to_timestamp()
     labels = [period_label(period) for period in periods]
-    figure = go.Figure()
+    days = (periods + 1).to_timestamp() - when
+    widths = (days.days * 86_400_000).to_list()
+    figure, key = go.Figure(), []
     for place, (name, values) in enumerate(parts.items()):
-        token = "rest" if place == len(parts) - 1 and place > 0 else PARTS[place % len(PARTS)]
+        token = _part(place, len(parts))
+        key.append(("block", token, name))
         figure.add_trace(
             go.Bar(
                 x=when,
                 y=values,
+                width=widths,
+                offset=0,
                 text=labels,
                 textposition="none",
                 name=_label(name),
@@ -91,11 +98,9 @@ def contribution_history(
     )
     figure.update_layout(
         template=template(),
-        margin={"l": 56, "r": 12, "t": 54, "b": 28},
+        margin={"l": 56, "r": 12, "t": 8, "b": 28},
         barmode="relative",
-        bargap=0,
-        showlegend=True,
-        legend=_above(),
+        meta={"key": [*key, ("line", "ink", total)]},
         yaxis={"title": {"text": unit}, "zeroline": True, "zerolinecolor": colour("ink")},
     )
     return figure
@@ -104,6 +109,7 @@ def contribution_history(
 def component_strip(
     periods: pd.PeriodIndex,
     names: list[str],
+    labels: list[str],
     rates: np.ndarray,
     ranks: np.ndarray,
     *,
@@ -112,7 +118,7 @@ def component_strip(
 ) -> go.Figure:
     """Draw a row a component and a column a period, coloured by rank or by rate.
 
-    `rates` and `ranks` have shape (periods, components).
+    `rates` and `ranks` have shape (periods, components); `labels` are the names on the axis.
     """
     values, other = (ranks, rates) if by_rank else (rates, ranks)
     known = np.abs(rates[~np.isnan(rates)])
@@ -125,7 +131,7 @@ def component_strip(
         else f"{over} rate %{{z:.2f}} %, rank %{{customdata:.0f}} of its own history"
     )
     few = len(names) <= MOST_LABELS
-    shown = [_label(name) for name in names]
+    shown = [_label(name) for name in labels]
     figure = go.Figure(
         go.Heatmap(
             x=periods.to_timestamp(),
@@ -138,12 +144,19 @@ def component_strip(
             xgap=0,
             ygap=1 if few else 0,
             colorbar={
-                "thickness": 10,
+                "orientation": "h",
+                "thickness": 8,
+                "len": 0.6,
                 "outlinewidth": 0,
-                "xpad": 4,
+                "x": 0,
+                "xanchor": "left",
+                "y": 1,
+                "yanchor": "bottom",
+                "ypad": 6,
                 "title": {
                     "text": "rank in own history" if by_rank else f"{over} rate (%)",
-                    "side": "right",
+                    "side": "top",
+                    "font": {"size": 11},
                 },
             },
             hovertemplate="%{x|%b %Y}<br>%{y}: " + hover + "<extra></extra>",
@@ -151,8 +164,8 @@ def component_strip(
     )
     figure.update_layout(
         template=template(),
-        margin={"l": _room(shown) if few else 56, "r": 70, "t": 8, "b": 28},
-        xaxis={"showgrid": False},
+        margin={"l": _room(shown) if few else 56, "r": 12, "t": 62, "b": 28},
+        xaxis={"showgrid": False, "tickangle": 0},
         yaxis={
             "autorange": "reversed",
             "showgrid": False,
@@ -174,8 +187,9 @@ def core_lines(
     when = periods.to_timestamp()
     labels = [period_label(period) for period in periods]
     tokens = ("response", "fit", "other", "mark", "low-2")
-    figure = go.Figure()
+    figure, key = go.Figure(), []
     if trend is not None:
+        key.append(("broad", "rule", "centred trend of all items"))
         figure.add_trace(
             go.Scatter(
                 x=when,
@@ -187,6 +201,8 @@ def core_lines(
             )
         )
     for place, (name, values) in enumerate(measures.items()):
+        shape = "line" if place < 2 else "dash" if place == 2 else "dots"
+        key.append((shape, tokens[place % len(tokens)], name))
         figure.add_trace(
             go.Scatter(
                 x=when,
@@ -204,9 +220,8 @@ def core_lines(
         )
     figure.update_layout(
         template=template(),
-        margin={"l": 56, "r": 12, "t": 54, "b": 28},
-        showlegend=True,
-        legend=_above(),
+        margin={"l": 56, "r": 12, "t": 8, "b": 28},
+        meta={"key": key},
         yaxis={"title": {"text": f"{over} rate (%)"}},
     )
     return figure
@@ -238,9 +253,13 @@ def diffusion_lines(periods: pd.PeriodIndex, lines: dict[str, np.ndarray]) -> go
     figure.add_hline(y=50, line={"color": colour("ink"), "width": 0.7, "dash": "dot"})
     figure.update_layout(
         template=template(),
-        margin={"l": 56, "r": 12, "t": 54, "b": 28},
-        showlegend=True,
-        legend=_above(),
+        margin={"l": 56, "r": 12, "t": 8, "b": 28},
+        meta={
+            "key": [
+                (("line", "dash")[place % 2], tokens[place % len(tokens)], name)
+                for place, name in enumerate(lines)
+            ]
+        },
         yaxis={"title": {"text": "share (0 to 100)"}, "range": [-2, 102]},
     )
     return figure
@@ -250,9 +269,10 @@ def weight_areas(periods: pd.PeriodIndex, parts: dict[str, np.ndarray]) -> go.Fi
     """Draw effective weights through time, stacked to 100 percent; the last part is the rest."""
     when = periods.to_timestamp()
     labels = [period_label(period) for period in periods]
-    figure = go.Figure()
+    figure, key = go.Figure(), []
     for place, (name, values) in enumerate(parts.items()):
-        token = "rest" if place == len(parts) - 1 and place > 0 else PARTS[place % len(PARTS)]
+        token = _part(place, len(parts))
+        key.append(("block", token, name))
         figure.add_trace(
             go.Scatter(
                 x=when,
@@ -268,21 +288,21 @@ def weight_areas(periods: pd.PeriodIndex, parts: dict[str, np.ndarray]) -> go.Fi
         )
     figure.update_layout(
         template=template(),
-        margin={"l": 56, "r": 12, "t": 54, "b": 28},
-        showlegend=True,
-        legend=_above(),
+        margin={"l": 56, "r": 12, "t": 8, "b": 28},
+        meta={"key": key},
         yaxis={"title": {"text": "weight (%)"}, "range": [0, 100]},
     )
     return figure
 
 
 def _label(name: str) -> str:
-    return escape(name if len(name) <= 34 else name[:32] + "…", False)
+    return escape(name if len(name) <= LONGEST else name[: LONGEST - 1].rstrip() + "…", False)
 
 
 def _room(labels: list[str]) -> int:
-    return min(250, 20 + int(6.6 * max(map(len, labels), default=8)))
+    return 20 + int(6.4 * min(LONGEST, max(map(len, labels), default=8)))
 
 
-def _above() -> dict[str, object]:
-    return {"orientation": "h", "x": 0, "y": 1, "yanchor": "bottom", "font": {"size": 11}}
+def _part(place: int, count: int) -> str:
+    """Colour of a part of a stack; the last of several is the rest."""
+    return "rest" if 0 < place == count - 1 else PARTS[place % len(PARTS)]

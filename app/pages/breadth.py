@@ -58,7 +58,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
     shown = breadth(state, bridge)
     drawn, over = shown.drawn, over_words(shown)
     when = shown.periods[drawn]
-    unit = f"percentage points of the {over} rate"
+    unit = "percentage points"
     total = shown.total.name if shown.total else "All items, chained"
     found = shown.weighted
     order = strip_order(shown)
@@ -66,6 +66,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
         "strip": figures.component_strip(
             when,
             [shown.names[i] for i in order],
+            [short_name(shown.names[i]) for i in order],
             shown.rates[drawn][:, order],
             shown.ranks[drawn.start - shown.start :][:, order],
             by_rank=shown.state.strip == "rank",
@@ -97,7 +98,12 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
             "weights": figures.weight_areas(when, parts(shown, found.effective)),
         }
     charts["diffusion"] = figures.diffusion_lines(when, lines)
-    words = _words(shown) | {
+    said = _words(shown)
+    for name, chart in charts.items():
+        key = (chart.layout.meta or {}).get("key")
+        if key:
+            said[f"{name}-words"] = [said.get(f"{name}-words", ""), _key(key)]
+    words = said | {
         "as-of": as_of_line(state),
         "notes": _notes(shown),
         "table": component_table(shown),
@@ -138,12 +144,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
             controls.select(state, "aggregate", ["", *loaded], empty="the one that fits"),
             controls.select(state, "span"),
             controls.text(state, "newest", placeholder="newest"),
-            controls.text(state, "trim"),
-            controls.select(state, "core"),
-            controls.text(state, "pace"),
             controls.number(state, "years"),
-            controls.number(state, "link"),
-            controls.select(state, "valued"),
         ],
         [
             html.Div(id=f"{NAME}-as-of"),
@@ -159,13 +160,25 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                         wide=True,
                         tools=[controls.select(state, "strip")],
                     ),
-                    plain.view(NAME, "core", "Core measures"),
-                    plain.view(NAME, "diffusion", "How many rise"),
+                    plain.view(
+                        NAME,
+                        "core",
+                        "Core measures",
+                        tools=[controls.select(state, "core"), controls.text(state, "trim")],
+                    ),
+                    plain.view(
+                        NAME, "diffusion", "How many rise", tools=[controls.text(state, "pace")]
+                    ),
                     html.Section(
                         [_head("table", "Components"), html.Div(id=f"{NAME}-table")],
                         className="view wide",
                     ),
-                    plain.view(NAME, "weights", "Effective weights"),
+                    plain.view(
+                        NAME,
+                        "weights",
+                        "Effective weights",
+                        tools=[controls.number(state, "link"), controls.select(state, "valued")],
+                    ),
                     html.Section(
                         [
                             _head("tracking", "How near each measure came to the trend"),
@@ -210,6 +223,19 @@ def _words(shown: Breadth) -> dict[str, Any]:
         "weights-words": "Shares of the basket at each period's own prices; new weights come in "
         "at the links.",
     }
+
+
+def _key(entries: Any) -> html.Ul:
+    """Return what the colours of a chart stand for."""
+    return html.Ul(
+        [
+            html.Li(
+                [html.Span(className=f"sign {shape}", style={"--sign": f"var(--{token})"}), words]
+            )
+            for shape, token, words in entries
+        ],
+        className="key",
+    )
 
 
 def _notes(shown: Breadth) -> list[Any]:
