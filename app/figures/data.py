@@ -20,8 +20,7 @@ def sparkline(values: FloatArray) -> str:
     """
     finite = values[np.isfinite(values)]
     low, high = float(finite.min()), float(finite.max())
-    half = (high - low) / 2 or 1.0
-    middle = low + (high - low) / 2
+    half, middle = high / 2 - low / 2 or 1.0, high / 2 + low / 2
     heights = TALL / 2 - (values - middle) / half * (TALL / 2 - 2)
     places = _kept(values)
     across = places / max(1, values.size - 1) * (WIDE - 4) + 2

@@ -1,0 +1,392 @@
+"""The Data page: what it says and offers for a state; its requests; its files; its charts."""
+
+import csv
+from dataclasses import replace
+from urllib.parse import unquote
+
+import numpy as np
+import pandas as pd
+import pytest
+
+from analytics.series import Series
+from app import desk
+from app.compute import Bridge
+from app.data_exports import csv_export
+from app.demo import demo_releases
+from app.figures.data import revisions_chart, sparkline
+from app.intake.problems import Problem
+from app.intake.reading import Release, read_release
+from app.pages import data as page
+from app.server import build_app
+from app.state import ViewState
+from app.workspace import Workspace
+from tests.app.test_desk import vintages
+
+STATE = ViewState(series="Prices")
+GOOD = b"month,Money,Prices\n" + b"".join(
+    b"%d-%02d,%d,%d\n" % (2000 + i // 12, i % 12 + 1, 100 + i, 200 + i * i) for i in range(60)
+)
+
+
+def nodes(component):
+    """Every component inside one, itself first."""
+    found = []
+    if isinstance(component, (list, tuple)):
+        for each in component:
+            found += nodes(each)
+    elif hasattr(component, "to_plotly_json"):
+        found.append(component)
+        found += nodes(getattr(component, "children", None))
+    return found
+
+
+def words(component):
+    if isinstance(component, (list, tuple)):
+        return " ".join(words(each) for each in component)
+    if hasattr(component, "to_plotly_json"):
+        return words(getattr(component, "children", None))
+    return "" if component is None else str(component)
+
+
+def props(component):
+    return [each.to_plotly_json()["props"] for each in nodes(component)]
+
+
+def answer(workspace, state=STATE):
+    return page.answer(state, Bridge(workspace))
+
+
+# What it says --------------------------------------------------------------------------------
+
+
+def test_every_series_and_problem_is_listed():
+    found = Problem("error", "a.csv", 7, "Prices", "must be a number, but got 'x'")
+    here = Workspace(
+        (
+            Release("a.csv", (Series("Prices", pd.Period("2024-01", "M"), [1.0, 2.0]),), (found,)),
+            Release("b.csv", (Series("Output", pd.Period("2024Q1"), [1.0, np.nan, 2.0]),), ()),
+        )
+    )
+    shown = answer(here)
+    assert shown.sentence == "2 series from 2 files, as they stand now."
+    assert shown.verdict == "1 error was found in the files."
+    text = words(shown.words["series"])
+    for part in ("Prices", "a.csv", "Jan 2024 to Feb 2024", "month", "Output", "quarter"):
+        assert part in text
+    assert "2, 1 missing" in text
+    problems = words(shown.words["problems"])
+    assert "error a.csv 7 Prices must be a number, but got 'x'" in " ".join(problems.split())
+    assert "No series has been loaded twice" in words(shown.words["revisions-words"])
+    assert shown.charts == {}
+
+
+def test_the_invented_economy_is_shown_and_cannot_be_changed():
+    here = Workspace(placeholder=demo_releases())
+    shown = answer(here)
+    assert shown.sentence.startswith("An invented economy stands here until you open files")
+    for name in here.series:
+        assert name in words(shown.words["series"])
+    everything = props([list(shown.words.values())])
+    assert not any("data-correct" in each or "data-act" in each for each in everything)
+
+
+def test_an_empty_workspace_says_what_to_do():
+    shown = answer(Workspace())
+    assert shown.sentence == "Nothing is in view."
+    assert "Open the files of a release above" in words(shown.words["series"])
+    here = Workspace()
+    here.add(
+        Release("a.csv", (Series("Prices", pd.Period("2024-01", "M"), [1.0]),), ()), "2024-02-12"
+    )
+    shown = answer(here, ViewState(as_of="2024-01-31"))
+    assert shown.sentence == "Nothing is in view, as they stood on 31 Jan 2024."
+    assert "the first file stands from 12 Feb 2024" in words(shown.words["series"])
+
+
+def test_every_control_has_a_name_and_knows_its_series():
+    shown = answer(vintages(3))
+    controls = [p for p in props(shown.words["series"]) if "data-correct" in p]
+    assert len(controls) == 2 * 3  # kind, unit and adjustment of two series
+    for each in controls:
+        label = each.get("aria-label") or each.get("data-label")
+        assert label.endswith(f"of {each['data-series']}")
+    selected = [p["value"] for p in props(shown.words["series"]) if p.get("selected")]
+    assert selected == ["level", "unknown"] * 2
+    buttons = [p for p in props(shown.words["files"]) if "data-act" in p]
+    assert {p["data-act"] for p in buttons} == {"hide"}
+    assert all(p["data-file"] in p["aria-label"] for p in buttons)
+
+
+def test_cells_carry_the_heading_they_stand_under():
+    for table in ("series", "files", "prints"):
+        for body in [p for p in props(answer(vintages(3)).words[table]) if "data-label" in p]:
+            assert body["data-label"]
+
+
+def test_earlier_files_and_those_out_of_view_fold_away():
+    here = vintages(5)
+    here.hide("2020-02-12.csv")
+    text = words(answer(here).words["files"])
+    assert "Earlier files (3): every series of theirs has a newer file" in text
+    assert "Out of view (1): their vintages are kept" in text
+    assert "Bring back" in text
+
+
+def test_revisions_are_said_with_their_numbers():
+    here = vintages()
+    found = desk.revised(STATE, Bridge(here))
+    shown = answer(here)
+    text = words(shown.words["revisions-words"])
+    assert "40 vintages, 12 Jan 2020 to 12 Apr 2023." in text
+    mean = f"{found.result.mean:+.3f}".replace("-", "−")
+    assert f"39 first prints with a later value: mean revision {mean}, mean absolute" in text
+    assert f"intercept {found.bias.intercept:+.3f}".replace("-", "−") in text
+    assert "p below .001" in text
+    assert f"First prints of Prices were revised by {mean} on average" in shown.verdict
+    prints = words(shown.words["prints"])
+    assert "The newest 24 of" in prints
+    newest = found.result.periods.size - 2
+    assert f"{found.result.first[newest]:.3f}".replace("-", "−") in prints
+
+
+def test_the_page_for_an_address_shows_its_date_and_names_refused_values():
+    shown = page.layout("?as_of=2024-02-30&revised=values", Bridge(Workspace()))
+    text = words(shown)
+    assert "As it stood on must be a date such as 2024-03-12" in text
+    good = page.layout("?as_of=2024-02-29", Bridge(Workspace()))
+    (field,) = [p for p in props(good) if p.get("data-native") == "as_of"]
+    assert (field["data-type"], field["data-value"]) == ("date", "2024-02-29")
+
+
+def test_a_very_long_list_is_cut_and_says_so():
+    many = tuple(Series(f"S{k}", pd.Period("2024-01", "M"), [1.0, 2.0]) for k in range(320))
+    text = words(answer(Workspace((Release("a.csv", many, ()),))).words["series"])
+    assert "20 more series are in the CSV." in text
+    assert "S299" in text
+    assert "S300" not in text
+
+
+# The preview ---------------------------------------------------------------------------------
+
+
+def test_the_preview_says_what_was_understood_and_changes_nothing():
+    here = Workspace((read_release("old.csv", GOOD),))
+    before = here.releases
+    new = read_release("new.csv", GOOD + b"2005-01,160,x\n")
+    found = page.preview([("token-1", new)], Bridge(here))
+    text = " ".join(words(found).split())
+    assert "Understood, and not kept yet new.csv" in text
+    assert "Money index not named month Jan 2000 to Jan 2005 61 adds 1 month (Jan 2005)" in text
+    assert "error new.csv 62 Prices must be a number, but got 'x'" in text
+    acts = [p["data-act"] for p in props(found) if "data-act" in p]
+    assert acts == ["discard", "keep", "discard-all"]
+    assert here.releases == before
+    assert page.preview([], Bridge(here)) == []
+    fresh = words(page.preview([("t", new)], Bridge(Workspace(placeholder=demo_releases()))))
+    assert "new" in fresh
+    assert "revises" not in fresh
+
+
+# Requests ------------------------------------------------------------------------------------
+
+
+@pytest.fixture
+def own():
+    here = Workspace(placeholder=demo_releases())
+    return build_app(here).server.test_client(), here
+
+
+def post(client, address, body):
+    return client.post(address, json=body)
+
+
+def test_a_previewed_file_is_kept_only_when_asked(own):
+    client, here = own
+    sent = client.post("/intake?preview=1&name=release.csv", data=GOOD)
+    assert sent.status_code == 200
+    assert sent.json["series"] == ["Money", "Prices"]
+    assert here.as_of().placeholder
+    kept = post(client, "/intake/keep", {"tokens": [sent.json["token"]], "day": "2024-03-12"})
+    assert (kept.status_code, kept.json["kept"][0]["file"]) == (200, "release.csv")
+    assert list(here.series) == ["Money", "Prices"]
+    assert here.as_of().files[0].day == "2024-03-12"
+    again = post(client, "/intake/keep", {"tokens": [sent.json["token"]]})
+    assert again.status_code == 422
+    assert "no longer held for a look; open it again" in again.json["message"]
+    assert len(here.releases) == 1
+
+
+def test_a_discarded_file_is_gone(own):
+    client, here = own
+    token = client.post("/intake?preview=1&name=a.csv", data=GOOD).json["token"]
+    assert post(client, "/intake/discard", {"tokens": [token]}).status_code == 200
+    assert post(client, "/intake/keep", {"tokens": [token]}).status_code == 422
+    assert here.as_of().placeholder
+
+
+def test_several_files_are_kept_in_their_order(own):
+    client, here = own
+    tokens = [
+        client.post(f"/intake?preview=1&name={name}.csv", data=GOOD).json["token"] for name in "ab"
+    ]
+    kept = post(client, "/intake/keep", {"tokens": tokens, "day": ""})
+    assert [each["file"] for each in kept.json["kept"]] == ["a.csv", "b.csv"]
+    assert [each.name for each in here.releases] == ["a.csv", "b.csv"]
+
+
+@pytest.mark.parametrize("body", [None, [], {}, {"tokens": "x"}, {"tokens": [1]}, {"tokens": None}])
+def test_keep_without_files_is_refused(own, body):
+    client, here = own
+    answer = post(client, "/intake/keep", body)
+    assert (answer.status_code, here.as_of().placeholder) == (422, True)
+    assert len(answer.json["message"]) > 10
+
+
+@pytest.mark.parametrize("day", ["2024-02-30", "today", "'; --", "9" * 5000])
+def test_a_day_that_is_none_keeps_nothing_and_the_file_stays_held(own, day):
+    client, here = own
+    token = client.post("/intake?preview=1&name=a.csv", data=GOOD).json["token"]
+    answer = post(client, "/intake/keep", {"tokens": [token], "day": day})
+    assert answer.status_code == 422
+    assert "must be a date" in answer.json["message"]
+    assert here.as_of().placeholder
+    assert post(client, "/intake/keep", {"tokens": [token]}).status_code == 200
+
+
+def test_corrections_and_files_out_of_view_over_the_wire(own):
+    client, here = own
+    client.post("/intake?name=release.csv", data=GOOD)
+    sent = {"series": "Prices", "field": "kind", "value": "index"}
+    assert post(client, "/workspace/correct", sent).status_code == 200
+    assert here.named("Prices").kind == "index"
+    assert post(client, "/workspace/hide", {"file": "release.csv"}).status_code == 200
+    assert here.series == {}
+    assert post(client, "/workspace/show", {"file": "release.csv"}).status_code == 200
+    assert here.named("Prices").kind == "index"
+
+
+@pytest.mark.parametrize(
+    ("act", "body", "status", "said"),
+    [
+        ("correct", {"series": "Nope", "field": "unit", "value": "x"}, 422, "no loaded series"),
+        ("correct", {"series": "Nope", "field": "unit"}, 422, "the page must say what"),
+        ("correct", {"series": ["x"], "field": "unit", "value": "x"}, 422, "the page must say"),
+        ("hide", {"file": "nope.csv"}, 422, "no file in view is named 'nope.csv'"),
+        ("show", {}, 422, "the page must say what"),
+        ("close", {}, 404, "there is nothing named 'close' to do"),
+        ("__init__", {}, 404, "there is nothing named"),
+    ],
+)
+def test_what_cannot_be_changed_is_refused_in_a_sentence(own, act, body, status, said):
+    client, _ = own
+    answer = post(client, f"/workspace/{act}", body)
+    assert answer.status_code == status
+    assert said in answer.json["message"]
+    headers = {"Sec-Fetch-Site": "cross-site"}
+    assert client.post(f"/workspace/{act}", json=body, headers=headers).status_code == 403
+
+
+# Files ---------------------------------------------------------------------------------------
+
+
+def body_of(text):
+    lines = [line for line in text.splitlines() if not line.startswith("#")]
+    return list(csv.reader(lines))
+
+
+def test_the_revisions_leave_as_they_are_on_the_page():
+    here = Bridge(vintages())
+    found = desk.revised(STATE, here)
+    name, text = csv_export("revisions", STATE.to_query(), here)
+    assert name == "revisions-prices-growth.csv"
+    table = body_of(text)
+    assert table[0] == [
+        *("period", "first", "stood from", "latest", "revision", "vintages"),
+        *("first print", "counted"),
+    ]
+    assert len(table) == found.result.periods.size + 1
+    for place in (0, 40, 70, found.result.periods.size - 1):
+        row = table[place + 1]
+        assert float(row[1]) == found.result.first[place]
+        assert float(row[3]) == found.result.latest[place]
+        assert float(row[4]) == found.result.revision[place]
+        assert row[2] == found.loaded[place]
+    assert f"mean revision {found.result.mean!r}" in text
+    assert f"p {found.bias.p!r}" in text
+    assert text.count("# vintage: ") == 40
+    dated = replace(STATE, as_of="2020-03-20", revised="values")
+    assert csv_export("revisions", dated.to_query(), here)[0] == (
+        "revisions-prices-values-as-of-2020-03-20.csv"
+    )
+
+
+def test_the_list_of_series_leaves_as_a_file():
+    here = Bridge(vintages(4))
+    name, text = csv_export("series", "", here)
+    assert name == "series.csv"
+    table = body_of(text)
+    found = dict(zip(table[0], table[1], strict=True))
+    assert found["name"] == "Prices"
+    assert found["vintages"] == "4"
+    assert found["fingerprint"] == here.workspace.named("Prices").fingerprint
+    assert len(table) == 3
+
+
+@pytest.mark.parametrize(
+    ("view", "workspace", "said"),
+    [
+        ("nope", Workspace(), "view must be one of series, revisions, but got 'nope'"),
+        ("series", Workspace(), "nothing is loaded yet"),
+        ("revisions", Workspace(demo_releases()), "no series has been loaded twice"),
+    ],
+)
+def test_what_is_not_there_cannot_be_exported(view, workspace, said):
+    with pytest.raises(ValueError, match=said):
+        csv_export(view, "", Bridge(workspace))
+    client = build_app(workspace).server.test_client()
+    answer = client.get(f"/export/data/{view}.csv")
+    assert answer.status_code == 400
+    assert said in answer.get_data(as_text=True)
+
+
+# Charts --------------------------------------------------------------------------------------
+
+
+def test_the_chart_draws_the_result_and_nothing_else():
+    found = desk.revised(STATE, Bridge(vintages()))
+    chart = revisions_chart(found.result, found.start, found.unit)
+    latest, printed, change = chart.data
+    shown = slice(found.start, None)
+    np.testing.assert_array_equal(latest.y, found.result.latest[shown])
+    expected = np.where(found.result.first_print, found.result.first, np.nan)[shown]
+    np.testing.assert_array_equal(printed.y, expected)
+    np.testing.assert_array_equal(change.y[:-1], found.result.revision[shown][:-1])
+    assert np.isnan(change.y[-1])  # the newest print cannot have been revised
+    assert latest.text[-1] == "Apr 2023"
+    assert chart.layout.yaxis.title.text == "percent a month"
+    assert {trace.name for trace in chart.data} == {"latest", "first print", "revision"}
+
+
+def path_of(values):
+    svg = unquote(sparkline(np.array(values, float)).removeprefix("data:image/svg+xml,"))
+    assert svg.startswith('<svg xmlns="http://www.w3.org/2000/svg"')
+    return svg.split(' d="')[1].split('"')[0]
+
+
+def test_the_small_line_runs_from_low_to_high_and_breaks_at_a_gap():
+    assert path_of([0, 1]) == "M2.0 26.0L118.0 2.0"
+    assert path_of([1, 0, 1]) == "M2.0 2.0L60.0 26.0L118.0 2.0"
+    assert path_of([0, 1, np.nan, 1, 0]).count("M") == 2
+    assert path_of([5, 5, 5]) == "M2.0 14.0L60.0 14.0L118.0 14.0"
+    assert path_of([7.0]) == "M2.0 14.0h.01"
+    assert "nan" not in path_of([1e308, -1e308, 0])
+
+
+def test_no_jump_of_a_long_series_is_lost_in_the_small_line():
+    values = np.ones(5000)
+    values[1234] = 10.0
+    path = path_of(values)
+    assert " 2.0L" in path
+    assert path.count("L") < 200
+    values[3000] = np.nan
+    assert path_of(values).count("M") == 2
