@@ -16,6 +16,7 @@ if TYPE_CHECKING:
 MAX_UNPACKED = 4 * MAX_BYTES
 MAX_RATIO = 200
 MAX_MEMBERS = 2_000
+MAX_FILES = 200
 _SMALL = 8 * 1024 * 1024  # below this a high ratio does no harm
 _DIRECTORY = 4 * 1024 * 1024
 _CHUNK = 1024 * 1024
@@ -151,6 +152,9 @@ def read_archive(
         members = [member for member in archive.infolist() if _is_data(member.filename)]
         if not members:
             raise refusal(file, "an archive must hold a release file, but this one holds none")
+        if len(members) > MAX_FILES:
+            message = f"an archive must not hold more than {MAX_FILES} files, but this one holds"
+            raise refusal(file, f"{message} {len(members):,}")
         for member in members:
             name = f"{file}, {display_name(member.filename)}"
             try:

@@ -61,6 +61,7 @@ _DURATION = re.compile(
     r"/P(?:(?P<months>\d{1,2})M|(?P<years>1)Y)",
     re.ASCII,
 )
+_DIGIT = re.compile(r"[0-9]")
 _FISCAL = re.compile(r"([12]\d)(\d\d)[-/](?:\1)?(\d\d)", re.ASCII)
 
 
@@ -94,10 +95,10 @@ class PeriodTrouble:
     calendar: bool = False
 
 
+_LONGEST = 80  # signs; no period has as many
 RULE = "the period must be a month, a quarter or a year"
 
 
-@lru_cache(maxsize=65536)
 def read_period(text: str) -> ReadPeriod | PeriodTrouble:
     """Read one period, or say why not.
 
@@ -108,7 +109,12 @@ def read_period(text: str) -> ReadPeriod | PeriodTrouble:
     >>> read_period("2024-T1").message
     "the period must be a month, a quarter or a year, but got '2024-T1', a term of four months"
     """
-    stripped = text.strip()
+    return _read_period(text.strip()[:_LONGEST])
+
+
+@lru_cache(maxsize=65536)
+def _read_period(stripped: str) -> ReadPeriod | PeriodTrouble:
+    """Read a period without spaces around it."""
     for pattern in _READ:
         match = pattern.fullmatch(stripped)
         if match:
@@ -181,6 +187,8 @@ def _is_fiscal(text: str) -> bool:
 
 def looks_like_period(text: str) -> bool:
     """Tell whether a text is meant as a period, also one that is not read."""
+    if not _DIGIT.search(text):
+        return False
     found = read_period(text)
     return isinstance(found, ReadPeriod) or found.calendar or "from 1 to" in found.message
 

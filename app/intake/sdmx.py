@@ -29,6 +29,7 @@ _ATTRIBUTE_START = re.compile(r"OBS_|CONF_|COMMENT|PRE_BREAK|TITLE|SOURCE|NOTE|M
 TELLING = frozenset((*UNIT, *MULTIPLIER, *ADJUSTMENT, *BASE, "TITLE", "TITLE_COMPL"))
 
 _MAX_PARTS = 20
+MAX_COMPONENTS = 200
 
 
 class Observation(NamedTuple):
@@ -86,8 +87,9 @@ class Message:
     lines: bool = True
     problems: list[Problem] = field(default_factory=list)
 
-    _found: dict[Hashable, list[KeyedSeries]] = field(default_factory=dict)
     count: int = 0
+    _found: dict[Hashable, list[KeyedSeries]] = field(default_factory=dict)
+    _dimensions: set[str] = field(default_factory=set)
 
     def label(self, component: str, code: str) -> str:
         """Return the words for a code, or the code."""
@@ -121,8 +123,13 @@ class Message:
         if len(parts) >= _MAX_PARTS or len(self.series) >= MAX_COLUMNS:
             most = f"{_MAX_PARTS} units" if len(parts) >= _MAX_PARTS else f"{MAX_COLUMNS:,} series"
             raise refusal(self.file, f"a file must not have more than {most}, but this one has")
-        parts.append(KeyedSeries(key(), dict(attributes), [observation]))
-        self.series.append(parts[-1])
+        one = KeyedSeries(key(), dict(attributes), [observation])
+        self._dimensions.update(one.key)
+        if len(self._dimensions) > MAX_COMPONENTS:
+            most = f"{MAX_COMPONENTS} dimensions"
+            raise refusal(self.file, f"a file must not have more than {most}, but this one has")
+        parts.append(one)
+        self.series.append(one)
 
 
 def is_attribute(component: str) -> bool:

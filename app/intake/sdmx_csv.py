@@ -120,7 +120,7 @@ def _time_column(place: dict[str, int], rows: Sequence[Sequence[str]]) -> str | 
     """Find the one column of periods where none is called TIME_PERIOD."""
     head = rows[:50]
     for name, column in place.items():
-        cells = [_code(row[column]) for row in head if column < len(row)]
+        cells = [_code(row[column]) for row in head if column < len(row) and row[column].strip()]
         if name not in (*_HEAD, VALUE) and cells and all(looks_like_period(c[:60]) for c in cells):
             return name
     return None

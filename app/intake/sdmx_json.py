@@ -12,7 +12,7 @@ from typing import Any
 from analytics.series import Series
 from app.intake.csv_files import FORMATS, MAX_CELLS, MAX_COLUMNS
 from app.intake.problems import IntakeError, Problem, counted, plain_text, quoted, refusal
-from app.intake.sdmx import STATUS, TIME, Message, Observation, labels_of
+from app.intake.sdmx import MAX_COMPONENTS, STATUS, TIME, Message, Observation, labels_of
 from app.intake.sdmx_series import read_message
 from app.intake.sheets import Metadata
 
@@ -109,8 +109,8 @@ class _Structure:
         measures = (structure.get("measures") or {}).get("observation") or ()
         self.measures = [_component(one, labels) for one in measures]
         self.ordered = [one for level in _LEVELS for one in self.dimensions[level]]
-        if len(self.ordered) > 200:
-            raise IndexError("too many dimensions")
+        if max(len(self.ordered), *map(len, self.attributes.values())) > MAX_COMPONENTS:
+            raise IndexError(f"more than {MAX_COMPONENTS} dimensions or attributes")
         if all(one.order is not None for one in self.ordered):
             self.ordered.sort(key=lambda one: one.order or 0)
 
@@ -135,6 +135,8 @@ class _Structure:
     ) -> None:
         measures = max(1, len(self.measures))
         for place, entry in observations.items():
+            if not isinstance(entry, list):
+                raise TypeError("an observation is no list")
             found = {**base, **_keyed(self.dimensions["observation"], place)}
             period = found.pop(TIME, "")
             noted = {**held, **_attributes(self.attributes["observation"], entry[measures:])}
@@ -166,8 +168,10 @@ class _Structure:
             fixed = [
                 (part.name, _at(part, slot))
                 for part, slot in zip(parts, slots, strict=False)
-                if slot and part.name != TIME
+                if slot
             ]
+            if any(name == TIME for name, _ in fixed):
+                continue  # what holds for one period alone says nothing of the series
             if len(kinds) > _MAX_GROUPS or len(given) > MAX_COLUMNS:
                 raise refusal(message.file, "groups must be fewer, but there are too many")
             known = kinds.setdefault(tuple(name for name, _ in fixed), {})
@@ -224,6 +228,8 @@ def _at(part: _Component, slot: str) -> str:
 
 def _attributes(parts: Sequence[_Component], given: Sequence[Any]) -> dict[str, str]:
     """Read attributes: places in their lists of values, or values as they are; none if null."""
+    if not isinstance(given, list | tuple):
+        raise TypeError("attributes are no list")
     found = {}
     for part, entry in zip(parts, given, strict=False):
         if entry is None or isinstance(entry, dict):

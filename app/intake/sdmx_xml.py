@@ -8,8 +8,9 @@ from xml.parsers import expat
 
 from analytics.series import Series
 from app.intake.csv_files import FORMATS, MAX_COLUMNS
-from app.intake.problems import Problem, counted, plain_text, quoted, refusal
+from app.intake.problems import IntakeError, Problem, counted, plain_text, quoted, refusal
 from app.intake.sdmx import (
+    MAX_COMPONENTS,
     STATUS,
     TIME,
     VALUE,
@@ -104,9 +105,10 @@ class _Reader:
         raise refusal(self.file, "XML must not declare a document type or entities, but this does")
 
     def _start(self, tag: str, attributes: dict[str, str]) -> None:
-        name = tag.rpartition(" ")[2]
+        space, _, name = tag.rpartition(" ")
         if not self.path:
             self._root(name)
+        self.generic |= space.endswith("/data/generic")  # whatever the root promised
         self.path.append(name)
         if len(self.path) > _MAX_DEPTH:
             raise refusal(
@@ -114,6 +116,8 @@ class _Reader:
                 f"XML must not nest more than {_MAX_DEPTH} deep, but this does",
                 row=self.parser.CurrentLineNumber,
             )
+        if len(attributes) > MAX_COMPONENTS:
+            raise self._too_many()
         if "DataSet" not in self.path[:3]:
             if name == "Structure" and "dimensionAtObservation" in attributes:
                 self.at = plain_text(attributes["dimensionAtObservation"], 80)
@@ -125,6 +129,10 @@ class _Reader:
             self._start_generic(name, plain)
         else:
             self._start_specific(name, plain)
+
+    def _too_many(self) -> IntakeError:
+        message = f"an element must not have more than {MAX_COMPONENTS} values, but this one has"
+        return refusal(self.file, message, row=self.parser.CurrentLineNumber)
 
     def _root(self, name: str) -> None:
         if name not in _GENERIC | _SPECIFIC:
@@ -170,6 +178,8 @@ class _Reader:
             else:
                 kept = self.held if "Series" in self.path else self.dataset
             kept[component] = plain.get("value", "")
+            if len(kept) > MAX_COMPONENTS:
+                raise self._too_many()
 
     def _start_specific(self, name: str, plain: dict[str, str]) -> None:
         if name == "Series":

@@ -4,6 +4,7 @@ import datetime
 import re
 from collections.abc import Sequence
 from decimal import Decimal
+from functools import lru_cache
 from typing import Any, NamedTuple
 
 from app.intake.csv_files import MAX_CELLS, Sheet
@@ -54,7 +55,7 @@ def cell_text(cell: Any) -> str:
 
 def _number_text(value: float, shown_as: str) -> str:
     """Write a number exactly; a share shown with a percent sign is moved by two places."""
-    if "%" in shown_as and "%" in _NOT_FORMAT.sub("", shown_as.split(";")[0]):
+    if "%" in shown_as and _is_percent(shown_as):
         moved = Decimal(repr(value)).scaleb(2)
         text = repr(float(moved)) if moved.is_finite() else repr(value)
         return text.removesuffix(".0") + "%"
@@ -62,6 +63,12 @@ def _number_text(value: float, shown_as: str) -> str:
         value = int(value)
     text = str(value) if isinstance(value, int) else repr(value)
     return text + "0" if _THREE_DECIMALS.fullmatch(text) else text
+
+
+@lru_cache(maxsize=256)
+def _is_percent(shown_as: str) -> bool:
+    """Tell whether a number format has a percent sign of its own, not in words that it adds."""
+    return "%" in _NOT_FORMAT.sub("", shown_as[:256].split(";")[0])
 
 
 def workbook_table(file: str, rows: Rows, merged: Sequence[Area]) -> tuple[Sheet, list[Problem]]:

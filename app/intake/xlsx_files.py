@@ -27,9 +27,10 @@ _LARGE = re.compile(r"xl/(?:worksheets/|sharedStrings)", re.IGNORECASE)
 _MAX_PART = 8 * 1024 * 1024  # of the parts that hold no cells
 _MERGED = re.compile(rb"<(?:\w+:)?mergeCell\s+ref=\"([A-Z]{1,3})(\d{1,7}):([A-Z]{1,3})(\d{1,7})\"")
 _NOT_COMPUTED = re.compile(
-    rb"(?:</(?:\w+:)?f>|<(?:\w+:)?f\b[^<>]*/>)\s*(?:<(?:\w+:)?v\s*/>|<(?:\w+:)?v></(?:\w+:)?v>)?"
-    rb"\s*</(?:\w+:)?c>"
+    rb"(?:</(?:\w+:)?f>|<(?:\w+:)?f\b[^<>]*/>)\s*+"
+    rb"(?:<(?:\w+:)?v\s*+/>|<(?:\w+:)?v></(?:\w+:)?v>)?+\s*+</(?:\w+:)?c>"
 )
+_MAX_TAGS = 12_000_000  # a cell has four, and openpyxl reads some 200,000 cells a second
 _MAX_MERGED = 100_000
 
 
@@ -74,7 +75,7 @@ def _opened(file: str, content: bytes) -> _Workbook:
     """Open a workbook from a copy that holds only the parts needed, each of them checked."""
     copy = io.BytesIO()
     with open_archive(file, content) as archive, zipfile.ZipFile(copy, "w") as kept:
-        names = set()
+        names, tags = set(), 0
         for member in archive.infolist():
             if not _NEEDED.fullmatch(member.filename) or member.filename in names:
                 continue
@@ -82,6 +83,10 @@ def _opened(file: str, content: bytes) -> _Workbook:
                 raise refusal(file, f"{quoted(member.filename)} must be smaller, but is not")
             part = unpacked(file, archive, member)
             refuse_entities(file, part)
+            tags += part.count(b"<")
+            if tags > _MAX_TAGS:
+                message = f"a workbook must not hold more than {_MAX_TAGS // 4:,} cells"
+                raise refusal(file, f"{message}, but this one may")
             kept.writestr(member.filename, part)
             names.add(member.filename)
     import openpyxl  # type: ignore[import-untyped]

@@ -367,23 +367,24 @@ def _json_data(*, flat: bool, group: bool) -> dict:
 
 def json_examples() -> dict[str, Example]:
     """SDMX-JSON: file name to example."""
+    meta = {"id": "ULD1", "prepared": "2024-01-15T09:00:00Z", "sender": {"id": "ULD"}}
 
     def first(flat: bool) -> dict:
         data = {"action": "Information", **_json_data(flat=flat, group=False)}
         return {
-            "meta": {"id": "ULD1", "prepared": "2024-01-15T09:00:00Z", "sender": {"id": "ULD"}},
+            "meta": meta,
             "data": {"structure": _structure(flat=flat, group=False), "dataSets": [data]},
         }
 
     def second(flat: bool, group: bool) -> dict:
         data = {"structure": 0, "action": "Replace", **_json_data(flat=flat, group=group)}
         return {
-            "meta": {"id": "ULD1", "sender": {"id": "ULD"}},
+            "meta": meta,
             "data": {"structures": [_structure(flat=flat, group=group)], "dataSets": [data]},
         }
 
     draft = {
-        "header": {"id": "ULD1", "test": False, "prepared": "2024-01-15T09:00:00Z"},
+        "header": {**meta, "test": False},
         "structure": _structure(flat=False, group=False),
         "dataSets": [{"action": "Replace", **_json_data(flat=False, group=False)}],
     }

@@ -176,6 +176,43 @@ def _formulas(*, stored: bool) -> bytes:
     return stream.getvalue()
 
 
+def shared_strings(content: bytes) -> bytes:
+    """Move the words of the first sheet to the list of shared strings, as office programs do."""
+    words: list[str] = []
+
+    def shared(cell: re.Match[str]) -> str:
+        words.append(cell[2])
+        return f'<c{cell[1]} t="s"><v>{len(words) - 1}</v></c>'
+
+    main = "http://schemas.openxmlformats.org/spreadsheetml/2006/main"
+    kind = "http://schemas.openxmlformats.org/officeDocument/2006/relationships/sharedStrings"
+    program = "application/vnd.openxmlformats-officedocument.spreadsheetml.sharedStrings+xml"
+    new = {
+        "[Content_Types].xml": (
+            "</Types>",
+            f'<Override PartName="/xl/sharedStrings.xml" ContentType="{program}"/></Types>',
+        ),
+        "xl/_rels/workbook.xml.rels": (
+            "</Relationships>",
+            f'<Relationship Type="{kind}" Target="sharedStrings.xml" Id="rId99"/></Relationships>',
+        ),
+    }
+    source = zipfile.ZipFile(io.BytesIO(content))
+    stream = io.BytesIO()
+    with zipfile.ZipFile(stream, "w", zipfile.ZIP_DEFLATED) as target:
+        for name in source.namelist():
+            part = source.read(name).decode()
+            if name == "xl/worksheets/sheet1.xml":
+                cell = r'<c( r="\w+")(?: s="\d+")? t="inlineStr"[^>]*><is><t>([^<]*)</t></is></c>'
+                part = re.sub(cell, shared, part)
+            old, put = new.get(name, ("", ""))
+            target.writestr(name, part.replace(old, put) if old else part)
+        assert words
+        listed = "".join(f"<si><t>{word}</t></si>" for word in words)
+        target.writestr("xl/sharedStrings.xml", f'<sst xmlns="{main}">{listed}</sst>')
+    return stream.getvalue()
+
+
 def examples() -> dict[str, Example]:
     """File name to example."""
     hole = [*MONEY[:3], float("nan"), *MONEY[4:]]
@@ -222,6 +259,7 @@ def examples() -> dict[str, Example]:
         ),
         "xlsx_old_epoch.xlsx": Example(_saved(_old_epoch), BASIC),
         "xlsx_long.xlsx": Example(_saved(_long), BASIC),
+        "xlsx_shared_strings.xlsx": Example(shared_strings(_saved(_text_months)), BASIC),
         "xlsx_formulas.xlsx": Example(_formulas(stored=True), BASIC),
         "xlsx_formulas_not_stored.xlsx": Example(
             _formulas(stored=False),
