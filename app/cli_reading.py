@@ -66,5 +66,12 @@ def report(
             f" {period_label(run.peak_period)}."
         )
     said += [f"Alert ({alert.rule}): {alert.sentence}" for alert in found]
-    said += [*known.notes, *(f"No {part}: {why}." for part, why in known.refused.items()), CAUTION]
+    said += known.notes
+    if known.series.kind == "rate":
+        said.append(
+            f"{known.series.name} is a rate already: growth, base effect, carry-over: none."
+        )
+    else:
+        said += [f"No {part}: {why}." for part, why in known.refused.items()]
+    said.append(CAUTION)
     return known, reading_answer(known, found), said

@@ -270,7 +270,7 @@ def _distribution(known: Reading) -> list[Any]:
 
 def _quantiles(known: Reading) -> list[Any]:
     if not known.fits:
-        return []
+        return _missing(known, "distribution", "rank")
     label = FAMILIES[known.state.family].label
     said = []
     if known.fitted is not None:

@@ -44,16 +44,11 @@ def core_reading(state: ViewState, loaded: Series) -> Reading:
     year, formula = PERIODS_PER_YEAR[series.frequency], _formula(state)
     kind: RankKind = state.rank_kind  # type: ignore[assignment]
     growing = series.kind != "rate"
-    yearly = part("12-month rate", lambda: growth_rate(series, span=year, formula=formula))
+    yearly = part("12-month rate", lambda: _rate(series, year, formula))
     yearly = _on_time(yearly, series, "12-month rate", refused)
-    quarter = (
-        part(
-            "3-month rate",
-            lambda: growth_rate(series, span=year // 4, formula=formula, annualised=True),
-        )
-        if growing and year >= 4
-        else None
-    )
+    quarter = None
+    if growing and year >= 4:
+        quarter = part("3-month rate", lambda: _rate(series, year // 4, formula, annualised=True))
     measured = part("rank", lambda: _measured(series, state))
     measured = _on_time(measured, series, "rank", refused)
     rates = {
@@ -159,26 +154,27 @@ def _to_print(loaded: Series, state: ViewState) -> tuple[Series, tuple[str, ...]
             notes.append(
                 f"There is no value for {period_label(asked)}; {period_label(series.last)} is read."
             )
-    if series.kind != "rate" and (series.values <= 0).any():
-        low = np.flatnonzero(series.values <= 0)
-        if low.size == np.count_nonzero(~np.isnan(series.values)):
-            raise StateError(f"{loaded.name!r} must have a value above zero, but has none")
-        last = series.last
-        values = np.where(series.values > 0, series.values, np.nan)
-        notes.append(
-            f"{low.size} value{'s' if low.size > 1 else ''} of {loaded.name} at or below zero"
-            f" (the first in {period_label(series.periods[low[0]])}) have no growth rate and are"
-            " left out."
-        )
-        series = replace(series, values=values)
-        if series.last != last:
-            notes.append(f"So {period_label(series.last)} is read, and not {period_label(last)}.")
     if series.gaps.size:
         notes.append(
             f"{series.gaps.size} {PERIOD_NOUN[series.frequency]}"
             f"{'s' if series.gaps.size > 1 else ''} of {loaded.name} without a value; rates that"
             " need them are missing."
         )
+    if series.kind != "rate" and (series.values <= 0).any():
+        low = np.flatnonzero(series.values <= 0)
+        many = low.size > 1
+        if low.size == np.count_nonzero(~np.isnan(series.values)):
+            raise StateError(f"{loaded.name!r} must have a value above zero, but has none")
+        last = series.last
+        values = np.where(series.values > 0, series.values, np.nan)
+        notes.append(
+            f"{low.size} value{'s' if many else ''} of {loaded.name} at or below zero (the first in"
+            f" {period_label(series.periods[low[0]])}) {'have' if many else 'has'} no growth rate"
+            f" and {'are' if many else 'is'} left out."
+        )
+        series = replace(series, values=values)
+        if series.last != last:
+            notes.append(f"So {period_label(series.last)} is read, and not {period_label(last)}.")
     return series, tuple(notes)
 
 
@@ -193,9 +189,18 @@ def _measured(series: Series, state: ViewState) -> Series:
         raise StateError(
             f"{series.name!r} is annual and has no rate over {state.measure[0]} months"
         )
-    return growth_rate(
-        series, span=span, formula=_formula(state), annualised=state.measure in ("3m", "6m")
-    )
+    return _rate(series, span, _formula(state), annualised=state.measure in ("3m", "6m"))
+
+
+def _rate(series: Series, span: int, formula: Formula, *, annualised: bool = False) -> Series:
+    """Return a growth rate, or say how many periods it would need."""
+    noun, n = PERIOD_NOUN[series.frequency], series.values.size
+    if series.kind != "rate" and n <= span:
+        raise StateError(
+            f"a rate over {span} {noun}{'s' if span > 1 else ''} needs {span + 1} {noun}s, but"
+            f" {series.name!r} has {n} up to the print"
+        )
+    return growth_rate(series, span=span, formula=formula, annualised=annualised)
 
 
 def _on_time(

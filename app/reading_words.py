@@ -69,6 +69,8 @@ def _standing_words(known: Reading) -> str:
     if known.earlier is None:
         return ""
     below, n, noun = known.earlier.below, known.earlier.n, known.noun
+    if known.earlier.equal == n:
+        return f", the same as in all {n} earlier {noun}s"
     if below == n:
         return f", higher than all {n} earlier {noun}s"
     if below == 0:
@@ -89,8 +91,8 @@ def verdict(known: Reading) -> list[str]:
         moved = "unchanged" if round(abs(change), 2) == 0 else moved
         said.append(
             f"The {year_words(known)} rate is {plain(float(base.yearly[-1]), 1)} percent, {moved}:"
-            f" the new {known.noun} brought {signed(new)}, the one that dropped out"
-            f" {signed(dropped)}."
+            f" the new {known.noun} brought {_points(new)}, the one that dropped out"
+            f" {_points(dropped)}."
         )
     if known.carried is not None and not math.isnan(known.carried.next_year):
         carried = known.carried
@@ -103,6 +105,10 @@ def verdict(known: Reading) -> list[str]:
             " (carry-over)."
         )
     return said
+
+
+def _points(value: float) -> str:
+    return signed(round(value, 2) + 0.0)  # no minus before nothing
 
 
 def year_words(known: Reading) -> str:
