@@ -321,11 +321,9 @@ def _late_and_absent(shown: Panel, basket: ChainedBasket) -> list[str]:
             f"{counted(quoted(never[0]), len(never) - 1, 'component')} has no price at any link and"
             " takes no part."
         )
-    still = [
-        shown.names[k]
-        for k in range(len(shown.names))
-        if known[:, k].sum() > 1 and np.ptp(shown.prices[known[:, k], k]) == 0
-    ]
+    low, high = np.fmin.reduce(shown.prices, axis=0), np.fmax.reduce(shown.prices, axis=0)
+    flat = (low == high) & (known.sum(axis=0) > 1)
+    still = [shown.names[k] for k in np.flatnonzero(flat)]
     if still:
         notes.append(
             f"{counted(quoted(still[0]), len(still) - 1, 'component')} has the same value in every"

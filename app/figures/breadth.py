@@ -68,11 +68,11 @@ def contribution_history(
     labels = [period_label(period) for period in periods]
     days = (periods + 1).to_timestamp() - when
     widths = (days.days * 86_400_000).to_list()
-    figure, key = go.Figure(), []
+    traces, key = [], []
     for place, (name, values) in enumerate(parts.items()):
         token = _part(place, len(parts))
         key.append(("block", token, name))
-        figure.add_trace(
+        traces.append(
             go.Bar(
                 x=when,
                 y=values,
@@ -85,7 +85,7 @@ def contribution_history(
                 hovertemplate=f"%{{text}}: {escape(name, False)} %{{y:+.2f}}<extra></extra>",
             )
         )
-    figure.add_trace(
+    traces.append(
         go.Scatter(
             x=when,
             y=rate,
@@ -96,14 +96,16 @@ def contribution_history(
             hovertemplate="%{text}: rate %{y:+.2f}<extra></extra>",
         )
     )
-    figure.update_layout(
-        template=template(),
-        margin={"l": 56, "r": 12, "t": 8, "b": 28},
-        barmode="relative",
-        meta={"key": [*key, ("line", "ink", total)]},
-        yaxis={"title": {"text": unit}, "zeroline": True, "zerolinecolor": colour("ink")},
+    return go.Figure(
+        traces,
+        go.Layout(
+            template=template(),
+            margin={"l": 56, "r": 12, "t": 8, "b": 28},
+            barmode="relative",
+            meta={"key": [*key, ("line", "ink", total)]},
+            yaxis={"title": {"text": unit}, "zeroline": True, "zerolinecolor": colour("ink")},
+        ),
     )
-    return figure
 
 
 def component_strip(
@@ -187,10 +189,10 @@ def core_lines(
     when = periods.to_timestamp()
     labels = [period_label(period) for period in periods]
     tokens = ("response", "fit", "other", "mark", "low-2")
-    figure, key = go.Figure(), []
+    traces, key = [], []
     if trend is not None:
         key.append(("broad", "rule", "centred trend of all items"))
-        figure.add_trace(
+        traces.append(
             go.Scatter(
                 x=when,
                 y=trend,
@@ -203,7 +205,7 @@ def core_lines(
     for place, (name, values) in enumerate(measures.items()):
         shape = "line" if place < 2 else "dash" if place == 2 else "dots"
         key.append((shape, tokens[place % len(tokens)], name))
-        figure.add_trace(
+        traces.append(
             go.Scatter(
                 x=when,
                 y=values,
@@ -218,13 +220,15 @@ def core_lines(
                 hovertemplate=f"%{{text}}: {escape(name, False)} %{{y:.2f}} %<extra></extra>",
             )
         )
-    figure.update_layout(
-        template=template(),
-        margin={"l": 56, "r": 12, "t": 8, "b": 28},
-        meta={"key": key},
-        yaxis={"title": {"text": f"{over} rate (%)"}},
+    return go.Figure(
+        traces,
+        go.Layout(
+            template=template(),
+            margin={"l": 56, "r": 12, "t": 8, "b": 28},
+            meta={"key": key},
+            yaxis={"title": {"text": f"{over} rate (%)"}},
+        ),
     )
-    return figure
 
 
 def diffusion_lines(periods: pd.PeriodIndex, lines: dict[str, np.ndarray]) -> go.Figure:
@@ -269,11 +273,11 @@ def weight_areas(periods: pd.PeriodIndex, parts: dict[str, np.ndarray]) -> go.Fi
     """Draw effective weights through time, stacked to 100 percent; the last part is the rest."""
     when = periods.to_timestamp()
     labels = [period_label(period) for period in periods]
-    figure, key = go.Figure(), []
+    traces, key = [], []
     for place, (name, values) in enumerate(parts.items()):
         token = _part(place, len(parts))
         key.append(("block", token, name))
-        figure.add_trace(
+        traces.append(
             go.Scatter(
                 x=when,
                 y=100.0 * values,
@@ -286,13 +290,15 @@ def weight_areas(periods: pd.PeriodIndex, parts: dict[str, np.ndarray]) -> go.Fi
                 hovertemplate=f"%{{text}}: {escape(name, False)} %{{y:.2f}} %<extra></extra>",
             )
         )
-    figure.update_layout(
-        template=template(),
-        margin={"l": 56, "r": 12, "t": 8, "b": 28},
-        meta={"key": key},
-        yaxis={"title": {"text": "weight (%)"}, "range": [0, 100]},
+    return go.Figure(
+        traces,
+        go.Layout(
+            template=template(),
+            margin={"l": 56, "r": 12, "t": 8, "b": 28},
+            meta={"key": key},
+            yaxis={"title": {"text": "weight (%)"}, "range": [0, 100]},
+        ),
     )
-    return figure
 
 
 def _label(name: str) -> str:

@@ -51,8 +51,12 @@ def time_scale() -> list[list[float | str]]:
     return [[0.0, colour("early")], [0.5, colour("middle")], [1.0, colour("late")]]
 
 
+@lru_cache(maxsize=1)
 def template() -> go.layout.Template:
-    """Return the template of every chart: no frames, thin rules, system type."""
+    """Return the template of every chart: no frames, thin rules, system type.
+
+    A figure copies it, so all can share one.
+    """
     axis = {
         "showgrid": True,
         "gridcolor": colour("rule"),

@@ -147,8 +147,12 @@ def _table(series: Sequence[Series]) -> pd.DataFrame | None:
     """Lay annual series side by side by year; None where one is not annual or there is none."""
     if not series or any(one.frequency != "annual" for one in series):
         return None
-    columns = {
-        one.name: pd.Series(one.values, index=range(one.first.year, one.last.year + 1))
-        for one in series
-    }
-    return pd.DataFrame(columns).sort_index()
+    firsts = [one.first.year for one in series]
+    last = max(first + one.values.size for first, one in zip(firsts, series, strict=True))
+    values = np.full((last - min(firsts), len(series)), np.nan)
+    for column, (first, one) in enumerate(zip(firsts, series, strict=True)):
+        start = first - min(firsts)
+        values[start : start + one.values.size, column] = one.values
+    return pd.DataFrame(
+        values, index=range(min(firsts), last), columns=[one.name for one in series]
+    )
