@@ -80,7 +80,10 @@ def build_app(workspace: Workspace) -> Dash:
         page = next((p for p in PAGES if path == p.PATH), lag if path in (None, "/") else None)
         if page is None:
             return _missing(), "No such page"
-        return page.layout(query or "", bridge), page.TITLE
+        try:
+            return page.layout(query or "", bridge), page.TITLE
+        except ValueError as error:  # a workspace that cannot be read
+            return _unreadable(str(error)), page.TITLE
 
     for page in PAGES:
         page.register(app, bridge)
@@ -114,6 +117,16 @@ def _frame() -> html.Div:
             html.Div(id="toast", role="status", className="toast"),
         ],
         id="frame",
+    )
+
+
+def _unreadable(sentence: str) -> html.Div:
+    return html.Div(
+        [
+            html.H1("This page cannot be shown"),
+            html.P(sentence, className="message", role="alert"),
+        ],
+        className="headline",
     )
 
 

@@ -21,6 +21,37 @@
     }
   }
 
+  /* An answer puts new elements in place of the old ones; the focus and the open folds stay. */
+  let focused = null;
+  const open = new Set();
+  const described = ({ id, dataset: { correct, series, act: name, file } }) =>
+    id ? `#${CSS.escape(id)}`
+      : correct ? `[data-correct="${correct}"][data-series="${CSS.escape(series)}"]:not([data-entry])`
+        : name && file ? `[data-act="${name}"][data-file="${CSS.escape(file)}"]` : null;
+
+  document.addEventListener("focusin", ({ target }) => {
+    focused = target.closest(".data-page") ? { target, selector: described(target) } : null;
+  });
+  document.addEventListener("focusout", ({ target }) => setTimeout(() => {
+    if (focused && focused.target === target && target.isConnected && document.activeElement !== target) focused = null;
+  }, 0));
+  document.addEventListener("toggle", ({ target }) => {
+    const { fold } = target.dataset || {};
+    if (fold && target.isConnected) open[target.open ? "add" : "delete"](fold);
+  }, true);
+
+  function restore() {
+    for (const fold of document.querySelectorAll("details[data-fold]")) {
+      if (fold.seen) continue;
+      fold.seen = true;
+      if (open.has(fold.dataset.fold)) fold.open = true;
+    }
+    if (!focused || focused.target.isConnected || !focused.selector) return;
+    if (document.activeElement && document.activeElement !== document.body) return;
+    const again = document.querySelector(`.data-page ${focused.selector}`);
+    if (again) again.focus();
+  }
+
   const refresh = () => props("data-tick", { data: Date.now() });
 
   function show() {
@@ -84,6 +115,13 @@
     else change(act, { file });
   });
 
+  /* A button that sets a field of the state shows it in the field, too. */
+  document.addEventListener("click", (event) => {
+    const button = event.target.closest && event.target.closest(".data-page [data-set]");
+    const field = button && pricewake.controls.field(button.dataset.set);
+    if (field) field.value = button.dataset.value;
+  });
+
   document.addEventListener("change", async (event) => {
     const { correct, series, value } = event.target.dataset || {};
     if (!correct || event.target.value === value) return;
@@ -110,6 +148,7 @@
 
   new MutationObserver((changes) => {
     for (const holder of document.querySelectorAll("[data-entry]")) build(holder);
+    restore();
     for (const { type, target } of changes) {
       if (type === "attributes" && target.tagName === "SELECT") target.value = target.dataset.value;
     }

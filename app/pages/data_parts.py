@@ -156,7 +156,7 @@ def files_table(in_view: WorkspaceView, hidden: Sequence[LoadedFile]) -> list[An
     parts: list[Any] = [_files(current, "Files in view")] if current else []
     if earlier:
         words = f"Earlier files ({len(earlier)}): every series of theirs has a newer file"
-        parts.append(html.Details([html.Summary(words), _files(earlier, "Earlier files")]))
+        parts.append(_fold("earlier", words, _files(earlier, "Earlier files")))
     if hidden:
         out = [
             (
@@ -169,7 +169,7 @@ def files_table(in_view: WorkspaceView, hidden: Sequence[LoadedFile]) -> list[An
         ]
         head = ("File", "Stands from", "Removed", "Change")
         words = f"Out of view ({len(hidden)}): their vintages are kept"
-        parts.append(html.Details([html.Summary(words), table(head, out, "Files out of view")]))
+        parts.append(_fold("hidden", words, table(head, out, "Files out of view")))
     return parts
 
 
@@ -364,9 +364,11 @@ def prints_table(found: Revised | None) -> list[Any]:
     cut = f"The newest {len(rows)} of {len(places)}; " if len(places) > len(rows) else ""
     note = html.P(f"{cut}the CSV has every period.".capitalize(), className="quiet")
     label = "First prints and revisions"
-    return [
-        html.Details([html.Summary("The numbers"), table(head, rows, label, cards=False), note])
-    ]
+    return [_fold("prints", "The numbers", table(head, rows, label, cards=False), note)]
+
+
+def _fold(name: str, words: str, *inside: Any) -> html.Details:
+    return html.Details([html.Summary(words), *inside], **{"data-fold": name})
 
 
 def _change(value: float) -> str:

@@ -286,6 +286,32 @@ def test_what_cannot_be_changed_is_refused_in_a_sentence(own, act, body, status,
     assert client.post(f"/workspace/{act}", json=body, headers=headers).status_code == 403
 
 
+def test_a_workspace_that_cannot_be_read_is_told_on_the_page(own):
+    client, here = own
+    client.post("/intake?name=release.csv", data=GOOD)
+    with here.store.change() as db:
+        db.execute("UPDATE vintages SET content = x'0102'")
+    said = "the vintage of 'Money' in the workspace is damaged"
+    for path in ("/lag", "/data"):
+        sent = {
+            "output": "..page.children...page-title.children..",
+            "outputs": [
+                {"id": "page", "property": "children"},
+                {"id": "page-title", "property": "children"},
+            ],
+            "inputs": [
+                {"id": "address", "property": "pathname", "value": path},
+                {"id": "address", "property": "search", "value": ""},
+            ],
+            "changedPropIds": ["address.pathname"],
+        }
+        answer = client.post("/_dash-update-component", json=sent)
+        assert answer.status_code == 200
+        assert path == "/data" or said in answer.get_data(as_text=True)
+    table = client.get("/export/data/series.csv")
+    assert (table.status_code, said in table.get_data(as_text=True)) == (400, True)
+
+
 # Files ---------------------------------------------------------------------------------------
 
 
