@@ -65,6 +65,7 @@ def header(shown: LagView, known: Evidence | None = None) -> list[tuple[str, str
         ("Pricewake", software_version()),
         ("view", shown.sentence),
         *sides,
+        *[("break", said) for said in shown.breaks],
         ("state", f"/lag?{shown.state.to_query()}"),
         (
             "left out",

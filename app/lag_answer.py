@@ -55,6 +55,7 @@ def answer(shown: LagView, known: Evidence) -> dict[str, Any]:
             for code in [episode_code(episode, shown.pair, shown.state)]
         ],
         "fragility": known.influence.fragility,
+        "breaks": list(shown.breaks),
         "verdict": verdict(known, shown.pair, shown.state),
     }
 

@@ -58,7 +58,7 @@ def header(known: Reading) -> list[tuple[str, str]]:
         (
             "series",
             f"{loaded.name}; {loaded.unit or 'unit not named'}; source"
-            f" {loaded.source or 'not named'}; {loaded.kind} as read: fingerprint"
+            f" {loaded.source or 'not named'}; {loaded.kind} as used: fingerprint"
             f" {loaded.fingerprint}",
         ),
         ("state", f"/reading?{known.state.to_query()}"),

@@ -3,12 +3,14 @@
 import datetime
 import sqlite3
 import threading
+from dataclasses import replace
 from pathlib import Path
 from typing import Any, get_args
 
 from analytics.series import Adjustment, Kind, Series
 from app.intake.problems import MAX_NAME, Problem, plain_text, quoted
 from app.intake.reading import Release
+from app.marks import Mark, checked, read_marks, write_mark
 from app.state import ViewState, field_kind
 from app.store import MEMORY, Store
 from app.workspace_rows import add_member, read_series
@@ -109,6 +111,50 @@ class Workspace:
                 (name, field, plain_text(value, MAX_NAME), _now()),
             )
 
+    def mark(self, name: str, period: str, treatment: str, note: str = "") -> None:
+        """Mark a break of a series, or say anew how it is treated; see `app.marks`.
+
+        A mark in the invented economy is forgotten with the program.
+
+        Raises
+        ------
+        ValueError
+            No series in view has the name, or the treatment cannot be done there.
+        """
+        in_view = self.as_of()
+        in_view.named(name)
+        before = [m for m in in_view.marks if m.series == name and m.period != period.strip()]
+        mark = checked(Mark(name, period, treatment, note), in_view.as_read, before)
+        if not in_view.placeholder:
+            with self.store.change() as db:
+                write_mark(db, mark, _now())
+            return
+        others = [m for m in in_view.marks if (m.series, m.period) != (name, mark.period)]
+        self._try([*others, mark])
+
+    def unmark(self, name: str, period: str) -> None:
+        """Take a mark away.
+
+        Raises
+        ------
+        ValueError
+            No break of the series is marked there.
+        """
+        in_view = self.as_of()
+        rest = [m for m in in_view.marks if (m.series, m.period) != (name, period)]
+        if len(rest) == len(in_view.marks):
+            raise ValueError(f"no break of {quoted(name)} is marked at {quoted(period)}")
+        if in_view.placeholder:
+            return self._try(rest)
+        with self.store.change() as db:
+            db.execute("DELETE FROM marks WHERE series = ? AND period = ?", (name, period))
+
+    def _try(self, marks: list[Mark]) -> None:
+        with self._lock:
+            order = sorted(marks, key=lambda mark: (mark.series, mark.period))
+            self._placeholder = replace(self._placeholder, marks=tuple(order))
+            self._views = {}
+
     def hide(self, file: str) -> None:
         """Take a file out of view from today on; its vintages stay."""
         self._set_hidden(file, today())
@@ -177,6 +223,7 @@ class Workspace:
                 started=started,
                 files=tuple(file for _, file in parts),
                 vintages=dict(tuple(row) for row in counts),
+                marks=read_marks(db),
             )
 
     def _release(

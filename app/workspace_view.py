@@ -10,6 +10,7 @@ from analytics.weights import WeightTable
 from app.intake.problems import Problem
 from app.intake.reading import Release
 from app.intake.weights import is_weight, weight_table
+from app.marks import Mark, Treated, treated
 from app.opening import opening_state
 from app.state import ViewState
 
@@ -73,6 +74,8 @@ class WorkspaceView:
         The files of `releases`, in the same order; empty for the placeholder.
     vintages : mapping of str to int
         Contents that each series has had up to then.
+    marks : tuple of Mark
+        Breaks marked by the user; they count on every date.
     """
 
     releases: tuple[Release, ...] = ()
@@ -81,6 +84,7 @@ class WorkspaceView:
     started: str = ""
     files: tuple[LoadedFile, ...] = ()
     vintages: Mapping[str, int] = field(default_factory=dict)
+    marks: tuple[Mark, ...] = ()
 
     @cached_property
     def _by_name(self) -> dict[str, tuple[Series, str]]:
@@ -100,10 +104,30 @@ class WorkspaceView:
                 return table
         return None
 
+    @cached_property
+    def as_read(self) -> dict[str, Series]:
+        """The series by name as their files have them, newest file winning."""
+        return {name: series for name, (series, _) in self._by_name.items()}
+
+    @cached_property
+    def _treated(self) -> dict[str, Treated]:
+        by_series: dict[str, list[Mark]] = {}
+        for mark in self.marks:
+            by_series.setdefault(mark.series, []).append(mark)
+        return {
+            name: treated(self.as_read[name], marks, self.as_read)
+            for name, marks in by_series.items()
+            if name in self.as_read
+        }
+
     @property
     def series(self) -> dict[str, Series]:
-        """The series by name, newest file winning."""
-        return {name: series for name, (series, _) in self._by_name.items()}
+        """The series by name as they are used: breaks treated, newest file winning."""
+        return self.as_read | {name: one.series for name, one in self._treated.items()}
+
+    def breaks(self, name: str) -> tuple[str, ...]:
+        """Return a sentence on each marked break of a series."""
+        return self._treated[name].said if name in self._treated else ()
 
     @property
     def problems(self) -> tuple[Problem, ...]:
@@ -115,7 +139,7 @@ class WorkspaceView:
         return self._by_name[name][1]
 
     def named(self, name: str) -> Series:
-        """Return a series by its name.
+        """Return a series by its name as it is used: with its breaks treated.
 
         Raises
         ------
@@ -123,6 +147,8 @@ class WorkspaceView:
             No series in view has the name.
         """
         loaded = self._by_name
+        if name in self._treated:
+            return self._treated[name].series
         if name in loaded:
             return loaded[name][0]
         if not loaded and self.day and self.started:

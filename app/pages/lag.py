@@ -35,7 +35,10 @@ CAUTION = (
 
 @dataclass(frozen=True, eq=False)
 class LagView:
-    """Everything that the page shows for one state; `loaded` are the two series as read."""
+    """Everything that the page shows for one state.
+
+    `loaded` are the two series as read, `breaks` says how their marked breaks are treated.
+    """
 
     state: ViewState
     pair: Pair
@@ -44,6 +47,7 @@ class LagView:
     overlay: Overlay
     start: int
     loaded: tuple[Series, Series]
+    breaks: tuple[str, ...] = ()
 
     @property
     def sentence(self) -> str:
@@ -67,8 +71,17 @@ def view(state: ViewState, bridge: Bridge, asked: Collection[str] = ()) -> LagVi
     cell = bridge.cell(state)
     start = cell_span(pair, state)[0] + cell.start
     in_view = bridge.in_view(state)
-    loaded = in_view.named(state.driver), in_view.named(state.response)
-    return LagView(state, pair, bridge.surface(state), cell, bridge.overlay(state), start, loaded)
+    sides = state.driver, state.response
+    return LagView(
+        state=state,
+        pair=pair,
+        surface=bridge.surface(state),
+        cell=cell,
+        overlay=bridge.overlay(state),
+        start=start,
+        loaded=(in_view.as_read[sides[0]], in_view.as_read[sides[1]]),
+        breaks=tuple(f"{name}: {said}" for name in sides for said in in_view.breaks(name)),
+    )
 
 
 def payload(state: ViewState, bridge: Bridge) -> dict[str, Any]:
@@ -101,7 +114,7 @@ def payload(state: ViewState, bridge: Bridge) -> dict[str, Any]:
             "overlay": _plain(figures.overlay_lines(shown.overlay, pair, shown.state)),
         },
         "source": _source_line(pair),
-        "invented": any(s.source.endswith("(invented)") for s in (pair.driver, pair.response)),
+        "invented": any("(invented)" in s.source for s in (pair.driver, pair.response)),
     }
 
 
@@ -276,7 +289,7 @@ def _notes(asked: ViewState, shown: LagView) -> list[str]:
                 f"A {name} of {wanted} {unit}s is outside this map ({bounds[0]} to {bounds[-1]});"
                 f" {got} is shown."
             )
-    return notes
+    return [*notes, *(f"{said}." for said in shown.breaks)]
 
 
 def _source_line(pair: Pair) -> str:
