@@ -94,11 +94,13 @@ def _shift_guard_sentence(known: Evidence, pair: Pair) -> str:
     sides = []
     for side, steps in (("driver", found.driver_steps), ("response", found.response_steps)):
         months = ", ".join(period_label(pair.periods[step]) for step in steps)
-        sides.append(f"{side} from {months}")
+        sides.append(f"{side} from {months}" if steps else f"{side}: a trend")
     evened = " or of spread" if found.spreads_evened else ""
+    kind = "shifts of level" if found.driver_steps or found.response_steps else "trends"
+    rest = " The shift set and the episodes are of the series with them." if known.found else ""
     return (
-        f"Both series have shifts of level{evened} ({'; '.join(sides)}), which alone can look like"
-        f" a lag; with them left in, p would be {p_words(found.p_with_level_shifts)}."
+        f"Both series have {kind}{evened} ({'; '.join(sides)}), which alone can look like"
+        f" a lag; with them left in, p would be {p_words(found.p_with_level_shifts)}.{rest}"
     )
 
 
