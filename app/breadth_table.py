@@ -8,6 +8,7 @@ import numpy as np
 from analytics.series import FloatArray
 from app.breadth import Breadth
 from app.breadth_core import short_name
+from app.words import signed
 
 TOP_ROWS = 40  # rows of the table before the rest is summed up
 TOP_BARS = 14
@@ -73,20 +74,24 @@ def rows(shown: Breadth) -> list[Row]:
     return sorted(listed, key=place)
 
 
-def bars(shown: Breadth) -> tuple[list[str], FloatArray]:
-    """Return names and points of the bars: the largest by size, in order, and the rest as one."""
+def bars(shown: Breadth) -> tuple[list[str], FloatArray, str]:
+    """Return names and points of the bars, and what the components without a bar gave.
+
+    All components, or of many those with the largest points by size, in order.
+    """
     assert shown.weighted is not None
     points = np.nan_to_num(shown.weighted.points[-1])
-    order = np.argsort(-points, kind="stable")
-    if len(order) <= TOP_BARS + 1:
-        return [short_name(shown.names[i]) for i in order], points[order]
-    largest = set(np.argsort(-np.abs(points), kind="stable")[:TOP_BARS].tolist())
-    kept = [i for i in order.tolist() if i in largest]
-    rest = points.sum() - points[kept].sum()
-    names = [short_name(shown.names[i]) for i in kept]
-    return [*_unique(names, kept, shown), _others(len(order) - len(kept))], np.append(
-        points[kept], rest
-    )
+    order = np.argsort(-points, kind="stable").tolist()
+    if len(order) > TOP_BARS + 1:
+        largest = set(np.argsort(-np.abs(points), kind="stable")[:TOP_BARS].tolist())
+        order = [i for i in order if i in largest]
+    names = _unique([short_name(shown.names[i]) for i in order], order, shown)
+    rest = len(points) - len(order)
+    words = ""
+    if rest:
+        gave = signed(float(points.sum() - points[order].sum()))
+        words = f"Bars are the {len(order)} largest; {_others(rest)} give {gave} together."
+    return names, points[order], words
 
 
 def parts(shown: Breadth, values: FloatArray) -> dict[str, FloatArray]:

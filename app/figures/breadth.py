@@ -35,7 +35,7 @@ def contribution_bars(names: list[str], points: np.ndarray, unit: str) -> go.Fig
     )
     figure.update_layout(
         template=template(),
-        margin={"l": _room(names) + 44, "r": 12, "t": 8, "b": 44},
+        margin={"l": _room(names) + 56, "r": 12, "t": 8, "b": 44},
         bargap=0.3,
         xaxis={
             "title": {"text": unit},

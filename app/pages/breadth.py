@@ -85,7 +85,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
         }
         trend = found.tracking.trend[drawn.start - shown.start :]
         charts |= {
-            "contributions": figures.contribution_bars(*bars(shown), unit),
+            "contributions": figures.contribution_bars(*bars(shown)[:2], unit),
             "history": figures.contribution_history(
                 when, parts(shown, found.points), shown.rate[drawn], total, unit
             ),
@@ -213,7 +213,7 @@ def _words(shown: Breadth) -> dict[str, Any]:
         else " Choose components to leave out in the table."
     )
     return {
-        "contributions-words": adding_up(shown),
+        "contributions-words": f"{bars(shown)[2]} {adding_up(shown)}".strip(),
         "history-words": f"Bars add up to the line; drawn are the last {shown.state.years} years.",
         "core-words": f"The trimmed mean cuts {trim_words(shown)} of the weight.{without}",
         "diffusion-words": "Above 50 more components rise than fall.",
