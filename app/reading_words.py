@@ -180,7 +180,7 @@ def fit_words(known: Reading) -> str:
             text += f" Taken as independent, the months would give p {where} (published table)."
     if goodness.ties > 0.05 and min(found) <= 0.05:
         text += (
-            f" {goodness.ties:.0%} of the readings occur more than once: rounding of the index"
-            " alone can make a fit fail."
+            f" {goodness.ties:.0%} of the readings occur more than once: rounding at the"
+            " source alone can make a fit fail."
         )
     return text

@@ -48,7 +48,8 @@ def standing_steps(found: Standing, unit: str) -> go.Figure:
                 y=[found.rank],
                 mode="markers+text",
                 text=[f"the print, rank {found.rank:.0f}"],
-                textposition="top left" if found.rank > 60 else "bottom right",
+                textposition=_beside(found.rank),
+                cliponaxis=False,
                 marker={"size": 11, "color": colour("mark"), "line": ring()},
                 hovertemplate="%{x:.3f}: rank %{y:.1f}<extra>the print</extra>",
                 name="the print",
@@ -117,14 +118,15 @@ def density_curves(
             )
         )
     figure.add_vline(x=value, line={"color": colour("mark"), "width": 2})
+    before = value < float(np.median(ordered)) or value > low + 0.75 * (high - low)
     figure.add_annotation(
         x=value,
         y=1,
         yref="paper",
         text="the print",
         showarrow=False,
-        xanchor="right" if value < float(np.median(ordered)) else "left",
-        xshift=-4 if value < float(np.median(ordered)) else 4,
+        xanchor="right" if before else "left",
+        xshift=-4 if before else 4,
     )
     figure.update_layout(
         template=template(),
@@ -180,3 +182,10 @@ def _bin_width(ordered: np.ndarray) -> float:
     bulk = float(np.quantile(ordered, 0.998) - np.quantile(ordered, 0.002))
     width = 2.0 * float(high - low) * ordered.size ** (-1 / 3)
     return max(width, bulk / 60.0) or 1.0
+
+
+def _beside(rank: float) -> str:
+    """Return where the words of the print stand clear of the curve."""
+    if rank > 85:
+        return "bottom left"
+    return "top left" if rank > 60 else "bottom right"
