@@ -116,10 +116,13 @@ def inspect(
     files: tuple[Path, ...], as_json: bool, csv_path: Path | None, kept_in: str | None
 ) -> int:
     """Say what was understood in the files and what is wrong with them."""
+    from app.findings import found_in
     from app.intake.reading import inspection
 
     desk = workspace_of(files, kept_in)
     report = inspection(desk.releases)
+    checks = [each.problem for each in found_in(desk.as_of(), desk)]
+    report["problems"] += [vars(problem).copy() for problem in checks]
     if csv_path:
         rows = [list(report["series"][0])] if report["series"] else []
         rows += [[_flat(v) for v in series.values()] for series in report["series"]]
@@ -132,7 +135,7 @@ def inspect(
                 f"{series['name']}: {series['frequency']} {series['kind']}, {series['first']} to"
                 f" {series['last']}, {series['n']} values, {len(series['gaps'])} missing"
             )
-        for problem in desk.problems:
+        for problem in (*desk.problems, *checks):
             click.echo(f"{problem.severity}: {problem}")
     return int(bool(errors(desk)))
 

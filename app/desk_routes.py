@@ -68,6 +68,10 @@ def register(server: Flask, bridge: Bridge) -> None:
         try:
             if act == "correct":
                 desk.correct(sent["series"], sent["field"], sent["value"])
+            elif act == "mark":
+                desk.mark(sent["series"], sent["period"], sent["treatment"], sent.get("note", ""))
+            elif act == "unmark":
+                desk.unmark(sent["series"], sent["period"])
             elif act in ("hide", "show"):
                 getattr(desk, act)(sent["file"])
             else:

@@ -11,8 +11,8 @@ from dash import Dash, Input, Output, dcc, html
 from app import controls, desk
 from app.compute import Bridge
 from app.figures.data import revisions_chart
+from app.pages import data_breaks, plain
 from app.pages import data_parts as parts
-from app.pages import plain
 from app.pages.as_of import day_words
 from app.places import software_version
 from app.state import ViewState
@@ -20,7 +20,7 @@ from app.words import counted, signed
 from app.workspace import WorkspaceView, today
 
 PATH, TITLE = "/data", "Data"
-PLACES = ("problems", "series", "files", "revisions-words", "prints")
+PLACES = ("problems", "breaks", "series", "files", "revisions-words", "prints")
 CAUTION = (
     "A first print is the newest value of the vintage in which it first stands here; what was "
     "published between two files that were loaded is not known. Past revisions say little of the "
@@ -37,6 +37,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
         dcc.Store(id="data-pending", data=[]),
         html.Div(id="data-preview", className="preview"),
         html.Div(id="data-problems"),
+        *data_breaks.places(),
         html.Section(
             [
                 html.Div(
@@ -89,6 +90,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
             "problems": [html.H2("Found in the files"), *parts.problem_table(problems)]
             if problems
             else [],
+            "breaks": data_breaks.section(in_view, state, bridge),
             "series": parts.series_table(in_view, shown) if shown else _nothing(in_view),
             "files": [html.H2("Files"), *files] if files else [],
             "prints": parts.prints_table(found),

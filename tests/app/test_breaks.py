@@ -11,9 +11,11 @@ from analytics.series import Series
 from app import exports
 from app.compute import Bridge
 from app.demo import demo_releases
+from app.findings import found_in
 from app.intake.reading import Release
 from app.marks import Mark, treated
-from app.pages import lag, reading
+from app.pages import data_breaks, lag, reading
+from app.server import build_app
 from app.state import ViewState
 from app.store import Store
 from app.workspace import UnknownSeriesError, Workspace
@@ -118,6 +120,63 @@ def test_the_reading_page_says_the_treatment(demo):
     demo.workspace.mark("Narrow money", "1987-07", "exclude")
     shown = reading.answer(ViewState(series="Narrow money"), demo)
     assert SAID in shown.source
+
+
+# Findings ------------------------------------------------------------------------------------
+
+
+def test_findings_name_the_file_and_a_marked_one_becomes_a_note():
+    raw = made(break_at=60)
+    here = desk(raw)
+    (found,) = found_in(here.as_of(), here)
+    assert (found.problem.severity, found.problem.file) == ("warning", "bank.csv")
+    assert "mark a break there" in found.problem.message
+    here.mark("Money", "2005-01", "exclude")
+    (found,) = found_in(here.as_of(), here)
+    assert found.marked and found.problem.severity == "note"
+    assert found.problem.message.endswith("a break is marked there")
+
+
+def test_a_re_referenced_vintage_is_found_against_the_one_before():
+    old = made(n=100)
+    new = made(n=101)
+    here = desk(old)
+    assert found_in(here.as_of(), here) == []
+    scaled = Series("Money", START, 0.8 * new.values, "level")
+    here.add(Release("bank.csv", (scaled,), ()))
+    (found,) = found_in(here.as_of(), here)
+    assert found.finding.check == "re-referenced" and "0.8 times" in found.finding.message
+
+
+def test_the_page_marks_and_takes_away_over_its_routes():
+    here = desk(made(break_at=60))
+    client = build_app(here).server.test_client()
+    base = "http://127.0.0.1"
+
+    def post(act, **body):
+        return client.post(f"/workspace/{act}", json=body, base_url=base)
+
+    sent = {"series": "Money", "period": "2005-01"}
+    assert post("mark", **sent, treatment="after", note="wider").status_code == 200
+    assert here.as_of().marks == (Mark("Money", "2005-01", "after", "wider"),)
+    refused = post("mark", **sent, treatment="mend")
+    assert refused.status_code == 422 and "treatment must be" in refused.get_json()["message"]
+    assert post("mark", series="Money").status_code == 422
+    assert post("unmark", **sent).status_code == 200
+    assert post("unmark", **sent).status_code == 422
+    assert here.as_of().marks == ()
+
+
+def test_the_part_of_the_page_lists_findings_and_marks():
+    here = desk(made("Wide", break_at=60), made("Old"))
+    bridge = Bridge(here)
+    shown = str(data_breaks.section(here.as_of(), ViewState(), bridge))
+    assert "Mark break at Jan 2005" in shown and "splice by overlap with Old" in shown
+    here.mark("Wide", "2005-01", "overlap:Old")
+    shown = str(data_breaks.section(here.as_of(), ViewState(), bridge))
+    assert "Break treated at Jan 2005: spliced by overlap with Old." in shown
+    assert "Mark break at Jan 2005" not in shown and "Remove the break of Wide" in shown
+    assert data_breaks.section(Workspace().as_of(), ViewState(), bridge) == []
 
 
 # Kept and forgotten --------------------------------------------------------------------------

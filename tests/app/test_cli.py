@@ -80,7 +80,10 @@ def test_inspect_gives_the_keys_of_the_design(run):
     assert set(report) == {"series", "problems"}
     keys = {"name", "kind", "frequency", "first", "last", "n", "gaps", "fingerprint"}
     assert all(keys <= set(series) for series in report["series"])
-    assert report["problems"] == []
+    shift, mix = report["problems"]  # what was planted, and nothing else
+    assert (shift["severity"], shift["column"]) == ("warning", "Narrow money")
+    assert "+31.4 percent in Jul 1987" in shift["message"]
+    assert (mix["severity"], mix["column"]) == ("note", "Real output")
     loaded = Workspace(demo_releases()).series
     prices_and_money = [s["name"] for s in report["series"] if s["unit"] != "weight"]
     assert prices_and_money == list(loaded)
