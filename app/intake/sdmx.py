@@ -89,6 +89,7 @@ class Message:
 
     count: int = 0
     _found: dict[Hashable, list[KeyedSeries]] = field(default_factory=dict)
+    _last: dict[Hashable, tuple[Mapping[str, str], KeyedSeries]] = field(default_factory=dict)
     _dimensions: set[str] = field(default_factory=set)
 
     def label(self, component: str, code: str) -> str:
@@ -104,12 +105,17 @@ class Message:
     ) -> None:
         """Add an observation to the series of a `sign`, whose `key` is asked for if it is new.
 
-        A unit, multiplier or adjustment other than before begins a series of its own.
+        A unit, multiplier or adjustment other than before begins a series of its own. Where the
+        same object of attributes comes again for a sign, nothing needs to be compared.
         """
         self.count += 1
         if self.count > MAX_ROWS:
             message = f"a file must not have more than {MAX_ROWS:,} observations, but this one has"
             raise refusal(self.file, message)
+        last = self._last.get(sign)
+        if last is not None and last[0] is attributes:
+            last[1].observations.append(observation)
+            return
         parts = self._found.setdefault(sign, [])
         for part in parts:
             held = part.attributes
@@ -119,6 +125,7 @@ class Message:
                 for name, code in attributes.items():
                     held.setdefault(name, code)
                 part.observations.append(observation)
+                self._last[sign] = (attributes, part)
                 return
         if len(parts) >= _MAX_PARTS or len(self.series) >= MAX_COLUMNS:
             most = f"{_MAX_PARTS} units" if len(parts) >= _MAX_PARTS else f"{MAX_COLUMNS:,} series"
@@ -128,6 +135,7 @@ class Message:
         if len(self._dimensions) > MAX_COMPONENTS:
             most = f"{MAX_COMPONENTS} dimensions"
             raise refusal(self.file, f"a file must not have more than {most}, but this one has")
+        self._last[sign] = (attributes, one)
         parts.append(one)
         self.series.append(one)
 

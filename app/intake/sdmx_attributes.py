@@ -3,6 +3,7 @@
 import re
 from collections import defaultdict
 from collections.abc import Sequence
+from functools import lru_cache
 
 from analytics.series import period_label
 from app.intake.kinds import inferred_adjustment, kind_in_words
@@ -97,7 +98,7 @@ def flags_of(
     problems: list[Problem] = []
     found: dict[str, list[int]] = defaultdict(list)
     for place, observation in enumerate(observations):
-        for code in _codes(observation.status):
+        for code in _codes(observation.status[:40]):
             found[code].append(place)
 
     def when(place: int) -> str:
@@ -123,9 +124,10 @@ def flags_of(
     return problems
 
 
-def _codes(status: str) -> set[str]:
+@lru_cache(maxsize=1024)
+def _codes(status: str) -> frozenset[str]:
     """Return the codes of a status; small letters in a row are several, as in "bp"."""
-    codes = set()
-    for part in re.split(r"[,;|+\s]+", status.strip()[:40]):
+    codes: set[str] = set()
+    for part in re.split(r"[,;|+\s]+", status.strip()):
         codes |= set(part.upper()) if part.islower() and part.isalpha() else {part.upper()}
-    return codes
+    return frozenset(codes)

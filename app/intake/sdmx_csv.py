@@ -195,6 +195,7 @@ def _collect(
     time, value = columns.place[columns.time], columns.place[VALUE]
     status = next((columns.place[name] for name in STATUS if name in columns.place), None)
     labels: dict[tuple[str, str], str] = {}
+    alike: dict[tuple[str, ...], dict[str, str]] = {}
     for place in kept:
         row = sheet.rows[place]
         cells = tuple(row[column] for column in keys)
@@ -203,13 +204,15 @@ def _collect(
             _gather(row, columns, dimensions, labels)
             return {n: _code(c) for n, c in zip(dimensions, cells, strict=True) if c.strip()}
 
-        held = {}
-        for name, column in attributes.items():
-            cell = row[column].strip()
-            if cell:
-                held[name] = cell if name == YEAR_START else _code(cell)
-                if (name, held[name]) not in labels:
-                    _gather(row, columns, (name,), labels)
+        told = tuple(row[column] for column in attributes.values())
+        held = alike.get(told)
+        if held is None:
+            held = alike[told] = {}
+            for name, column in attributes.items():
+                cell = row[column].strip()
+                if cell:
+                    held[name] = cell if name == YEAR_START else _code(cell)
+            _gather(row, columns, list(held), labels)
         flag = "" if status is None else _code(row[status])
         text = _code(row[time]) if ": " in row[time] else row[time]
         message.add(cells, key, held, Observation(text, row[value], flag, sheet.lines[place]))

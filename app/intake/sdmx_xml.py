@@ -86,6 +86,7 @@ class _Reader:
         self.dataset: dict[str, str] = {}
         self.series: dict[str, str] = {}
         self.held: dict[str, str] = {}
+        self.shared: dict[str, str] | None = None  # of all observations without their own
         self.group: dict[str, str] = {}
         self.groups: list[tuple[dict[str, str], dict[str, str]]] = []
         self.observation: dict[str, str] = {}
@@ -147,13 +148,13 @@ class _Reader:
     def _begin_data(self, attributes: dict[str, str], plain: dict[str, str]) -> None:
         action = next((v for k, v in attributes.items() if k.rpartition(" ")[2] == "action"), "")
         self.deleting = action.strip().lower() in ("delete", "d")
-        self.series, self.held = {}, {}
+        self.series, self.held, self.shared = {}, {}, None
         self.dataset = {k: v for k, v in plain.items() if k.isupper() and not self.generic}
 
     def _start_generic(self, name: str, plain: dict[str, str]) -> None:
         inside = self.path[-2]
         if name == "Series":
-            self.series, self.held = {}, {}
+            self.series, self.held, self.shared = {}, {}, None
         elif name == "Group":
             self.group, self.noted = {}, {}
         elif name == "Obs":
@@ -176,7 +177,7 @@ class _Reader:
             elif "Obs" in self.path or "Group" in self.path:
                 kept = self.noted
             else:
-                kept = self.held if "Series" in self.path else self.dataset
+                kept, self.shared = self.held if "Series" in self.path else self.dataset, None
             kept[component] = plain.get("value", "")
             if len(kept) > MAX_COMPONENTS:
                 raise self._too_many()
@@ -184,7 +185,7 @@ class _Reader:
     def _start_specific(self, name: str, plain: dict[str, str]) -> None:
         if name == "Series":
             self.series = {k: v for k, v in plain.items() if not is_attribute(k)}
-            self.held = {k: v for k, v in plain.items() if is_attribute(k)}
+            self.held, self.shared = {k: v for k, v in plain.items() if is_attribute(k)}, None
         elif name == "Group":
             self.groups.append((plain, plain))
         elif name == "Obs":
@@ -199,7 +200,7 @@ class _Reader:
         if name == "Obs" and "DataSet" in self.path:
             self._finish()
         elif name == "Series":
-            self.series, self.held = {}, {}
+            self.series, self.held, self.shared = {}, {}, None
         elif name == "Time" and self.path and self.path[-1] == "Obs":
             self.observation[TIME] = self.words
         elif name == "Group" and self.generic:
@@ -218,14 +219,20 @@ class _Reader:
         if self.deleting:
             self.deleted.append(line)
             return
+        noted = self.noted
+        flags = (noted.pop(name, "") or self.held.get(name, "") for name in STATUS)
+        status = next(filter(None, flags), "")
+        held = self.shared
+        if noted or held is None:
+            held = {**self.dataset, **self.held, **noted}
+            held = {name: text for name, text in held.items() if text and name not in STATUS}
+            self.shared = None if noted else held
         key = {**self.series, **self.observation}
         period, value = key.pop(TIME, ""), key.pop(VALUE, "")
-        noted = {**self.dataset, **self.held, **self.noted}
-        status = next((found for name in STATUS if (found := noted.pop(name, ""))), "")
         self.found.add(
             tuple(sorted(key.items())),
             lambda: key,
-            {component: text for component, text in noted.items() if text},
+            held,
             Observation(period, value, status, line),
         )
 
