@@ -112,7 +112,8 @@ def test_a_number_field_sets_the_episodes(page, bridge):
 
 def test_the_long_test_shows_progress_and_can_be_stopped_and_gone_on_with(browser, address):
     browser.get(f"{address}/reading?draws=20000&family=student_t&seed=77")
-    until(browser, "pricewake.plain && !document.getElementById('reading-work').hidden", 30)
+    there = "document.getElementById('reading-work')"
+    until(browser, f"window.pricewake && pricewake.plain && {there} && !{there}.hidden", 30)
     until(browser, "Number(document.getElementById('reading-progress').max) === 400", 30)
     browser.find_element(By.ID, "reading-cancel").click()
     until(browser, "!document.getElementById('reading-resume').hidden")
