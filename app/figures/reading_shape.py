@@ -170,7 +170,7 @@ def quantile_points(found: Standing, fit: Fit, unit: str) -> go.Figure:
     figure.update_layout(
         template=template(),
         margin={"l": 56, "r": 16, "t": 14, "b": 48},
-        xaxis={"title": {"text": f"{label[0].upper()}{label[1:]} quantile, {escape(unit, False)}"}},
+        xaxis={"title": {"text": f"{label[0].upper()}{label[1:]} quantile"}},
         yaxis={"title": {"text": f"observed, {escape(unit, False)}"}},
     )
     return figure
