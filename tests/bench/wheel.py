@@ -72,7 +72,7 @@ class Installed:
     @contextmanager
     def served(self) -> Iterator[str]:
         """Serve the dashboard; yield its address."""
-        process = self.start("-m", "app", "--no-browser", "--workspace", "desk.sqlite")
+        process = self.start("-m", "app", "--no-browser", "--workspace", ":memory:")
         watchdog = threading.Timer(120, process.kill)
         watchdog.start()
         try:
