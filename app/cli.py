@@ -40,6 +40,8 @@ LAG_FIELDS = (
     "first",
     "last",
     "months",
+    "season",
+    "meet",
     "windows",
     "shifts",
     "surrogates",

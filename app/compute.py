@@ -24,6 +24,7 @@ from analytics.surface import LagSurface, lag_surface
 from app.jobs import Jobs
 from app.memory import Memory
 from app.pending import Pending
+from app.preparing import Prepared, prepared
 from app.state import StateError, ViewState, field_kind
 from app.workspace import Workspace, WorkspaceView
 
@@ -66,7 +67,7 @@ class Bridge:
         in_view = self.in_view(state)
         for name in (state.driver, state.response):
             series = in_view.named(name)
-            parts += [series.fingerprint, series.name]
+            parts += [series.fingerprint, series.name, series.adjustment]
         return hashlib.sha256("\n".join(parts).encode()).hexdigest()[:32]
 
     def pair(self, state: ViewState) -> Pair:
@@ -75,7 +76,7 @@ class Bridge:
         Raises
         ------
         ValueError
-            One sentence: unknown name, other frequency, gap, no overlap, no growth rate.
+            One sentence: unknown name, gap, no overlap, no growth rate, no season to take out.
         """
         in_view = self.in_view(state)
         loaded = list(in_view.series)
@@ -89,11 +90,18 @@ class Bridge:
                 " leads itself by 0 with correlation 1"
             )
         formula: Any = state.growth
+        used = self.prepared(state)
         rates = [
-            _sample(growth_rate(in_view.named(name), formula=formula), state)
-            for name in (state.driver, state.response)
+            _sample(growth_rate(series, formula=formula), state)
+            for series in (used.driver, used.response)
         ]
         return align(rates[0], rates[1])
+
+    def prepared(self, state: ViewState) -> Prepared:
+        """Return driver and response as they are paired: breaks, season and frequency seen to."""
+        in_view = self.in_view(state)
+        sides = in_view.named(state.driver), in_view.named(state.response)
+        return prepared(*sides, state, self.memory)
 
     def fitted(self, state: ViewState, asked: Collection[str] = ()) -> ViewState:
         """Return the state with window and shift inside the map of this pair's calendar.

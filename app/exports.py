@@ -66,6 +66,7 @@ def header(shown: LagView, known: Evidence | None = None) -> list[tuple[str, str
         ("view", shown.sentence),
         *sides,
         *[("break", said) for said in shown.breaks],
+        *[("made here", said) for said in shown.made],
         ("state", f"/lag?{shown.state.to_query()}"),
         (
             "left out",

@@ -56,6 +56,7 @@ def answer(shown: LagView, known: Evidence) -> dict[str, Any]:
         ],
         "fragility": known.influence.fragility,
         "breaks": list(shown.breaks),
+        "made": list(shown.made),
         "verdict": verdict(known, shown.pair, shown.state),
     }
 

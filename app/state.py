@@ -117,6 +117,22 @@ class ViewState:
             help="Whether each cell uses all its periods or only those that every cell has.",
         ),
     )
+    season: str = _state(
+        "read",
+        Choice(
+            label="Season",
+            options={"read": "as read", "stl": "taken out here (STL)"},
+            help="Whether a series said to be unadjusted is adjusted here by STL, not officially.",
+        ),
+    )
+    meet: str = _state(
+        "average",
+        Choice(
+            label="Frequencies meet by",
+            options={"average": "average", "last": "last value"},
+            help="How the more frequent of two series is brought to the other's periods.",
+        ),
+    )
     windows: str = _state(
         "",
         Text(

@@ -37,7 +37,8 @@ CAUTION = (
 class LagView:
     """Everything that the page shows for one state.
 
-    `loaded` are the two series as read, `breaks` says how their marked breaks are treated.
+    `loaded` are the two series as read; `breaks` says how their marked breaks are treated,
+    `made` how season and frequency are.
     """
 
     state: ViewState
@@ -48,6 +49,7 @@ class LagView:
     start: int
     loaded: tuple[Series, Series]
     breaks: tuple[str, ...] = ()
+    made: tuple[str, ...] = ()
 
     @property
     def sentence(self) -> str:
@@ -81,6 +83,7 @@ def view(state: ViewState, bridge: Bridge, asked: Collection[str] = ()) -> LagVi
         start=start,
         loaded=(in_view.as_read[sides[0]], in_view.as_read[sides[1]]),
         breaks=tuple(f"{name}: {said}" for name in sides for said in in_view.breaks(name)),
+        made=bridge.prepared(state).said,
     )
 
 
@@ -164,6 +167,8 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                     controls.text(shown, "first", placeholder="earliest"),
                     controls.text(shown, "last", placeholder="newest"),
                     controls.select(shown, "months"),
+                    controls.select(shown, "season"),
+                    controls.select(shown, "meet"),
                     controls.select(shown, "quantity"),
                 ],
                 className="controls",
@@ -289,7 +294,7 @@ def _notes(asked: ViewState, shown: LagView) -> list[str]:
                 f"A {name} of {wanted} {unit}s is outside this map ({bounds[0]} to {bounds[-1]});"
                 f" {got} is shown."
             )
-    return [*notes, *(f"{said}." for said in shown.breaks)]
+    return [*notes, *(f"{said}." for said in (*shown.breaks, *shown.made))]
 
 
 def _source_line(pair: Pair) -> str:

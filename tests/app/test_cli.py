@@ -324,7 +324,7 @@ REFUSED = [
     ("lag good.csv --response money", "no loaded series is named 'money'; there is 'Money'"),
     ("lag good.csv --driver Prices", "driver and response must be two series"),
     ("lag good.csv --driver Money --response Money", "driver and response must be two series"),
-    ("lag good.csv quarters.csv --response Output", "must have the same frequency"),
+    ("lag good.csv quarters.csv --response Output --season x", "Season must be one of read, stl"),
     ("lag good.csv --window 60 --shift 50", "window 60 and shift 50 leave 11 of 120 months"),
     ("lag good.csv --window 60 --last 2003-12", "window 60"),
     ("lag good.csv --shift 60 --last 2003-12", "shift 60 leave 0 of 48 months"),

@@ -234,7 +234,7 @@ def test_sample_and_formula_are_taken(lag, bridge):
         ("?driver=Consumer+prices", "must be two series"),
         ("?first=2026-01", "must have at least 24 months"),
         ("?first=2031-01", "has no value in the sample"),
-        ("?driver=Real+output", "must have the same frequency"),
+        ("?driver=Real+output", "monthly values meet quarterly ones by the average"),
         ("?window=500", "Window must be a whole number from 1 to 60"),
         ("?shift=abc", "Shift must be a whole number"),
         ("?first=2023-01", "A shift of 24 months is outside this map"),
