@@ -7,7 +7,7 @@ import io
 import zipfile
 from pathlib import Path
 
-from tests.data import make_csv, make_sdmx, make_xlsx
+from tests.data import make_csv, make_sdmx, make_sdmx_json, make_xlsx
 from tests.data.truth import BASIC, OUTPUT, Example, monthly, quarterly
 
 HERE = Path(__file__).parent
@@ -54,7 +54,7 @@ def examples() -> dict[str, Example]:
         **make_xlsx.examples(),
         **make_sdmx.csv_examples(),
         **make_sdmx.xml_examples(),
-        **make_sdmx.json_examples(),
+        **make_sdmx_json.examples(),
     }
     return {**made, **_zip_examples(made)}
 
