@@ -323,7 +323,8 @@ def frequency_mix(loaded: Iterable[Series]) -> tuple[Finding, ...]:
                     group[0].name,
                     None,
                     f"{group[0].name}{more} {frequency}, most series are {usual}",
-                    "two series of different frequency can only meet at the lower one",
+                    "two series of different frequency meet at the lower one, by average or last"
+                    " value",
                 )
             )
     return tuple(found)

@@ -8,7 +8,7 @@ from dash import html
 from analytics.series import PERIOD_NOUN, Series, period_label
 from app.compute import Bridge
 from app.findings import Found, found_in
-from app.marks import OVERLAP, TREATMENTS
+from app.marks import OVERLAP
 from app.pages.data_parts import table
 from app.state import ViewState
 from app.words import counted
@@ -17,6 +17,11 @@ from app.workspace_rows import period_of
 
 MOST_FINDINGS = 200
 MOST_OTHERS = 30  # series offered for a splice by overlap
+CHOICES = {
+    "exclude": "mean of both",
+    "before": "{noun} before",
+    "after": "{noun} after",
+}  # whose growth is taken, in the width of a drop-down
 MARKABLE = ("level shift", "unit jump")
 
 
@@ -49,10 +54,15 @@ def _findings(found: Sequence[Found], loaded: Mapping[str, Series]) -> list[Any]
         if each.marked:
             way = "Marked as a break, see below."
         elif one.check in MARKABLE and one.period is not None:
+            way = f"{way} Its growth is then taken from:"
             way = [html.Span(way, className="under"), _box(loaded[one.series], loaded, each)]
         rows.append(
             (
-                html.Span(one.severity, className=f"weight {one.severity}"),
+                html.Span(
+                    one.severity,
+                    className=f"weight {one.severity}",
+                    style={"whiteSpace": "nowrap"},
+                ),
                 one.series,
                 period_label(one.period) if one.period is not None else "",
                 one.message,
@@ -69,15 +79,14 @@ def _box(series: Series, loaded: Mapping[str, Series], found: Found) -> html.Div
     code, period = found.code, found.finding.period
     when = period_label(period)
     options = {
-        key: words.format(noun=PERIOD_NOUN[series.frequency]) for key, words in TREATMENTS.items()
+        key: words.format(noun=PERIOD_NOUN[series.frequency]) for key, words in CHOICES.items()
     }
     options |= {
-        f"{OVERLAP}{name}": f"splice by overlap with {name}"
-        for name in _others(series, period, loaded)
+        f"{OVERLAP}{name}": f"overlap with {name}" for name in _others(series, period, loaded)
     }
     return html.Div(
         [
-            _select(options, f"Treatment of {series.name} at {when}", "treatment"),
+            _select(options, f"Growth of {series.name} in {when} taken from", "treatment"),
             html.Button(
                 f"Mark break at {when}",
                 type="button",
@@ -151,7 +160,7 @@ def _marks(in_view: WorkspaceView) -> list[Any]:
 
 def _form(loaded: Mapping[str, Series]) -> html.Details:
     names = {name: name for name, one in loaded.items() if one.kind != "rate"}
-    options = {key: words.format(noun="period") for key, words in TREATMENTS.items()}
+    options = {key: words.format(noun="period") for key, words in CHOICES.items()}
     return html.Details(
         [
             html.Summary("Mark a break by hand"),
@@ -167,7 +176,7 @@ def _form(loaded: Mapping[str, Series]) -> html.Details:
                             "data-placeholder": "such as 1987-07",
                         },
                     ),
-                    _select(options, "Treatment of the break", "treatment"),
+                    _select(options, "Growth at the break taken from", "treatment"),
                     html.Span(
                         className="native",
                         **{

@@ -171,7 +171,7 @@ def test_the_part_of_the_page_lists_findings_and_marks():
     here = desk(made("Wide", break_at=60), made("Old"))
     bridge = Bridge(here)
     shown = str(data_breaks.section(here.as_of(), ViewState(), bridge))
-    assert "Mark break at Jan 2005" in shown and "splice by overlap with Old" in shown
+    assert "Mark break at Jan 2005" in shown and "overlap with Old" in shown
     here.mark("Wide", "2005-01", "overlap:Old")
     shown = str(data_breaks.section(here.as_of(), ViewState(), bridge))
     assert "Break treated at Jan 2005: spliced by overlap with Old." in shown
