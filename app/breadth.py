@@ -125,9 +125,10 @@ class Breadth:
 
     @property
     def drawn(self) -> slice:
-        """The latest years, as many as the state draws."""
+        """The latest years, as many as the state draws, from the first period with a rate on."""
         n = len(self.periods)
-        return slice(max(self.start, n - self.state.years * self.per_year), n)
+        begun = int(np.argmax(~np.isnan(self.rates).all(axis=1)))
+        return slice(max(self.start, begun, n - self.state.years * self.per_year), n)
 
     @property
     def residual(self) -> FloatArray:

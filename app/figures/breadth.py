@@ -87,7 +87,7 @@ def contribution_history(
         )
     traces.append(
         go.Scatter(
-            x=when,
+            x=when + days / 2,  # the middle of the bars
             y=rate,
             text=labels,
             mode="lines",
@@ -145,28 +145,13 @@ def component_strip(
             colorscale=diverging(),
             xgap=0,
             ygap=1 if few else 0,
-            colorbar={
-                "orientation": "h",
-                "thickness": 8,
-                "len": 0.6,
-                "outlinewidth": 0,
-                "x": 0,
-                "xanchor": "left",
-                "y": 1,
-                "yanchor": "bottom",
-                "ypad": 6,
-                "title": {
-                    "text": "rank in own history" if by_rank else f"{over} rate (%)",
-                    "side": "top",
-                    "font": {"size": 11},
-                },
-            },
+            colorbar={"thickness": 8, "outlinewidth": 0, "xpad": 4, "nticks": 6},
             hovertemplate="%{x|%b %Y}<br>%{y}: " + hover + "<extra></extra>",
         )
     )
     figure.update_layout(
         template=template(),
-        margin={"l": _room(shown) if few else 56, "r": 12, "t": 62, "b": 28},
+        margin={"l": _room(shown) if few else 56, "r": 52, "t": 8, "b": 28},
         xaxis={"showgrid": False, "tickangle": 0},
         yaxis={
             "autorange": "reversed",

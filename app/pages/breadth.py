@@ -201,10 +201,14 @@ def register(app: Dash, bridge: Bridge) -> None:
 
 
 def _words(shown: Breadth) -> dict[str, Any]:
+    over = over_words(shown)
+    ranked = f"Colours: rank of the {over} rate in the component's own history, 0 to 100."
+    rates = f"Colours: {over} rate in percent."
+    coloured = {"strip-words": ranked if shown.state.strip == "rank" else rates}
     if shown.weighted is None:
-        refused = html.P(f"{shown.refusal[0].upper()}{shown.refusal[1:]}.", className="quiet")
+        refused = html.P(f"Nothing here: {shown.refusal}.", className="quiet")
         lacking = ("contributions-words", "history-words", "core-words", "weights-words")
-        return dict.fromkeys(lacking, refused)
+        return coloured | dict.fromkeys(lacking, refused)
     out = [short_name(n) for n, left in zip(shown.names, shown.left_out, strict=True) if left]
     without = (
         f" Left out: {', '.join(out[:8])}{' and more' if len(out) > 8 else ''}; choose others in"
@@ -212,14 +216,11 @@ def _words(shown: Breadth) -> dict[str, Any]:
         if out
         else " Choose components to leave out in the table."
     )
-    return {
+    return coloured | {
         "contributions-words": f"{bars(shown)[2]} {adding_up(shown)}".strip(),
-        "history-words": f"Bars add up to the line; drawn are the last {shown.state.years} years.",
+        "history-words": "The bars add up to the line, to rounding.",
         "core-words": f"The trimmed mean cuts {trim_words(shown)} of the weight.{without}",
         "diffusion-words": "Above 50 more components rise than fall.",
-        "strip-words": f"Rates over {shown.span} {shown.noun}s."
-        if shown.span > 1
-        else f"Rates over one {shown.noun}.",
         "weights-words": "Shares of the basket at each period's own prices; new weights come in "
         "at the links.",
     }

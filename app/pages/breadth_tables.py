@@ -130,7 +130,7 @@ def _set_button(words: str, field: str, value: str) -> html.Button:
 def tracking_table(shown: Breadth) -> list[Any]:
     """Return how near each measure came to the trend and to what followed."""
     if shown.weighted is None:
-        return []
+        return [html.P(f"Nothing here: {shown.refusal}.", className="quiet")]
     found = shown.weighted.tracking
     head = (
         "Measure",

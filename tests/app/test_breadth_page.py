@@ -370,3 +370,19 @@ def test_wrong_use_gives_one_sentence_and_status_2(run, words, said):
     assert (status, out) == (2, "")
     assert said in err
     assert err.count("\n") == 1
+
+
+# Files dropped on the Data page --------------------------------------------------------------
+
+
+def test_weights_dropped_on_the_data_page_reach_the_breadth_page():
+    folder = bundled("data_samples")
+    desk = Workspace(placeholder=demo_releases())
+    client = build_app(desk).server.test_client()
+    for name in ("divisions.csv", "weights.csv"):
+        body = (folder / name).read_bytes()
+        assert client.post(f"/intake?name={name}", data=body).status_code == 200
+    answer = page.answer(ViewState(), Bridge(desk))
+    assert "12 components" in answer.sentence
+    assert len(desk.series) == 12  # weights are no series to be paired
+    assert desk.as_of().weights.years[0] == 1960
