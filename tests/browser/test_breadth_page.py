@@ -124,7 +124,9 @@ def test_controls_change_the_address_and_the_address_the_page(page, address, bri
 
 def test_a_refused_value_is_one_sentence(page, address):
     page.get(f"{address}/breadth?trim=70")
-    until(page, "document.getElementById('breadth-message')?.textContent?.includes('Trim must cut')")
+    until(
+        page, "document.getElementById('breadth-message')?.textContent?.includes('Trim must cut')"
+    )
     assert page.find_element(By.ID, "breadth-body").is_displayed() is False
 
 
