@@ -34,7 +34,11 @@ class Found:
 
 
 def found_in(
-    in_view: WorkspaceView, workspace: Workspace, memory: Memory | None = None, window: int = 12
+    in_view: WorkspaceView,
+    workspace: Workspace,
+    memory: Memory | None = None,
+    window: int = 12,
+    most: int | None = None,
 ) -> list[Found]:
     """Check every series in view as read, in order; weights are left out.
 
@@ -48,10 +52,12 @@ def found_in(
         Where findings of equal content are kept.
     window : int, default 12
         Periods averaged, for the check of length.
+    most : int, optional
+        Series checked, the first ones; all without it.
     """
     marked = {(mark.series, mark.period) for mark in in_view.marks}
     found: list[Found] = []
-    for name, series in in_view.as_read.items():
+    for name, series in list(in_view.as_read.items())[:most]:
         if is_weight(series):
             continue
         stored = _before(name, in_view, workspace)

@@ -16,6 +16,7 @@ from app.workspace import WorkspaceView
 from app.workspace_rows import period_of
 
 MOST_FINDINGS = 200
+MOST_CHECKED = 300  # series, at about 6 ms each; the command checks all
 MOST_OTHERS = 30  # series offered for a splice by overlap
 CHOICES = {
     "exclude": "mean of both",
@@ -38,9 +39,12 @@ def section(in_view: WorkspaceView, state: ViewState, bridge: Bridge) -> list[An
     loaded = in_view.as_read
     if not loaded:
         return []
-    found = found_in(in_view, bridge.workspace, bridge.memory, state.window)
+    found = found_in(in_view, bridge.workspace, bridge.memory, state.window, MOST_CHECKED)
     parts: list[Any] = [html.H2("Checks and breaks")]
     parts += _findings(found, loaded) if found else [_quiet("The checks found nothing.")]
+    if len(loaded) > MOST_CHECKED:
+        more = f"The first {MOST_CHECKED} of {len(loaded)} series were checked;"
+        parts.append(_quiet(f"{more} pricewake inspect checks all."))
     parts += _marks(in_view)
     parts.append(_form(loaded))
     return parts
