@@ -31,7 +31,7 @@ def verdict(known: Evidence, pair: Pair, state: ViewState) -> list[str]:
             sentences.append(_chosen_sentence(known, pair, state))
         sentences.append(_set_sentence(known, pair, state))
         sentences.append(fragility(known, pair, state))
-        sentences.append("An association in this sample, not a cause.")
+        sentences.append("An association, not a cause.")
     else:
         sentences.append(_chosen_sentence(known, pair, state))
     return sentences
