@@ -36,15 +36,15 @@
     if (focused && focused.target === target && target.isConnected && document.activeElement !== target) focused = null;
   }, 0));
   document.addEventListener("toggle", ({ target }) => {
-    const { fold } = target.dataset || {};
-    if (fold && target.isConnected) open[target.open ? "add" : "delete"](fold);
+    const { stays } = target.dataset || {};
+    if (stays && target.isConnected) open[target.open ? "add" : "delete"](stays);
   }, true);
 
   function restore() {
-    for (const fold of document.querySelectorAll("details[data-fold]")) {
+    for (const fold of document.querySelectorAll("details[data-stays]")) {
       if (fold.seen) continue;
       fold.seen = true;
-      if (open.has(fold.dataset.fold)) fold.open = true;
+      if (open.has(fold.dataset.stays)) fold.open = true;
     }
     if (!focused || focused.target.isConnected || !focused.selector) return;
     if (document.activeElement && document.activeElement !== document.body) return;

@@ -368,7 +368,7 @@ def prints_table(found: Revised | None) -> list[Any]:
 
 
 def _fold(name: str, words: str, *inside: Any) -> html.Details:
-    return html.Details([html.Summary(words), *inside], **{"data-fold": name})
+    return html.Details([html.Summary(words), *inside], **{"data-stays": name})
 
 
 def _change(value: float) -> str:

@@ -53,11 +53,21 @@ def served(workspace: Workspace) -> Iterator[str]:
     server = create_server(
         build_app(workspace).server, host="127.0.0.1", port=port, threads=8, ident=None
     )
-    thread = threading.Thread(target=server.run, daemon=True)
+    closing = threading.Event()
+
+    def run() -> None:
+        try:
+            server.run()
+        except OSError:  # its sockets were closed while it waited for them
+            if not closing.is_set():
+                raise
+
+    thread = threading.Thread(target=run, daemon=True)
     thread.start()
     try:
         yield f"http://127.0.0.1:{port}"
     finally:
+        closing.set()
         server.close()
 
 

@@ -290,6 +290,8 @@ def test_a_correction_is_kept_and_remembered(data, tmp_path):
     unit.send_keys("2015 = 100", Keys.TAB)
     until(browser, "document.getElementById('intake-message').innerText.includes('2015 = 100')")
     # The page was answered anew meanwhile: the focus is where it was, on what follows the unit.
+    anew = "document.querySelector('[data-entry][data-series=\"Shop prices\"]').dataset.value"
+    until(browser, f"{anew} === '2015 = 100'")
     until(browser, "document.activeElement.dataset.correct === 'adjustment'")
     browser.switch_to.active_element.send_keys(Keys.SHIFT, Keys.TAB, Keys.TAB)
     until(browser, "document.activeElement.dataset.correct === 'kind'")
