@@ -121,7 +121,9 @@ def search_plan(
     have a strength above 1.5 in both series, both are freed of them; where those of the absolute
     residuals have one above 2 in both, these are also divided by their spread, unless a stretch
     hardly moves at all. A trend that explains about as much as two steps is taken out in their
-    place.
+    place. What no guard here mends is persistence that itself changes in both series, from .3 to
+    .95 at one month, say: 12 to 14 % of such unrelated pairs have p <= .05 (own measurement, 400
+    pairs at 240 and 760 months; 4 to 8 % for the 16 other shapes).
     """
     x, y = growth_pair(driver, response)
     count = whole("surrogates", surrogates, 1)
