@@ -315,14 +315,10 @@ def _window_cells(
 
     # The response's cell means and sums of squares, from its own trailing sums.
     sums = np.lib.stride_tricks.sliding_window_view(response, window).sum(axis=1)
-    head = np.concatenate(([0.0], np.cumsum(sums)))
-    mean = (head[stop + shift[:, None]] - head[first + shift[:, None]]) / pairs
-    spread = np.array(
-        [
-            np.square(sums[f + s : e + s] - m).sum()
-            for f, e, s, m in zip(first[:, 0], stop[:, 0], shift, mean[:, 0], strict=True)
-        ]
-    )[:, None]
+    head = np.concatenate(([[0.0], [0.0]], np.cumsum([sums, sums**2], axis=1)), axis=1)
+    total, squares = head[:, stop + shift[:, None]] - head[:, first + shift[:, None]]
+    mean = total / pairs
+    spread = squares - total * mean
     spread[spread <= window**2 * smallest * pairs] = np.nan
     return _WindowCells(
         window,
