@@ -13,7 +13,9 @@ import numpy as np
 
 from analytics.hac import HacSurface, hac_surface
 from analytics.influence import CellWithout, Episode, InfluenceResult, cell_without, episodes
+from analytics.level_shifts import level_shifts
 from analytics.opinions import SecondOpinions, second_opinions
+from analytics.persistence import PersistenceShift, persistence_shift
 from analytics.robust import CellInference, SurfaceInference, cell_inference, surface_inference
 from analytics.search import (
     SearchPlan,
@@ -52,6 +54,9 @@ class Evidence:
         Why there can be no search, in one sentence; empty where there can.
     set_refusal : str
         Why there can be no shift set although the search holds; empty where there can.
+    regimes : tuple of PersistenceShift or None
+        Of driver and response, where both cling to their past more in one part of the sample: the
+        search then finds too much.
     """
 
     naive_p: float
@@ -61,6 +66,7 @@ class Evidence:
     shift_set: ShiftSet | None
     refusal: str = ""
     set_refusal: str = ""
+    regimes: tuple[PersistenceShift, PersistenceShift] | None = None
 
     @property
     def found(self) -> bool:
@@ -117,7 +123,26 @@ def evidence(state: ViewState, bridge: Bridge) -> Evidence:
         shift_set=shifts,
         refusal=refusal,
         set_refusal=set_refusal,
+        regimes=_regimes(state, bridge) if search is not None else None,
     )
+
+
+def _regimes(state: ViewState, bridge: Bridge) -> tuple[PersistenceShift, PersistenceShift] | None:
+    """Shifts of persistence of driver and response, where both have a strong one."""
+
+    def make() -> tuple[PersistenceShift, ...]:
+        pair = bridge.pair(state)
+        try:
+            driver, response = (
+                persistence_shift(level_shifts(side.values, trend=True).residual)
+                for side in (pair.driver, pair.response)
+            )
+        except ValueError:  # too short, or flat in a part: nothing to warn of
+            return ()
+        return (driver, response) if driver.strong and response.strong else ()
+
+    found = bridge.memory.once("regimes:" + bridge.key(state.question()), make)
+    return (found[0], found[1]) if found else None
 
 
 def completed(state: ViewState, bridge: Bridge) -> Evidence:

@@ -25,6 +25,8 @@ def verdict(known: Evidence, pair: Pair, state: ViewState) -> list[str]:
     sentences = [_search_sentence(known, pair)]
     if found.level_shifts_removed:
         sentences.append(_shift_guard_sentence(known, pair))
+    if known.regimes is not None:
+        sentences.append(_regime_sentence(known, pair))
     if known.found:
         place = known.p_searched(state.window, state.shift)
         if place is None or not place <= SIGNIFICANT:
@@ -99,6 +101,20 @@ def _shift_guard_sentence(known: Evidence, pair: Pair) -> str:
     return (
         f"Both series have {kind}{evened} ({'; '.join(sides)}), which alone can look like"
         f" a lag; with them left in, p would be {p_words(found.p_with_level_shifts)}.{rest}"
+    )
+
+
+def _regime_sentence(known: Evidence, pair: Pair) -> str:
+    assert known.regimes is not None
+    sides = "; ".join(
+        f"{side} from about {period_label(pair.periods[shift.position])}, {plain(shift.before)} to"
+        f" {plain(shift.after)}"
+        for side, shift in zip(("driver", "response"), known.regimes, strict=True)
+    )
+    return (
+        f"Take this p with care: both series change how much they cling to their past ({sides},"
+        " lag-1 autocorrelation), and of simulated unrelated pairs like that the search calls about"
+        " 13 of 100 significant at 5 %, not 5."
     )
 
 

@@ -37,6 +37,8 @@ EVERY_CHANGE = {
     "without": "2000-03:2001-03",
     "quantity": "slope",
     "as_of": "2100-01-01",
+    "season": "stl",
+    "meet": "last",
 }
 
 

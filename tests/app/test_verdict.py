@@ -4,14 +4,20 @@ import re
 from dataclasses import replace
 
 import numpy as np
+import pandas as pd
 import pytest
 
-from analytics.series import period_label
-from app.compute import noun
+from analytics.persistence import STRONG, persistence_shift
+from analytics.series import Series, period_label
+from app.compute import Bridge, noun
 from app.evidence import completed, evidence
+from app.intake.reading import Release
+from app.state import ViewState
 from app.verdict import effective_words, fragility, verdict
 from app.words import MINUS, p_words, percent, plain, runs_words, shift_words, signed
+from app.workspace import Workspace
 from tests.app.evidence_cases import CASES, STEP, case
+from tests.bench.calibration_series import one_series
 
 
 def said(name, known=None, **changes):
@@ -363,3 +369,23 @@ def test_the_verdict_of_the_command_and_of_the_page_is_one():
 )
 def test_effective_months_in_words(n, effective, unit, words):
     assert effective_words(n, effective, unit) == words
+
+
+def test_series_of_two_regimes_are_warned_of_and_steady_ones_are_not():
+    months = pd.Period("1960-01", "M")
+    for shape, warned in (("two-regime persistence", True), ("AR .5", False)):
+        values = [one_series(shape, np.random.default_rng(seed), 760) for seed in (11, 12)]
+        pair = [
+            Series(name, months, side, kind="rate")
+            for name, side in zip(("Money", "Prices"), values, strict=True)
+        ]
+        here = Bridge(Workspace((Release("pair.csv", tuple(pair), ()),)))
+        state = ViewState(driver="Money", response="Prices", surrogates=39)
+        text = " ".join(verdict(completed(state, here), here.pair(state), state))
+        assert ("Take this p with care" in text) is warned
+        if warned:
+            assert min(persistence_shift(side).strength for side in values) > STRONG
+            found = completed(state, here).regimes
+            assert found is not None
+            for shift in found:
+                assert f"{shift.before:.2f} to {shift.after:.2f}".replace("-", "−") in text
