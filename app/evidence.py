@@ -13,9 +13,8 @@ import numpy as np
 
 from analytics.hac import HacSurface, hac_surface
 from analytics.influence import CellWithout, Episode, InfluenceResult, cell_without, episodes
-from analytics.level_shifts import level_shifts
 from analytics.opinions import SecondOpinions, second_opinions
-from analytics.persistence import PersistenceShift, persistence_shift
+from analytics.persistence import PersistenceShift
 from analytics.robust import CellInference, SurfaceInference, cell_inference, surface_inference
 from analytics.search import (
     SearchPlan,
@@ -29,6 +28,7 @@ from analytics.shiftset import ShiftSet, shift_set_chunk, shift_set_plan, shift_
 from analytics.stability import Stability, rolling_stability
 from app.compute import Bridge, cell_span, grid
 from app.jobs import Work
+from app.regimes import regimes
 from app.state import StateError, ViewState
 
 SIGNIFICANT = 0.05
@@ -123,26 +123,8 @@ def evidence(state: ViewState, bridge: Bridge) -> Evidence:
         shift_set=shifts,
         refusal=refusal,
         set_refusal=set_refusal,
-        regimes=_regimes(state, bridge) if search is not None else None,
+        regimes=regimes(state, bridge) if search is not None else None,
     )
-
-
-def _regimes(state: ViewState, bridge: Bridge) -> tuple[PersistenceShift, PersistenceShift] | None:
-    """Shifts of persistence of driver and response, where both have a strong one."""
-
-    def make() -> tuple[PersistenceShift, ...]:
-        pair = bridge.pair(state)
-        try:
-            driver, response = (
-                persistence_shift(level_shifts(side.values, trend=True).residual)
-                for side in (pair.driver, pair.response)
-            )
-        except ValueError:  # too short, or flat in a part: nothing to warn of
-            return ()
-        return (driver, response) if driver.strong and response.strong else ()
-
-    found = bridge.memory.once("regimes:" + bridge.key(state.question()), make)
-    return (found[0], found[1]) if found else None
 
 
 def completed(state: ViewState, bridge: Bridge) -> Evidence:
