@@ -42,7 +42,8 @@ def page(browser, address):
 def traces(driver, view):
     """Return the traces of a view as plotly holds them."""
     return driver.execute_script(
-        "return document.querySelector('#breadth-' + arguments[0] + ' .js-plotly-plot')._fullData.map("
+        "return document.querySelector('#breadth-' + arguments[0] + ' .js-plotly-plot')"
+        "._fullData.map("
         "t => ({name: t.name, x: [...t.x], y: [...t.y]}))",
         view,
     )
