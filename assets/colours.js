@@ -49,7 +49,7 @@
   /* Put a figure on screen; `id` is the id of a dcc.Graph. */
   function show(id, figure) {
     shown.set(id, figure);
-    window.dash_clientside.set_props(id, { figure: themed(figure) });
+    if (document.getElementById(id)) window.dash_clientside.set_props(id, { figure: themed(figure) });
   }
 
   function choose(theme) {

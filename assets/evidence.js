@@ -54,7 +54,7 @@
     }
     work.running = null;
     say(null);
-    window.dash_clientside.set_props("lag-tick", { data: Date.now() });
+    if (byId("lag-sentence")) window.dash_clientside.set_props("lag-tick", { data: Date.now() });
   }
 
   function adopt(data) {
@@ -94,7 +94,7 @@
     }
     if (event.target.id === "lag-resume") {
       work.stopped.clear();
-      window.dash_clientside.set_props("lag-tick", { data: Date.now() });
+      if (byId("lag-sentence")) window.dash_clientside.set_props("lag-tick", { data: Date.now() });
     }
     const episode = event.target.closest && event.target.closest("[data-without]");
     if (episode) {

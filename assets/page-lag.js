@@ -286,7 +286,7 @@
   function settle() {
     clearTimeout(page.timer);
     page.timer = 0;
-    if (!page.data || page.data.error) return;
+    if (!page.data || page.data.error || !byId("lag-sentence")) return; // the page may be left already
     if (page.frame) { cancelAnimationFrame(page.frame); draw(); }
     publish();
     if (page.cell) theme.show("lag-scatter", scatterFigure());

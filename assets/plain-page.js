@@ -94,7 +94,7 @@
     if (job.running !== address) return;
     job.running = null;
     say(name, null);
-    window.dash_clientside.set_props(`${name}-tick`, { data: Date.now() });
+    if (document.querySelector(`[data-page="${name}"]`)) window.dash_clientside.set_props(`${name}-tick`, { data: Date.now() });
   }
 
   document.addEventListener("click", (event) => {

@@ -347,7 +347,6 @@ USUAL = asdict(ViewState())
         {**USUAL, "driver": ["Broad money"]},
         {**USUAL, "driver": "x" * 10_000},
         {**USUAL, "driver": "Consumer prices"},
-        {**USUAL, "response": "Real output"},
         {**USUAL, "first": "2026-09"},
         {**USUAL, "windows": "50:40"},
     ],
