@@ -11,12 +11,12 @@ from typing import Any, NoReturn
 
 import click
 
-from app import cli_parts
-from app.cli_breadth import breadth
-from app.cli_parts import errors, print_json, state_of, workspace_of, write
-from app.cli_workspace import workspace
+from app.commands import parts as cli_parts
+from app.commands.breadth import breadth
+from app.commands.parts import errors, print_json, state_of, workspace_of, write
+from app.commands.workspace import workspace
 from app.places import software_version
-from app.reading_fields import READING_FIELDS, READING_VIEWS
+from app.reading.fields import READING_FIELDS, READING_VIEWS
 from app.state import ViewState
 
 DEFAULT_PORT = 8391
@@ -118,7 +118,7 @@ def inspect(
     files: tuple[Path, ...], as_json: bool, csv_path: Path | None, kept_in: str | None
 ) -> int:
     """Say what was understood in the files and what is wrong with them."""
-    from app.findings import found_in
+    from app.desk.findings import found_in
     from app.intake.reading import inspection
 
     desk = workspace_of(files, kept_in)
@@ -166,10 +166,10 @@ def lag(
     """Pair a driver with a response: one cell, the whole map, and what the search was worth."""
     from app import exports
     from app.compute import Bridge, noun
-    from app.evidence import completed
-    from app.lag_answer import answer as lag_answer
+    from app.lag.answer import answer as lag_answer
+    from app.lag.evidence import completed
+    from app.lag.verdict import effective_words
     from app.pages import lag as page
-    from app.verdict import effective_words
     from app.words import p_words, plain, signed
 
     desk = workspace_of(files, kept_in)
@@ -230,9 +230,9 @@ def reading(
     **flags: str | None,
 ) -> int:
     """Read the newest value of a series: rates, rank, distribution, base effects, alerts."""
-    from app.cli_reading import as_of_fields, report, rules_of
+    from app.commands.reading import as_of_fields, report, rules_of
     from app.compute import Bridge
-    from app.reading_exports import view_text
+    from app.reading.exports import view_text
 
     asked = rules_of(rules)
     desk = workspace_of(files, kept_in)

@@ -21,9 +21,9 @@ from analytics.series import (
     period_label,
 )
 from analytics.surface import LagSurface, lag_surface
+from app.desk.pending import Pending
 from app.jobs import Jobs
 from app.memory import Memory
-from app.pending import Pending
 from app.preparing import Prepared, prepared
 from app.state import StateError, ViewState, field_kind
 from app.workspace import Workspace, WorkspaceView

@@ -10,7 +10,7 @@ from typing import Any
 
 from dash import html
 
-from app.reading_fields import Number
+from app.reading.fields import Number
 from app.state import Choice, Day, StateError, Text, ViewState, Whole, field_kind
 
 

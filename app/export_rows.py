@@ -9,7 +9,7 @@ from analytics.lag_profile import LagProfile
 from analytics.robust import ParameterPlane
 from analytics.series import period_code
 from app.compute import Bridge
-from app.evidence import (
+from app.lag.evidence import (
     completed,
     directions_work,
     episode_code,

@@ -8,8 +8,8 @@ from collections.abc import Iterable, Sequence
 from typing import Any
 
 from app.compute import Bridge, noun
-from app.evidence import Evidence, completed
 from app.export_rows import SEARCHED, VIEWS
+from app.lag.evidence import Evidence, completed
 from app.pages.lag import LagView, view
 from app.places import software_version
 from app.state import ViewState

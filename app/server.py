@@ -9,13 +9,17 @@ from flask import Flask, Response, abort, request
 from flask_caching import Cache
 from werkzeug.exceptions import HTTPException
 
-from app import breadth_exports, data_exports, desk_routes, exports, reading_exports
+from app import exports
+from app.breadth import exports as breadth_exports
 from app.compute import Bridge
-from app.evidence import WORK
+from app.desk import exports as data_exports
+from app.desk import routes as desk_routes
 from app.intake.csv_files import MAX_BYTES
+from app.lag.evidence import WORK
 from app.pages import breadth, data, lag, reading
 from app.places import bundled, software_version
-from app.reading import WORK as READING_WORK
+from app.reading import exports as reading_exports
+from app.reading.bridge import WORK as READING_WORK
 from app.state import ViewState
 from app.workspace import Workspace
 

@@ -8,7 +8,8 @@ from dataclasses import Field, dataclass, field, fields, replace
 from typing import Any, cast
 from urllib.parse import parse_qsl, urlencode
 
-from app import breadth_fields, reading_fields
+from app.breadth import fields as breadth_fields
+from app.reading import fields as reading_fields
 from app.state_kinds import (
     NAME,
     PERIOD,

@@ -50,10 +50,10 @@ RULES = {
     "app/": rule(
         "analytics app click dash flask flask_caching numpy pandas plotly waitress werkzeug"
     ),
-    "app/state.py": rule("analytics app.state_kinds app.breadth_fields app.reading_fields"),
+    "app/state.py": rule("analytics app.state_kinds app.breadth.fields app.reading.fields"),
     "app/state_kinds.py": rule("analytics"),
-    "app/breadth_fields.py": rule("app.state_kinds"),
-    "app/reading_fields.py": rule("app.state_kinds"),
+    "app/breadth/fields.py": rule("app.state_kinds"),
+    "app/reading/fields.py": rule("app.state_kinds"),
     "app/intake/": rule("analytics app.intake app.places numpy openpyxl pandas"),
     "app/figures/": rule(
         "analytics app.compute app.state app.figures app.places numpy pandas plotly",

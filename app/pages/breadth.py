@@ -5,12 +5,12 @@ from typing import Any
 from dash import Dash, html
 
 from app import controls
-from app.breadth import Breadth, breadth
-from app.breadth_core import short_name
-from app.breadth_exports import stem
-from app.breadth_table import bars, parts, strip_order
-from app.breadth_totals import totals
-from app.breadth_words import (
+from app.breadth.bridge import Breadth, breadth
+from app.breadth.core import short_name
+from app.breadth.exports import stem
+from app.breadth.table import bars, parts, strip_order
+from app.breadth.totals import totals
+from app.breadth.words import (
     adding_up,
     over_words,
     print_words,

@@ -4,9 +4,9 @@ from typing import Any
 
 from dash import html
 
-from app.breadth import Breadth
-from app.breadth_table import TOP_ROWS, Row, rows
-from app.breadth_words import over_words, tracking_words
+from app.breadth.bridge import Breadth
+from app.breadth.table import TOP_ROWS, Row, rows
+from app.breadth.words import over_words, tracking_words
 from app.words import plain, signed
 
 

@@ -1,6 +1,6 @@
 """The Data page: files in, what was understood, what is wrong with them, vintages and revisions.
 
-Files are read, shown and only then kept: assets/intake.js sends them, app/desk_routes.py answers,
+Files are read, shown and only then kept: assets/intake.js sends them, app/desk/routes.py answers,
 and the buttons of the preview decide.
 """
 
@@ -8,8 +8,9 @@ from typing import Any
 
 from dash import Dash, Input, Output, dcc, html
 
-from app import controls, desk
+from app import controls
 from app.compute import Bridge
+from app.desk import bridge as desk
 from app.figures.data import revisions_chart
 from app.pages import data_breaks, plain
 from app.pages import data_parts as parts

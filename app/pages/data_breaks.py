@@ -7,7 +7,7 @@ from dash import html
 
 from analytics.series import PERIOD_NOUN, Series, period_label
 from app.compute import Bridge
-from app.findings import Found, found_in
+from app.desk.findings import Found, found_in
 from app.marks import OVERLAP
 from app.pages.data_parts import table
 from app.state import ViewState

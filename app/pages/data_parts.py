@@ -6,7 +6,7 @@ from typing import Any, get_args
 from dash import html
 
 from analytics.series import PERIOD_NOUN, Adjustment, Kind, Series, period_label
-from app.desk import Revised, against_kept, all_series
+from app.desk.bridge import Revised, against_kept, all_series
 from app.figures.data import sparkline
 from app.intake.problems import Problem
 from app.intake.reading import Release

@@ -18,9 +18,9 @@ from analytics.series import PERIODS_PER_YEAR, FloatArray, Pair, Series
 from analytics.surface import LagSurface
 from app import controls
 from app.compute import MIN_PAIRS, Bridge, Overlay, cell_span, noun, span_words
-from app.evidence import map_hac, map_inference
 from app.figures import lag as figures
 from app.figures.theme import CONFIG
+from app.lag.evidence import map_hac, map_inference
 from app.pages import lag_evidence
 from app.pages.as_of import as_of_line
 from app.places import software_version

@@ -12,16 +12,16 @@ from plotly.graph_objects import Figure
 
 from app import controls
 from app.compute import Bridge, cell_span, noun
-from app.evidence import (
+from app.figures import evidence as figures
+from app.figures.theme import CONFIG
+from app.lag.evidence import (
     WORK,
     evidence,
     without_episode,
 )
-from app.figures import evidence as figures
-from app.figures.theme import CONFIG
+from app.lag.verdict import verdict
 from app.pages import lag_words
 from app.state import StateError, ViewState
-from app.verdict import verdict
 
 FOLDS = {
     "profile": "Which shifts fit as well",

@@ -6,9 +6,9 @@ from dash import html
 
 from analytics.series import Pair, period_label
 from app.compute import cell_span, noun
-from app.evidence import Directions, Evidence, episode_code
+from app.lag.evidence import Directions, Evidence, episode_code
+from app.lag.verdict import effective_words, fragility
 from app.state import ViewState
-from app.verdict import effective_words, fragility
 from app.words import counted, p_words, percent, plain, runs_words, shift_words, signed
 
 MOST_EPISODES = 8

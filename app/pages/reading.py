@@ -7,16 +7,17 @@ from dash import Dash, html
 from plotly.graph_objects import Figure
 
 from analytics.series import period_code
-from app import controls, reading_page_words
-from app.alerts import DEFAULT_RULES, read_rules
+from app import controls
 from app.compute import Bridge
 from app.figures import reading as figures
 from app.figures import reading_shape as shapes
 from app.pages import plain
 from app.places import software_version
-from app.reading import CORE, chosen_series, reading, reading_key
-from app.reading_result import Reading
-from app.reading_words import CAUTION, sentence, set_off, verdict
+from app.reading import page_words as reading_page_words
+from app.reading.alerts import DEFAULT_RULES, read_rules
+from app.reading.bridge import CORE, chosen_series, reading, reading_key
+from app.reading.result import Reading
+from app.reading.words import CAUTION, sentence, set_off, verdict
 from app.state import ViewState
 
 PATH, TITLE, NAME = "/reading", "Reading", "reading"

@@ -8,7 +8,7 @@ import pandas as pd
 
 from analytics.series import Series
 from app.compute import Bridge
-from app.evidence import completed
+from app.lag.evidence import completed
 from app.state import ViewState
 from tests.app.economies import LAG, planted, workspace
 

@@ -6,7 +6,15 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from app.alerts import DEFAULT_RULES, QUANTITIES, AlertError, Rule, alerts, read_rule, read_rules
+from app.reading.alerts import (
+    DEFAULT_RULES,
+    QUANTITIES,
+    AlertError,
+    Rule,
+    alerts,
+    read_rule,
+    read_rules,
+)
 
 PRINT = {"rate_12m": 6.0, "rate_3m_annualised": 9.0, "rank_percent": 40.0, "change_36m": math.nan}
 

@@ -8,10 +8,10 @@ import pytest
 
 from analytics.breadth import change
 from analytics.series import Series
-from app.breadth import breadth
-from app.breadth_answer import breadth_answer
-from app.breadth_core import MEDIAN, TOTAL, TRIMMED, short_name
-from app.breadth_words import sentence, verdict
+from app.breadth.answer import breadth_answer
+from app.breadth.bridge import breadth
+from app.breadth.core import MEDIAN, TOTAL, TRIMMED, short_name
+from app.breadth.words import sentence, verdict
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.state import StateError, ViewState

@@ -8,11 +8,11 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from app.breadth import breadth
-from app.breadth_exports import VIEWS, csv_export, view_text
-from app.breadth_fields import BREADTH_VIEWS, SORTED_BY
-from app.breadth_table import TOP_BARS, TOP_PARTS, TOP_ROWS, bars, parts, rows
-from app.breadth_words import adding_up, sentence, verdict
+from app.breadth.bridge import breadth
+from app.breadth.exports import VIEWS, csv_export, view_text
+from app.breadth.fields import BREADTH_VIEWS, SORTED_BY
+from app.breadth.table import TOP_BARS, TOP_PARTS, TOP_ROWS, bars, parts, rows
+from app.breadth.words import adding_up, sentence, verdict
 from app.cli import main
 from app.compute import Bridge
 from app.demo import demo_releases

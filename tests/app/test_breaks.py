@@ -11,7 +11,7 @@ from analytics.series import Series
 from app import exports
 from app.compute import Bridge
 from app.demo import demo_releases
-from app.findings import found_in
+from app.desk.findings import found_in
 from app.intake.reading import Release
 from app.marks import Mark, treated
 from app.pages import data_breaks, lag, reading

@@ -12,8 +12,10 @@ import click
 import pytest
 
 from analytics.series import period_code
-from app import breadth_fields, cli, cli_parts
+from app import cli
+from app.breadth import fields as breadth_fields
 from app.cli import LAG_FIELDS, main, pricewake
+from app.commands import parts as cli_parts
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.intake.reading import read_path

@@ -8,9 +8,10 @@ import pytest
 
 from analytics.rates import growth_rate
 from analytics.series import Series
-from app import desk, pending
 from app.compute import Bridge
 from app.demo import demo_releases
+from app.desk import bridge as desk
+from app.desk import pending
 from app.intake.reading import Release
 from app.state import ViewState
 from app.workspace import Workspace

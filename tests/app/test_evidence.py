@@ -14,9 +14,9 @@ from analytics.search import lag_search
 from analytics.series import period_code
 from analytics.shiftset import shift_set
 from analytics.stability import rolling_stability
-from app import evidence as ev
 from app.cli import LAG_FIELDS
 from app.compute import Bridge, cell_span
+from app.lag import evidence as ev
 from app.state import StateError
 from tests.app.economies import LAG, planted, workspace
 from tests.app.evidence_cases import STATE, case, noise, rates

@@ -8,7 +8,7 @@ from click.testing import CliRunner
 from app.cli import pricewake
 from app.compute import Bridge
 from app.demo import demo_releases
-from app.evidence import completed
+from app.lag.evidence import completed
 from app.state import ViewState
 from app.workspace import Workspace
 

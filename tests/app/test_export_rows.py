@@ -11,7 +11,8 @@ from analytics.series import period_code
 from app import exports
 from app.cli import VIEW_NAMES
 from app.compute import Bridge
-from app.evidence import (
+from app.export_rows import SEARCHED, VIEWS
+from app.lag.evidence import (
     completed,
     directions_work,
     episode_code,
@@ -24,7 +25,6 @@ from app.evidence import (
     stability_work,
     without_episode,
 )
-from app.export_rows import SEARCHED, VIEWS
 from app.pages.lag import view
 from tests.app.economies import LAG, planted, workspace
 from tests.app.evidence_cases import STATE, case, noise, rates

@@ -9,7 +9,8 @@ import pytest
 
 from analytics.series import period_label
 from app.compute import Bridge, cell_span
-from app.evidence import (
+from app.figures import evidence as figures
+from app.lag.evidence import (
     completed,
     episode_code,
     inference,
@@ -18,7 +19,6 @@ from app.evidence import (
     stability_work,
     without_episode,
 )
-from app.figures import evidence as figures
 from app.pages.lag import view
 from tests.app.economies import LAG, planted, workspace
 from tests.app.evidence_cases import STATE, case

@@ -11,8 +11,8 @@ from flask_caching import Cache
 from analytics.search import lag_search
 from analytics.shiftset import shift_set
 from app.compute import Bridge
-from app.evidence import search_work, shift_set_work
 from app.jobs import MOST_KEPT, PATIENCE, Jobs, Progress, Work
+from app.lag.evidence import search_work, shift_set_work
 from app.memory import Memory
 from app.state import ViewState
 from tests.app.economies import LAG, planted, workspace

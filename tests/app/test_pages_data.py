@@ -9,10 +9,10 @@ import pandas as pd
 import pytest
 
 from analytics.series import Series
-from app import desk
 from app.compute import Bridge
-from app.data_exports import csv_export
 from app.demo import demo_releases
+from app.desk import bridge as desk
+from app.desk.exports import csv_export
 from app.figures.data import revisions_chart, sparkline
 from app.intake.problems import Problem
 from app.intake.reading import Release, read_release

@@ -7,8 +7,8 @@ import pytest
 
 from app.compute import MIN_PAIRS, Bridge
 from app.demo import demo_releases
-from app.evidence import completed
-from app.lag_answer import answer
+from app.lag.answer import answer
+from app.lag.evidence import completed
 from app.pages.lag import CAUTION, layout, payload, view
 from app.state import ViewState, field_kind
 from app.workspace import Workspace

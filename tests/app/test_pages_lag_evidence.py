@@ -7,7 +7,8 @@ import numpy as np
 import pytest
 
 from app.compute import Bridge
-from app.evidence import (
+from app.figures import evidence as figures
+from app.lag.evidence import (
     WORK,
     completed,
     directions_work,
@@ -18,11 +19,10 @@ from app.evidence import (
     shift_set_work,
     stability_work,
 )
-from app.figures import evidence as figures
+from app.lag.verdict import fragility, verdict
 from app.pages.lag_evidence import FOLDS, answer
 from app.pages.lag_words import MOST_EPISODES
 from app.server import build_app
-from app.verdict import fragility, verdict
 from app.words import p_words, percent, shift_words
 from tests.app.economies import LAG, planted, workspace
 from tests.app.evidence_cases import STATE, case, noise, rates

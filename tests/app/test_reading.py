@@ -12,9 +12,9 @@ from analytics.rates import growth_rate
 from analytics.series import Series
 from app.compute import Bridge
 from app.demo import demo_releases
-from app.reading import chosen_series, completed_reading, goodness_work, reading
-from app.reading_answer import reading_answer
-from app.reading_words import quantities, sentence, verdict
+from app.reading.answer import reading_answer
+from app.reading.bridge import chosen_series, completed_reading, goodness_work, reading
+from app.reading.words import quantities, sentence, verdict
 from app.state import ViewState
 from app.workspace import Workspace
 from tests.app.economies import workspace

@@ -12,10 +12,10 @@ from app.compute import Bridge
 from app.demo import demo_releases
 from app.pages import plain
 from app.pages import reading as page
-from app.reading import completed_reading, reading
-from app.reading_exports import VIEWS, csv_export, view_text
-from app.reading_fields import READING_FIELDS, READING_VIEWS
-from app.reading_words import set_off
+from app.reading.bridge import completed_reading, reading
+from app.reading.exports import VIEWS, csv_export, view_text
+from app.reading.fields import READING_FIELDS, READING_VIEWS
+from app.reading.words import set_off
 from app.state import ViewState
 from app.workspace import Workspace
 from tests.app.economies import workspace
@@ -295,7 +295,7 @@ def test_every_number_of_the_page_has_a_flag():
 
 
 def test_alerts_of_page_and_command_come_from_the_same_rules(bridge):
-    from app.alerts import DEFAULT_RULES, read_rules
+    from app.reading.alerts import DEFAULT_RULES, read_rules
 
     known = reading(ViewState(newest="1973-07"), bridge)
     assert [a.rule for a in set_off(known, read_rules(DEFAULT_RULES))]

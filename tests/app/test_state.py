@@ -8,7 +8,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from app.reading_fields import Number
+from app.reading.fields import Number
 from app.state import CELL_FIELDS, Choice, StateError, Text, ViewState, Whole, field_kind, kind_of
 
 NAMES = [item.name for item in fields(ViewState)]

@@ -10,10 +10,10 @@ import pytest
 from analytics.persistence import STRONG, persistence_shift
 from analytics.series import Series, period_label
 from app.compute import Bridge, noun
-from app.evidence import completed, evidence
 from app.intake.reading import Release
+from app.lag.evidence import completed, evidence
+from app.lag.verdict import effective_words, fragility, verdict
 from app.state import ViewState
-from app.verdict import effective_words, fragility, verdict
 from app.words import MINUS, p_words, percent, plain, runs_words, shift_words, signed
 from app.workspace import Workspace
 from tests.app.evidence_cases import CASES, STEP, case

@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 from selenium.webdriver.common.by import By
 
-from app.breadth import breadth
+from app.breadth.bridge import breadth
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.state import ViewState

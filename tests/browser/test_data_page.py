@@ -10,9 +10,9 @@ from selenium.webdriver.common.keys import Keys
 
 from analytics.cell import lag_cell
 from analytics.series import Series
-from app import desk
 from app.compute import Bridge
 from app.demo import demo_releases
+from app.desk import bridge as desk
 from app.intake.reading import Release, read_release
 from app.state import ViewState
 from app.workspace import Workspace

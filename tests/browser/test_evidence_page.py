@@ -12,10 +12,10 @@ from selenium.webdriver.common.by import By
 
 from app.compute import Bridge
 from app.demo import demo_releases
-from app.evidence import completed, episode_code, influence, opinions_work, without_episode
 from app.figures.evidence import support_traces
+from app.lag.evidence import completed, episode_code, influence, opinions_work, without_episode
+from app.lag.verdict import verdict
 from app.state import ViewState
-from app.verdict import verdict
 from app.words import p_words
 from app.workspace import Workspace
 from tests.browser.driving import open_lag, until

@@ -12,8 +12,8 @@ from selenium.webdriver.support.ui import Select
 
 from app.compute import Bridge
 from app.demo import demo_releases
-from app.reading import reading
-from app.reading_exports import VIEWS
+from app.reading.bridge import reading
+from app.reading.exports import VIEWS
 from app.state import ViewState
 from app.workspace import Workspace
 from tests.browser.driving import until

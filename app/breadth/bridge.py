@@ -18,9 +18,9 @@ from analytics.breadth import (
 from analytics.core_measures import Tracking, core_tracking
 from analytics.series import PERIOD_NOUN, PERIODS_PER_YEAR, FloatArray, Series, period_label
 from analytics.weights import ChainedBasket, basket_shares, effective_weights
-from app.breadth_core import core_measures, left_out_of
-from app.breadth_panel import ALL_ITEMS, Panel, chained, components, panel
-from app.breadth_totals import aligned, chosen_total, ended_with_total
+from app.breadth.core import core_measures, left_out_of
+from app.breadth.panel import ALL_ITEMS, Panel, chained, components, panel
+from app.breadth.totals import aligned, chosen_total, ended_with_total
 from app.compute import Bridge
 from app.state import StateError, ViewState, kind_of
 from app.workspace import WorkspaceView

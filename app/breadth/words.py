@@ -3,8 +3,8 @@
 import numpy as np
 
 from analytics.series import period_label
-from app.breadth import Breadth
-from app.breadth_core import MEDIAN, TOTAL, TRIMMED, cuts, short_name
+from app.breadth.bridge import Breadth
+from app.breadth.core import MEDIAN, TOTAL, TRIMMED, cuts, short_name
 from app.words import counted, plain, signed
 
 CLOSE = 0.3  # percentage points within which two rates are called close

@@ -6,8 +6,8 @@ from typing import Any
 import numpy as np
 
 from analytics.series import FloatArray
-from app.breadth import Breadth
-from app.breadth_core import short_name
+from app.breadth.bridge import Breadth
+from app.breadth.core import short_name
 from app.words import signed
 
 TOP_ROWS = 40  # rows of the table before the rest is summed up

@@ -7,9 +7,9 @@ import numpy as np
 
 from analytics.breadth import own_history_rank
 from analytics.series import period_code
-from app.breadth import Breadth, breadth
-from app.breadth_table import Row, rows
-from app.breadth_words import sentence
+from app.breadth.bridge import Breadth, breadth
+from app.breadth.table import Row, rows
+from app.breadth.words import sentence
 from app.compute import Bridge
 from app.exports import csv_text
 from app.places import software_version

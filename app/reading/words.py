@@ -6,8 +6,8 @@ from analytics.families import FAMILIES
 from analytics.goodness import laplace_bracket
 from analytics.series import period_label
 from analytics.tail import Tail
-from app.alerts import Alert, Rule, alerts
-from app.reading_result import Reading
+from app.reading.alerts import Alert, Rule, alerts
+from app.reading.result import Reading
 from app.words import counted, p_words, plain, signed
 
 CAUTION = (

@@ -3,9 +3,9 @@
 from typing import Any
 
 from analytics.series import period_code
-from app.evidence import Evidence, episode_code
+from app.lag.evidence import Evidence, episode_code
+from app.lag.verdict import verdict
 from app.pages.lag import LagView
-from app.verdict import verdict
 
 
 def answer(shown: LagView, known: Evidence) -> dict[str, Any]:

@@ -5,7 +5,7 @@ import numpy as np
 from analytics.breadth import change
 from analytics.series import FloatArray, Series, period_label
 from analytics.weights import ChainedBasket
-from app.breadth_panel import ALL_ITEMS, Panel, chained
+from app.breadth.panel import ALL_ITEMS, Panel, chained
 from app.intake.problems import quoted
 from app.state import StateError, ViewState
 from app.workspace import WorkspaceView

@@ -5,9 +5,9 @@ from typing import Any
 import numpy as np
 
 from analytics.series import period_code
-from app.breadth import Breadth
-from app.breadth_core import MEDIAN, TOTAL, TRIMMED
-from app.breadth_words import sentence, verdict
+from app.breadth.bridge import Breadth
+from app.breadth.core import MEDIAN, TOTAL, TRIMMED
+from app.breadth.words import sentence, verdict
 
 
 def breadth_answer(shown: Breadth) -> dict[str, Any]:

@@ -4,9 +4,9 @@ from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
-from app.breadth import Breadth
-from app.breadth_answer import breadth_answer
-from app.breadth_words import adding_up, sentence, verdict
+from app.breadth.answer import breadth_answer
+from app.breadth.bridge import Breadth
+from app.breadth.words import adding_up, sentence, verdict
 from app.demo import WEIGHTS, demo_releases
 from app.intake.reading import Release, read_path
 from app.intake.weights import weight_series

@@ -6,9 +6,9 @@ from analytics.high_inflation import Run
 from analytics.print_rates import PrintRates, doubling_time
 from analytics.series import period_code
 from analytics.tail import Tail
-from app.alerts import Alert
-from app.reading_result import Reading
-from app.reading_words import quantities, sentence, verdict
+from app.reading.alerts import Alert
+from app.reading.result import Reading
+from app.reading.words import quantities, sentence, verdict
 
 _NAMES = {
     "one": "rate_1m",

@@ -28,7 +28,7 @@ from analytics.shiftset import ShiftSet, shift_set_chunk, shift_set_plan, shift_
 from analytics.stability import Stability, rolling_stability
 from app.compute import Bridge, cell_span, grid
 from app.jobs import Work
-from app.regimes import regimes
+from app.lag.regimes import regimes
 from app.state import StateError, ViewState
 
 SIGNIFICANT = 0.05

@@ -2,7 +2,7 @@
 
 from analytics.series import Pair, period_label
 from app.compute import cell_span, noun
-from app.evidence import SIGNIFICANT, Evidence
+from app.lag.evidence import SIGNIFICANT, Evidence
 from app.state import ViewState
 from app.words import counted, p_words, percent, plain, runs_words, shift_words, signed
 

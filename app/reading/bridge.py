@@ -15,8 +15,8 @@ from analytics.tail import fitted_tail
 from app.compute import Bridge
 from app.jobs import Work
 from app.opening import opening_state
-from app.reading_parts import core_reading
-from app.reading_result import Reading
+from app.reading.parts import core_reading
+from app.reading.result import Reading
 from app.state import StateError, ViewState
 
 SAMPLE = ("series", "newest", "formula", "measure", "among", "rank_window", "since")

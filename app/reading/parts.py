@@ -23,7 +23,7 @@ from analytics.series import (
 )
 from analytics.standing import RankKind, rank_through_time, standing
 from analytics.tail import observed_tail
-from app.reading_result import Reading, SubSample
+from app.reading.result import Reading, SubSample
 from app.state import StateError, ViewState
 
 T = TypeVar("T")

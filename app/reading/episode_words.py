@@ -7,8 +7,8 @@ from dash import html
 
 from analytics.high_inflation import HYPERINFLATION_MARK, Run
 from analytics.series import period_label
-from app.reading_result import Reading
-from app.reading_words import quantities, year_words
+from app.reading.result import Reading
+from app.reading.words import quantities, year_words
 from app.words import counted, plain, signed
 
 NEAR_MARK = 0.8  # share of the three-year mark from which it is called near

@@ -14,9 +14,9 @@ from analytics.series import Series, period_code
 from app.compute import Bridge
 from app.exports import csv_text
 from app.places import software_version
-from app.reading import completed_reading, reading
-from app.reading_result import Reading
-from app.reading_words import sentence
+from app.reading.bridge import completed_reading, reading
+from app.reading.result import Reading
+from app.reading.words import sentence
 from app.state import ViewState
 
 Rows = Iterable[Sequence[Any]]

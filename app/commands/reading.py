@@ -4,12 +4,12 @@ import re
 from typing import Any
 
 from analytics.series import period_label
-from app.alerts import DEFAULT_RULES, Rule, read_rules
 from app.compute import Bridge
-from app.reading import completed_reading
-from app.reading_answer import reading_answer
-from app.reading_result import Reading
-from app.reading_words import CAUTION, fit_words, quantities, sentence, set_off, tail_words, verdict
+from app.reading.alerts import DEFAULT_RULES, Rule, read_rules
+from app.reading.answer import reading_answer
+from app.reading.bridge import completed_reading
+from app.reading.result import Reading
+from app.reading.words import CAUTION, fit_words, quantities, sentence, set_off, tail_words, verdict
 from app.state import ViewState
 from app.words import plain
 

@@ -8,10 +8,10 @@ from dash import html
 from analytics.families import FAMILIES
 from analytics.print_rates import doubling_time
 from analytics.series import period_label
-from app.alerts import Alert
-from app.reading_episode_words import episode_words
-from app.reading_result import Reading
-from app.reading_words import fit_words, span_words, tail_words, year_words
+from app.reading.alerts import Alert
+from app.reading.episode_words import episode_words
+from app.reading.result import Reading
+from app.reading.words import fit_words, span_words, tail_words, year_words
 from app.words import counted, plain, signed
 
 _COLUMNS = (

@@ -3,8 +3,8 @@
 from typing import Any
 
 from analytics.series import period_code
-from app import desk
 from app.compute import Bridge
+from app.desk import bridge as desk
 from app.exports import csv_text
 from app.intake.reading import inspection
 from app.places import software_version

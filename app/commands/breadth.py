@@ -4,9 +4,9 @@ from pathlib import Path
 
 import click
 
-from app import cli_parts
-from app.breadth_fields import BREADTH_FIELDS, BREADTH_VIEWS
-from app.cli_parts import errors, print_json, state_of, workspace_of, write
+from app.breadth.fields import BREADTH_FIELDS, BREADTH_VIEWS
+from app.commands import parts as cli_parts
+from app.commands.parts import errors, print_json, state_of, workspace_of, write
 from app.state import ViewState
 
 
@@ -42,10 +42,10 @@ def breadth(
     **flags: str | None,
 ) -> int:
     """Say how broad the newest print is: contributions, diffusion, core measures."""
-    from app.breadth import breadth as breadth_of
-    from app.breadth_exports import view_text
-    from app.cli_breadth_report import report, with_weights
-    from app.cli_reading import as_of_fields
+    from app.breadth.bridge import breadth as breadth_of
+    from app.breadth.exports import view_text
+    from app.commands.breadth_report import report, with_weights
+    from app.commands.reading import as_of_fields
     from app.compute import Bridge
 
     desk = with_weights(workspace_of(files, kept_in), weights)

@@ -1,0 +1,1 @@
+"""The Breadth page behind the screen: components, in numbers, words and files."""

@@ -1,0 +1,1 @@
+"""The Data page behind the screen: files looked at, kept, corrected."""

@@ -1,0 +1,1 @@
+"""The Lag page behind the screen: what the exploration was worth, in numbers and words."""

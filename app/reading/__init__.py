@@ -1,0 +1,1 @@
+"""The Reading page behind the screen: one print, in numbers, words and files."""
