@@ -9,28 +9,15 @@ from flask import Flask, Response, abort, request
 from flask_caching import Cache
 from werkzeug.exceptions import HTTPException
 
-from app import exports
-from app.breadth import exports as breadth_exports
 from app.compute import Bridge
-from app.desk import exports as data_exports
 from app.desk import routes as desk_routes
 from app.intake.csv_files import MAX_BYTES
-from app.lag.evidence import WORK
-from app.pages import breadth, data, lag, reading
+from app.page_table import EXPORTS, PAGES, WORKS
+from app.pages import lag
 from app.places import bundled, software_version
-from app.reading import exports as reading_exports
-from app.reading.bridge import WORK as READING_WORK
 from app.state import ViewState
 from app.workspace import Workspace
 
-PAGES = (data, reading, breadth, lag)
-WORKS = {"lag": WORK, "reading": READING_WORK}  # page name -> kind -> (state, bridge) -> long work
-EXPORTS = {
-    "breadth": breadth_exports.csv_export,
-    "lag": exports.csv_export,
-    "data": data_exports.csv_export,
-    "reading": reading_exports.csv_export,
-}  # page name -> (view, query, bridge) -> file name, text
 HOSTS = ("127.0.0.1", "localhost", "[::1]")
 INDEX = """<!DOCTYPE html>
 <html lang="en">

@@ -1,0 +1,22 @@
+"""The pages that show results, in the order of the job, with their files and their long work.
+
+A page added here is served, exported and offered in the brief; nothing else lists pages. One whose
+module has ``NAME`` and ``answer(state, bridge)``, as in `app.pages.plain`, needs no more.
+"""
+
+from app import exports
+from app.breadth import exports as breadth_exports
+from app.desk import exports as data_exports
+from app.lag.evidence import WORK
+from app.pages import breadth, data, lag, reading
+from app.reading import exports as reading_exports
+from app.reading.bridge import WORK as READING_WORK
+
+PAGES = (data, reading, breadth, lag)
+WORKS = {"lag": WORK, "reading": READING_WORK}  # page name -> kind -> (state, bridge) -> long work
+EXPORTS = {
+    "breadth": breadth_exports.csv_export,
+    "lag": exports.csv_export,
+    "data": data_exports.csv_export,
+    "reading": reading_exports.csv_export,
+}  # page name -> (view, query, bridge) -> file name, text
