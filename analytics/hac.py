@@ -10,10 +10,9 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.linalg.blas import dgemm
 from scipy.special import stdtr
 
-from analytics.overlap import overlap_moments, smoothed_rows
+from analytics.overlap import smoothed_rows
 from analytics.series import FloatArray, read_only
 from analytics.surface import (
     IntArray,
@@ -23,7 +22,6 @@ from analytics.surface import (
     smallest_variance,
 )
 
-_STEP = 16  # months in a block of the running sums
 _THREADS = 2  # the result does not depend on it
 _FIXED_B: dict[float, tuple[float, float, float, float]] = {
     0.90: (1.2816, 1.3040, 0.5135, -0.3386),
@@ -196,9 +194,8 @@ def hac_surface(
         raise ValueError(f"bandwidth must be 1 or more, but got {bandwidth}")
     if min_pairs < 3:
         raise ValueError(f"min_pairs must be 3 or more, but got {min_pairs}")
-    every = np.arange(leads[0], leads[-1] + 1)
-    pairs = np.maximum(0, x.size - lengths[:, None] + 1 - np.abs(every))
-    most = pairs[:, leads - leads[0]].max()
+    pairs = np.maximum(0, x.size - lengths[:, None] + 1 - np.abs(leads))
+    most = pairs.max()
     if most < min_pairs:
         raise ValueError(
             f"a cell must have at least {min_pairs} pairs, but no cell of the grid has more than"
@@ -207,19 +204,23 @@ def hac_surface(
     usual = np.ceil(1.3 * np.sqrt(x.size - lengths + 1)).astype(np.int64)
     spans = usual if bandwidth is None else np.full(lengths.size, bandwidth)
 
-    xs, ys = (smoothed_rows(values - values.mean(), lengths, _STEP) for values in (x, y))
-    sizes = x.size - lengths + 1
-    moments = overlap_moments(xs, ys, sizes, every)
+    from analytics.hac_loop import fill_cells  # compiled: loaded only where it is needed
+
+    xs, ys = (smoothed_rows(values - values.mean(), lengths) for values in (x, y))
+    cells = np.zeros((4, lengths.size, leads.size))
+
+    def fill(first: int) -> None:
+        fill_cells(xs, ys, x.size - lengths + 1, leads, spans, first, _THREADS, cells)
+
+    with ThreadPoolExecutor(_THREADS) as pool:
+        list(pool.map(fill, range(_THREADS)))
     usable = pairs >= min_pairs
-    for square, series in zip(moments[2:4], (x, y), strict=True):
+    for square, series in zip(cells[:2], (x, y), strict=True):
         usable &= square > smallest_variance(series) * pairs
-    moments[:, ~usable] = np.array([[0.0], [0.0], [1.0], [1.0], [0.0]])
-    spread = _spreads(xs, ys, sizes, every, moments, spans)
-    slope = np.where(usable, moments[4] / moments[2], np.nan)
-    variance = spread / np.minimum(spans[:, None], np.maximum(1, pairs)) / moments[2] ** 2
-    se = np.where(usable, np.sqrt(variance), np.nan)
-    slope, se, pairs = (grid[:, leads - leads[0]] for grid in (slope, se, pairs))
     used = np.minimum(spans[:, None], np.maximum(1, pairs))
+    slope = np.where(usable, cells[2], np.nan)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        se = np.where(usable, np.sqrt(cells[3] / used) / cells[0], np.nan)
     with np.errstate(divide="ignore", invalid="ignore"):
         t = slope / se
     return HacSurface(
@@ -232,77 +233,3 @@ def hac_surface(
         bandwidth=locked(used),
         pairs=locked(pairs),
     )
-
-
-def _spreads(
-    xs: FloatArray,
-    ys: FloatArray,
-    sizes: IntArray,
-    shifts: IntArray,
-    moments: FloatArray,
-    spans: IntArray,
-) -> FloatArray:
-    """Sum of squares of all sums of `span` neighbouring scores in each cell, shape (W, S).
-
-    `xs` and `ys` are rows of `smoothed_rows` with 16 spare columns, `shifts` are neighbours.
-    """
-    blocks = -(-int(sizes[0]) // _STEP)
-    shape = (_STEP, blocks, shifts.size)
-    before, after = max(0, -int(shifts[0])), max(0, int(shifts[-1]))
-
-    # Month u stands at [u % 16, u // 16]; `later` is the response at month u + shift, a view.
-    x = xs[:, : blocks * _STEP].reshape(sizes.size, blocks, _STEP).transpose(0, 2, 1)
-    powers = np.ones((sizes.size, 3, blocks * _STEP))
-    powers[:, 1] = x.reshape(sizes.size, -1)
-    powers[:, 2] = powers[:, 1] ** 2
-    padded = np.pad(ys, ((0, 0), (before, after)))[:, max(0, int(shifts[0])) :]
-    row_step, step = padded.strides
-    later = np.lib.stride_tricks.as_strided(
-        padded, (sizes.size, *shape), (row_step, step, _STEP * step, step), writeable=False
-    )
-
-    # Scores (x - mean)(y - mean - slope (x - mean)) are (x - mean) y - (a + b x + slope x^2).
-    x_mean, y_mean, sxx, _, sxy = moments
-    slope = sxy / sxx
-    factors = np.stack([-x_mean, np.ones_like(slope)], axis=1)
-    a, b = x_mean * (slope * x_mean - y_mean), y_mean - 2.0 * slope * x_mean
-    polynomial = np.stack([a, b, slope], axis=1)
-
-    # A shift below 0 has no scores in its first months, one above 0 none in its last.
-    zero, head = int(np.searchsorted(shifts, 0)), -(-before // _STEP)
-    month = np.arange(blocks * _STEP).reshape(blocks, _STEP).T[:, :, None]
-    begun = (month[:, :head] >= -shifts[:zero]).astype(np.float64)
-    triangle = np.tri(blocks - 1)
-    ones = np.ones(_STEP)
-    spread = np.empty((sizes.size, shifts.size))
-
-    def fill(rows: range) -> None:
-        sums = np.empty(shape)
-        table, steps = sums.reshape(-1, shifts.size), sums.reshape(_STEP, -1)
-        for row in rows:
-            months, (whole, rest) = int(sizes[row]), divmod(int(spans[row]), _STEP)
-            np.matmul(powers[row, :2].T, factors[row], out=table)
-            sums *= later[row]
-            # In place, table -= powers.T @ polynomial; transposed, as BLAS counts columns first.
-            dgemm(-1.0, polynomial[row].T, powers[row], beta=1.0, c=table.T, overwrite_c=1)
-            tail = max(0, months - after) // _STEP
-            sums[:, :head, :zero] *= begun
-            sums[:, tail:, zero:] *= month[:, tail:] < months - shifts[zero:]
-            sums[:, months // _STEP :, :zero] *= month[:, months // _STEP :] < months
-
-            # Running sums: what came before a block goes into its first month.
-            totals = (ones @ steps).reshape(blocks, -1)
-            sums[0, 1:] += triangle @ totals[:-1]
-            for k in range(1, _STEP):
-                sums[k] += sums[k - 1]
-
-            # The sum `span` months on stands `whole` blocks and `rest` steps on.
-            near, far = max(0, blocks - whole), max(0, blocks - whole - 1)
-            found = np.einsum("us,us->s", table, table)
-            found -= np.einsum("kbs,kbs->s", sums[: _STEP - rest, :near], sums[rest:, whole:])
-            found -= np.einsum("kbs,kbs->s", sums[_STEP - rest :, :far], sums[:rest, whole + 1 :])
-            spread[row] = np.maximum(0.0, 2.0 * found)
-
-    with ThreadPoolExecutor(_THREADS) as pool:
-        list(pool.map(fill, [range(first, sizes.size, _THREADS) for first in range(_THREADS)]))
-    return spread

@@ -12,7 +12,7 @@ from analytics.series import FloatArray
 IntArray = NDArray[np.int64]
 
 
-def smoothed_rows(values: FloatArray, windows: IntArray, spare: int = 0) -> FloatArray:
+def smoothed_rows(values: FloatArray, windows: IntArray) -> FloatArray:
     """Trailing means of a series, one row a window.
 
     Parameters
@@ -21,16 +21,14 @@ def smoothed_rows(values: FloatArray, windows: IntArray, spare: int = 0) -> Floa
         One a period.
     windows : ndarray of int, shape (W,)
         Increasing, from 1 to T.
-    spare : int, default 0
-        Columns of zeros to add at the end.
 
     Returns
     -------
-    ndarray of float, shape (W, T + spare)
+    ndarray of float, shape (W, T)
         Row i starts with the T - w + 1 means of window w and goes on with zeros. Each sum is
         that of the window before plus one value, so that a constant series stays constant.
     """
-    rows = np.zeros((windows.size, values.size + spare))
+    rows = np.zeros((windows.size, values.size))
     sums, length = values, 1
     for row, window in zip(rows, windows.tolist(), strict=True):
         while length < window:

@@ -6,6 +6,7 @@ import socket
 import sys
 import threading
 import webbrowser
+from importlib import import_module
 from pathlib import Path
 from typing import Any, NoReturn
 
@@ -20,6 +21,9 @@ from app.reading.fields import READING_FIELDS, READING_VIEWS
 from app.state import ViewState
 
 DEFAULT_PORT = 8391
+COMPILE_AFTER = (
+    10.0  # seconds; by then the first page is shown, and nobody has asked for HAC errors
+)
 VIEW_NAMES = (
     "surface",
     "scatter",
@@ -98,6 +102,9 @@ def serve(files: tuple[Path, ...], port: int, no_browser: bool, kept_in: str | N
     click.echo(f"Pricewake is at {address}  (Ctrl-C ends it)")
     if not no_browser:
         threading.Thread(target=webbrowser.open, args=(address,), daemon=True).start()
+    later = threading.Timer(COMPILE_AFTER, import_module, ("analytics.hac_loop",))
+    later.daemon = True
+    later.start()
     signal.signal(signal.SIGTERM, signal.default_int_handler)
     try:
         server.run()
