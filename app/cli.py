@@ -214,7 +214,7 @@ def lag(
     "rules",
     multiple=True,
     metavar="RULE",
-    help="Rule such as 'rate_12m above 5', in place of the usual ones; may be given again.",
+    help="Rule such as 'rate_12m above 5', in place of those kept; may be given again.",
 )
 @cli_parts.as_json
 @cli_parts.csv_path
@@ -239,10 +239,12 @@ def reading(
     """Read the newest value of a series: rates, rank, distribution, base effects, alerts."""
     from app.commands.reading import as_of_fields, report, rules_of
     from app.compute import Bridge
+    from app.reading.alerts import read_rules
     from app.reading.exports import view_text
 
-    asked = rules_of(rules)
+    read_rules(rules)
     desk = workspace_of(files, kept_in)
+    asked = rules_of(rules, desk.store)
     state = state_of(ViewState(), {**flags, **as_of_fields(newest)})
     known, answer, lines = report(state, Bridge(desk), asked)
     if csv_path:

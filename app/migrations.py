@@ -94,10 +94,19 @@ MIGRATIONS: tuple[str, ...] = (
         WHEN EXISTS (SELECT 1 FROM statements WHERE id = NEW.id)
         BEGIN SELECT RAISE(ABORT, 'a statement is never replaced'); END;
     """,
+    """
+    -- What the user has said of alert rules: `kept` is 1 for a rule of the user's own, 0 for one
+    -- taken away. The usual rules count where nothing is said of them.
+    CREATE TABLE rules (
+        rule TEXT NOT NULL PRIMARY KEY,
+        kept INTEGER NOT NULL CHECK (kept IN (0, 1)),
+        at TEXT NOT NULL
+    );
+    """,
 )
 
 VERSION = len(MIGRATIONS)
-TABLES = ("loads", "vintages", "members", "problems", "corrections", "marks", "statements")
+TABLES = ("loads", "vintages", "members", "problems", "corrections", "marks", "statements", "rules")
 
 
 def migrate(connection: sqlite3.Connection) -> None:

@@ -9,6 +9,7 @@ from flask import Flask, Response, abort, request
 from flask_caching import Cache
 from werkzeug.exceptions import HTTPException
 
+from app import kept_routes
 from app.compute import Bridge
 from app.desk import routes as desk_routes
 from app.intake.csv_files import MAX_BYTES
@@ -159,6 +160,7 @@ def _register_routes(server: Flask, bridge: Bridge) -> None:
         return {"done": progress.done, "total": progress.total}, 200
 
     desk_routes.register(server, bridge)
+    kept_routes.register(server, bridge)
 
     @server.errorhandler(Exception)
     def _failed(error: Exception) -> tuple[dict[str, str], int] | HTTPException:

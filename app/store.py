@@ -4,6 +4,7 @@ SQLite with a write-ahead log: a change that has returned is on the disk, and a 
 killed leaves the file sound.
 """
 
+import datetime
 import os
 import sqlite3
 import sys
@@ -246,6 +247,11 @@ def _refuse_other_content(path: Path) -> None:
             f"a workspace must be a file that Pricewake made, but {str(path)!r} is of another kind;"
             " nothing was changed in it"
         )
+
+
+def now() -> str:
+    """Return the present moment in UTC, as rows carry it."""
+    return datetime.datetime.now(datetime.UTC).isoformat(timespec="microseconds")
 
 
 def row_values(row: sqlite3.Row) -> dict[str, Any]:

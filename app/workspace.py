@@ -12,7 +12,7 @@ from app.intake.problems import MAX_NAME, Problem, plain_text, quoted
 from app.intake.reading import Release
 from app.marks import Mark, checked, read_marks, write_mark
 from app.state import ViewState, field_kind
-from app.store import MEMORY, Store
+from app.store import MEMORY, Store, now
 from app.workspace_rows import add_member, read_series
 from app.workspace_view import LoadedFile, UnknownSeriesError, Vintage, WorkspaceView
 
@@ -75,7 +75,7 @@ class Workspace:
         with self.store.change() as db:
             load = db.execute(
                 "INSERT INTO loads (at, day, file) VALUES (?, ?, ?)",
-                (_now(), day or today(), release.name),
+                (now(), day or today(), release.name),
             ).lastrowid
             for place, series in enumerate(release.series):
                 add_member(db, load, place, series)
@@ -108,7 +108,7 @@ class Workspace:
             db.execute(
                 "INSERT INTO corrections VALUES (?, ?, ?, ?) ON CONFLICT (series, field)"
                 " DO UPDATE SET value = excluded.value, at = excluded.at",
-                (name, field, plain_text(value, MAX_NAME), _now()),
+                (name, field, plain_text(value, MAX_NAME), now()),
             )
 
     def mark(self, name: str, period: str, treatment: str, note: str = "") -> None:
@@ -127,7 +127,7 @@ class Workspace:
         mark = checked(Mark(name, period, treatment, note), in_view.as_read, before)
         if not in_view.placeholder:
             with self.store.change() as db:
-                write_mark(db, mark, _now())
+                write_mark(db, mark, now())
             return
         others = [m for m in in_view.marks if (m.series, m.period) != (name, mark.period)]
         self._try([*others, mark])
@@ -339,7 +339,3 @@ def _corrections(db: sqlite3.Connection) -> dict[str, dict[str, str]]:
 def _file(load: sqlite3.Row, series: tuple[Series, ...], problems: int) -> LoadedFile:
     names = tuple(one.name for one in series)
     return LoadedFile(load["file"], load["day"], load["at"], names, problems, load["hidden"] or "")
-
-
-def _now() -> str:
-    return datetime.datetime.now(datetime.UTC).isoformat(timespec="microseconds")

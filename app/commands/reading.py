@@ -5,12 +5,14 @@ from typing import Any
 
 from analytics.series import period_label
 from app.compute import Bridge
-from app.reading.alerts import DEFAULT_RULES, Rule, read_rules
+from app.kept_rules import rules_in_force
+from app.reading.alerts import Rule, read_rules
 from app.reading.answer import reading_answer
 from app.reading.bridge import completed_reading
 from app.reading.result import Reading
 from app.reading.words import CAUTION, fit_words, quantities, sentence, set_off, tail_words, verdict
 from app.state import ViewState
+from app.store import Store
 from app.words import plain
 
 RATE_WORDS = {
@@ -30,9 +32,9 @@ def as_of_fields(text: str | None) -> dict[str, str]:
     return {"as_of" if day else "newest": text}
 
 
-def rules_of(lines: tuple[str, ...]) -> tuple[Rule, ...]:
-    """Read the rules given, or take the usual ones."""
-    return read_rules(lines or DEFAULT_RULES)
+def rules_of(lines: tuple[str, ...], store: Store) -> tuple[Rule, ...]:
+    """Read the rules given, or take those of the workspace."""
+    return read_rules(lines) or rules_in_force(store)[0]
 
 
 def report(

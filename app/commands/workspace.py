@@ -49,6 +49,26 @@ def take_in(folder: Path, kept_in: str | None) -> None:
     click.echo(f"{_counted(count)} read from {folder}.")
 
 
+@workspace.command("alerts")
+@click.option("--add", metavar="RULE", help="Keep this rule, such as 'rate_12m above 5'.")
+@click.option("--remove", metavar="RULE", help="Take this rule away, as it is listed.")
+@_path
+def alerts(add: str | None, remove: str | None, kept_in: str | None) -> None:
+    """List the alert rules that a workspace keeps, and change them."""
+    from app.kept_rules import drop_rule, keep_rule, rule_lines
+
+    store = _store(kept_in, there=add is None)
+    try:
+        if add is not None:
+            keep_rule(store, add)
+        if remove is not None:
+            drop_rule(store, remove)
+        for line in rule_lines(store):
+            click.echo(line)
+    finally:
+        store.close()
+
+
 def _store(kept_in: str | None, *, there: bool = False) -> Any:
     from app.store import Store, WorkspaceError, default_path
 

@@ -11,10 +11,11 @@ from app import controls
 from app.compute import Bridge
 from app.figures import reading as figures
 from app.figures import reading_shape as shapes
+from app.kept_rules import rules_in_force
 from app.pages import plain
+from app.pages.rules import rule_list, rules_fold
 from app.places import software_version
 from app.reading import page_words as reading_page_words
-from app.reading.alerts import DEFAULT_RULES, read_rules
 from app.reading.bridge import CORE, chosen_series, reading, reading_key
 from app.reading.result import Reading
 from app.reading.words import CAUTION, sentence, set_off, verdict
@@ -23,6 +24,7 @@ from app.state import ViewState
 PATH, TITLE, NAME = "/reading", "Reading", "reading"
 PLACES = (
     "alerts",
+    "rules",
     "summary",
     "rates-words",
     "base-words",
@@ -54,6 +56,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
             html.Div(id="reading-alerts", className="alerts"),
             html.Div(id="reading-summary", className="summary"),
             html.Div(_views(state), className="board"),
+            rules_fold(),
         ],
         CAUTION,
         refused,
@@ -120,7 +123,8 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
         No such series, or it has no value up to the print.
     """
     known = reading(state, bridge)
-    found = set_off(known, read_rules(DEFAULT_RULES))
+    rules, refused = rules_in_force(bridge.workspace.store)
+    found = set_off(known, rules)
     waiting = known.fits and known.goodness is None and "test" not in known.refused
     said = sentence(known)
     return plain.Answer(
@@ -133,6 +137,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
         subtitles=reading_page_words.subtitles(known),
         words={
             "alerts": reading_page_words.alert_list(known, found),
+            "rules": rule_list(rules, [alert.rule for alert in found], refused),
             "summary": reading_page_words.rate_table(known),
             **reading_page_words.view_words(known),
         },

@@ -2,7 +2,8 @@
 
 A rule reads ``QUANTITY above|below LIMIT``, for example ``rate_12m above 5`` or
 ``rate_3m_annualised above rate_12m + 2``. The limit is a number, another quantity, or a quantity
-plus or minus a number.
+plus or minus a number. Or it reads ``rate_12m outside outlook_80``: outside the interval that a
+saved statement gave for the print.
 """
 
 import math
@@ -22,17 +23,21 @@ QUANTITIES = {  # name in a rule and in the JSON answer -> words, unit
     "change_12m": ("the change in the 12-month rate", "points"),
     "change_36m": ("the cumulative change over 36 months", "percent"),
 }
+OUTLOOK = {f"outlook_{level}": f"{level} %" for level in (50, 80, 95)}  # name -> its level
+STATED = ("rate_1m", "rate_12m")  # what a statement gives intervals of
 DEFAULT_RULES = (
     "rate_12m above 5",
     "rank_percent above 95",
     "rate_3m_annualised above rate_12m + 2",
     "change_36m above 80",
+    "rate_12m outside outlook_80",
 )
 _NUMBER = r"[+-]?(?:[0-9]{1,9}(?:\.[0-9]{1,9})?|\.[0-9]{1,9})"
 _RULE = re.compile(
     rf"(?P<quantity>\w+)\s+(?P<side>above|below)\s+"
     rf"(?:(?P<number>{_NUMBER})|(?P<other>[a-z]\w*)(?:\s*(?P<sign>[+-])\s*(?P<margin>{_NUMBER}))?)"
 )
+_OUTSIDE = re.compile(r"(\w+)\s+outside\s+(\w+)")
 
 
 class AlertError(ValueError):
@@ -51,6 +56,8 @@ class Rule:
     @property
     def text(self) -> str:
         """The rule as it is written."""
+        if self.side == "outside":
+            return f"{self.quantity} outside {self.other}"
         if not self.other:
             return f"{self.quantity} {self.side} {self.limit:g}"
         margin = f" {'+' if self.limit > 0 else '-'} {abs(self.limit):g}" if self.limit else ""
@@ -85,7 +92,16 @@ def read_rule(text: str) -> Rule:
     AlertError
         It has another shape, or names a quantity that there is not.
     """
-    found = _RULE.fullmatch(" ".join(text.split()))
+    line = " ".join(text.split())
+    if outside := _OUTSIDE.fullmatch(line):
+        quantity, interval = outside.groups()
+        if quantity not in STATED or interval not in OUTLOOK:
+            raise AlertError(
+                f"an alert must be of {' or '.join(STATED)} outside {', '.join(OUTLOOK)}, but got"
+                f" {line[:60]!r}"
+            )
+        return Rule(quantity, "outside", 0.0, interval)
+    found = _RULE.fullmatch(line)
     if not found:
         raise AlertError(
             "an alert must read like 'rate_12m above 5' or 'rate_3m_annualised above rate_12m + 2',"
@@ -113,12 +129,35 @@ def alerts(rules: Iterable[Rule], quantities: Mapping[str, float]) -> tuple[Aler
     found = []
     for rule in rules:
         value = quantities.get(rule.quantity, math.nan)
+        if rule.side == "outside":
+            found += _outside(rule, value, quantities)
+            continue
         base = quantities.get(rule.other, math.nan) if rule.other else 0.0
         limit = base + rule.limit
         off = value > limit if rule.side == "above" else value < limit
         if off:  # never where one of them is nan
             found.append(Alert(rule.text, value, limit, _sentence(rule, value, limit)))
     return tuple(found)
+
+
+def bound_name(quantity: str, interval: str, side: str) -> str:
+    """Return the name under which `alerts` looks for an end of a stated interval."""
+    return f"{quantity}_{interval}_{side}"
+
+
+def _outside(rule: Rule, value: float, quantities: Mapping[str, float]) -> list[Alert]:
+    low, high = (
+        quantities.get(bound_name(rule.quantity, rule.other, side), math.nan)
+        for side in ("low", "high")
+    )
+    if not (value < low or value > high):  # nor where one of them is nan
+        return []
+    words = QUANTITIES[rule.quantity][0]
+    said = (
+        f"{words[0].upper()}{words[1:]} is {plain(value, 2)} percent, outside {plain(low, 2)} to"
+        f" {plain(high, 2)} percent, the {OUTLOOK[rule.other]} interval stated for it."
+    )
+    return [Alert(rule.text, value, low if value < low else high, said)]
 
 
 def _sentence(rule: Rule, value: float, limit: float) -> str:

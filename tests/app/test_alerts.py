@@ -68,6 +68,24 @@ def test_an_alert_says_what_was_found_and_what_it_was_held_against():
     )
 
 
+STATED = {"rate_12m_outlook_80_low": 1.5, "rate_12m_outlook_80_high": 5.5, "rate_1m": 0.2}
+
+
+def test_a_print_outside_a_stated_interval_raises_an_alert():
+    rule = read_rule("rate_12m  outside outlook_80")
+    assert rule.text == "rate_12m outside outlook_80"
+    (found,) = alerts([rule], {**STATED, "rate_12m": 6.0})
+    assert (found.value, found.limit) == (6.0, 5.5)
+    assert found.sentence == (
+        "The 12-month rate is 6.00 percent, outside 1.50 to 5.50 percent, the 80 % interval"
+        " stated for it."
+    )
+    assert alerts([rule], {**STATED, "rate_12m": 1.0})[0].limit == 1.5
+    assert not alerts([rule], {**STATED, "rate_12m": 5.5})
+    assert not alerts([rule], {"rate_12m": 6.0})  # nothing was stated
+    assert not alerts([read_rule("rate_1m outside outlook_95")], {**STATED, "rate_12m": 6.0})
+
+
 def test_a_list_of_rules_has_comments_and_empty_lines():
     found = read_rules(["# the desk's own", "", " rate_12m above 3 "])
     assert [rule.text for rule in found] == ["rate_12m above 3"]
@@ -82,6 +100,8 @@ def test_a_list_of_rules_has_comments_and_empty_lines():
         ("rate_12m above rate_3m_annualised * 2", "must read like"),
         ("rate_99m above 5", "must be of one of"),
         ("rate_12m above rate_99m", "must be of one of"),
+        ("rate_3m_annualised outside outlook_80", "rate_1m or rate_12m outside"),
+        ("rate_12m outside outlook_90", "rate_1m or rate_12m outside"),
         ("x" * 500, "must read like"),
     ],
 )

@@ -45,6 +45,7 @@ def filled(path=":memory:"):
     here.correct("价格", "unit", "千")
     here.hide("c.csv")
     with here.store.change() as db:
+        db.execute("INSERT INTO rules VALUES ('rate_12m above 3', 1, 'now')")
         db.execute("INSERT INTO marks VALUES (7, '价格', '1960-Q3', 'splice', 'why', 'now')")
         db.execute(
             "INSERT INTO statements VALUES (3, 'at', '2024-03-12', 's', 'w=1', '{\"a\": 1}')"
