@@ -57,6 +57,7 @@ class Workspace:
     ) -> None:
         self.store = Store(path)
         self._placeholder = WorkspaceView(tuple(placeholder), placeholder=bool(placeholder))
+        self._trial = Store()
         self._lock = threading.Lock()
         self._seen: tuple[int, int] | None = None
         self._views: dict[str, WorkspaceView] = {}
@@ -171,6 +172,11 @@ class Workspace:
             )
             if not done.rowcount:
                 raise ValueError(f"no file {'in' if day else 'out of'} view is named {file!r}")
+
+    @property
+    def statement_store(self) -> Store:
+        """Where statements are kept; about the invented economy, only until the program ends."""
+        return self._trial if self.as_of().placeholder else self.store
 
     def close(self) -> None:
         """Close the file."""

@@ -6,6 +6,7 @@ from typing import Any
 from analytics.series import period_label
 from app.compute import Bridge
 from app.kept_rules import rules_in_force
+from app.outlook.statements import kept_statements, stated_bounds
 from app.reading.alerts import Rule, read_rules
 from app.reading.answer import reading_answer
 from app.reading.bridge import completed_reading
@@ -42,7 +43,8 @@ def report(
 ) -> tuple[Reading, dict[str, Any], list[str]]:
     """Return what is known about the print, the JSON answer and the lines to print."""
     known = completed_reading(state, bridge)
-    found = set_off(known, rules)
+    kept = kept_statements(bridge.workspace.statement_store)
+    found = set_off(known, rules, stated_bounds(kept, known.series.name, known.series.last))
     values = quantities(known)
     said = [sentence(known), *verdict(known)]
     rates = [

@@ -12,6 +12,7 @@ from app.compute import Bridge
 from app.figures import reading as figures
 from app.figures import reading_shape as shapes
 from app.kept_rules import rules_in_force
+from app.outlook.statements import kept_statements, stated_bounds
 from app.pages import plain
 from app.pages.rules import rule_list, rules_fold
 from app.places import software_version
@@ -124,7 +125,8 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
     """
     known = reading(state, bridge)
     rules, refused = rules_in_force(bridge.workspace.store)
-    found = set_off(known, rules)
+    kept = kept_statements(bridge.workspace.statement_store)
+    found = set_off(known, rules, stated_bounds(kept, known.series.name, known.series.last))
     waiting = known.fits and known.goodness is None and "test" not in known.refused
     said = sentence(known)
     return plain.Answer(

@@ -1,6 +1,7 @@
 """A print in words: headline, verdict, and the quantities that alert rules are held against."""
 
 import math
+from collections.abc import Mapping
 
 from analytics.families import FAMILIES
 from analytics.goodness import laplace_bracket
@@ -35,9 +36,11 @@ def quantities(known: Reading) -> dict[str, float]:
     }
 
 
-def set_off(known: Reading, rules: tuple[Rule, ...]) -> tuple[Alert, ...]:
-    """Return the alerts that the print sets off."""
-    return alerts(rules, quantities(known))
+def set_off(
+    known: Reading, rules: tuple[Rule, ...], stated: Mapping[str, float] | None = None
+) -> tuple[Alert, ...]:
+    """Return the alerts that the print sets off; `stated` are ends of intervals stated for it."""
+    return alerts(rules, {**quantities(known), **(stated or {})})
 
 
 def sentence(known: Reading) -> str:
