@@ -135,7 +135,8 @@ def keep_statement(store: Store, said: Statement, day: str) -> int:
     words = "\n".join(plain_text(line, LONGEST + 1) for line in said.words.splitlines()).strip()
     if not words or len(words) > LONGEST:
         raise StatementError(
-            f"a statement must have words, at most {LONGEST} signs of them, but got {len(said.words)}"
+            f"a statement must have words, at most {LONGEST} signs of them, but got"
+            f" {len(said.words)}"
         )
     content = _content(said) | {"words": words}
     with store.change() as db:
