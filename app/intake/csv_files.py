@@ -13,7 +13,8 @@ from app.intake.problems import Problem, refusal
 MAX_BYTES = 64 * 1024 * 1024
 MAX_CELLS = 8_000_000
 MAX_COLUMNS = 20_000
-MAX_ROWS = 2_000_000
+MAX_ROWS = 2_100_000
+MAX_ODD_ROWS = 800_000  # of a text that is not a plain long table
 
 FORMATS = "CSV, XLSX, SDMX or a zip of them"
 SEPARATORS = {",": "comma", ";": "semicolon", "\t": "tab"}
@@ -94,6 +95,37 @@ def split_rows(file: str, text: str, separator: str | None = None) -> Sheet:
     IntakeError
         The text is empty, holds control codes or too much, or its quotes do not close.
     """
+    start = opened(file, text, separator)
+    if _line_ends(text) > MAX_ODD_ROWS:
+        raise refusal(
+            file,
+            f"a file of more than {MAX_ODD_ROWS:,} lines must be a row a value under the header"
+            " period, series and value, without quotes or blank rows, but this one is not",
+        )
+    below = text[start.place :] if start.place else text
+    rows, lines = _rows(file, below, start.separator, start.line - 1)
+    if not rows:
+        raise refusal(file, "must hold a header and rows below it, but the file is empty")
+    return Sheet(file, rows, lines, start.separator, '"' in text)
+
+
+@dataclass(frozen=True)
+class Opening:
+    """Where the table of a text starts: its place, its line from 1, and the separator of cells."""
+
+    place: int
+    line: int
+    separator: str
+
+
+def opened(file: str, text: str, separator: str | None = None) -> Opening:
+    """Find where the table starts, at the separator given or else at the likeliest.
+
+    Raises
+    ------
+    IntakeError
+        The text holds control codes or too much.
+    """
     found = _CONTROL.search(text)
     if found:
         row = _line_ends(text[: found.start()]) + 1
@@ -106,10 +138,7 @@ def split_rows(file: str, text: str, separator: str | None = None) -> Sheet:
         separator = _separator(text[start : start + 1_000_000])
     if text.count(separator, start) > MAX_CELLS:
         raise refusal(file, f"a file must not have more than {MAX_CELLS:,} cells, but this one has")
-    rows, lines = _rows(file, text[start:] if start else text, separator, skipped)
-    if not rows:
-        raise refusal(file, "must hold a header and rows below it, but the file is empty")
-    return Sheet(file, rows, lines, separator, '"' in text)
+    return Opening(start, skipped + 1, separator)
 
 
 def _decoded(file: str, content: bytes) -> tuple[str, list[Problem]]:
@@ -181,7 +210,8 @@ def _rows(file: str, text: str, separator: str, skipped: int) -> tuple[list[list
     rows: list[list[str]] = []
     lines: list[int] = []
     cells, begin = 0, skipped + 1
-    reader = csv.reader(io.StringIO(text, newline=""), delimiter=separator, strict=True)
+    stream = io.TextIOWrapper(io.BytesIO(text.encode()), "utf-8", newline="")  # 1 byte a letter
+    reader = csv.reader(stream, delimiter=separator, strict=True)
     try:
         for row in reader:
             if any(row) and any(map(str.strip, row)):

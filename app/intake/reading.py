@@ -14,11 +14,12 @@ from analytics.series import Adjustment, Kind, Series, period_code
 from app.intake import csv_files
 from app.intake.archives import archive_names, is_archive, read_archive
 from app.intake.csv_files import FORMATS, read_text, split_rows
+from app.intake.long_csv import plain_long_blocks
 from app.intake.problems import IntakeError, Problem, display_name, quoted, refusal
 from app.intake.sdmx_csv import is_sdmx_csv, read_sdmx_csv
 from app.intake.sdmx_json import read_sdmx_json
 from app.intake.sdmx_xml import read_sdmx_xml
-from app.intake.sheets import Metadata, read_sheet
+from app.intake.sheets import Metadata, read_columns, read_sheet
 from app.intake.weights import canonical, recognised
 from app.intake.xlsx_files import is_workbook, read_workbook
 
@@ -124,7 +125,12 @@ def _read_file(
     elif is_sdmx_csv(text):
         series, problems = read_sdmx_csv(file, text, metadata)
     else:
-        series, problems = read_sheet(split_rows(file, canonical(text)), metadata)
+        text = canonical(text)
+        plain = plain_long_blocks(file, text)
+        if plain is not None:
+            series, problems = read_columns(file, *plain, quotes=False, metadata=metadata)
+        else:
+            series, problems = read_sheet(split_rows(file, text), metadata)
     return series, [*notes, *problems]
 
 

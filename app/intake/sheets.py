@@ -39,13 +39,21 @@ def read_sheet(
         There is no header, no row with a period, or no calendar of months, quarters or years.
     """
     blocks = blocks_of(sheet)
-    marks, problems = decimal_marks(
-        sheet.file,
-        [column for block in blocks for column in block.columns],
-        sheet.separator,
-        sheet.quotes,
-    )
-    series, found = read_blocks(sheet.file, blocks, marks, metadata)
+    return read_columns(sheet.file, blocks, sheet.separator, quotes=sheet.quotes, metadata=metadata)
+
+
+def read_columns(
+    file: str,
+    blocks: Sequence[Block],
+    separator: str,
+    *,
+    quotes: bool,
+    metadata: Metadata | None = None,
+) -> tuple[list[Series], list[Problem]]:
+    """Read the columns of blocks cut from a text with this separator; see `read_blocks`."""
+    columns = [column for block in blocks for column in block.columns]
+    marks, problems = decimal_marks(file, columns, separator, quotes)
+    series, found = read_blocks(file, blocks, marks, metadata)
     return series, [*problems, *found]
 
 
@@ -68,12 +76,15 @@ def read_blocks(
     series: list[Series] = []
     problems: list[Problem] = []
     given, laid = iter(marks), 0
+    rows, before = None, None
     for block in blocks:
         name = block.columns[0][0] if long else None
         marks_here = [next(given) for _ in block.columns]
         problems += block.problems
         try:
-            rows = row_calendar(file, block.periods, block.lines, name, block.calendar)
+            if rows is None or rows.problems or (block.periods, block.calendar) != before:
+                rows, before = None, (block.periods, block.calendar)
+                rows = row_calendar(file, block.periods, block.lines, name, block.calendar)
         except IntakeError as error:
             if not long:
                 raise

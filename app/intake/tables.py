@@ -52,19 +52,19 @@ def blocks_of(sheet: Sheet) -> list[Block]:
     place = long_header(sheet.rows)
     if place is None:
         return [_wide_block(sheet)]
-    return _long_blocks(sheet, place, _words(sheet.rows[place]))
+    return _long_blocks(sheet, place, words(sheet.rows[place]))
 
 
 def long_header(rows: Sequence[Sequence[str]]) -> int | None:
     """Return which of the first rows heads a long table, if one does."""
     for place, row in enumerate(rows[:_TOP]):
-        header = _words(row)
+        header = words(row)
         if set(header) in _LONG and len(set(header)) == len(header):
             return place
     return None
 
 
-def _words(row: Sequence[str]) -> list[str]:
+def words(row: Sequence[str]) -> list[str]:
     """Return the cells of a header, bare and in small letters, without blank ones at the end."""
     header = [cell.strip().lower() for cell in row]
     while header and not header[-1]:

@@ -312,7 +312,7 @@ HOSTILE = {
     "size that is not told": (promising(LONG, 3_000), "must unpack as packed, but it is damaged"),
     "row beyond": (
         edited(BASE, lambda part: part.replace(b'r="7"', b'r="99999999999"')),
-        "more than 2,000,000 rows",
+        "more than 2,100,000 rows",
     ),
     "column beyond": (
         edited(BASE, lambda part: part.replace(b'r="B7"', b'r="ZZZZZ7"')),
