@@ -1,0 +1,371 @@
+"""What would have been said at each past date, from the data of that date alone."""
+
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
+from typing import Literal, get_args
+
+import numpy as np
+from numpy.typing import ArrayLike
+from scipy.special import stdtrit
+
+from analytics.forecasts import MODELS, Choice, choice_at, forecasts_at
+from analytics.intervals import error_scale
+from analytics.outlook import outlook_arrays, path_reach
+from analytics.outlook_target import Target
+from analytics.relation import MIN_PAIRS
+from analytics.series import FloatArray, read_only
+from analytics.surface import IntArray, lag_grid, locked
+
+Scheme = Literal["expanding", "rolling"]
+Vintages = Callable[[int], tuple[ArrayLike, ArrayLike]]
+FIRST_YEARS, JUDGED_YEARS, HORIZON_YEARS = 10, 2, 3
+
+
+@dataclass(frozen=True, eq=False)
+class BacktestPlan:
+    """Result of `backtest_plan`: the data, the dates and the rules; a chunk is a year of dates.
+
+    Attributes
+    ----------
+    driver, response : ndarray of float, read-only
+        As given; the outcomes are taken from this response.
+    origins : ndarray of int, shape (O,)
+        Last period of the response known at each date, counted from 0. The newest is the last
+        period there is, whose outcomes are all still to come.
+    lead : int
+        Periods by which the driver is known beyond the response, at every date.
+    horizon : int
+        Longest horizon H.
+    target : Target
+        What is forecast.
+    cell : tuple of int
+        Window and shift that are kept where there is no grid.
+    windows, shifts : tuple of int or None
+        Grid of the yearly choice.
+    scheme : {"expanding", "rolling"}
+        All periods up to the date, or the newest `width`.
+    width : int
+        Periods of the rolling scheme.
+    periods_per_year : int
+        Dates in a chunk; cell and own lags are chosen at the first of them.
+    vintages : callable or None
+        From the last period known to driver and response as they stood then.
+    """
+
+    driver: FloatArray
+    response: FloatArray
+    origins: IntArray
+    lead: int
+    horizon: int
+    target: Target
+    cell: tuple[int, int]
+    windows: tuple[int, ...] | None
+    shifts: tuple[int, ...] | None
+    scheme: Scheme
+    width: int
+    periods_per_year: int
+    vintages: Vintages | None
+
+    @property
+    def chunks(self) -> int:
+        """Number of chunks that `backtest_result` wants."""
+        return -(-self.origins.size // self.periods_per_year)
+
+
+@dataclass(frozen=True, eq=False)
+class BacktestChunk:
+    """A year of dates: forecasts (M, o, H), and for each date (window, shift, own lags, order)."""
+
+    forecasts: FloatArray
+    choices: IntArray
+
+
+@dataclass(frozen=True, eq=False)
+class Backtest:
+    """Result of `backtest_result`; arrays are read-only.
+
+    M models, O dates, H horizons. Horizon h stands in column h - 1.
+
+    Attributes
+    ----------
+    models : tuple of str
+        Names of the models.
+    target : Target
+        What is forecast; forecasts and outcomes are in its unit.
+    origins : ndarray of int, shape (O,)
+        Last period of the response known at each date, counted from 0; one after another.
+    forecasts : ndarray of float, shape (M, O, H)
+        nan where a model had too few periods.
+    outcomes : ndarray of float, shape (O, H)
+        nan where still to come.
+    last_seen : ndarray of float, shape (O,)
+        The target at the date itself.
+    scale, freedom : ndarray of float, shape (M, O, H)
+        Root mean square and degrees of freedom of the errors known at the date; nan where there
+        were fewer than 12.
+    windows, shifts, own_lags, orders : ndarray of int, shape (O,)
+        What was chosen for each date: the cell, the own lags of the direct regressions, and the
+        order of the autoregression.
+    scheme : {"expanding", "rolling"}
+        Which periods were used at each date.
+    rechosen : bool
+        Whether the cell was chosen anew every year.
+    """
+
+    models: tuple[str, ...]
+    target: Target
+    origins: IntArray
+    forecasts: FloatArray
+    outcomes: FloatArray
+    last_seen: FloatArray
+    scale: FloatArray
+    freedom: FloatArray
+    windows: IntArray
+    shifts: IntArray
+    own_lags: IntArray
+    orders: IntArray
+    scheme: Scheme
+    rechosen: bool
+
+    def __repr__(self) -> str:
+        return (
+            f"Backtest({self.target.kind} rate, {self.origins.size} dates, {self.scheme},"
+            f" {self.outcomes.shape[1]} horizons, {len(self.models)} models)"
+        )
+
+    def row(self, model: str) -> int:
+        """Place of a model, to index the arrays with."""
+        if model not in self.models:
+            raise ValueError(f"model must be one of {', '.join(self.models)}, but got {model!r}")
+        return self.models.index(model)
+
+    def errors(self, model: str) -> FloatArray:
+        """Outcome less forecast, shape (O, H); nan where one of them is not known."""
+        missed: FloatArray = self.outcomes - self.forecasts[self.row(model)]
+        return missed
+
+    def band(self, model: str, level: float) -> tuple[FloatArray, FloatArray]:
+        """Interval of a level as it stood at each date, (low, high), shapes (O, H)."""
+        row = self.row(model)
+        half = self.scale[row] * stdtrit(self.freedom[row], 0.5 + level / 2.0)
+        return self.forecasts[row] - half, self.forecasts[row] + half
+
+
+def backtest_plan(
+    driver: ArrayLike,
+    response: ArrayLike,
+    *,
+    window: int,
+    shift: int,
+    target: Target,
+    windows: Iterable[int] | None = None,
+    shifts: Iterable[int] | None = None,
+    scheme: Scheme = "expanding",
+    width: int | None = None,
+    first: int | None = None,
+    horizon: int | None = None,
+    periods_per_year: int = 12,
+    vintages: Vintages | None = None,
+) -> BacktestPlan:
+    """Lay out a backtest: which dates, from which data, by which rules.
+
+    Parameters
+    ----------
+    driver, response : array_like of float, shapes (m,) and (n,)
+        Growth rates in percent from the same first period on, no gaps.
+    window, shift : int
+        The cell of the reader; kept at every date where there is no grid.
+    target : Target
+        What is forecast.
+    windows, shifts : iterable of int, optional
+        Grid from which the cell is chosen anew every year with the data of that date.
+    scheme : {"expanding", "rolling"}
+        Whether a date uses all periods before it or the newest `width`.
+    width : int, optional
+        By default `first`.
+    first : int, optional
+        Periods of the response known at the first date: by default ten years, half the sample
+        where that is less, and enough for the cell.
+    horizon : int, optional
+        Longest horizon, by default three years.
+    periods_per_year : int, default 12
+        12, 4 or 1.
+    vintages : callable, optional
+        Given the place of the response's last known period, returns driver and response as they
+        stood when it was the newest, both from the same first period as here. Outcomes are those
+        of `response` all the same.
+
+    Returns
+    -------
+    BacktestPlan
+
+    Raises
+    ------
+    ValueError
+        The cell implies no path, too little history is left, or a rule is not one of those named.
+    """
+    x, y = outlook_arrays(driver, response)
+    path_reach(shift, x.size - y.size)
+    if scheme not in get_args(Scheme):
+        raise ValueError(f"scheme must be expanding or rolling, but got {scheme!r}")
+    if (windows is None) != (shifts is None):
+        raise ValueError("windows and shifts must be given together, but only one was")
+    year = periods_per_year
+    grid = None
+    if windows is not None and shifts is not None:
+        grid = [tuple(axis.tolist()) for axis in lag_grid(windows, shifts, 10**9)]
+        if grid[1][-1] < 1:
+            raise ValueError(f"shifts must reach 1 or more, but end at {grid[1][-1]}")
+    needed = window + shift + MIN_PAIRS
+    start = max(needed, min(FIRST_YEARS * year, y.size // 2)) if first is None else first
+    if start < needed or y.size - start < JUDGED_YEARS * year:
+        raise ValueError(
+            f"a backtest must have at least {needed} periods before its first date and"
+            f" {JUDGED_YEARS * year} after it, but the response has {y.size}"
+            + (f" and the first date was put at {first}" if first is not None else "")
+        )
+    steps = HORIZON_YEARS * year if horizon is None else horizon
+    if steps < 1:
+        raise ValueError(f"horizon must be 1 or more, but got {steps}")
+    newest = start if width is None else width
+    if newest < needed:
+        raise ValueError(f"width must be {needed} periods or more for this cell, but got {newest}")
+    return BacktestPlan(
+        driver=read_only(x),
+        response=read_only(y),
+        origins=locked(np.arange(start - 1, y.size)),
+        lead=x.size - y.size,
+        horizon=steps,
+        target=target,
+        cell=(window, shift),
+        windows=grid[0] if grid else None,
+        shifts=grid[1] if grid else None,
+        scheme=scheme,
+        width=newest,
+        periods_per_year=year,
+        vintages=vintages,
+    )
+
+
+def backtest_chunk(plan: BacktestPlan, index: int) -> BacktestChunk:
+    """Forecast at the dates of one year; what was chosen at the first of them holds for all.
+
+    Raises
+    ------
+    ValueError
+        A vintage does not end where it should, or holds a value that is not finite.
+    """
+    year = plan.periods_per_year
+    dates = plan.origins[index * year : (index + 1) * year].tolist()
+    forecasts = np.empty((len(MODELS), len(dates), plan.horizon))
+    choices = np.empty((len(dates), 4), dtype=np.int64)
+    choice = Choice(*plan.cell, 0)
+    for place, origin in enumerate(dates):
+        driver, response = _known(plan, origin)
+        if place == 0:
+            choice = choice_at(
+                driver,
+                response,
+                windows=plan.windows,
+                shifts=plan.shifts,
+                cell=plan.cell,
+                max_lags=year,
+                periods_per_year=year,
+            )
+        forecasts[:, place], order = forecasts_at(
+            driver,
+            response,
+            choice,
+            horizon=plan.horizon,
+            target=plan.target,
+            max_lags=year,
+            periods_per_year=year,
+        )
+        choices[place] = choice.window, choice.shift, choice.own_lags, order
+    return BacktestChunk(read_only(forecasts), locked(choices))
+
+
+def _known(plan: BacktestPlan, origin: int) -> tuple[FloatArray, FloatArray]:
+    """Driver and response as a date knew them, cut to the newest where the scheme rolls."""
+    if plan.vintages is None:
+        driver, response = plan.driver[: origin + 1 + plan.lead], plan.response[: origin + 1]
+    else:
+        driver, response = outlook_arrays(*plan.vintages(origin))
+        if response.size != origin + 1:
+            raise ValueError(
+                f"a vintage must end with period {origin} of the response, but ends with"
+                f" {response.size - 1}"
+            )
+    start = 0 if plan.scheme == "expanding" else max(0, origin + 1 - plan.width)
+    return driver[start:], response[start:]
+
+
+def backtest_result(plan: BacktestPlan, chunks: list[BacktestChunk]) -> Backtest:
+    """Put the chunks together and add outcomes and the spread of errors known at each date."""
+    forecasts = np.concatenate([chunk.forecasts for chunk in chunks], axis=1)
+    choices = np.concatenate([chunk.choices for chunk in chunks])
+    observed = plan.target.observed(plan.response)
+    ends = plan.origins[:, None] + np.arange(1, plan.horizon + 1)
+    inside = ends < observed.size
+    outcomes = np.where(inside, observed[np.minimum(ends, observed.size - 1)], np.nan)
+    scale, freedom = known_spread(outcomes - forecasts)
+    return Backtest(
+        models=MODELS,
+        target=plan.target,
+        origins=plan.origins,
+        forecasts=read_only(forecasts),
+        outcomes=read_only(outcomes),
+        last_seen=read_only(observed[plan.origins]),
+        scale=read_only(scale),
+        freedom=read_only(freedom),
+        windows=locked(choices[:, 0].copy()),
+        shifts=locked(choices[:, 1].copy()),
+        own_lags=locked(choices[:, 2].copy()),
+        orders=locked(choices[:, 3].copy()),
+        scheme=plan.scheme,
+        rechosen=plan.windows is not None,
+    )
+
+
+def known_spread(errors: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Scale and degrees of freedom at each date from the errors whose outcome it knew.
+
+    Parameters
+    ----------
+    errors : ndarray of float, shape (M, O, H)
+        In the order of time; at horizon h a date knows the errors of h dates ago and before.
+
+    Returns
+    -------
+    scale, freedom : ndarray of float, shape (M, O, H)
+    """
+    found = np.full((2, *errors.shape), np.nan)
+    dates = np.arange(errors.shape[1])
+    for model, rows in enumerate(errors):
+        for place, column in enumerate(rows.T):
+            known = ~np.isnan(column)
+            scale, freedom, _ = error_scale(column[known], place + 1)
+            before = np.concatenate(([0], np.cumsum(known)))
+            seen = before[np.maximum(0, dates - place)]
+            found[0, model, :, place] = scale[seen]
+            found[1, model, :, place] = freedom[seen]
+    return found[0], found[1]
+
+
+def backtest(driver: ArrayLike, response: ArrayLike, **rules: object) -> Backtest:
+    """Do all chunks of a backtest, one after another; arguments as for `backtest_plan`.
+
+    Examples
+    --------
+    >>> from analytics.outlook_target import outlook_target
+    >>> driver = np.random.default_rng(1).standard_normal(40)
+    >>> response = np.roll(driver, 2)
+    >>> yearly = outlook_target("yearly", window=1, periods_per_year=1)
+    >>> done = backtest(driver, response, window=1, shift=2, target=yearly, periods_per_year=1)
+    >>> done
+    Backtest(yearly rate, 14 dates, expanding, 3 horizons, 6 models)
+    >>> float(np.abs(done.errors("relation")[:-2, :2]).max().round(9))
+    0.0
+    """
+    plan = backtest_plan(driver, response, **rules)  # type: ignore[arg-type]
+    return backtest_result(plan, [backtest_chunk(plan, i) for i in range(plan.chunks)])
