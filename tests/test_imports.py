@@ -52,6 +52,7 @@ RULES = {
     "app/": rule(
         "analytics app click dash flask flask_caching numpy pandas plotly waitress werkzeug"
     ),
+    "app/brief/": rule("analytics app dash kaleido markdown_it numpy tomli_w"),
     "app/state.py": rule("analytics app.state_kinds app.breadth.fields app.reading.fields"),
     "app/state_kinds.py": rule("analytics"),
     "app/breadth/fields.py": rule("app.state_kinds"),
@@ -64,7 +65,7 @@ RULES = {
     "app/pages/": rule("analytics app dash pandas plotly", types_only="analytics"),
 }
 # Inside functions only: two seconds of statsmodels; the compiled loop and its compiler.
-SLOW_AT_START = words("statsmodels numba analytics.hac_loop")
+SLOW_AT_START = words("statsmodels kaleido numba analytics.hac_loop")
 
 
 def below(name: str, roots: frozenset[str]) -> bool:
