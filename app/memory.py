@@ -4,9 +4,39 @@ import threading
 from collections.abc import Callable
 from typing import Any, TypeVar
 
+from flask import Flask
 from flask_caching import Cache
+from flask_caching.backends import SimpleCache
 
 T = TypeVar("T")
+MOST_KEPT = 300  # results
+
+
+class _AsItIs:
+    """Hands objects on without a copy: results are frozen, and their arrays cannot be written."""
+
+    def dumps(self, value: Any) -> Any:
+        """Return the value."""
+        return value
+
+    loads = dumps
+
+
+class SameObjects(SimpleCache):
+    """Cache in memory that returns the object kept; the oldest go first when there are many."""
+
+    serializer = _AsItIs()
+
+    def _prune(self) -> None:
+        while self._over_threshold():
+            del self._cache[next(iter(self._cache))]
+
+
+def server_cache(server: Flask) -> Cache:
+    """Return the cache of a server."""
+    kind = f"{SameObjects.__module__}.{SameObjects.__name__}"
+    config = {"CACHE_TYPE": kind, "CACHE_DEFAULT_TIMEOUT": 0, "CACHE_THRESHOLD": MOST_KEPT}
+    return Cache(server, config=config)
 
 
 class Memory:

@@ -6,13 +6,13 @@ from urllib.parse import urlsplit
 
 from dash import Dash, Input, Output, dcc, html
 from flask import Flask, Response, abort, request
-from flask_caching import Cache
 from werkzeug.exceptions import HTTPException
 
 from app import kept_routes
 from app.compute import Bridge
 from app.desk import routes as desk_routes
 from app.intake.csv_files import MAX_BYTES
+from app.memory import server_cache
 from app.page_table import EXPORTS, PAGES, WORKS
 from app.pages import lag
 from app.places import bundled, software_version
@@ -58,8 +58,7 @@ def build_app(workspace: Workspace) -> Dash:
         compress=False,
         index_string=INDEX,
     )
-    cache = {"CACHE_TYPE": "SimpleCache", "CACHE_DEFAULT_TIMEOUT": 0, "CACHE_THRESHOLD": 300}
-    bridge = Bridge(workspace, Cache(server, config=cache))
+    bridge = Bridge(workspace, server_cache(server))
     app.layout = _frame()
 
     @app.callback(
@@ -208,4 +207,7 @@ def _guard(server: Flask, app: Dash) -> None:
         response.headers["X-Content-Type-Options"] = "nosniff"
         response.headers["Referrer-Policy"] = "no-referrer"
         response.headers["X-Pricewake"] = software_version()
+        known = {"/", *(page.PATH for page in PAGES)}
+        if request.endpoint == "/<path:path>" and request.path not in known:
+            response.status_code = 404  # the frame, which says that there is no such page
         return response

@@ -2,16 +2,15 @@
 
 import threading
 
+import numpy as np
 import pytest
 from flask import Flask
-from flask_caching import Cache
 
-from app.memory import Memory
+from app.memory import Memory, server_cache
 
 
 def of_the_server():
-    server = Flask("test")
-    return Memory(Cache(server, config={"CACHE_TYPE": "SimpleCache", "CACHE_DEFAULT_TIMEOUT": 0}))
+    return Memory(server_cache(Flask("test")))
 
 
 @pytest.fixture(params=[Memory, of_the_server])
@@ -98,3 +97,23 @@ def test_a_failure_is_not_kept_and_locks_nothing(memory):
     assert memory.found("a") is None
     assert memory.once("a", lambda: 1) == 1
     assert memory._locks == {}
+
+
+def test_the_object_that_was_kept_comes_back_and_cannot_be_written(memory):
+    made = np.zeros(3)
+    made.flags.writeable = False
+    assert memory.once("a", lambda: made) is made
+    found = memory.found("a")
+    assert found is made
+    with pytest.raises(ValueError, match="read-only"):
+        found[0] = 1.0
+
+
+def test_the_oldest_give_way_when_there_are_many(monkeypatch):
+    monkeypatch.setattr("app.memory.MOST_KEPT", 3)
+    memory = of_the_server()
+    for number in range(10):
+        memory.once(str(number), lambda number=number: number)
+    kept = [number for number in range(10) if memory.found(str(number)) is not None]
+    assert kept[-3:] == [7, 8, 9]
+    assert len(kept) <= 4  # room is made before the next is kept

@@ -284,6 +284,13 @@ def test_an_unknown_page_says_so_and_leads_back(client, path):
     assert "'href': '/lag'" in str(answer.json)
 
 
+@pytest.mark.parametrize(("path", "status"), [("/", 200), ("/lag", 200), ("/nowhere", 404)])
+def test_an_address_without_a_page_says_so_in_its_status_too(client, path, status):
+    answer = client.get(path)
+    assert answer.status_code == status
+    assert b"_dash-config" in answer.data
+
+
 def test_the_lag_page_opens_on_the_address(client):
     answer = opened(client, "/lag", "?window=7&shift=-3&growth=percent&quantity=slope")
     data = stored(answer, "lag-data")
