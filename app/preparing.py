@@ -3,19 +3,24 @@
 from dataclasses import dataclass
 from typing import Any
 
-from analytics.seasonal import HERE, at_frequency, seasonal_adjustment
+from analytics.seasonal import HERE, SeasonalAdjustment, at_frequency
 from analytics.series import PERIOD_NOUN, PERIODS_PER_YEAR, Series
 from app.memory import Memory
+from app.seasons import may_be_adjusted, season_of
 from app.state import ViewState
 
 
 @dataclass(frozen=True, eq=False)
 class Prepared:
-    """Driver and response of one frequency, and a sentence on each thing done on the way."""
+    """Driver and response of one frequency, and a sentence on each thing done on the way.
+
+    `seasons` holds each series whose season was taken out, and that season.
+    """
 
     driver: Series
     response: Series
     said: tuple[str, ...] = ()
+    seasons: tuple[tuple[Series, SeasonalAdjustment], ...] = ()
 
 
 def prepared(driver: Series, response: Series, state: ViewState, memory: Memory) -> Prepared:
@@ -26,12 +31,12 @@ def prepared(driver: Series, response: Series, state: ViewState, memory: Memory)
     ValueError
         A series cannot be adjusted or has no whole period; one sentence.
     """
-    sides, said = [driver, response], []
+    sides, said, seasons = [driver, response], [], []
     if state.season == "stl":
         for place, series in enumerate(sides):
-            if series.adjustment == "no" and series.frequency != "annual":
-                key = f"stl:{series.fingerprint}:{series.name}:{series.source}:{series.unit}"
-                found = memory.once(key, lambda one=series: seasonal_adjustment(one))
+            if may_be_adjusted(series):
+                found = season_of(series, memory)
+                seasons.append((series, found))
                 sides[place] = found.adjusted
                 said.append(f"{series.name}: {HERE}")
             elif series.adjustment == "unknown":
@@ -50,4 +55,4 @@ def prepared(driver: Series, response: Series, state: ViewState, memory: Memory)
                     f"{series.name}: {series.frequency} values meet {low} ones by {how} of each"
                     f" {PERIOD_NOUN[low]}; nothing is interpolated"
                 )
-    return Prepared(sides[0], sides[1], tuple(said))
+    return Prepared(sides[0], sides[1], tuple(said), tuple(seasons))

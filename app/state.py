@@ -244,6 +244,16 @@ class ViewState:
             display=True,
         ),
     )
+    unadjusted: str = _state(
+        "",
+        Text(
+            label="Season of",
+            pattern=f"({NAME})?",
+            shape="the name of a loaded series, or empty",
+            help="Series said to be unadjusted whose season is shown; empty takes the first.",
+            display=True,
+        ),
+    )
 
     def __post_init__(self) -> None:
         for item in fields(self):

@@ -5,22 +5,24 @@ from typing import Any
 from analytics.series import period_code
 from app.compute import Bridge
 from app.desk import bridge as desk
+from app.desk import seasons
 from app.exports import csv_text
 from app.intake.reading import inspection
 from app.places import software_version
+from app.seasons import season_rows
 from app.state import ViewState
 from app.words import slug
 
 
 def csv_export(name: str, query: str, bridge: Bridge) -> tuple[str, str]:
-    """Return file name and text of one view of the Data page: series or revisions.
+    """Return file name and text of one view of the Data page: series, revisions or season.
 
     Raises
     ------
     ValueError
         No such view, a refused value, or a state that shows nothing; one sentence.
     """
-    views = {"series": _series, "revisions": _revisions}
+    views = {"series": _series, "revisions": _revisions, "season": _season}
     if name not in views:
         raise ValueError(f"view must be one of {', '.join(views)}, but got {name!r}")
     state = ViewState.from_query(query)
@@ -92,6 +94,19 @@ def _revisions(state: ViewState, bridge: Bridge) -> tuple[str, str]:
             ]
         )
     return f"revisions-{slug(found.name)}-{state.revised}{_dated(state)}.csv", csv_text(head, rows)
+
+
+def _season(state: ViewState, bridge: Bridge) -> tuple[str, str]:
+    found = seasons.chosen(state, bridge)
+    if found is None:
+        raise ValueError("no series in view is said to be unadjusted")
+    if found.result is None:
+        raise ValueError(f"there is no season of {found.series.name!r} to show: {found.refusal}")
+    head = _head("season taken out here", state)
+    head += [("series", f"{found.series.name}; fingerprint {found.series.fingerprint}")]
+    head += [("source", found.result.adjusted.source)]
+    rows = season_rows([(found.series, found.result)])
+    return f"season-{slug(found.series.name)}{_dated(state)}.csv", csv_text(head, rows)
 
 
 def _dated(state: ViewState) -> str:

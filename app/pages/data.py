@@ -11,8 +11,9 @@ from dash import Dash, Input, Output, dcc, html
 from app import controls
 from app.compute import Bridge
 from app.desk import bridge as desk
+from app.desk import seasons
 from app.figures.data import revisions_chart
-from app.pages import data_breaks, plain
+from app.pages import data_breaks, data_season, plain
 from app.pages import data_parts as parts
 from app.pages.as_of import day_words
 from app.places import software_version
@@ -21,7 +22,15 @@ from app.words import counted, signed
 from app.workspace import WorkspaceView, today
 
 PATH, TITLE = "/data", "Data"
-PLACES = ("problems", "breaks", "series", "files", "revisions-words", "prints")
+PLACES = (
+    "problems",
+    "breaks",
+    "series",
+    "files",
+    "season-words",
+    "revisions-words",
+    "prints",
+)
 CAUTION = (
     "A first print is the newest value of the vintage in which it first stands here; what was "
     "published between two files that were loaded is not known. Past revisions say little of the "
@@ -48,6 +57,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                 html.Div(html.P("Reading what is kept …", className="opening"), id="data-series"),
             ]
         ),
+        data_season.view(),
         plain.view(
             "data",
             "revisions",
@@ -75,6 +85,9 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
         subtitles["revisions"] = (
             f"{found.name}, {found.unit}. " + parts.revision_sentences(found)[0]
         )
+    season = seasons.chosen(state, bridge)
+    charts |= data_season.chart(season)
+    subtitles |= data_season.subtitle(season)
     problems = in_view.problems
     hidden = bridge.workspace.hidden_files()
     files = parts.files_table(in_view, hidden)
@@ -94,6 +107,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
             "breaks": data_breaks.section(in_view, state, bridge),
             "series": parts.series_table(in_view, shown) if shown else _nothing(in_view),
             "files": [html.H2("Files"), *files] if files else [],
+            "season-words": data_season.words(season),
             "prints": parts.prints_table(found),
             "revisions-words": parts.revisions_words(found, names, in_view.placeholder),
         },
