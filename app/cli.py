@@ -35,6 +35,7 @@ VIEW_NAMES = (
     "without",
     "opinions",
     "stability",
+    "season",
 )
 LAG_FIELDS = (
     "driver",

@@ -22,6 +22,7 @@ from app.lag.evidence import (
     without_episode,
 )
 from app.pages.lag import LagView
+from app.seasons import season_rows
 
 Rows = Iterable[Sequence[Any]]
 
@@ -253,6 +254,10 @@ def _stability_rows(shown: LagView, bridge: Bridge) -> Rows:
         )
 
 
+def _season_rows(shown: LagView, bridge: Bridge) -> Rows:
+    return season_rows(bridge.prepared(shown.state).seasons)
+
+
 VIEWS: dict[str, Callable[[LagView, Bridge], Rows]] = {
     "surface": _surface_rows,
     "scatter": _cell_rows,
@@ -263,5 +268,6 @@ VIEWS: dict[str, Callable[[LagView, Bridge], Rows]] = {
     "without": _without_rows,
     "opinions": _opinion_rows,
     "stability": _stability_rows,
+    "season": _season_rows,
 }
 SEARCHED = ("surface", "profile", "plane", "episodes", "without", "opinions", "stability")

@@ -20,7 +20,7 @@ from app.lag.evidence import (
     without_episode,
 )
 from app.lag.verdict import verdict
-from app.pages import lag_words
+from app.pages import lag_season, lag_words
 from app.state import StateError, ViewState
 
 FOLDS = {
@@ -29,6 +29,7 @@ FOLDS = {
     "episodes": "Which years carry it",
     "opinions": "Second opinions",
     "stability": "The slope through time",
+    "season": "The season taken out",
     "method": "How it was searched",
 }
 _NEEDS = {"opinions": ("directions", "opinions"), "stability": ("stability",)}
@@ -160,7 +161,10 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
         charts["opinions"] = figures.opinion_profiles(results["opinions"], pair)
     if results.get("stability") is not None:
         charts["stability"] = figures.stability_courses(results["stability"], pair, start)
+    used = bridge.prepared(state)
+    charts |= lag_season.chart(used)
     words = {
+        "season": lag_season.words(used, state.season),
         "profile": lag_words.profile_words(known, pair, state),
         "plane": lag_words.plane_words(known, pair),
         "episodes": lag_words.episode_words(known, pair, state, refused),

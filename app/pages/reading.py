@@ -14,6 +14,7 @@ from app.figures import reading_shape as shapes
 from app.kept_rules import rules_in_force
 from app.outlook.statements import kept_statements, stated_bounds
 from app.pages import plain
+from app.pages.as_of import as_of_line
 from app.pages.rules import rule_list, rules_fold
 from app.places import software_version
 from app.reading import page_words as reading_page_words
@@ -24,6 +25,7 @@ from app.state import ViewState
 
 PATH, TITLE, NAME = "/reading", "Reading", "reading"
 PLACES = (
+    "as-of",
     "alerts",
     "rules",
     "summary",
@@ -52,8 +54,10 @@ def layout(query: str, bridge: Bridge) -> html.Div:
             controls.text(state, "newest", placeholder="newest"),
             controls.select(state, "formula"),
             controls.select(state, "measure"),
+            controls.select(state, "season"),
         ],
         [
+            html.Div(id="reading-as-of"),
             html.Div(id="reading-alerts", className="alerts"),
             html.Div(id="reading-summary", className="summary"),
             html.Div(_views(state), className="board"),
@@ -138,6 +142,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
         charts=_kept_charts(known, bridge),
         subtitles=reading_page_words.subtitles(known),
         words={
+            "as-of": as_of_line(state),
             "alerts": reading_page_words.alert_list(known, found),
             "rules": rule_list(rules, [alert.rule for alert in found], refused),
             "summary": reading_page_words.rate_table(known),
@@ -186,5 +191,6 @@ def charts(known: Reading) -> dict[str, Figure]:
 
 
 def _source(known: Reading) -> str:
-    source = known.loaded.source or known.loaded.name
+    used = known.short or known.loaded
+    source = used.source or used.name
     return f"Source: {source}. Pricewake {software_version()}."

@@ -29,6 +29,7 @@ def reading_answer(known: Reading, found: tuple[Alert, ...]) -> dict[str, Any]:
         "frequency": known.series.frequency,
         "period": period_code(known.series.last),
         "formula": state.formula,
+        "adjusted_here": known.short.source if known.short is not None else None,
         **{name: values[name] for name in _NAMES.values()},
         "rates": {formula: _rates(rates) for formula, rates in known.rates.items()},
         "cumulative": _cumulative(known),

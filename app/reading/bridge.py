@@ -17,9 +17,10 @@ from app.jobs import Work
 from app.opening import opening_state
 from app.reading.parts import core_reading
 from app.reading.result import Reading
+from app.seasons import season_of
 from app.state import StateError, ViewState
 
-SAMPLE = ("series", "newest", "formula", "measure", "among", "rank_window", "since")
+SAMPLE = ("series", "newest", "formula", "measure", "among", "rank_window", "since", "season")
 TEST = (*SAMPLE, "family", "draws", "seed")
 CORE = (*SAMPLE, "rank_kind", "split", "beyond", "level", "rank_level", "shortest", "gap")
 
@@ -33,9 +34,7 @@ def reading(state: ViewState, bridge: Bridge) -> Reading:
         No such series, or it has no value up to the print.
     """
     loaded = chosen_series(state, bridge)
-    core = bridge.memory.once(
-        reading_key("reading", state, loaded, CORE), lambda: core_reading(state, loaded)
-    )
+    core = _core(state, loaded, bridge)
     refused = dict(core.refused)
     path = goodness = fitted = None
     try:
@@ -51,6 +50,13 @@ def reading(state: ViewState, bridge: Bridge) -> Reading:
     if goodness is not None:
         fitted = fitted_tail(goodness, core.print_value)
     return replace(core, state=state, path=path, goodness=goodness, fitted=fitted, refused=refused)
+
+
+def _core(state: ViewState, loaded: Series, bridge: Bridge) -> Reading:
+    return bridge.memory.once(
+        reading_key("reading", state, loaded, CORE),
+        lambda: core_reading(state, loaded, lambda series: season_of(series, bridge.memory)),
+    )
 
 
 def completed_reading(state: ViewState, bridge: Bridge) -> Reading:
@@ -73,9 +79,7 @@ def goodness_work(state: ViewState, bridge: Bridge) -> Work:
     loaded = chosen_series(state, bridge)
 
     def plan() -> Any:
-        known = bridge.memory.once(
-            reading_key("reading", state, loaded, CORE), lambda: core_reading(state, loaded)
-        )
+        known = _core(state, loaded, bridge)
         if known.sample is None:
             raise StateError(known.refused.get("rank", "there is no rate to fit a distribution to"))
         return goodness_plan(known.sample, family=state.family, draws=state.draws, seed=state.seed)
@@ -89,6 +93,6 @@ WORK: dict[str, Callable[[ViewState, Bridge], Work]] = {"goodness": goodness_wor
 def reading_key(part: str, state: ViewState, loaded: Series, names: tuple[str, ...]) -> str:
     """Return the key of a part: the data, then those fields of the state that it depends on."""
     kept = ViewState(**{name: getattr(state, name) for name in names})
-    data = (loaded.fingerprint, loaded.name, loaded.unit, loaded.source)
+    data = (loaded.fingerprint, loaded.name, loaded.unit, loaded.source, loaded.adjustment)
     text = "\n".join((part, *data, kept.to_query()))
     return f"{part}:{hashlib.sha256(text.encode()).hexdigest()[:32]}"

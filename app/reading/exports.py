@@ -89,7 +89,10 @@ def file_stem(name: str, known: Reading) -> str:
 def _rates_rows(known: Reading) -> Rows:
     """Give every rate of every period, in both formulas, and the cumulative factor."""
     series, year = known.series, known.year
+    short = known.short or series
     columns: dict[str, Series | None] = {}
+    if known.short is not None:
+        columns["value_adjusted_here"] = short
     if series.kind == "rate":
         columns["rate"] = series
     else:
@@ -101,10 +104,8 @@ def _rates_rows(known: Reading) -> Rows:
                 ("rate_12m", year, False),
             ):
                 if 1 <= span < series.values.size:
-                    columns[f"{name}_{formula}"] = _or_empty(
-                        lambda span=span, formula=formula, annualised=annualised: growth_rate(
-                            series, span=span, formula=formula, annualised=annualised
-                        )
+                    columns[f"{name}_{formula}"] = _rate(
+                        short if span < year else series, span, formula, annualised
                     )
             if series.values.size > 2 * year:
                 columns[f"annual_average_{formula}"] = _or_empty(
@@ -117,6 +118,10 @@ def _rates_rows(known: Reading) -> Rows:
     for i, period in enumerate(series.periods):
         row = (float(values[i]) for values in found.values())
         yield period_code(period), float(series.values[i]), *row
+
+
+def _rate(series: Series, span: int, formula: Any, annualised: bool) -> Series | None:
+    return _or_empty(lambda: growth_rate(series, span=span, formula=formula, annualised=annualised))
 
 
 def _or_empty(make: Callable[[], Series]) -> Series | None:

@@ -175,6 +175,7 @@ READING_FIELDS = (
     "series",
     "formula",
     "measure",
+    "season",
     "among",
     "rank_kind",
     "rank_window",

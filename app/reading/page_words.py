@@ -7,6 +7,7 @@ from dash import html
 
 from analytics.families import FAMILIES
 from analytics.print_rates import doubling_time
+from analytics.seasonal import HERE
 from analytics.series import period_label
 from app.reading.alerts import Alert
 from app.reading.episode_words import episode_words
@@ -64,7 +65,18 @@ def rate_table(known: Reading) -> list[Any]:
         for key, words in (("percent", "percent"), ("log", "100 × log"))
     ]
     table = html.Table([html.Thead(html.Tr(head)), html.Tbody(rows)], className="table figures")
-    return [table, html.P(_cumulative(known), className="quiet")]
+    return [table, html.P(_cumulative(known), className="quiet"), *_season(known)]
+
+
+def _season(known: Reading) -> list[Any]:
+    """Say where rates over less than a year still hold a season."""
+    if known.short is not None or known.series.adjustment != "no" or known.year == 1:
+        return []
+    text = (
+        f"{known.series.name} is said to be unadjusted: rates over less than a year hold its"
+        ' season. It can be taken out here, though not officially: "Season" above.'
+    )
+    return [html.P(text, className="quiet")]
 
 
 def _cumulative(known: Reading) -> str:
@@ -111,7 +123,8 @@ def subtitles(known: Reading) -> dict[str, str]:
     noun, unit = known.noun, measured_words(known)
     path = known.path
     return {
-        "rates": f"{known.series.name}, {known.series.unit or 'unit not named'}",
+        "rates": f"{known.series.name}, {known.series.unit or 'unit not named'}"
+        + (f"; 3-month rate {HERE}" if known.short is not None else ""),
         "base": f"Exact split of each change in the {year_words(known)} rate; bars to come show"
         f" the pull of the {noun} that drops out",
         "whatif": f"Arithmetic, not a forecast: {path.rate:g} percent in every coming {noun}"
@@ -138,7 +151,8 @@ def measured_words(known: Reading) -> str:
         "6m": "6-month rate, annualised",
         "12m": f"{year_words(known)} rate",
     }[known.state.measure]
-    return f"{span}, percent"
+    made = f"; {known.made_here}" if known.made_here else ""
+    return f"{span}, percent{made}"
 
 
 def _among(known: Reading) -> str:

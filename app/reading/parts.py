@@ -12,8 +12,9 @@ from analytics.carry_over import carry_over
 from analytics.distribution import distribution_fit, kernel_fit
 from analytics.families import FAMILIES
 from analytics.high_inflation import cagan_episodes, runs_beyond, three_year_change
-from analytics.print_rates import factor_since, print_rates
+from analytics.print_rates import PrintRates, factor_since, print_rates
 from analytics.rates import Formula, growth_rate
+from analytics.seasonal import HERE, SeasonalAdjustment, seasonal_adjustment
 from analytics.series import (
     PERIOD_NOUN,
     PERIODS_PER_YEAR,
@@ -29,9 +30,15 @@ from app.state import StateError, ViewState
 T = TypeVar("T")
 
 
-def core_reading(state: ViewState, loaded: Series) -> Reading:
-    """Work out each part that needs no long work."""
+def core_reading(
+    state: ViewState,
+    loaded: Series,
+    season: Callable[[Series], SeasonalAdjustment] = seasonal_adjustment,
+) -> Reading:
+    """Work out each part that needs no long work; `season` takes a season out."""
     series, notes = _to_print(loaded, state)
+    adjusted, said = _adjusted(series, state, season)
+    short, notes = adjusted or series, (*notes, *said)
     refused: dict[str, str] = {}
 
     def part(name: str, make: Callable[[], T]) -> T | None:
@@ -48,13 +55,14 @@ def core_reading(state: ViewState, loaded: Series) -> Reading:
     yearly = _on_time(yearly, series, "12-month rate", refused)
     quarter = None
     if growing and year >= 4:
-        quarter = part("3-month rate", lambda: _rate(series, year // 4, formula, annualised=True))
-    measured = part("rank", lambda: _measured(series, state))
+        quarter = part("3-month rate", lambda: _rate(short, year // 4, formula, annualised=True))
+    ranked = series if state.measure == "12m" else short
+    measured = part("rank", lambda: _measured(ranked, state))
     measured = _on_time(measured, series, "rank", refused)
     rates = {
         each: found
         for each in get_args(Formula)
-        if growing and (found := part("rates", lambda each=each: print_rates(series, formula=each)))  # type: ignore[misc]
+        if growing and (found := part("rates", lambda each=each: _rates(series, short, each)))  # type: ignore[misc]
     }
     built: dict[str, Any] = {}
     if measured is not None:
@@ -65,6 +73,7 @@ def core_reading(state: ViewState, loaded: Series) -> Reading:
         state=state,
         loaded=loaded,
         series=series,
+        short=adjusted,
         notes=notes,
         rates=rates,
         measured=measured,
@@ -77,6 +86,32 @@ def core_reading(state: ViewState, loaded: Series) -> Reading:
         refused=refused,
         **built,
     )
+
+
+def _adjusted(
+    series: Series, state: ViewState, season: Callable[[Series], SeasonalAdjustment]
+) -> tuple[Series | None, tuple[str, ...]]:
+    """Take the season out up to the print, as it would have been done then; say what was done."""
+    if state.season == "read" or series.frequency == "annual" or series.adjustment == "yes":
+        return None, ()
+    if series.adjustment == "unknown":
+        text = "since its file does not say whether it is adjusted; the Data page can"
+        return None, (f"The season of {series.name} is left in, {text}.",)
+    try:
+        found = season(series).adjusted
+    except ValueError as error:
+        return None, (f"The season of {series.name} is left in: {error}.",)
+    noun = PERIOD_NOUN[series.frequency]
+    return found, (
+        f"Rates over less than a year are of {series.name} {HERE}; rates over a year, base effects"
+        f" and carry-over are of the {noun}s as read.",
+    )
+
+
+def _rates(series: Series, short: Series, formula: Formula) -> PrintRates:
+    """Rates of the print: over less than a year of `short`, over a year of the series as read."""
+    year, less = (print_rates(each, formula=formula) for each in (series, short))
+    return replace(less, year=year.year, annual_average=year.annual_average)
 
 
 def _ranked(

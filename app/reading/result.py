@@ -11,6 +11,7 @@ from analytics.distribution import Fit, KernelFit
 from analytics.goodness import Goodness
 from analytics.high_inflation import Run
 from analytics.print_rates import PrintRates
+from analytics.seasonal import HERE
 from analytics.series import PERIOD_NOUN, PERIODS_PER_YEAR, FloatArray, Series
 from analytics.standing import Standing
 from analytics.tail import Tail
@@ -38,6 +39,9 @@ class Reading:
         As asked for.
     loaded, series : Series
         The series as read, and up to the print with values not above zero left out.
+    short : Series or None
+        What rates over less than a year are taken of: `series` with its season taken out, where
+        that was asked for and could be done; None where it is `series` itself.
     measured : Series or None
         The rate that is ranked and fitted, to the print.
     sample : ndarray of float
@@ -49,6 +53,7 @@ class Reading:
     state: ViewState
     loaded: Series
     series: Series
+    short: Series | None = None
     notes: tuple[str, ...] = ()
     rates: Mapping[str, PrintRates] = field(default_factory=dict)
     measured: Series | None = None
@@ -86,6 +91,11 @@ class Reading:
     def year(self) -> int:
         """Periods in a year."""
         return PERIODS_PER_YEAR[self.series.frequency]
+
+    @property
+    def made_here(self) -> str:
+        """What was done to the reading that is ranked; empty where nothing was."""
+        return HERE if self.short is not None and self.state.measure != "12m" else ""
 
     @property
     def print_value(self) -> float:

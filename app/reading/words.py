@@ -65,7 +65,8 @@ def sentence(known: Reading) -> str:
             annual = "" if known.state.measure == "12m" else "at an annual rate of "
             said = f"{name} did not change" if flat else f"{name} {verb} {annual}{size}"
             said += f" {over}"
-    return said + _standing_words(known) + "."
+    made = f" ({known.made_here})" if known.made_here else ""
+    return said + made + _standing_words(known) + "."
 
 
 def _standing_words(known: Reading) -> str:

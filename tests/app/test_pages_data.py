@@ -361,7 +361,7 @@ def test_the_list_of_series_leaves_as_a_file():
 @pytest.mark.parametrize(
     ("view", "workspace", "said"),
     [
-        ("nope", Workspace(), "view must be one of series, revisions, but got 'nope'"),
+        ("nope", Workspace(), "view must be one of series, revisions, season, but got 'nope'"),
         ("series", Workspace(), "nothing is loaded yet"),
         ("revisions", Workspace(demo_releases()), "no series has been loaded twice"),
     ],
