@@ -6,10 +6,9 @@ from typing import Literal, get_args
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.special import stdtrit
 
 from analytics.forecasts import MODELS, Choice, choice_at, forecasts_at
-from analytics.intervals import error_scale
+from analytics.intervals import error_scale, half_width
 from analytics.outlook import outlook_arrays, path_reach
 from analytics.outlook_target import Target
 from analytics.relation import MIN_PAIRS
@@ -74,9 +73,20 @@ class BacktestPlan:
 
 @dataclass(frozen=True, eq=False)
 class BacktestChunk:
-    """A year of dates: forecasts (M, o, H), and for each date (window, shift, own lags, order)."""
+    """A year of dates.
+
+    Attributes
+    ----------
+    forecasts : ndarray of float, shape (M, o, H), read-only
+        Of every model.
+    last_seen : ndarray of float, shape (o,), read-only
+        The target at the date, as it stood then.
+    choices : ndarray of int, shape (o, 4), read-only
+        Window, shift, own lags, order of the autoregression.
+    """
 
     forecasts: FloatArray
+    last_seen: FloatArray
     choices: IntArray
 
 
@@ -99,7 +109,7 @@ class Backtest:
     outcomes : ndarray of float, shape (O, H)
         nan where still to come.
     last_seen : ndarray of float, shape (O,)
-        The target at the date itself.
+        The target at the date itself, as it stood then.
     scale, freedom : ndarray of float, shape (M, O, H)
         Root mean square and degrees of freedom of the errors known at the date; nan where there
         were fewer than 12.
@@ -147,7 +157,7 @@ class Backtest:
     def band(self, model: str, level: float) -> tuple[FloatArray, FloatArray]:
         """Interval of a level as it stood at each date, (low, high), shapes (O, H)."""
         row = self.row(model)
-        half = self.scale[row] * stdtrit(self.freedom[row], 0.5 + level / 2.0)
+        half = half_width(self.scale[row], self.freedom[row], level)
         return self.forecasts[row] - half, self.forecasts[row] + half
 
 
@@ -258,6 +268,7 @@ def backtest_chunk(plan: BacktestPlan, index: int) -> BacktestChunk:
     year = plan.periods_per_year
     dates = plan.origins[index * year : (index + 1) * year].tolist()
     forecasts = np.empty((len(MODELS), len(dates), plan.horizon))
+    last_seen = np.empty(len(dates))
     choices = np.empty((len(dates), 4), dtype=np.int64)
     choice = Choice(*plan.cell, 0)
     for place, origin in enumerate(dates):
@@ -281,8 +292,9 @@ def backtest_chunk(plan: BacktestPlan, index: int) -> BacktestChunk:
             max_lags=year,
             periods_per_year=year,
         )
+        last_seen[place] = plan.target.observed(response)[-1]
         choices[place] = choice.window, choice.shift, choice.own_lags, order
-    return BacktestChunk(read_only(forecasts), locked(choices))
+    return BacktestChunk(read_only(forecasts), read_only(last_seen), locked(choices))
 
 
 def _known(plan: BacktestPlan, origin: int) -> tuple[FloatArray, FloatArray]:
@@ -315,7 +327,7 @@ def backtest_result(plan: BacktestPlan, chunks: list[BacktestChunk]) -> Backtest
         origins=plan.origins,
         forecasts=read_only(forecasts),
         outcomes=read_only(outcomes),
-        last_seen=read_only(observed[plan.origins]),
+        last_seen=read_only(np.concatenate([chunk.last_seen for chunk in chunks])),
         scale=read_only(scale),
         freedom=read_only(freedom),
         windows=locked(choices[:, 0].copy()),

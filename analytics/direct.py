@@ -85,8 +85,8 @@ def direct_forecasts(
     At horizon h the mean of the min(h, span) newest periods of ``t + h`` is regressed by least
     squares on a constant, the response of periods ``t - own_lags + 1 .. t``, and the driver's mean
     ending in ``t + min(h - shift, lead)`` (a direct multi-step forecast: Marcellino, Stock and
-    Watson 2006, Journal of Econometrics 135; from memory). Where regressors repeat each other the
-    smallest coefficients are taken, so an all-equal driver adds nothing.
+    Watson 2006, Journal of Econometrics 135; from memory). An all-equal driver, or one
+    that the own past repeats, adds nothing.
     """
     x, y = outlook_arrays(driver, response)
     if window < 1 or horizon < 1 or own_lags < 0:
@@ -98,46 +98,66 @@ def direct_forecasts(
     means = trailing_mean(x, min(window, x.size))
     offset = x.size - means.size  # means[i] ends in period i + offset
     cumulative = np.concatenate(([0.0], np.cumsum(y)))
-    past = np.ones((y.size, 1 + own_lags))
+    now = y.size - 1
+    # Columns: own past, the driver's mean, the mean that is wanted; rows: periods.
+    table = np.zeros((y.size, own_lags + 2))
     for lag in range(own_lags):
-        past[lag:, 1 + lag] = y[: y.size - lag]
-    found = np.full((4, horizon), np.nan)
+        table[lag:, lag] = y[: y.size - lag]
+    centre = np.full((horizon, own_lags + 2), np.nan)
+    moments = np.zeros((horizon, own_lags + 2, own_lags + 2))
+    news = np.zeros((horizon, own_lags + 1))
     rows = np.zeros(horizon, dtype=np.int64)
     for place, h in enumerate(range(1, horizon + 1)):
         reach = min(h - shift, lead)
         first = max(own_lags - 1, 0, offset - reach)
-        now, last = y.size - 1, y.size - 1 - h
-        rows[place] = max(0, last - first + 1)
-        if rows[place] < own_lags + 2 + _SPARE or now + reach - offset < 0:
+        rows[place] = max(0, now - h - first + 1)
+        if rows[place] < own_lags + 2 + _SPARE or now + reach < offset:
             continue
+        used = slice(first, now - h + 1)
+        ends = np.arange(first, now - h + 1) + h + 1
         span = min(h, target.span)
-        ends = np.arange(first, last + 1) + h + 1
-        wanted = (cumulative[ends] - cumulative[ends - span]) / span
-        side = means[first + reach - offset : last + reach - offset + 1]
-        plain = past[first : last + 1]
-        full = np.column_stack((plain, side))
-        without, left = _fit(plain, wanted)
-        coefficients, kept = _fit(full, wanted)
-        found[:, place] = (
-            past[now] @ coefficients[:-1] + coefficients[-1] * means[now + reach - offset],
-            past[now] @ without,
-            coefficients[-1],
-            0.0 if left <= 0.0 else max(0.0, 1.0 - kept / left),
-        )
+        side = means[first + reach - offset : now + reach - offset + 1]
+        table[used, -2] = side[: rows[place]]
+        table[used, -1] = (cumulative[ends] - cumulative[ends - span]) / span
+        centre[place] = table[used].mean(axis=0)
+        away = table[used] - centre[place]
+        moments[place] = away.T @ away
+        news[place] = np.append(table[now, :own_lags], side[-1]) - centre[place, :-1]
+    found = _with_and_without(moments, news)
+    means_ahead = centre[:, -1] + found[:2]
     return DirectForecasts(
         ahead=locked(np.arange(1, horizon + 1)),
-        with_driver=read_only(target.from_means(y, found[0])),
-        without_driver=read_only(target.from_means(y, found[1])),
-        driver_slope=read_only(found[2]),
-        driver_gain=read_only(found[3]),
+        with_driver=read_only(target.from_means(y, means_ahead[0])),
+        without_driver=read_only(target.from_means(y, means_ahead[1])),
+        driver_slope=read_only(np.where(np.isnan(centre[:, -1]), np.nan, found[2])),
+        driver_gain=read_only(np.where(np.isnan(centre[:, -1]), np.nan, found[3])),
         own_lags=own_lags,
         rows=locked(rows),
     )
 
 
-def _fit(regressors: FloatArray, wanted: FloatArray) -> tuple[FloatArray, float]:
-    """Least squares: coefficients and sum of squared residuals."""
-    found = np.linalg.lstsq(regressors, wanted, rcond=1e-10)
-    coefficients = np.asarray(found[0], dtype=np.float64)
-    rest = wanted - regressors @ coefficients
-    return coefficients, float(rest @ rest)
+def _with_and_without(moments: FloatArray, news: FloatArray) -> FloatArray:
+    """Deviation forecast with and without the driver, its slope, its gain; shape (4, H).
+
+    The driver is regressed on the own past first and what is left of it on what is left of the
+    target (Frisch and Waugh 1933; Lovell 1963): the same as both together.
+
+    Parameters
+    ----------
+    moments : ndarray of float, shape (H, p + 2, p + 2)
+        Sums of products about the means: own past, driver, target.
+    news : ndarray of float, shape (H, p + 1)
+        Today's own past and driver, less their means.
+    """
+    own, both = moments[:, :-2, :-2], moments[:, :-2, -2:]
+    inverse = np.linalg.pinv(own, rcond=1e-12, hermitian=True)
+    projected = inverse @ both
+    left = moments[:, -2:, -2:] - both.transpose(0, 2, 1) @ projected
+    varies = left[:, 0, 0] > 1e-10 * moments[:, -2, -2]
+    slope = np.where(varies, left[:, 0, 1] / np.where(varies, left[:, 0, 0], 1.0), 0.0)
+    past = (news[:, None, :-1] @ projected)[:, 0, :]
+    without = past[:, 1]
+    with_driver = without + slope * (news[:, -1] - past[:, 0])
+    rest = left[:, 1, 1]
+    gain = slope * left[:, 0, 1] / np.where(rest > 0.0, rest, np.inf)
+    return np.stack([with_driver, without, slope, np.clip(gain, 0.0, 1.0)])

@@ -6,8 +6,10 @@ from numpy.typing import ArrayLike
 from analytics.intervals import Fan, error_fan
 from analytics.outlook import outlook_arrays, path_reach
 from analytics.outlook_target import Target
+from analytics.rates import trailing_mean
 from analytics.relation import MIN_PAIRS, relation_forecasts
 from analytics.series import FloatArray, read_only
+from analytics.surface import IntArray, smallest_variance
 
 
 def relation_errors(
@@ -44,20 +46,39 @@ def relation_errors(
             f"intervals must have at least {first + 1} periods to look back on, but the response"
             f" has {y.size}"
         )
-    observed = target.observed(y)
-    errors = np.full((y.size - first, reach), np.nan)
-    for row, known in enumerate(range(first, y.size)):
-        forecast = relation_forecasts(
-            x[: known + lead],
-            y[:known],
-            window=window,
-            shift=shift,
-            horizon=reach,
-            target=target,
-        )
-        outcomes = observed[known : known + reach]
-        errors[row, : outcomes.size] = outcomes - forecast[: outcomes.size]
+    known = np.arange(first, y.size)  # periods of the response known at each date
+    intercept, slope, level = _lines(x, y, known, lead, window=window, shift=shift)
+    # Columns: the span before the first period ahead, then the periods ahead.
+    column = np.arange(1 - target.span, reach) if target.kind == "window" else np.arange(reach)
+    at = known[:, None] + column - shift
+    spans = intercept[:, None] + slope[:, None] * np.where(
+        at < known[:, None] + lead, x[np.clip(at, 0, x.size - 1)], level[:, None]
+    )
+    if target.kind != "window":
+        seen = y[known[:, None] + np.arange(1 - target.span, 0)]
+        spans = np.concatenate((seen, spans), axis=1)
+    forecasts = target.rate(np.lib.stride_tricks.sliding_window_view(spans, target.span, axis=1))
+    ends = known[:, None] + np.arange(reach)
+    observed = np.append(target.observed(y), np.nan)
+    errors = observed[np.minimum(ends, y.size)] - forecasts
     return read_only(errors)
+
+
+def _lines(
+    x: FloatArray, y: FloatArray, known: IntArray, lead: int, *, window: int, shift: int
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Intercept, slope and driver's mean of the cell at every date, as `cell_line` has them."""
+    pairs = known + min(0, lead) - window + 1 - shift
+    xs = trailing_mean(x, window)[: pairs[-1]]
+    ys = trailing_mean(y, window)[shift : shift + pairs[-1]]
+    centre, level = xs[:MIN_PAIRS].mean(), ys[:MIN_PAIRS].mean()
+    away, rise = xs - centre, ys - level
+    sums = np.cumsum([away, rise, away**2, away * rise], axis=1)[:, pairs - 1]
+    mean_x, mean_y = sums[:2] / pairs
+    square = sums[2] - pairs * mean_x**2
+    varies = square > smallest_variance(x) * pairs
+    slope = np.where(varies, (sums[3] - pairs * mean_x * mean_y) / np.where(varies, square, 1.0), 0)
+    return level + mean_y - slope * (centre + mean_x), slope, centre + mean_x
 
 
 def path_fan(
