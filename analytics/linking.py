@@ -7,9 +7,9 @@ from typing import Literal, get_args
 import numpy as np
 import pandas as pd
 
-from analytics.series import PERIOD_NOUN, Series, period_label
+from analytics.series import PERIOD_NOUN, PERIODS_PER_YEAR, Series, period_label
 
-Treatment = Literal["exclude", "before", "after", "overlap"]
+Treatment = Literal["exclude", "before", "after", "overlap", "overlap_mean"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -47,13 +47,15 @@ def break_treated(
         Of kind index or level, positive around the break.
     period : pandas.Period
         First period of the new definition.
-    treatment : {"exclude", "before", "after", "overlap"}
+    treatment : {"exclude", "before", "after", "overlap", "overlap_mean"}
         What the growth into `period` becomes. "before" and "after": the log growth of the period
         before or after. "exclude": the mean of the two, since a lag cell needs a value in every
         period; nothing of the published growth is left in it. "overlap": the growth of `other`,
         which is one definition on both sides of the break; this is the overlap ratio.
+        "overlap_mean": the same ratio of means over a year before and a year from the break on,
+        which a single odd period moves less.
     other : Series, optional
-        The overlapping series, with values in the period before the break and in the break.
+        The overlapping series, with values in the periods that its ratio needs.
     marked : collection of pandas.Period
         Other breaks of the series; none of them can lend its growth.
 
@@ -71,7 +73,10 @@ def break_treated(
     Notes
     -----
     With break b and wanted log growth g, ``factor = p_b / (p_(b-1) exp(g))``. A series with a
-    season takes the season of the period that lends its growth.
+    season takes the season of the period that lends its growth. By the mean of an overlap q,
+    ``factor = (mean p / mean q) from b on / (mean p / mean q) before b``: where q is the old
+    definition carried on, or the new one carried back, this is the ratio of the two means over
+    their overlap, as in `linked`.
 
     Examples
     --------
@@ -89,10 +94,12 @@ def break_treated(
             f"a break must be in an index or a level, but {series.name!r} is a rate already"
         )
     published = _log_growth(series, period)
-    if treatment == "overlap":
+    if treatment in ("overlap", "overlap_mean"):
         if other is None:
             raise ValueError("a splice by overlap must have an overlapping series, but got none")
         wanted = _log_growth(other, period)
+        if treatment == "overlap_mean":
+            wanted = published - _log_step(series, other, period, marked)
     else:
         lenders = {"before": (-1,), "after": (1,), "exclude": (-1, 1)}[treatment]
         for step in lenders:
@@ -210,6 +217,22 @@ def _log_growth(series: Series, period: pd.Period) -> float:
             f" {min(after, before):g}"
         )
     return float(np.log(after / before))
+
+
+def _log_step(
+    series: Series, other: Series, period: pd.Period, marked: Collection[pd.Period]
+) -> float:
+    """Log of the step in the ratio of two series at a break, each side by means of a year."""
+    year = PERIODS_PER_YEAR[series.frequency]
+    crossed = [each for each in marked if period - year < each < period + year]
+    if crossed:
+        raise ValueError(
+            f"a year on each side of {period_label(period)} must stand without a break, but one of"
+            f" {series.name!r} is marked in {period_label(crossed[0])}"
+        )
+    before, after = ((period + k, period + (k + year - 1)) for k in (-year, 0))
+    ratios = [_mean(series, *span) / _mean(other, *span) for span in (before, after)]
+    return float(np.log(ratios[1] / ratios[0]))
 
 
 def _mean(series: Series, first: pd.Period, last: pd.Period | None) -> float:

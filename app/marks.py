@@ -9,7 +9,10 @@ from analytics.series import PERIOD_NOUN, Series, period_code, period_label
 from app.intake.problems import MAX_NAME, plain_text, quoted
 from app.workspace_rows import period_of
 
-OVERLAP = "overlap:"  # followed by the name of the overlapping series
+OVERLAPS: dict[str, tuple[Treatment, str]] = {  # each followed by the overlapping series' name
+    "overlap:": ("overlap", ""),
+    "overlap-mean:": ("overlap_mean", ", by the means of a year on each side"),
+}
 TREATMENTS: dict[str, str] = {
     "exclude": "growth of the {noun} set to the mean of the {noun}s before and after",
     "before": "growth of the {noun} set to that of the {noun} before",
@@ -28,7 +31,7 @@ class Mark:
     period : str
         First period of the new definition, such as ``1987-07``.
     treatment : str
-        A key of `TREATMENTS`, or ``overlap:`` and the name of the overlapping series.
+        A key of `TREATMENTS`, or one of `OVERLAPS` and the name of the overlapping series.
     note : str
         What the user wrote beside it.
     """
@@ -40,8 +43,9 @@ class Mark:
 
     def words(self, noun: str = "month") -> str:
         """Say what is done at the break."""
-        if self.treatment.startswith(OVERLAP):
-            return f"spliced by overlap with {self.treatment.removeprefix(OVERLAP)}"
+        for start, (_, how) in OVERLAPS.items():
+            if self.treatment.startswith(start):
+                return f"spliced by overlap with {self.treatment.removeprefix(start)}{how}"
         return TREATMENTS[self.treatment].format(noun=noun)
 
 
@@ -65,8 +69,10 @@ def checked(mark: Mark, loaded: Mapping[str, Series], others: Sequence[Mark]) ->
     series = loaded[mark.series]
     period = period_of(series.frequency, mark.period.strip())
     treatment, other = _parts(mark.treatment)
-    if treatment == "overlap" and other not in loaded:
+    if treatment.startswith("overlap") and other not in loaded:
         raise ValueError(f"the overlapping series must be loaded, but {quoted(other)} is not")
+    if other == mark.series:
+        raise ValueError(f"the overlapping series must be another one, but got {quoted(other)}")
     kept = Mark(mark.series, period_code(period), mark.treatment, plain_text(mark.note, MAX_NAME))
     marked = [period_of(series.frequency, one.period) for one in others]
     break_treated(series, period, treatment, other=loaded.get(other), marked=marked)
@@ -133,11 +139,10 @@ def write_mark(db: sqlite3.Connection, mark: Mark, at: str) -> None:
 
 
 def _parts(text: str) -> tuple[Treatment, str]:
-    if text.startswith(OVERLAP):
-        return "overlap", text.removeprefix(OVERLAP)
+    for start, (treatment, _) in OVERLAPS.items():
+        if text.startswith(start):
+            return treatment, text.removeprefix(start)
     if text not in TREATMENTS:
-        raise ValueError(
-            f"treatment must be one of {', '.join(TREATMENTS)}, or {OVERLAP}NAME, but got"
-            f" {quoted(text)}"
-        )
+        ways = ", ".join([*TREATMENTS, *(f"{start}NAME" for start in OVERLAPS)])
+        raise ValueError(f"treatment must be one of {ways}, but got {quoted(text)}")
     return text, ""  # type: ignore[return-value]

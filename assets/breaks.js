@@ -25,6 +25,15 @@
     }
   }
 
+  /* Treatments by overlap need the overlapping series named, too. */
+  const overlaps = (treatment) => treatment.startsWith("overlap");
+
+  document.addEventListener("change", ({ target }) => {
+    if (!target.matches || !target.matches('[data-break-box] [data-part="treatment"]')) return;
+    const other = target.closest("[data-break-box]").querySelector('[data-part="other"]');
+    if (other) other.hidden = !overlaps(target.value);
+  });
+
   document.addEventListener("click", async (event) => {
     const button = event.target.closest && event.target.closest("[data-break]");
     if (!button) return;
@@ -34,6 +43,7 @@
     const body = { series: button.dataset.series, period: button.dataset.period };
     if (act === "mark") {
       body.treatment = part("treatment").value;
+      if (overlaps(body.treatment)) body.treatment += `:${part("other").value}`;
       if (part("series")) {
         Object.assign(body, {
           series: part("series").value,

@@ -8,7 +8,6 @@ from dash import html
 from analytics.series import PERIOD_NOUN, Series, period_label
 from app.compute import Bridge
 from app.desk.findings import Found, found_in
-from app.marks import OVERLAP
 from app.pages.data_parts import table
 from app.state import ViewState
 from app.words import counted
@@ -23,6 +22,10 @@ CHOICES = {
     "before": "{noun} before",
     "after": "{noun} after",
 }  # whose growth is taken, in the width of a drop-down
+OVERLAPS = {
+    "overlap": "overlap, one {noun}",
+    "overlap-mean": "overlap, means of a year",
+}  # then a second drop-down names the overlapping series; assets/breaks.js shows it
 MARKABLE = ("level shift", "unit jump")
 
 
@@ -82,15 +85,13 @@ def _findings(found: Sequence[Found], loaded: Mapping[str, Series]) -> list[Any]
 def _box(series: Series, loaded: Mapping[str, Series], found: Found) -> html.Div:
     code, period = found.code, found.finding.period
     when = period_label(period)
-    options = {
-        key: words.format(noun=PERIOD_NOUN[series.frequency]) for key, words in CHOICES.items()
-    }
-    options |= {
-        f"{OVERLAP}{name}": f"overlap with {name}" for name in _others(series, period, loaded)
-    }
     return html.Div(
         [
-            _select(options, f"Growth of {series.name} in {when} taken from", "treatment"),
+            *_treatments(
+                PERIOD_NOUN[series.frequency],
+                f"Growth of {series.name} in {when} taken from",
+                _others(series, period, loaded),
+            ),
             html.Button(
                 f"Mark break at {when}",
                 type="button",
@@ -164,7 +165,6 @@ def _marks(in_view: WorkspaceView) -> list[Any]:
 
 def _form(loaded: Mapping[str, Series]) -> html.Details:
     names = {name: name for name, one in loaded.items() if one.kind != "rate"}
-    options = {key: words.format(noun="period") for key, words in CHOICES.items()}
     return html.Details(
         [
             html.Summary("Mark a break by hand"),
@@ -180,7 +180,7 @@ def _form(loaded: Mapping[str, Series]) -> html.Details:
                             "data-placeholder": "such as 1987-07",
                         },
                     ),
-                    _select(options, "Growth at the break taken from", "treatment"),
+                    *_treatments("period", "Growth at the break taken from", list(names)),
                     html.Span(
                         className="native",
                         **{
@@ -198,6 +198,15 @@ def _form(loaded: Mapping[str, Series]) -> html.Details:
         ],
         id="data-break-form",
     )
+
+
+def _treatments(noun: str, label: str, others: Sequence[str]) -> list[html.Select]:
+    """Return the choice of a treatment, and of the overlapping series for those that need one."""
+    ways = CHOICES | (OVERLAPS if others else {})
+    options = {key: words.format(noun=noun) for key, words in ways.items()}
+    named = _select({name: f"with {name}" for name in others}, f"{label}: series", "other")
+    named.hidden = True
+    return [_select(options, label, "treatment"), *([named] if others else [])]
 
 
 def _select(options: Mapping[str, str], label: str, part: str) -> html.Select:

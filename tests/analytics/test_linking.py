@@ -69,6 +69,31 @@ def test_a_link_by_the_mean_of_an_overlap_takes_the_ratio_of_means():
     assert (done.series.values[24:] == new.values).all()
 
 
+@pytest.mark.parametrize("side", ["old definition carried on", "new one carried back"])
+def test_a_splice_by_means_of_a_year_is_a_link_by_the_mean_of_an_overlap(side):
+    """The judge is `linked`, which agrees with published links by twelve-month averages."""
+    old, new, place = walk(seed=2), walk(seed=3), 30
+    both = Series("Money", START, [*old.values[:place], *new.values[place:]])
+    other = old if side.startswith("old") else new
+    first = START + (place if other is old else place - 12)
+    done = break_treated(both, START + place, "overlap_mean", other=other)
+    assert done.factor == pytest.approx(linked(old, new, first, first + 11).factor, rel=1e-12)
+    assert (done.series.values[place:] == new.values[place:]).all()
+    np.testing.assert_allclose(done.series.values[:place], done.factor * old.values[:place])
+
+
+def test_means_of_a_year_move_less_than_one_odd_month():
+    old = walk(seed=2)
+    noise = np.exp(np.random.default_rng(5).normal(0, 0.02, old.values.size))
+    both = Series("Money", START, old.values * noise * np.where(np.arange(60) >= 30, 1.3, 1.0))
+    errors = [
+        abs(np.log(break_treated(both, START + 30, how, other=old).factor / 1.3))
+        for how in ("overlap", "overlap_mean")
+    ]
+    assert errors[1] < errors[0]
+    assert errors[1] < 3 * 0.02 * np.sqrt(2 / 12)
+
+
 def test_the_mean_of_the_reference_period_is_a_hundred():
     done = rereferenced(walk(), START + 12, START + 23)
     assert done.series.values[12:24].mean() == pytest.approx(100, abs=1e-12)
@@ -94,6 +119,16 @@ GAP = Series("Money", START, [1.0, 2.0, np.nan, 3.0, 4.0, 5.0])
         (lambda: break_treated(walk(), START + 59, "after"), "must have a value in Jan 2005"),
         (lambda: break_treated(GAP, START + 1, "after"), "must have a value in Mar 2000"),
         (lambda: break_treated(walk(), START + 9, "overlap"), "overlapping series, but got none"),
+        (
+            lambda: break_treated(walk(), START + 9, "overlap_mean", other=walk()),
+            "must have a value in Oct 1999",
+        ),
+        (
+            lambda: break_treated(
+                walk(), START + 30, "overlap_mean", other=walk(), marked=[START + 20]
+            ),
+            "must stand without a break, but one of 'Money' is marked in Sep 2001",
+        ),
         (
             lambda: break_treated(Series("R", START, [1.0, 2.0, 3.0], "rate"), START + 1, "after"),
             "'R' is a rate already",

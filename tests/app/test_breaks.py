@@ -89,6 +89,16 @@ def test_overlap_takes_the_true_growth_from_a_series_of_one_definition():
     )
 
 
+def test_overlap_by_means_of_a_year_and_its_sentence():
+    old = made()
+    here = desk(made("Wide", break_at=60), Series("Old", START, old.values, "level"))
+    here.mark("Wide", "2005-01", "overlap-mean:Old")
+    np.testing.assert_allclose(here.named("Wide").values, 1.3 * old.values, rtol=1e-13)
+    (said,) = here.as_of().breaks("Wide")
+    assert said.endswith("spliced by overlap with Old, by the means of a year on each side")
+    assert said in here.named("Wide").source
+
+
 def test_vintages_and_files_stay_as_read():
     raw = made(break_at=60)
     here = desk(raw)
@@ -171,7 +181,8 @@ def test_the_part_of_the_page_lists_findings_and_marks():
     here = desk(made("Wide", break_at=60), made("Old"))
     bridge = Bridge(here)
     shown = str(data_breaks.section(here.as_of(), ViewState(), bridge))
-    assert "Mark break at Jan 2005" in shown and "overlap with Old" in shown
+    assert "Mark break at Jan 2005" in shown and "overlap, means of a year" in shown
+    assert shown.count("with Old") == 2  # beside what was found, and in the form by hand
     here.mark("Wide", "2005-01", "overlap:Old")
     shown = str(data_breaks.section(here.as_of(), ViewState(), bridge))
     assert "Break treated at Jan 2005: spliced by overlap with Old." in shown
@@ -247,6 +258,7 @@ def test_two_breaks_of_one_series():
         (("Money", "2005-Q1", "after"), "a period must be monthly, but got '2005-Q1'"),
         (("Money", "2000-01", "after"), "must have a value in Dec 1999"),
         (("Money", "2005-01", "overlap:Gone"), "must be loaded, but 'Gone' is not"),
+        (("Money", "2005-01", "overlap-mean:Money"), "must be another one, but got 'Money'"),
         (("Policy rate", "2005-01", "before"), "'Policy rate' is a rate already"),
     ],
 )
