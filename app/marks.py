@@ -3,11 +3,15 @@
 import sqlite3
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from analytics.linking import Treatment, break_treated
 from analytics.series import PERIOD_NOUN, Series, period_code, period_label
 from app.intake.problems import MAX_NAME, plain_text, quoted
 from app.workspace_rows import period_of
+
+if TYPE_CHECKING:
+    from app.workspace_view import WorkspaceView
 
 OVERLAPS: dict[str, tuple[Treatment, str]] = {  # each followed by the overlapping series' name
     "overlap:": ("overlap", ""),
@@ -120,6 +124,27 @@ def treated(series: Series, marks: Sequence[Mark], loaded: Mapping[str, Series])
         tuple(said),
         tuple(used),
     )
+
+
+def mark_words(mark: Mark, in_view: "WorkspaceView") -> str:
+    """Say where a mark stands and what is done there, or why nothing is."""
+    when, noun = mark_when(mark, in_view)
+    said = [each for each in in_view.breaks(mark.series) if f"at {when}" in each]
+    if said:
+        return said[0]
+    return f"break at {when}: {mark.words(noun)}; the series in view has no such {noun}"
+
+
+def mark_when(mark: Mark, in_view: "WorkspaceView") -> tuple[str, str]:
+    """Return the period of a mark in words, and the noun of the periods of its series."""
+    series = in_view.as_read.get(mark.series)
+    try:
+        if series is not None:
+            period = period_of(series.frequency, mark.period)
+            return period_label(period), PERIOD_NOUN[series.frequency]
+    except ValueError:
+        pass  # the series has another frequency than when it was marked
+    return mark.period, "period"
 
 
 def read_marks(db: sqlite3.Connection) -> tuple[Mark, ...]:

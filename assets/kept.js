@@ -24,8 +24,9 @@
   /* An answer puts new elements in place of the old ones; the focus and the open folds stay. */
   let focused = null;
   const open = new Set();
-  const described = ({ id, dataset: { correct, series, act: name, file } }) =>
+  const described = ({ id, dataset: { correct, series, act: name, file, sheet } }) =>
     id ? `#${CSS.escape(id)}`
+      : sheet ? `[data-sheet="${CSS.escape(sheet)}"]`
       : correct ? `[data-correct="${correct}"][data-series="${CSS.escape(series)}"]:not([data-entry])`
         : name && file ? `[data-act="${name}"][data-file="${CSS.escape(file)}"]` : null;
 
@@ -120,6 +121,18 @@
     const button = event.target.closest && event.target.closest(".data-page [data-set]");
     const field = button && pricewake.controls.field(button.dataset.set);
     if (field) field.value = button.dataset.value;
+  });
+
+  document.addEventListener("change", async ({ target }) => {
+    const { sheet: token, value } = target.dataset || {};
+    if (!token || target.value === value) return;
+    const chosen = target.value;
+    const answer = await post("/intake/sheet", { token, sheet: chosen });
+    if (answer.message) {
+      say([{ text: answer.message, bad: true }]);
+      target.value = value;
+    } else say([{ text: `${answer.file}: ${answer.series.length} series read; nothing is kept yet.` }]);
+    show();
   });
 
   document.addEventListener("change", async (event) => {

@@ -25,7 +25,25 @@ def state_options(names: tuple[str, ...]) -> Callable[[Callable[..., Any]], Call
     return decorate
 
 
-files = click.argument("files", nargs=-1, type=click.Path(path_type=Path))
+SHEET = "sheet of workbooks"  # where a command's context keeps it
+
+
+def _keep_sheet(context: click.Context, _option: click.Parameter, name: str | None) -> None:
+    context.meta[SHEET] = name
+
+
+def files(command: Callable[..., Any]) -> Callable[..., Any]:
+    """Give a command FILES, and the sheet of those that are workbooks, for `workspace_of`."""
+    sheet = click.option(
+        "--sheet",
+        metavar="NAME",
+        expose_value=False,
+        callback=_keep_sheet,
+        help="Sheet of the workbooks among FILES; without it the first that holds a table.",
+    )
+    return click.argument("files", nargs=-1, type=click.Path(path_type=Path))(sheet(command))
+
+
 as_json = click.option(
     "--json", "as_json", is_flag=True, help="Print one JSON object and nothing else."
 )
@@ -63,11 +81,16 @@ def workspace_of(
     `at_desk`, makes an empty workspace, and shows the invented economy while it is empty.
     """
     from app.demo import demo_releases
-    from app.intake.reading import read_path
+    from app.intake.reading import looks_like_archive, read_path
     from app.store import MEMORY
     from app.workspace import Workspace
 
-    releases = tuple(read_path(path) for path in files)
+    context = click.get_current_context(silent=True)
+    sheet = context.meta.get(SHEET) if context is not None else None
+    books = [path for path in files if sheet is not None and looks_like_archive(path)]
+    if sheet is not None and not books:
+        raise click.UsageError(f"--sheet must be of a workbook among FILES, but got {sheet!r}")
+    releases = tuple(read_path(path, sheet=sheet if path in books else None) for path in files)
     names = [release.name for release in releases]
     for name in names:
         if names.count(name) > 1:

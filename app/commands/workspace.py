@@ -1,27 +1,24 @@
-"""`pricewake workspace`: a workspace out to a folder of plain files, and back."""
+"""`pricewake workspace`: out to a folder of plain files and back, alert rules, breaks."""
 
 from pathlib import Path
 from typing import Any
 
 import click
 
+from app.commands.marks import mark, marks, unmark
+from app.commands.workspace_file import path_of, place
+
 _folder = click.argument("folder", type=click.Path(path_type=Path), metavar="DIR")
-_path = click.option(
-    "--workspace",
-    "kept_in",
-    metavar="PATH",
-    help="Workspace file; without it the usual one in your data folder.",
-)
 
 
 @click.group()
 def workspace() -> None:
-    """Write a workspace to a folder of plain CSV and JSON, or fill one from such a folder."""
+    """Write a workspace to a folder or fill one from it; keep its alert rules and breaks."""
 
 
 @workspace.command("export")
 @_folder
-@_path
+@place
 def export(folder: Path, kept_in: str | None) -> None:
     """Write everything that a workspace holds to the new folder DIR, as CSV and JSON."""
     from app.workspace_folder import export_folder
@@ -36,7 +33,7 @@ def export(folder: Path, kept_in: str | None) -> None:
 
 @workspace.command("import")
 @_folder
-@_path
+@place
 def take_in(folder: Path, kept_in: str | None) -> None:
     """Fill an empty workspace from the folder DIR that an export wrote."""
     from app.workspace_folder import import_folder
@@ -52,7 +49,7 @@ def take_in(folder: Path, kept_in: str | None) -> None:
 @workspace.command("alerts")
 @click.option("--add", metavar="RULE", help="Keep this rule, such as 'rate_12m above 5'.")
 @click.option("--remove", metavar="RULE", help="Take this rule away, as it is listed.")
-@_path
+@place
 def alerts(add: str | None, remove: str | None, kept_in: str | None) -> None:
     """List the alert rules that a workspace keeps, and change them."""
     from app.kept_rules import drop_rule, keep_rule, rule_lines
@@ -70,13 +67,14 @@ def alerts(add: str | None, remove: str | None, kept_in: str | None) -> None:
 
 
 def _store(kept_in: str | None, *, there: bool = False) -> Any:
-    from app.store import Store, WorkspaceError, default_path
+    from app.store import Store
 
-    path = Path(kept_in) if kept_in else default_path()
-    if there and not path.exists():
-        raise WorkspaceError(f"there is no workspace at {str(path)!r} yet")
-    return Store(kept_in or path)
+    return Store(path_of(kept_in, there=there))
 
 
 def _counted(count: int) -> str:
     return f"{count} vintage{'' if count == 1 else 's'}"
+
+
+for each in (mark, unmark, marks):
+    workspace.add_command(each)

@@ -20,13 +20,15 @@ def register(server: Flask, bridge: Bridge) -> None:
     def _intake() -> Reply:
         """Read a file; with ``preview=1`` it is held, else it is kept at once."""
         name = request.args.get("name", "upload.csv")
+        content = request.get_data(cache=False)
         try:
-            release = read_release(name, request.get_data(cache=False))
+            release = read_release(name, content)
             if not release.series:
                 said = " ".join(str(problem) for problem in release.problems[:3])
                 return {"message": said or f"{release.name}: no series was found in it"}, 422
             if request.args.get("preview") == "1":
-                return {**_described(release), "token": pending.hold(release)}, 200
+                token = pending.hold(release, name, content)
+                return {**_described(release), "token": token}, 200
             desk.add(release)
         except (IntakeError, ValueError) as error:
             return {"message": str(error)}, 422
@@ -55,6 +57,18 @@ def register(server: Flask, bridge: Bridge) -> None:
             said = "a file is no longer held for a look; open it again"
             return {"message": said, "kept": kept}, 422
         return {"kept": kept}, 200
+
+    @server.post("/intake/sheet")
+    def _sheet() -> Reply:
+        """Read another sheet of a held workbook in place of the one read first."""
+        sent = _sent()
+        token, sheet = sent.get("token"), sent.get("sheet")
+        if not isinstance(token, str) or not isinstance(sheet, str):
+            return {"message": "the page must send a file and a sheet, but did not"}, 422
+        try:
+            return _described(pending.choose(token, sheet)), 200
+        except ValueError as error:
+            return {"message": str(error)}, 422
 
     @server.post("/intake/discard")
     def _discard() -> Reply:

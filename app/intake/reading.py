@@ -15,13 +15,21 @@ from app.intake import csv_files
 from app.intake.archives import archive_names, is_archive, read_archive
 from app.intake.csv_files import FORMATS, read_text, split_rows
 from app.intake.long_csv import plain_long_blocks
-from app.intake.problems import IntakeError, Problem, display_name, quoted, refusal
+from app.intake.problems import (
+    MAX_NAME,
+    IntakeError,
+    Problem,
+    display_name,
+    plain_text,
+    quoted,
+    refusal,
+)
 from app.intake.sdmx_csv import is_sdmx_csv, read_sdmx_csv
 from app.intake.sdmx_json import read_sdmx_json
 from app.intake.sdmx_xml import read_sdmx_xml
 from app.intake.sheets import Metadata, read_columns, read_sheet
 from app.intake.weights import canonical, recognised
-from app.intake.xlsx_files import is_workbook, read_workbook
+from app.intake.xlsx_files import ReadSheet, is_workbook, read_workbook
 
 __all__ = [
     "IntakeError",
@@ -52,11 +60,17 @@ class Release:
         In the order of the file; one that could not be read is left out and is in `problems`.
     problems : tuple of Problem
         Errors, warnings and notes, in that order.
+    sheet : str
+        Sheet of a workbook that was read; empty for other files.
+    sheets : tuple of str
+        All sheets of the workbook.
     """
 
     name: str
     series: tuple[Series, ...]
     problems: tuple[Problem, ...]
+    sheet: str = ""
+    sheets: tuple[str, ...] = ()
 
 
 def read_release(
@@ -82,7 +96,8 @@ def read_release(
     metadata : mapping of str to mapping, optional
         Name of a series to any of its `kind`, `unit`, `adjustment` and `source`.
     sheet : str, optional
-        Sheet of a workbook; the first that holds a readable table if not given.
+        Sheet of a workbook, which is then a part of the name; the first that holds a readable
+        table if not given.
 
     Raises
     ------
@@ -97,20 +112,27 @@ def read_release(
     file = display_name(name)
     if is_archive(content) and not is_workbook(archive_names(file, content)):
         return _archive_release(file, content, metadata, sheet)
-    series, problems = _read_file(file, content, metadata, sheet)
-    return _release(file, series, problems)
+    read = _read_file(file, content, metadata, sheet)
+    name = file if sheet is None else f"{file}, {plain_text(read.sheet, MAX_NAME)}"
+    return replace(_release(file, *read), name=name)
 
 
-def _release(file: str, series: Iterable[Series], problems: Iterable[Problem]) -> Release:
+def _release(
+    file: str,
+    series: Iterable[Series],
+    problems: Iterable[Problem],
+    sheet: str = "",
+    sheets: tuple[str, ...] = (),
+) -> Release:
     """Put problems in order of weight."""
     rank = {"error": 0, "warning": 1, "note": 2}
     found = sorted(problems, key=lambda problem: rank[problem.severity])
-    return Release(file, recognised(file, tuple(series)), tuple(found))
+    return Release(file, recognised(file, tuple(series)), tuple(found), sheet, sheets)
 
 
 def _read_file(
     file: str, content: bytes, metadata: Metadata | None, sheet: str | None
-) -> tuple[list[Series], list[Problem]]:
+) -> ReadSheet:
     """Read a file that is no archive by the reader that its first signs ask for."""
     if is_archive(content):
         return read_workbook(file, content, metadata, sheet)
@@ -131,7 +153,7 @@ def _read_file(
             series, problems = read_columns(file, *plain, quotes=False, metadata=metadata)
         else:
             series, problems = read_sheet(split_rows(file, text), metadata)
-    return series, [*notes, *problems]
+    return ReadSheet(series, [*notes, *problems], "", ())
 
 
 def _archive_release(
@@ -168,6 +190,15 @@ def _archive_release(
             for problem in release.problems
         )
     return _release(file, series, problems)
+
+
+def looks_like_archive(path: str | Path) -> bool:
+    """Tell whether the file at a path begins as workbooks and zip archives do."""
+    try:
+        with Path(path).open("rb") as stream:
+            return is_archive(stream.read(4))
+    except (OSError, ValueError):
+        return False  # reading it says why
 
 
 def read_path(

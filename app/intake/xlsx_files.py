@@ -6,7 +6,7 @@ import warnings
 import zipfile
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, NamedTuple
 
 from analytics.series import Series
 from app.intake.archives import open_archive, unpacked
@@ -44,6 +44,15 @@ class _Workbook:
     hidden: tuple[str, ...]
 
 
+class ReadSheet(NamedTuple):
+    """Series and problems of one sheet, its name, and the names of all sheets of its workbook."""
+
+    series: list[Series]
+    problems: list[Problem]
+    sheet: str
+    sheets: tuple[str, ...]
+
+
 def is_workbook(names: Iterable[str]) -> bool:
     """Tell from the names of its members whether a zip archive is a workbook of the XLSX kind."""
     inside = set(names)
@@ -52,7 +61,7 @@ def is_workbook(names: Iterable[str]) -> bool:
 
 def read_workbook(
     file: str, content: bytes, metadata: Metadata | None = None, sheet: str | None = None
-) -> tuple[list[Series], list[Problem]]:
+) -> ReadSheet:
     """Read the series of a workbook: of `sheet`, else of the first that holds a readable table.
 
     Raises
@@ -105,7 +114,7 @@ def _opened(file: str, content: bytes) -> _Workbook:
 
 def _read_sheets(
     file: str, opened: _Workbook, metadata: Metadata | None, wanted: str | None
-) -> tuple[list[Series], list[Problem]]:
+) -> ReadSheet:
     """Read the sheet that is wanted, else the first readable one that is shown."""
     names = (*opened.shown, *opened.hidden)
     if wanted is not None:
@@ -115,7 +124,7 @@ def _read_sheets(
         if not alike:
             raise refusal(file, f"the sheet must be {_either(names)}, but got {quoted(wanted)}")
         series, problems = _read_one(file, opened, alike[0], metadata)
-        return series, [*problems, *_others(file, alike[0], names)]
+        return ReadSheet(series, [*problems, *_others(file, alike[0], names)], alike[0], names)
     refused: list[tuple[int, str, Problem]] = []
     for name in opened.shown or names:
         try:
@@ -124,7 +133,7 @@ def _read_sheets(
             refused.append((error.problem.row or 0, name, error.problem))
             continue
         if series:
-            return series, [*problems, *_others(file, name, names)]
+            return ReadSheet(series, [*problems, *_others(file, name, names)], name, names)
         errors = [one for one in problems if one.severity == "error"]
         refused.append((MAX_ROWS, name, errors[0]))
     _, name, problem = max(refused, key=lambda entry: entry[0])

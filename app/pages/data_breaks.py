@@ -8,11 +8,11 @@ from dash import html
 from analytics.series import PERIOD_NOUN, Series, period_label
 from app.compute import Bridge
 from app.desk.findings import Found, found_in
+from app.marks import mark_when, mark_words
 from app.pages.data_parts import table
 from app.state import ViewState
 from app.words import counted
 from app.workspace import WorkspaceView
-from app.workspace_rows import period_of
 
 MOST_FINDINGS = 200
 MOST_CHECKED = 300  # series, at about 6 ms each; the command checks all
@@ -120,16 +120,8 @@ def _others(series: Series, period: Any, loaded: Mapping[str, Series]) -> list[s
 def _marks(in_view: WorkspaceView) -> list[Any]:
     rows = []
     for mark in in_view.marks:
-        series = in_view.as_read.get(mark.series)
-        when, noun = mark.period, "period"
-        if series is not None:
-            noun = PERIOD_NOUN[series.frequency]
-            try:
-                when = period_label(period_of(series.frequency, mark.period))
-            except ValueError:
-                noun = "period"
-        said = [each for each in in_view.breaks(mark.series) if f"at {when}" in each]
-        words = said[0] if said else f"{mark.words(noun)}; the series in view has no such {noun}"
+        when = mark_when(mark, in_view)[0]
+        words = mark_words(mark, in_view)
         rows.append(
             (
                 mark.series,

@@ -225,6 +225,7 @@ def preview(found: Sequence[tuple[str, Release]], in_view: WorkspaceView, today:
                     html.Div(
                         [
                             html.H3(release.name),
+                            *_sheets(token, release),
                             html.Button(
                                 "Discard this file",
                                 type="button",
@@ -276,6 +277,17 @@ def preview(found: Sequence[tuple[str, Release]], in_view: WorkspaceView, today:
         )
     )
     return parts
+
+
+def _sheets(token: str, release: Release) -> list[html.Label]:
+    """Return the choice of a sheet, where a workbook has several."""
+    if len(release.sheets) < 2:
+        return []
+    options = [
+        html.Option(name, value=name, selected=name == release.sheet) for name in release.sheets
+    ]
+    chooser = html.Select(options, **{"data-sheet": token, "data-value": release.sheet})
+    return [html.Label([html.Span("Sheet"), chooser], className="control")]
 
 
 STANDS = "The date from which these vintages stand: today, or the day an older release came out."

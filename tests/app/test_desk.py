@@ -1,6 +1,7 @@
 """What the Data page computes: new files against what is kept, revisions, pending files."""
 
 from dataclasses import replace
+from pathlib import Path
 
 import numpy as np
 import pandas as pd
@@ -12,11 +13,13 @@ from app.compute import Bridge
 from app.demo import demo_releases
 from app.desk import bridge as desk
 from app.desk import pending
-from app.intake.reading import Release
+from app.intake.reading import Release, read_release
+from app.pages.data import preview
 from app.state import ViewState
 from app.workspace import Workspace
 
 STATE = ViewState(series="Prices")
+DATA = Path(__file__).resolve().parents[1] / "data"
 
 
 def series(values, first="2024-01", name="Prices", freq="M", **attributes):
@@ -150,3 +153,32 @@ def test_the_oldest_gives_way_when_there_are_too_many(monkeypatch):
     assert [held.found(token) is None for token in tokens] == [True, True, False, False]
     big = held.hold(Release("b.csv", (series(np.arange(1, 100)),), ()))
     assert held.found(big) is not None  # one file is always held
+
+
+def book(name="xlsx_second_sheet"):
+    return (DATA / f"{name}.xlsx").read_bytes()
+
+
+def test_another_sheet_of_a_held_workbook_can_be_read_in_its_place():
+    held = pending.Pending()
+    first = read_release("b.xlsx", book())
+    token = held.hold(first, "b.xlsx", book())
+    second = held.choose(token, "Quarterly")
+    assert held.found(token) is second
+    assert (second.name, second.sheet) == ("b.xlsx, Quarterly", "Quarterly")
+    assert second.series[0].frequency == "quarterly"
+    again = held.choose(token, "Data")  # the one that was read first keeps the plain name
+    assert (again.name, again.sheets) == ("b.xlsx", ("Contents", "Data", "Quarterly"))
+    with pytest.raises(ValueError, match="the period must be a month, a quarter or a year"):
+        held.choose(token, "Contents")
+    assert held.found(token) is again
+    for gone in (held.hold(Release("a.csv", (series([1, 2]),), ()), "a.csv", b"x"), "never"):
+        with pytest.raises(ValueError, match="no longer held"):
+            held.choose(gone, "Data")
+
+
+def test_the_preview_offers_the_sheets_of_a_workbook_and_of_nothing_else():
+    shown = str(preview([("t", read_release("b.xlsx", book()))], Bridge(Workspace())))
+    assert "data-sheet" in shown and "Quarterly" in shown
+    shown = str(preview([("t", read_release("b.xlsx", book("xlsx_plain")))], Bridge(Workspace())))
+    assert "data-sheet" not in shown

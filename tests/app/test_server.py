@@ -7,6 +7,7 @@ import io
 import json
 import re
 from dataclasses import asdict
+from pathlib import Path
 
 import pytest
 from flask.testing import FlaskClient
@@ -635,3 +636,20 @@ def test_an_accident_inside_is_told_without_its_inside(own, monkeypatch, caplog)
     assert b"secret" not in answer.data
     assert answer.json["message"].startswith("something went wrong inside the program")
     assert "secret inside" in caplog.text  # the log has it
+
+
+def test_another_sheet_is_read_by_its_route(own):
+    client, here = own
+    book = (Path(__file__).resolve().parents[1] / "data" / "xlsx_second_sheet.xlsx").read_bytes()
+    token = client.post("/intake?preview=1&name=b.xlsx", data=book).json["token"]
+    other = client.post("/intake/sheet", json={"token": token, "sheet": "Quarterly"})
+    assert (other.status_code, other.json["file"]) == (200, "b.xlsx, Quarterly")
+    refused = client.post("/intake/sheet", json={"token": token, "sheet": "Contents"})
+    assert refused.status_code == 422
+    assert "the period must be a month, a quarter or a year" in refused.json["message"]
+    for sent in ({"token": token}, {"token": 1, "sheet": "Data"}, {"token": "no", "sheet": "Data"}):
+        assert client.post("/intake/sheet", json=sent).status_code == 422
+    assert client.post("/intake/keep", json={"tokens": [token]}).json["kept"][0]["file"] == (
+        "b.xlsx, Quarterly"
+    )
+    assert "b.xlsx, Quarterly" in [release.name for release in here.releases]
