@@ -275,18 +275,18 @@ def line(r):
     )
 
 
-def main(arguments=None):
-    parser = argparse.ArgumentParser(prog="python -m tests.bench.calibration")
+def main(arguments=None, kinds=KINDS, full=FULL, small=SMALL):
+    parser = argparse.ArgumentParser()
     parser.add_argument("--full", action="store_true", help="the number of runs of the record")
     parser.add_argument("--out", type=Path, help="CSV to write and to go on from")
-    parser.add_argument("--kinds", default=",".join(KINDS), help="which of " + ", ".join(KINDS))
+    parser.add_argument("--kinds", default=",".join(kinds), help="which of " + ", ".join(kinds))
     parser.add_argument("--cases", default="", help="only these, separated by semicolons")
     parser.add_argument("--runs", type=int, help="runs for each case, whatever the kind")
     chosen = parser.parse_args(arguments)
     rows = read_rows(chosen.out)
     for kind in chosen.kinds.split(","):
-        measure, cases = KINDS[kind]
-        runs = chosen.runs or (FULL if chosen.full else SMALL)[kind]
+        measure, cases = kinds[kind]
+        runs = chosen.runs or (full if chosen.full else small)[kind]
         wanted = chosen.cases.split(";") if chosen.cases else [case for case, _ in cases]
         for case, months in cases:
             if case not in wanted:

@@ -1,0 +1,77 @@
+"""Other published ways to put intervals around a path, which the one in use is compared with.
+
+Each takes the past errors at one horizon that are known at the date, oldest first, and gives the
+ends of the interval as additions to the path.
+"""
+
+import numpy as np
+
+from analytics.intervals import error_scale, half_width
+from analytics.outlook_target import outlook_target
+from analytics.rates import trailing_mean
+
+
+def newest_errors(errors, horizon, level):
+    """The one in use: Student's t on what the newest 60 % of the errors are worth."""
+    scale, freedom, _ = error_scale(errors, horizon)
+    half = float(half_width(scale[-1], freedom[-1], level))
+    return -half, half
+
+
+def empirical_quantiles(errors, horizon, level):
+    """Signed quantiles of all past errors, with the (n + 1) rule of conformal prediction."""
+    ordered, n = np.sort(errors), errors.size
+    place = max(0, int(np.floor((n + 1) * (1.0 - level) / 2.0)) - 1)
+    return ordered[place], ordered[n - 1 - place]
+
+
+def adaptive_conformal(errors, horizon, level, rate=0.005, start=24):
+    """Gibbs and Candes (2021): the level moves with hits and misses, h periods late.
+
+    Scores are absolute errors, the calibration set all that are known.
+    """
+    scores = np.abs(errors)
+    ordered = np.sort(scores[:start]).tolist()
+    missing, asked = 1.0 - level, {}
+    for known in range(start, scores.size + 1):
+        if known > start:
+            ordered.insert(int(np.searchsorted(ordered, scores[known - 1])), scores[known - 1])
+        made = known - 1  # the forecast whose outcome has just arrived
+        if made in asked:
+            missing += rate * ((1.0 - level) - (scores[made] > asked[made]))
+        place = int(np.ceil((known + 1) * (1.0 - np.clip(missing, 0.0, 1.0)))) - 1
+        asked[known + horizon - 1] = ordered[min(max(place, 0), known - 1)]
+    half = asked[scores.size + horizon - 1]
+    return -half, half
+
+
+def block_bootstrap(driver, response, *, window, shift, horizons, draws, rng, block=24):
+    """Moving blocks of the monthly residuals (Kunsch 1989), the line fitted anew in each draw.
+
+    Returns draws of the yearly rate less the path, shape (draws, len(horizons)).
+    """
+    yearly = outlook_target("yearly", window=window)
+    n = response.size
+    xs = trailing_mean(driver, window)[: n - window + 1 - shift]
+    away = xs - xs.mean()
+
+    def line(ys):
+        slope = (ys - ys.mean(axis=-1, keepdims=True)) @ away / (away @ away)
+        return ys.mean(axis=-1) - slope * xs.mean(), slope
+
+    intercept, slope = line(trailing_mean(response, window)[shift:])
+    fitted = intercept + slope * driver[: n - shift]
+    residuals = response[shift:] - fitted
+    residuals = residuals - residuals.mean()
+    longest, pool = max(horizons), residuals.size
+    blocks = -(-(pool + longest) // block)
+    starts = rng.integers(0, pool - block + 1, (draws, blocks))
+    noise = residuals[(starts[..., None] + np.arange(block)).reshape(draws, -1)]
+    world = fitted + noise[:, :pool]
+    means = np.lib.stride_tricks.sliding_window_view(world, window, axis=1).mean(axis=2)
+    a, b = line(means)
+    ahead = driver[n - shift : n - shift + longest]
+    truth = intercept + slope * ahead + noise[:, pool : pool + longest]
+    missed = np.cumsum(truth - (a[:, None] + b[:, None] * ahead), axis=1)
+    missed = np.concatenate((np.zeros((draws, 1)), missed), axis=1)
+    return np.stack([missed[:, h] - missed[:, max(0, h - yearly.span)] for h in horizons], axis=1)
