@@ -76,7 +76,17 @@ class Bridge:
         Raises
         ------
         ValueError
-            One sentence: unknown name, gap, no overlap, no growth rate, no season to take out.
+            As in `rates`, or the two do not overlap.
+        """
+        return align(*self.rates(state))
+
+    def rates(self, state: ViewState) -> tuple[Series, Series]:
+        """Growth rates of driver and response, each over its own part of the sample.
+
+        Raises
+        ------
+        ValueError
+            One sentence: unknown name, no growth rate, no season to take out.
         """
         in_view = self.in_view(state)
         loaded = list(in_view.series)
@@ -91,11 +101,10 @@ class Bridge:
             )
         formula: Any = state.growth
         used = self.prepared(state)
-        rates = [
-            _sample(growth_rate(series, formula=formula), state)
-            for series in (used.driver, used.response)
-        ]
-        return align(rates[0], rates[1])
+        return (
+            _sample(growth_rate(used.driver, formula=formula), state),
+            _sample(growth_rate(used.response, formula=formula), state),
+        )
 
     def prepared(self, state: ViewState) -> Prepared:
         """Return driver and response as they are paired: breaks, season and frequency seen to."""

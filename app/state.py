@@ -9,6 +9,7 @@ from typing import Any, cast
 from urllib.parse import parse_qsl, urlencode
 
 from app.breadth import fields as breadth_fields
+from app.outlook import fields as outlook_fields
 from app.reading import fields as reading_fields
 from app.state_kinds import (
     NAME,
@@ -234,6 +235,13 @@ class ViewState:
     shortest: int = _state(3, reading_fields.SHORTEST)
     gap: int = _state(1, reading_fields.GAP)
     timeline: str = _state("rates", reading_fields.TIMELINE)
+    target: str = _state("yearly", outlook_fields.TARGET)
+    scheme: str = _state("expanding", outlook_fields.SCHEME)
+    cells: str = _state("remade", outlook_fields.CELLS)
+    ahead: str = _state("year", outlook_fields.AHEAD)
+    against: str = _state("no change", outlook_fields.AGAINST)
+    others: str = _state("", outlook_fields.OTHERS)
+    recent: str = _state("10", outlook_fields.RECENT)
     # The Data page
     revised: str = _state(
         "growth",

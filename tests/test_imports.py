@@ -53,9 +53,12 @@ RULES = {
         "analytics app click dash flask flask_caching numpy pandas plotly waitress werkzeug"
     ),
     "app/brief/": rule("analytics app dash kaleido markdown_it numpy tomli_w"),
-    "app/state.py": rule("analytics app.state_kinds app.breadth.fields app.reading.fields"),
+    "app/state.py": rule(
+        "analytics app.state_kinds app.breadth.fields app.outlook.fields app.reading.fields"
+    ),
     "app/state_kinds.py": rule("analytics"),
     "app/breadth/fields.py": rule("app.state_kinds"),
+    "app/outlook/fields.py": rule("app.state_kinds"),
     "app/reading/fields.py": rule("app.state_kinds"),
     "app/intake/": rule("analytics app.intake app.places numpy openpyxl pandas"),
     "app/figures/": rule(

@@ -44,7 +44,8 @@ def report(
     """Return what is known about the print, the JSON answer and the lines to print."""
     known = completed_reading(state, bridge)
     kept = kept_statements(bridge.workspace.statement_store)
-    found = set_off(known, rules, stated_bounds(kept, known.series.name, known.series.last))
+    name, last = known.series.name, known.series.last
+    found = set_off(known, rules, stated_bounds(kept, name, last, state.formula))
     values = quantities(known)
     said = [sentence(known), *verdict(known)]
     rates = [

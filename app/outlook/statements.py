@@ -12,35 +12,21 @@ from typing import Any
 import numpy as np
 import pandas as pd
 
+from analytics.intervals import Fan
 from analytics.series import FloatArray, read_only
+from analytics.surface import locked
 from app.intake.problems import plain_text
 from app.reading.alerts import OUTLOOK, STATED, bound_name
 from app.store import Store, now
 from app.workspace_rows import period_of
 
 LONGEST = 4000  # signs of words
+FAN = ("ahead", "centre", "scale", "freedom", "errors")
 TARGET_OF = {"rate_1m": "single", "rate_12m": "yearly"}  # quantity of a rule -> stated path
 
 
 class StatementError(ValueError):
     """A statement that cannot be kept; the text is one sentence for the user."""
-
-
-@dataclass(frozen=True, eq=False)
-class StatedPath:
-    """One quantity, for the periods after the origin.
-
-    Attributes
-    ----------
-    point : ndarray of float, shape (H,)
-        Percent.
-    low, high : ndarray of float, shape (L, H)
-        Ends of the intervals at the levels of the statement.
-    """
-
-    point: FloatArray
-    low: FloatArray
-    high: FloatArray
 
 
 @dataclass(frozen=True, eq=False)
@@ -61,8 +47,8 @@ class Statement:
         Last period that was observed, such as ``2026-10``.
     levels : tuple of float
         Of the intervals, such as 0.5, 0.8 and 0.95.
-    paths : mapping of str to StatedPath
-        Yearly, window and single, as in `analytics.outlook_target`.
+    paths : mapping of str to Fan
+        Yearly, window and single, as in `analytics.outlook_target`, in percent.
     words : str
         The user's own.
     sources : tuple of (str, str, str)
@@ -85,7 +71,7 @@ class Statement:
     compounding: str
     origin: str
     levels: tuple[float, ...]
-    paths: Mapping[str, StatedPath]
+    paths: Mapping[str, Fan]
     words: str
     sources: tuple[tuple[str, str, str], ...]
     state: str
@@ -104,15 +90,15 @@ class Statement:
     @property
     def horizon(self) -> int:
         """Periods ahead that it speaks of."""
-        return max(path.point.size for path in self.paths.values())
+        return max(fan.centre.size for fan in self.paths.values())
 
     def interval(self, target: str, level: float, period: pd.Period) -> tuple[float, float]:
         """Return what it says of one period; nan where it says nothing."""
-        path, ahead = self.paths.get(target), period.ordinal - self.start.ordinal
-        if path is None or level not in self.levels or not 1 <= ahead <= path.point.size:
+        fan, ahead = self.paths.get(target), period.ordinal - self.start.ordinal
+        if fan is None or not 1 <= ahead <= fan.centre.size:
             return math.nan, math.nan
-        row = self.levels.index(level)
-        return float(path.low[row, ahead - 1]), float(path.high[row, ahead - 1])
+        low, high = fan.band(level)
+        return float(low[ahead - 1]), float(high[ahead - 1])
 
 
 @dataclass(frozen=True, eq=False)
@@ -176,11 +162,13 @@ def kept_statements(store: Store) -> Kept:
     return Kept(tuple(found), tuple(refused), successor)
 
 
-def stated_bounds(kept: Kept, response: str, period: pd.Period) -> dict[str, float]:
+def stated_bounds(
+    kept: Kept, response: str, period: pd.Period, formula: str = "percent"
+) -> dict[str, float]:
     """Return the intervals stated for a print, under the names that alert rules look for.
 
     They are those of the newest statement of the response that was made before the period and
-    still stands.
+    still stands, in the formula of the reading.
     """
     for said in reversed(kept.statements):
         if said.response != response or said.id in kept.successor:
@@ -195,45 +183,48 @@ def stated_bounds(kept: Kept, response: str, period: pd.Period) -> dict[str, flo
                 level = int(name.rpartition("_")[2]) / 100
                 ends = said.interval(TARGET_OF[quantity], level, period)
                 for side, end in zip(("low", "high"), ends, strict=True):
-                    bounds[bound_name(quantity, name, side)] = end
+                    bounds[bound_name(quantity, name, side)] = _as(formula, end, said.compounding)
         return bounds
     return {}
+
+
+def _as(formula: str, rate: float, compounding: str) -> float:
+    """Turn a rate by one formula into the same rate by the other; a mean stays."""
+    if compounding == "log" and formula == "percent":
+        return 100.0 * math.expm1(rate / 100.0)
+    if compounding == "percent" and formula == "log":
+        return 100.0 * math.log1p(rate / 100.0) if rate > -100.0 else -math.inf
+    return rate
 
 
 def _content(said: Statement) -> dict[str, Any]:
     given = {"words", "paths", "state", "id", "at", "day"}  # elsewhere, or by the workspace
     plain = {one.name: getattr(said, one.name) for one in fields(said) if one.name not in given}
-    paths = {
-        target: {part: _listed(getattr(path, part)) for part in ("point", "low", "high")}
-        for target, path in said.paths.items()
-    }
+    paths = {}
+    for target, fan in said.paths.items():
+        bands = [fan.band(level) for level in said.levels]
+        paths[target] = {
+            **{part: _listed(getattr(fan, part)) for part in FAN},
+            "low": [_listed(low) for low, _ in bands],  # for those who read the file without us
+            "high": [_listed(high) for _, high in bands],
+        }
     return {**plain, "paths": paths}
 
 
 def _listed(values: FloatArray) -> Any:
     """Return numbers as JSON has them: nothing where one is not finite."""
-    if values.ndim > 1:
-        return [_listed(row) for row in values]
     return [value if math.isfinite(value) else None for value in values.tolist()]
 
 
 def _statement(row: Any) -> Statement:
     content = _read(row["content"])
-    paths = {
-        str(target): StatedPath(
-            *(
-                read_only(np.array(path[part], dtype=np.float64))
-                for part in ("point", "low", "high")
-            )
-        )
-        for target, path in content["paths"].items()
-    }
-    levels = tuple(float(level) for level in content["levels"])
-    for path in paths.values():
-        if path.point.ndim != 1 or path.low.shape != path.high.shape:
-            raise ValueError("a path must have as many bounds as points")
-        if path.low.shape != (len(levels), path.point.size):
-            raise ValueError("a path must have bounds at every level")
+    paths = {}
+    for target, path in content["paths"].items():
+        parts = {part: read_only(path[part]) for part in FAN}
+        if {part.shape for part in parts.values()} != {(len(path["centre"]),)}:
+            raise ValueError("a path must have as many scales as points")
+        whole = {part: locked(parts[part].astype(np.int64)) for part in ("ahead", "errors")}
+        paths[str(target)] = Fan(**{**parts, **whole})
     said = Statement(
         driver=tuple(str(name) for name in content["driver"]),
         response=str(content["response"]),
@@ -242,7 +233,7 @@ def _statement(row: Any) -> Statement:
         shift=int(content["shift"]),
         compounding=str(content["compounding"]),
         origin=str(content["origin"]),
-        levels=levels,
+        levels=tuple(float(level) for level in content["levels"]),
         paths=paths,
         words=str(content["words"]),
         sources=tuple((str(a), str(b), str(c)) for a, b, c in content["sources"]),

@@ -130,7 +130,8 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
     known = reading(state, bridge)
     rules, refused = rules_in_force(bridge.workspace.store)
     kept = kept_statements(bridge.workspace.statement_store)
-    found = set_off(known, rules, stated_bounds(kept, known.series.name, known.series.last))
+    name, last = known.series.name, known.series.last
+    found = set_off(known, rules, stated_bounds(kept, name, last, state.formula))
     waiting = known.fits and known.goodness is None and "test" not in known.refused
     said = sentence(known)
     return plain.Answer(

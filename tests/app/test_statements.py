@@ -7,14 +7,15 @@ from dataclasses import replace
 import numpy as np
 import pandas as pd
 import pytest
+from scipy.special import stdtrit
 
+from analytics.intervals import Fan
 from analytics.series import Series
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.intake.reading import Release
 from app.outlook.statements import (
     LONGEST,
-    StatedPath,
     Statement,
     StatementError,
     keep_statement,
@@ -31,9 +32,11 @@ LEVELS = (0.5, 0.8, 0.95)
 
 
 def path(middle, half):
+    """A fan whose 80 % interval reaches `half` to each side; hundreds of degrees of freedom."""
     point = np.array(middle, dtype=float)
-    halves = np.array(half)[:, None] * np.ones(point.size)
-    return StatedPath(point, point - halves, point + halves)
+    wide = np.full(point.size, 500.0)
+    scale = np.full(point.size, half / stdtrit(500.0, 0.9))
+    return Fan(np.arange(1, point.size + 1), point, scale, wide, wide.astype(np.int64))
 
 
 def said(**changes):
@@ -43,12 +46,12 @@ def said(**changes):
         frequency="monthly",
         window=12,
         shift=24,
-        compounding="log",
+        compounding="percent",
         origin="2024-10",
         levels=LEVELS,
         paths={
-            "yearly": path([2.0, 2.1, 0.1 + 0.2], [0.5, 1.0, 2.0]),
-            "single": path([0.2, 0.1, np.nan], [0.1, 0.2, 0.4]),
+            "yearly": path([2.0, 2.1, 0.1 + 0.2], 1.0),
+            "single": path([0.2, 0.1, np.nan], 0.2),
         },
         words="Prices calm down.\nSlowly.",
         sources=(("Broad money", "0123456789abcdef", "2024-11"),),
@@ -74,16 +77,16 @@ def test_a_statement_comes_back_to_the_last_digit(store):
     for name in ("driver", "response", "origin", "levels", "sources", "state", "method"):
         assert getattr(back, name) == getattr(first, name)
     for target, one in first.paths.items():
-        for part in ("point", "low", "high"):
+        for part in ("ahead", "centre", "scale", "freedom", "errors"):
             np.testing.assert_array_equal(getattr(back.paths[target], part), getattr(one, part))
 
 
 def test_it_says_its_interval_for_a_period(store):
     one = said()
-    assert one.interval("yearly", 0.8, pd.Period("2024-12", "M")) == (1.1, 3.1)
+    found = one.interval("yearly", 0.8, pd.Period("2024-12", "M"))
+    assert found == pytest.approx((1.1, 3.1), abs=1e-12)
     for nothing in (
         one.interval("window", 0.8, pd.Period("2024-12", "M")),
-        one.interval("yearly", 0.9, pd.Period("2024-12", "M")),
         one.interval("yearly", 0.8, pd.Period("2024-10", "M")),
         one.interval("yearly", 0.8, pd.Period("2025-02", "M")),
     ):
@@ -150,7 +153,12 @@ def test_statements_make_the_round_trip_through_a_folder(tmp_path, store):
 
 @pytest.mark.parametrize(
     "content",
-    ["prices rise", "[]", "{}", json.dumps({"paths": {"yearly": {"point": [1]}}, "levels": [0.5]})],
+    [
+        "prices rise",
+        "[]",
+        "{}",
+        json.dumps({"paths": {"yearly": {"centre": [1]}}, "levels": [0.5]}),
+    ],
 )
 def test_one_that_cannot_be_read_is_named_and_the_rest_stands(content):
     store = Store()
@@ -168,16 +176,23 @@ def test_bounds_for_an_alert_are_those_of_the_newest_statement_that_stands(store
     period = pd.Period("2024-11", "M")
     kept = kept_statements(store)
     found = stated_bounds(kept, "Consumer prices", period)
-    assert (found["rate_12m_outlook_80_low"], found["rate_12m_outlook_80_high"]) == (1.0, 3.0)
-    assert (found["rate_1m_outlook_50_low"], found["rate_1m_outlook_95_low"]) == (0.1, -0.2)
+    ends = [found[f"rate_12m_outlook_80_{side}"] for side in ("low", "high")]
+    assert ends == pytest.approx([1.0, 3.0], abs=1e-12)
+    assert found["rate_1m_outlook_80_low"] == pytest.approx(0.0, abs=1e-12)
+    assert found["rate_12m_outlook_95_low"] < found["rate_12m_outlook_80_low"]
+    logs = stated_bounds(kept, "Consumer prices", period, "log")
+    assert logs["rate_12m_outlook_80_high"] == pytest.approx(100 * np.log(1.03), abs=1e-12)
     assert stated_bounds(kept, "Consumer prices", pd.Period("2024-10", "M")) == {}
     assert stated_bounds(kept, "Consumer prices", pd.Period("2025-02", "M")) == {}
     assert stated_bounds(kept, "Consumer prices", pd.Period("2024Q4", "Q-DEC")) == {}
-    higher = {"yearly": path([9.0, 9.0], [0.5, 1.0, 2.0])}
+    higher = {"yearly": path([9.0, 9.0], 1.0)}
     keep_statement(store, said(paths=higher, supersedes=first), "2024-11-13")
     found = stated_bounds(kept_statements(store), "Consumer prices", period)
-    assert found["rate_12m_outlook_80_low"] == 8.0
+    assert found["rate_12m_outlook_80_low"] == pytest.approx(8.0, abs=1e-12)
     assert np.isnan(found["rate_1m_outlook_50_low"])
+    keep_statement(store, said(compounding="log"), "2024-11-14")
+    found = stated_bounds(kept_statements(store), "Consumer prices", period)
+    assert found["rate_12m_outlook_80_high"] == pytest.approx(100 * np.expm1(0.03), abs=1e-12)
 
 
 def test_a_print_outside_what_was_stated_raises_an_alert_on_the_reading_page():
