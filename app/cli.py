@@ -15,6 +15,7 @@ import click
 from app.commands import parts as cli_parts
 from app.commands.breadth import breadth
 from app.commands.brief import brief
+from app.commands.outlook import outlook
 from app.commands.parts import errors, print_json, state_of, workspace_of, write
 from app.commands.workspace import workspace
 from app.places import software_version
@@ -263,6 +264,7 @@ def reading(
 
 pricewake.add_command(breadth)
 pricewake.add_command(brief)
+pricewake.add_command(outlook)
 pricewake.add_command(workspace)
 
 

@@ -8,15 +8,22 @@ from app import exports
 from app.breadth import exports as breadth_exports
 from app.desk import exports as data_exports
 from app.lag.evidence import WORK
-from app.pages import breadth, data, lag, reading
+from app.outlook import exports as outlook_exports
+from app.outlook.work import WORK as OUTLOOK_WORK
+from app.pages import breadth, data, lag, outlook, reading
 from app.reading import exports as reading_exports
 from app.reading.bridge import WORK as READING_WORK
 
-PAGES = (data, reading, breadth, lag)
-WORKS = {"lag": WORK, "reading": READING_WORK}  # page name -> kind -> (state, bridge) -> long work
+PAGES = (data, reading, breadth, lag, outlook)
+WORKS = {
+    "lag": WORK,
+    "outlook": OUTLOOK_WORK,
+    "reading": READING_WORK,
+}  # page name -> kind -> (state, bridge) -> long work
 EXPORTS = {
     "breadth": breadth_exports.csv_export,
     "lag": exports.csv_export,
     "data": data_exports.csv_export,
+    "outlook": outlook_exports.csv_export,
     "reading": reading_exports.csv_export,
 }  # page name -> (view, query, bridge) -> file name, text

@@ -117,6 +117,8 @@
     const chosen = event.target.closest && event.target.closest("[data-set]");
     if (!chosen || !root() || !page.state) return;
     page.state = { ...page.state, [chosen.dataset.set]: chosen.dataset.value };
+    const field = controls.field(chosen.dataset.set);
+    if (field) field.value = chosen.dataset.value;
     send();
   });
 

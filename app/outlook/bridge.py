@@ -3,7 +3,7 @@
 Each part is worked out by itself: what cannot be said gives one sentence, and the rest stands.
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Collection
 from dataclasses import replace
 from typing import Any, TypeVar
 
@@ -19,7 +19,7 @@ from analytics.outlook import implied_path, relation_gap
 from analytics.past_coverage import past_coverage
 from analytics.path_intervals import path_fan, relation_errors
 from app.compute import Bridge
-from app.outlook.inputs import Inputs, dates_of, inputs, outlook_key, past_views
+from app.outlook.inputs import Inputs, inputs, outlook_key, past_views
 from app.outlook.judging import judged_statements, running
 from app.outlook.result import DriverLine, Outlook
 from app.outlook.statements import kept_statements
@@ -28,49 +28,76 @@ from app.state import ViewState
 
 T = TypeVar("T")
 EQUAL, WEIGHED = "mean of the drivers", "weighed by past errors"
+MOST_OFFERED = 10
 COMBINED = {EQUAL: "equal", WEIGHED: "past errors"}
 
 
-def outlook(state: ViewState, bridge: Bridge) -> Outlook:
+def outlook(state: ViewState, bridge: Bridge, asked: Collection[str] = ()) -> Outlook:
     """Gather all that is known about an outlook without doing any long work.
+
+    A window or shift outside the map gives way to the usual one, unless it is named in `asked`:
+    then it is kept, and refused where the sample does not allow it.
 
     Raises
     ------
     ValueError
         There are no two series that can be paired.
     """
-    state = bridge.fitted(state)
+    wanted, state = state, bridge.fitted(state, asked)
+    changed = tuple(
+        f"A {name} of {getattr(wanted, name)} is more than this sample allows;"
+        f" {getattr(state, name)} is shown."
+        for name in ("window", "shift")
+        if getattr(wanted, name) != getattr(state, name)
+    )
     key = outlook_key("outlook", state, bridge, ("target",))
     core = bridge.memory.once(key, lambda: _core(inputs(state, bridge)))
     refused = dict(core.refused)
     built: dict[str, Any] = {}
     if core.path is not None:
         built = _tested(state, core, bridge, refused)
-    kept = kept_statements(bridge.workspace.statement_store)
+    found, kept = inputs(state, bridge), kept_statements(bridge.workspace.statement_store)
     judged = judged_statements(kept, state, bridge)
     return replace(
         core,
         state=state,
-        found=inputs(state, bridge),
+        found=replace(found, notes=(*changed, *found.notes)),
         kept=kept,
         judged=judged,
         running=running(judged, kept),
         refused=refused,
+        offered=_offered(state, bridge),
         **built,
     )
 
 
+def _offered(state: ViewState, bridge: Bridge) -> tuple[str, ...]:
+    """Name up to ten further series, those of the response's frequency first."""
+    series = bridge.in_view(state).series
+    frequency = series[state.response].frequency
+    names = [name for name in series if name not in (state.driver, state.response)]
+    names.sort(key=lambda name: series[name].frequency != frequency)
+    return tuple(names[:MOST_OFFERED])
+
+
 def completed_outlook(
-    state: ViewState, bridge: Bridge, told: Callable[[int, int], None] | None = None
+    state: ViewState,
+    bridge: Bridge,
+    asked: Collection[str] = (),
+    told: Callable[[int, int], None] | None = None,
 ) -> Outlook:
     """Do the long work as well, and gather all; `told` hears of done and total chunks."""
-    known = outlook(state, bridge)
+    known = outlook(state, bridge, asked)
     while (waiting := waiting_work(known, bridge)) is not None:
-        progress = bridge.jobs.step(waiting)
+        try:
+            progress = bridge.jobs.step(waiting)
+        except ValueError:  # the sentence is kept, and stands in `refused` from now on
+            known = outlook(state, bridge, asked)
+            continue
         if told:
             told(progress.done, progress.total)
         if progress.result is not None:
-            known = outlook(state, bridge)
+            known = outlook(state, bridge, asked)
     return known
 
 
@@ -177,7 +204,7 @@ def _tested(
         "backtest": done,
         "scores": scores[0],
         "added": scores[1],
-        "gain": (dates_of(found, places), gain),
+        "gain": (found.pair.response.periods[places], gain),
         "dated": len(past_views(found, bridge).days.keys() & set(done.origins.tolist())),
     }
     try:
@@ -216,13 +243,10 @@ def _lines(
     """Put single drivers and their combinations side by side, on the same target.
 
     Today's path of a driver is that of the cell that its backtest uses today, so that what is
-    combined is what was judged.
+    combined is what was judged. Beyond its shift a driver says the mean of the past.
     """
     tests = {state.driver: done, **others.tests}
     row, ahead = done.row(RELATION), min(core.found.ahead, core.found.horizon)
-    reach = min(
-        [max(1, int(test.shifts[-1])) for test in tests.values()] + [done.forecasts.shape[2]]
-    )
     weights = np.full(len(tests), 1.0 / len(tests))
     if len(tests) > 1:
         weights = combination_weights(
@@ -233,7 +257,7 @@ def _lines(
             name=name,
             window=int(test.windows[-1]),
             shift=int(test.shifts[-1]),
-            path=test.forecasts[row, -1, : int(test.shifts[-1])],
+            path=test.forecasts[row, -1],
             scores=scores if name == state.driver else backtest_scores(test, RELATION),
             weight=float(weights[place]),
         )
@@ -247,7 +271,7 @@ def _lines(
                     name,
                     None,
                     None,
-                    mixed.forecasts[row, -1, :reach],
+                    mixed.forecasts[row, -1],
                     backtest_scores(mixed, RELATION),
                 )
             )

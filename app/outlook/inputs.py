@@ -6,7 +6,6 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
-import pandas as pd
 
 from analytics.outlook_pair import OutlookPair, break_in_path, outlook_pair
 from analytics.outlook_target import Target, TargetKind, outlook_target
@@ -202,8 +201,3 @@ def vintages_of(
         return (driver, response) if not np.isnan(driver).any() else newest
 
     return then
-
-
-def dates_of(found: Inputs, places: Any) -> pd.PeriodIndex:
-    """Return the periods of the response at places counted from its first."""
-    return found.pair.response.first + np.asarray(places)

@@ -92,6 +92,8 @@ class Outlook:
         Coverage of the statements that stand, by target.
     refused : mapping of str to str
         Part to the sentence that says why it is missing.
+    offered : tuple of str
+        Some series that may be further drivers.
     """
 
     state: ViewState
@@ -113,6 +115,7 @@ class Outlook:
     running: Mapping[str, RunningCoverage] = field(default_factory=dict)
     refused: Mapping[str, str] = field(default_factory=dict)
     levels: tuple[float, ...] = LEVELS
+    offered: tuple[str, ...] = ()
 
     @property
     def reach(self) -> int:
@@ -123,6 +126,11 @@ class Outlook:
     def periods(self) -> pd.PeriodIndex:
         """The periods of the path."""
         return self.found.pair.ahead(self.reach)
+
+    @property
+    def added_share(self) -> FloatArray | None:
+        """Share of the squared errors of past forecasts that the driver took away, by horizon."""
+        return None if self.added is None else 1.0 - self.added.ratio[0] ** 2
 
     def coverage_off(self, row: int, horizon: int) -> Coverage | None:
         """Return the past coverage of a level where its own interval leaves the level out."""
