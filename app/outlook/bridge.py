@@ -16,7 +16,6 @@ from analytics.direct import direct_forecasts
 from analytics.forecasts import DIRECT, OWN_PAST, RELATION, choice_at
 from analytics.intervals import error_fan
 from analytics.outlook import implied_path, relation_gap
-from analytics.past_coverage import past_coverage
 from analytics.path_intervals import path_fan, relation_errors
 from app.compute import Bridge
 from app.outlook.inputs import Inputs, inputs, outlook_key, past_views
@@ -157,7 +156,6 @@ def _core(found: Inputs) -> Outlook:
             errors = np.full((0, path.ahead.size), np.nan)
         built |= {
             "fan": error_fan(centre[state.target], errors),
-            "held": past_coverage(errors),
             "direct": part("direct", lambda: _direct(found)),
         }
     return Outlook(state=state, found=found, history=target.observed(y), refused=refused, **built)

@@ -208,29 +208,33 @@ def _coverage_rows(known: Outlook) -> Rows:
         "christoffersen_p",
         "both_p",
     )
-    tables: list[tuple[str, Any, Any, Any]] = [("fan", known.held, None, None)]
-    if known.scores is not None:
-        scores = known.scores
-        tables.append(("backtest", scores.coverage, scores.share, scores.intervals))
-    for rule, coverage, share, count in tables:
-        for row, level in enumerate(known.levels[: len(coverage)]):
-            for i, seen in enumerate(coverage[row]):
-                yield (
-                    rule,
-                    i + 1,
-                    level,
-                    None if share is None else float(share[row, i]),
-                    None if count is None else int(count[i]),
-                    seen.share,
-                    seen.low,
-                    seen.high,
-                    seen.n,
-                    seen.kupiec,
-                    seen.p_kupiec,
-                    seen.christoffersen,
-                    seen.p_christoffersen,
-                    seen.p_both,
-                )
+    nothing = [None] * 5
+    for row, level in enumerate(known.levels):
+        for h in range(1, known.reach + 1):
+            if seen := known.held(row, h):
+                share = (seen.share, seen.low, seen.high, seen.n)
+                yield "intervals drawn", h, level, None, None, *share, *nothing
+    scores = known.scores
+    if scores is None:
+        return
+    for row, level in enumerate(scores.levels):
+        for i, found in enumerate(scores.coverage[row]):
+            yield (
+                "backtest",
+                i + 1,
+                level,
+                float(scores.share[row, i]),
+                int(scores.intervals[i]),
+                found.share,
+                found.low,
+                found.high,
+                found.n,
+                found.kupiec,
+                found.p_kupiec,
+                found.christoffersen,
+                found.p_christoffersen,
+                found.p_both,
+            )
 
 
 def _through_rows(known: Outlook) -> Rows:

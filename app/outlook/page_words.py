@@ -86,7 +86,7 @@ def _fan(known: Outlook) -> list[Any]:
         said.append(
             html.P(
                 f"Drawn at each past date, {at} ahead, the intervals did not hold as named:"
-                f" {'; '.join(held)} of outcomes that do not overlap."
+                f" {_held_shares(known)}. An interval that is off says so on the chart."
             )
         )
     else:
@@ -107,12 +107,12 @@ def _fan(known: Outlook) -> list[Any]:
 
 
 def _held_shares(known: Outlook) -> str:
-    place = min(known.found.ahead, known.reach) - 1
-    seen = [(level, row[place]) for level, row in zip(known.levels, known.held, strict=True)]
-    if not seen[0][1].n:
+    at = min(known.found.ahead, known.reach)
+    seen = [each for row in range(len(known.levels)) if (each := known.held(row, at))]
+    if not seen:
         return "too few past dates to say"
-    shares = ", ".join(f"{100 * level:.0f} % held {100 * each.share:.0f} %" for level, each in seen)
-    return f"{shares} of {seen[0][1].n} outcomes that do not overlap"
+    shares = ", ".join(f"{100 * each.level:.0f} % held {100 * each.share:.0f} %" for each in seen)
+    return f"{shares}; past outcomes that do not overlap: {seen[0].n}"
 
 
 def _gap(known: Outlook) -> list[Any]:

@@ -8,7 +8,7 @@ import pandas as pd
 from analytics.backtest import Backtest
 from analytics.backtest_scores import Scores
 from analytics.direct import DirectForecasts
-from analytics.forecast_tests import Coverage
+from analytics.forecast_tests import wilson
 from analytics.intervals import LEVELS, Fan
 from analytics.outlook import ImpliedPath, RelationGap
 from analytics.series import FloatArray
@@ -18,6 +18,32 @@ from app.outlook.statements import Kept, Statement
 from app.state import ViewState
 
 OFF_FROM = 8  # outcomes that an interval's past coverage must have to be judged
+
+
+@dataclass(frozen=True)
+class Held:
+    """How often an interval of a level held in the past.
+
+    Attributes
+    ----------
+    level, share : float
+        As named, and as seen over all past dates, whose outcomes overlap.
+    n : int
+        Outcomes that do not overlap: so many the share is worth.
+    low, high : float
+        Wilson's 95 % interval of the share for that number.
+    """
+
+    level: float
+    share: float
+    n: int
+    low: float
+    high: float
+
+    @property
+    def off(self) -> bool:
+        """Whether the level lies outside what the past allows."""
+        return self.n >= OFF_FROM and not self.low <= self.level <= self.high
 
 
 @dataclass(frozen=True, eq=False)
@@ -69,8 +95,6 @@ class Outlook:
         What the cell implies.
     fan : Fan or None
         The target's path with its distribution.
-    held : tuple
-        Past coverage of the fan's intervals, as of `analytics.past_coverage`.
     gap : RelationGap or None
         Expected and observed, through time.
     direct : DirectForecasts or None
@@ -101,7 +125,6 @@ class Outlook:
     history: FloatArray
     path: ImpliedPath | None = None
     fan: Fan | None = None
-    held: tuple[tuple[Coverage, ...], ...] = ()
     gap: RelationGap | None = None
     direct: DirectForecasts | None = None
     backtest: Backtest | None = None
@@ -132,11 +155,13 @@ class Outlook:
         """Share of the squared errors of past forecasts that the driver took away, by horizon."""
         return None if self.added is None else 1.0 - self.added.ratio[0] ** 2
 
-    def coverage_off(self, row: int, horizon: int) -> Coverage | None:
-        """Return the past coverage of a level where its own interval leaves the level out."""
-        if not self.held or horizon > len(self.held[row]):
+    def held(self, row: int, horizon: int) -> Held | None:
+        """Return how often an interval of the fan held in the past, None where nobody knows."""
+        if self.fan is None or not 1 <= horizon <= self.fan.ahead.size:
             return None
-        seen = self.held[row][horizon - 1]
-        level = self.levels[row]
-        off = seen.n >= OFF_FROM and not seen.low <= level <= seen.high
-        return seen if off else None
+        share = float(self.fan.measured[row, horizon - 1])
+        n = int(self.fan.judged[horizon - 1]) // horizon
+        if not n:
+            return None
+        low, high = wilson(round(share * n), n)
+        return Held(self.levels[row], share, n, low, high)

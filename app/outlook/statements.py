@@ -21,7 +21,7 @@ from app.store import Store, now
 from app.workspace_rows import period_of
 
 LONGEST = 4000  # signs of words
-FAN = ("ahead", "centre", "scale", "freedom", "errors")
+NUMBERS, COUNTS = ("centre", "scale", "freedom"), ("ahead", "errors", "judged")
 TARGET_OF = {"rate_1m": "single", "rate_12m": "yearly"}  # quantity of a rule -> stated path
 
 
@@ -204,7 +204,8 @@ def _content(said: Statement) -> dict[str, Any]:
     for target, fan in said.paths.items():
         bands = [fan.band(level) for level in said.levels]
         paths[target] = {
-            **{part: _listed(getattr(fan, part)) for part in FAN},
+            **{part: _listed(getattr(fan, part)) for part in (*COUNTS, *NUMBERS)},
+            "measured": [_listed(row) for row in fan.measured],
             "low": [_listed(low) for low, _ in bands],  # for those who read the file without us
             "high": [_listed(high) for _, high in bands],
         }
@@ -218,13 +219,16 @@ def _listed(values: FloatArray) -> Any:
 
 def _statement(row: Any) -> Statement:
     content = _read(row["content"])
+    levels = tuple(float(level) for level in content["levels"])
     paths = {}
     for target, path in content["paths"].items():
-        parts = {part: read_only(path[part]) for part in FAN}
-        if {part.shape for part in parts.values()} != {(len(path["centre"]),)}:
+        parts = {part: read_only(path[part]) for part in (*NUMBERS, *COUNTS, "measured")}
+        whole = {part: locked(parts[part].astype(np.int64)) for part in COUNTS}
+        size = len(path["centre"])
+        flat = {parts[part].shape for part in (*NUMBERS, *COUNTS)}
+        if flat != {(size,)} or parts["measured"].shape != (len(levels), size):
             raise ValueError("a path must have as many scales as points")
-        whole = {part: locked(parts[part].astype(np.int64)) for part in ("ahead", "errors")}
-        paths[str(target)] = Fan(**{**parts, **whole})
+        paths[str(target)] = Fan(**{**parts, **whole}, levels=levels)
     said = Statement(
         driver=tuple(str(name) for name in content["driver"]),
         response=str(content["response"]),
@@ -233,7 +237,7 @@ def _statement(row: Any) -> Statement:
         shift=int(content["shift"]),
         compounding=str(content["compounding"]),
         origin=str(content["origin"]),
-        levels=tuple(float(level) for level in content["levels"]),
+        levels=levels,
         paths=paths,
         words=str(content["words"]),
         sources=tuple((str(a), str(b), str(c)) for a, b, c in content["sources"]),

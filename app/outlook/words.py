@@ -159,8 +159,8 @@ def path_words(known: Outlook) -> str:
 def held_words(known: Outlook, row: int) -> str:
     """Name an interval, with its past coverage where that is off at the horizon looked at."""
     level = f"{100 * known.levels[row]:.0f} %"
-    off = known.coverage_off(row, min(known.found.ahead, known.reach))
-    return level if off is None else f"{level}, held {100 * off.share:.0f} %"
+    seen = known.held(row, min(known.found.ahead, known.reach))
+    return f"{level}, held {100 * seen.share:.0f} %" if seen and seen.off else level
 
 
 def _listed(numbers: list[int]) -> str:

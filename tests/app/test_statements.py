@@ -36,7 +36,9 @@ def path(middle, half):
     point = np.array(middle, dtype=float)
     wide = np.full(point.size, 500.0)
     scale = np.full(point.size, half / stdtrit(500.0, 0.9))
-    return Fan(np.arange(1, point.size + 1), point, scale, wide, wide.astype(np.int64))
+    whole = wide.astype(np.int64)
+    held = np.full((len(LEVELS), point.size), 0.75)
+    return Fan(np.arange(1, point.size + 1), point, scale, wide, whole, LEVELS, held, whole)
 
 
 def said(**changes):
@@ -77,7 +79,7 @@ def test_a_statement_comes_back_to_the_last_digit(store):
     for name in ("driver", "response", "origin", "levels", "sources", "state", "method"):
         assert getattr(back, name) == getattr(first, name)
     for target, one in first.paths.items():
-        for part in ("ahead", "centre", "scale", "freedom", "errors"):
+        for part in ("ahead", "centre", "scale", "freedom", "errors", "measured", "judged"):
             np.testing.assert_array_equal(getattr(back.paths[target], part), getattr(one, part))
 
 
