@@ -25,6 +25,7 @@ OTHER_TEXT = {
     "aggregate": "Consumer prices",
     "trim": "24:31.5",
     "excluded": "01 Food|04 Energy",
+    "others": "Narrow money|Policy rate",
     "pace": "-2.5",
     "series": "Narrow money",
     "unadjusted": "Narrow money",
@@ -80,6 +81,7 @@ BY_NAME = {
     "split": periods,
     "trim": st.integers(0, 99).map(str),
     "excluded": st.one_of(st.just(""), st.lists(names, min_size=1, max_size=3).map("|".join)),
+    "others": st.one_of(st.just(""), st.lists(names, min_size=1, max_size=3).map("|".join)),
     "pace": st.integers(-99, 999).map(str),
 }
 
@@ -245,6 +247,10 @@ BAD = [
     ("link", "0"),
     ("link", "13"),
     ("excluded", "a\x00"),
+    ("others", "a\x00"),
+    ("target", "monthly"),
+    ("scheme", "both"),
+    ("ahead", "12"),
     ("years", "0"),
     ("surrogates", "0"),
     ("surrogates", "1e9"),
