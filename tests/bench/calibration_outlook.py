@@ -12,6 +12,7 @@ import sys
 import numpy as np
 from scipy.signal import lfilter
 
+from analytics.forecast_tests import diebold_mariano
 from analytics.forecasts import choice_at
 from analytics.intervals import LEVELS
 from analytics.outlook_target import outlook_target
@@ -86,15 +87,13 @@ def coverage(case, months, runs):
                         draws=199,
                         rng=rng,
                     )
-            for level in LEVELS:
-                for way, ends in ways.items():
-                    low, high = ends(known, h, level)
+            ends = {way: found(known, h, LEVELS) for way, found in ways.items()}
+            if resampled is not None:
+                tails = [((1 - level) / 2, (1 + level) / 2) for level in LEVELS]
+                ends["bootstrap"] = [np.quantile(resampled[:, place], tail) for tail in tails]
+            for way, intervals in ends.items():
+                for level, (low, high) in zip(LEVELS, intervals, strict=True):
                     hits.setdefault((way, h, level), []).append(low <= outcome <= high)
-                if run % COMPARED == 0:
-                    ends = np.quantile(resampled[:, place], [(1 - level) / 2, (1 + level) / 2])
-                    hits.setdefault(("bootstrap", h, level), []).append(
-                        ends[0] <= outcome <= ends[1]
-                    )
     return rows("outlook", case, months, hits)
 
 
@@ -162,13 +161,29 @@ def invented_economy(case, months, runs):
     return rows("seeds", case, months, hits)
 
 
+def size_of_the_test(case, months, runs):
+    """Two forecasts equally good, h months ahead: how often the test says otherwise at 5 %."""
+    found = []
+    for h in (1, *HORIZONS, 36):
+        rejected = []
+        for run in range(runs):
+            rng = generator("test", f"{case} {h}", months, run)
+            a, b = (
+                np.convolve(rng.standard_normal(months + h - 1), np.ones(h), "valid") for _ in "ab"
+            )
+            rejected.append(diebold_mariano((a + b) ** 2, (a - b) ** 2, horizon=h).p <= 0.05)
+        found.append(row("test", case, months, f"p at most 5 %, {h} months ahead", rejected))
+    return found
+
+
 KINDS = {
     "outlook": (coverage, [(shape, months) for shape in SHAPES for months in (300, 760)]),
     "chosen": (chosen_cell, [(shape, months) for shape in SHAPES[:1] for months in (300, 760)]),
+    "test": (size_of_the_test, [("Diebold-Mariano", months) for months in (120, 300, 600)]),
     "seeds": (invented_economy, [("invented economy", months) for months in (561, 681, 779)]),
 }
-FULL = {"outlook": 1600, "chosen": 500, "seeds": 200}
-SMALL = {"outlook": 20, "chosen": 5, "seeds": 5}
+FULL = {"outlook": 1600, "chosen": 500, "test": 1000, "seeds": 200}
+SMALL = {"outlook": 20, "chosen": 5, "test": 20, "seeds": 5}
 
 if __name__ == "__main__":
     sys.exit(main(kinds=KINDS, full=FULL, small=SMALL))

@@ -1,7 +1,7 @@
 """Other published ways to put intervals around a path, which the one in use is compared with.
 
 Each takes the past errors at one horizon that are known at the date, oldest first, and gives the
-ends of the interval as additions to the path.
+ends of the interval of each level as additions to the path.
 """
 
 import numpy as np
@@ -11,25 +11,30 @@ from analytics.outlook_target import outlook_target
 from analytics.rates import trailing_mean
 
 
-def newest_errors(errors, horizon, level):
+def newest_errors(errors, horizon, levels):
     """The one in use: Student's t on what the newest 60 % of the errors are worth."""
     scale, freedom, _ = error_scale(errors, horizon)
-    half = float(half_width(scale[-1], freedom[-1], level))
-    return -half, half
+    halves = [float(half_width(scale[-1], freedom[-1], level)) for level in levels]
+    return [(-half, half) for half in halves]
 
 
-def empirical_quantiles(errors, horizon, level):
+def empirical_quantiles(errors, horizon, levels):
     """Signed quantiles of all past errors, with the (n + 1) rule of conformal prediction."""
     ordered, n = np.sort(errors), errors.size
-    place = max(0, int(np.floor((n + 1) * (1.0 - level) / 2.0)) - 1)
-    return ordered[place], ordered[n - 1 - place]
+    places = [max(0, int(np.floor((n + 1) * (1.0 - level) / 2.0)) - 1) for level in levels]
+    return [(ordered[place], ordered[n - 1 - place]) for place in places]
 
 
-def adaptive_conformal(errors, horizon, level, rate=0.005, start=24):
+def adaptive_conformal(errors, horizon, levels):
     """Gibbs and Candes (2021): the level moves with hits and misses, h periods late.
 
     Scores are absolute errors, the calibration set all that are known.
     """
+    halves = [_adapted(errors, horizon, level) for level in levels]
+    return [(-half, half) for half in halves]
+
+
+def _adapted(errors, horizon, level, rate=0.005, start=24):
     scores = np.abs(errors)
     ordered = np.sort(scores[:start]).tolist()
     missing, asked = 1.0 - level, {}
@@ -41,8 +46,7 @@ def adaptive_conformal(errors, horizon, level, rate=0.005, start=24):
             missing += rate * ((1.0 - level) - (scores[made] > asked[made]))
         place = int(np.ceil((known + 1) * (1.0 - np.clip(missing, 0.0, 1.0)))) - 1
         asked[known + horizon - 1] = ordered[min(max(place, 0), known - 1)]
-    half = asked[scores.size + horizon - 1]
-    return -half, half
+    return asked[scores.size + horizon - 1]
 
 
 def block_bootstrap(driver, response, *, window, shift, horizons, draws, rng, block=24):
