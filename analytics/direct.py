@@ -9,7 +9,7 @@ from analytics.outlook import outlook_arrays
 from analytics.outlook_target import Target
 from analytics.rates import trailing_mean
 from analytics.series import FloatArray, read_only
-from analytics.surface import IntArray, locked
+from analytics.surface import IntArray, locked, smallest_variance
 
 _SPARE = 12  # rows beyond the regressors that a regression must have
 
@@ -123,7 +123,7 @@ def direct_forecasts(
         away = table[used] - centre[place]
         moments[place] = away.T @ away
         news[place] = np.append(table[now, :own_lags], side[-1]) - centre[place, :-1]
-    found = _with_and_without(moments, news)
+    found = _with_and_without(moments, news, smallest_variance(y) * rows)
     means_ahead = centre[:, -1] + found[:2]
     return DirectForecasts(
         ahead=locked(np.arange(1, horizon + 1)),
@@ -136,7 +136,7 @@ def direct_forecasts(
     )
 
 
-def _with_and_without(moments: FloatArray, news: FloatArray) -> FloatArray:
+def _with_and_without(moments: FloatArray, news: FloatArray, smallest: FloatArray) -> FloatArray:
     """Deviation forecast with and without the driver, its slope, its gain; shape (4, H).
 
     The driver is regressed on the own past first and what is left of it on what is left of the
@@ -148,6 +148,8 @@ def _with_and_without(moments: FloatArray, news: FloatArray) -> FloatArray:
         Sums of products about the means: own past, driver, target.
     news : ndarray of float, shape (H, p + 1)
         Today's own past and driver, less their means.
+    smallest : ndarray of float, shape (H,)
+        Sum of squares of the target at or below which it counts as constant.
     """
     own, both = moments[:, :-2, :-2], moments[:, :-2, -2:]
     inverse = np.linalg.pinv(own, rcond=1e-12, hermitian=True)
@@ -159,5 +161,5 @@ def _with_and_without(moments: FloatArray, news: FloatArray) -> FloatArray:
     without = past[:, 1]
     with_driver = without + slope * (news[:, -1] - past[:, 0])
     rest = left[:, 1, 1]
-    gain = slope * left[:, 0, 1] / np.where(rest > 0.0, rest, np.inf)
+    gain = slope * left[:, 0, 1] / np.where(rest > smallest, rest, np.inf)
     return np.stack([with_driver, without, slope, np.clip(gain, 0.0, 1.0)])
