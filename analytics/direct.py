@@ -123,7 +123,9 @@ def direct_forecasts(
         away = table[used] - centre[place]
         moments[place] = away.T @ away
         news[place] = np.append(table[now, :own_lags], side[-1]) - centre[place, :-1]
-    found = _with_and_without(moments, news, smallest_variance(y) * rows)
+    found = _with_and_without(
+        moments, news, np.asarray(smallest_variance(y) * rows, dtype=np.float64)
+    )
     means_ahead = centre[:, -1] + found[:2]
     return DirectForecasts(
         ahead=locked(np.arange(1, horizon + 1)),

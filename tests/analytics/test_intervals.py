@@ -5,6 +5,7 @@ import pytest
 from scipy.stats import t as student
 
 from analytics.intervals import error_fan, error_scale
+from tests.references.plain_intervals import plain_error_scale
 
 
 def test_independent_errors_are_worth_about_as_many_as_they_are():
@@ -22,6 +23,15 @@ def test_overlapping_errors_are_worth_fewer():
     freedom = error_scale(errors, 12)[1][-1]
     weights = 1.0 - np.arange(1, 12) / 12
     assert freedom == pytest.approx(2400 / (1 + 2 * np.sum(weights**2)), rel=0.12)
+
+
+@pytest.mark.parametrize(("n", "horizon"), [(30, 1), (90, 12), (241, 24), (700, 6)])
+def test_scale_and_freedom_equal_their_plain_twin(n, horizon):
+    errors = np.convolve(np.random.default_rng(n).standard_normal(n + 5), np.ones(6), "valid")
+    scale, freedom, _ = error_scale(errors, horizon)
+    for known in (n // 2 + 10, n):
+        plain = plain_error_scale(errors[:known], horizon)
+        assert (scale[known], freedom[known]) == pytest.approx(plain, rel=1e-10)
 
 
 def test_every_moment_uses_its_own_past_only():

