@@ -44,7 +44,7 @@ def outlook(state: ViewState, bridge: Bridge, asked: Collection[str] = ()) -> Ou
     """
     wanted, state = state, bridge.fitted(state, asked)
     changed = tuple(
-        f"A {name} of {getattr(wanted, name)} is more than this sample allows;"
+        f"A {name} of {getattr(wanted, name)} is outside the map of this sample;"
         f" {getattr(state, name)} is shown."
         for name in ("window", "shift")
         if getattr(wanted, name) != getattr(state, name)

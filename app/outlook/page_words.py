@@ -166,23 +166,25 @@ def _backtest(known: Outlook) -> list[Any]:
         return _waiting(known)
     noun = found.noun
     head = ["Ahead", "Dates", "RMSE", "MAE", "Bias", "U2"]
-    head += [f"Over {name}" for name in scores.benchmarks] + ["p, best benchmark"]
+    head += [f"Over {name}" for name in scores.benchmarks] + ["p"]
     rows = []
     for h in looked_at(found, scores.ahead.size):
         best = best_benchmark(scores, h)
         test = scores.dm[scores.benchmarks.index(best)][h - 1]
-        cells = [f"{scores.n[h - 1]}"]
+        cells: list[Any] = [f"{scores.n[h - 1]}"]
         cells += [plain(float(part[h - 1])) for part in (scores.rmse, scores.mae)]
         cells += [signed(float(scores.bias[h - 1])), plain(float(scores.u2[h - 1]))]
-        cells += [plain(float(ratio)) for ratio in scores.ratio[:, h - 1]]
-        cells.append(f"{p_words(test.p)} ({best})")
+        for name, ratio in zip(scores.benchmarks, scores.ratio[:, h - 1].tolist(), strict=True):
+            cells.append(html.Strong(plain(ratio)) if name == best else plain(ratio))
+        cells.append(p_words(test.p))
         rows.append(_row(counted(h, noun), cells, chosen=h == found.ahead))
     first = period_label(found.pair.response.first + int(done.origins[0]))
     return [
         html.P(
             f"{counted(done.origins.size, 'past date')} from {first} on, each with"
-            f" {_known_then(known)}. Ratios below 1: the relation was nearer. p: Diebold-Mariano"
-            " with the small-sample factor, two-sided."
+            f" {_known_then(known)}. Ratios below 1: the relation was nearer; the best benchmark"
+            " stands out, and p is against it (Diebold-Mariano with the small-sample factor,"
+            " two-sided)."
         ),
         _table(head, rows),
     ]
@@ -199,7 +201,8 @@ def _known_then(known: Outlook) -> str:
     cell = (
         "window and shift chosen anew each year"
         if done.rechosen
-        else f"window {known.state.window} and shift {known.state.shift} kept"
+        else f"window {known.state.window} and shift {known.state.shift} kept, which were chosen"
+        " knowing what came, so the scores flatter"
     )
     dated = (
         f"; {counted(known.dated, 'date')} from the vintages of that date"
@@ -324,7 +327,7 @@ def _offered(known: Outlook) -> list[Any]:
     return [html.Div(buttons, className="offered")] if buttons else []
 
 
-def _row(name: str, cells: Sequence[str], *, chosen: bool = False) -> html.Tr:
+def _row(name: str, cells: Sequence[Any], *, chosen: bool = False) -> html.Tr:
     return html.Tr(
         [html.Th(name, scope="row"), *(html.Td(cell) for cell in cells)],
         className="chosen" if chosen else "",

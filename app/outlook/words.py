@@ -120,6 +120,8 @@ def against_benchmarks(known: Outlook) -> list[str]:
         )
     if missed and (weaker := _beaten_ones(scores, missed)):
         said.append(f"Of the weaker ones it beat {weaker} {found.noun}s ahead.")
+    if known.backtest is not None and not known.backtest.rechosen:
+        said.append("Window and shift were chosen knowing what came, so this flatters.")
     if not horizons:
         said.append("No past forecast has an outcome to be judged by yet.")
     return said
