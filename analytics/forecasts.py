@@ -11,7 +11,7 @@ from analytics.outlook_target import Target
 from analytics.relation import MIN_PAIRS, relation_forecasts
 from analytics.robust import surface_inference
 from analytics.series import FloatArray
-from analytics.surface import growth_pair, smallest_variance
+from analytics.surface import growth_pair
 
 RELATION, DIRECT, OWN_PAST = "relation", "direct with driver", "direct without driver"
 NO_CHANGE, AUTOREGRESSION, PAST_MEAN = "no change", "autoregression", "mean so far"
@@ -75,14 +75,11 @@ def choice_at(
         return Choice(*cell, order)
     lengths = [w for w in windows if 1 <= w <= max(1, common // 4)]
     leads = [s for s in shifts if 1 <= s < common - MIN_PAIRS]
-    if not lengths or not leads or smallest_variance(x) >= x.var():
+    if not lengths or not leads or common - lengths[0] + 1 - leads[0] < MIN_PAIRS:
         return Choice(*cell, order)
-    try:
-        found = surface_inference(
-            x, y, windows=lengths, shifts=leads, periods_per_year=periods_per_year
-        )
-    except ValueError:  # no cell has enough pairs
-        return Choice(*cell, order)
+    found = surface_inference(
+        x, y, windows=lengths, shifts=leads, periods_per_year=periods_per_year
+    )
     if not np.isfinite(found.p).any():
         return Choice(*cell, order)
     row, column = np.unravel_index(int(np.nanargmin(found.p)), found.p.shape)

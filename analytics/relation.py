@@ -67,7 +67,8 @@ def relation_forecasts(
     window; the others keep periods that are already observed.
     """
     intercept, slope, level = cell_line(driver, response, window=window, shift=shift)
-    filled = np.concatenate((driver, np.full(max(0, horizon + response.size), level)))
+    beyond = max(0, response.size + horizon - shift - driver.size)
+    filled = np.concatenate((driver, np.full(beyond, level)))
     expected = expected_periods(filled, response.size, (intercept, slope), shift, horizon)
     if target.kind == "window":
         spans = expected[response.size - target.span + 1 :]

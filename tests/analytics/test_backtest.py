@@ -4,7 +4,8 @@ import numpy as np
 import pytest
 
 from analytics.autoregression import autoregression
-from analytics.backtest import backtest, backtest_chunk, backtest_plan, backtest_result
+from analytics.backtest import backtest, backtest_chunk, backtest_result
+from analytics.backtest_plan import backtest_plan
 from analytics.backtest_scores import backtest_scores, squared_error_gain
 from analytics.forecasts import (
     AUTOREGRESSION,

@@ -4,6 +4,9 @@ Each takes the past errors at one horizon that are known at the date, oldest fir
 ends of the interval of each level as additions to the path.
 """
 
+from bisect import insort
+from math import ceil
+
 import numpy as np
 
 from analytics.intervals import half_width
@@ -36,18 +39,18 @@ def adaptive_conformal(errors, horizon, levels):
 
 
 def _adapted(errors, horizon, level, rate=0.005, start=24):
-    scores = np.abs(errors)
-    ordered = np.sort(scores[:start]).tolist()
+    scores = np.abs(errors).tolist()
+    ordered = sorted(scores[:start])
     missing, asked = 1.0 - level, {}
-    for known in range(start, scores.size + 1):
+    for known in range(start, len(scores) + 1):
         if known > start:
-            ordered.insert(int(np.searchsorted(ordered, scores[known - 1])), scores[known - 1])
+            insort(ordered, scores[known - 1])
         made = known - 1  # the forecast whose outcome has just arrived
         if made in asked:
             missing += rate * ((1.0 - level) - (scores[made] > asked[made]))
-        place = int(np.ceil((known + 1) * (1.0 - np.clip(missing, 0.0, 1.0)))) - 1
+        place = ceil((known + 1) * (1.0 - min(max(missing, 0.0), 1.0))) - 1
         asked[known + horizon - 1] = ordered[min(max(place, 0), known - 1)]
-    return asked[scores.size + horizon - 1]
+    return asked[len(scores) + horizon - 1]
 
 
 def block_bootstrap(driver, response, *, window, shift, horizons, draws, rng, block=24):

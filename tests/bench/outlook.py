@@ -14,7 +14,8 @@ os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
 
 import numpy as np
 
-from analytics.backtest import backtest, backtest_chunk, backtest_plan, backtest_result
+from analytics.backtest import backtest, backtest_chunk, backtest_result
+from analytics.backtest_plan import backtest_plan
 from analytics.backtest_scores import backtest_scores
 from analytics.forecasts import DIRECT, OWN_PAST, RELATION
 from analytics.outlook import implied_path
