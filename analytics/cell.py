@@ -193,7 +193,7 @@ def lag_cell(
         p_naive=float(2.0 * stdtr(n - 2, -abs(slope) / se)) if se > 0 else 0.0,
         residuals=read_only(residuals),
         sigma=sigma,
-        ellipse=_ellipse(centre, spread, correlation),
+        ellipse=covariance_ellipse(centre, spread, correlation),
         driver_slices=_slice_means(paired_x, paired_y, slices),
         response_slices=_slice_means(paired_y, paired_x, slices),
     )
@@ -207,7 +207,7 @@ def _whole(name: str, value: int) -> int:
         raise ValueError(f"{name} must be an integer, but got {value!r}") from None
 
 
-def _ellipse(
+def covariance_ellipse(
     centre: tuple[float, float], spread: tuple[float, float], correlation: float
 ) -> FloatArray:
     """Outline at two standard deviations, shape (73, 2); first and last point are the same."""

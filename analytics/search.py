@@ -118,8 +118,10 @@ class SearchResult:
         )
 
 
-def search_chunk(plan: SearchPlan, index: int) -> SearchChunk:
+def search_chunk(plan: SearchPlan, index: int, *, threads: int = 2) -> SearchChunk:
     """Surfaces of up to 250 surrogate drivers, drawn from the plan's seed and the chunk's index.
+
+    `threads` changes nothing but the time.
 
     Raises
     ------
@@ -133,7 +135,7 @@ def search_chunk(plan: SearchPlan, index: int) -> SearchChunk:
     for run in plan.runs:
         rng = np.random.default_rng([plan.seed, index])
         copies = phase_surrogates(run.driver, draws, rng)
-        correlation = run.kernel.correlations(copies).transpose(1, 2, 0)
+        correlation = run.kernel.correlations(copies, threads=threads).transpose(1, 2, 0)
         surface = np.empty(correlation.shape, dtype=np.float32)
         for row, cells in enumerate(correlation):
             _fisher(cells, surface[row])

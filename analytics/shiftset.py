@@ -222,8 +222,10 @@ def shift_set_plan(
     )
 
 
-def shift_set_chunk(plan: ShiftSetPlan, index: int) -> ShiftSetChunk:
+def shift_set_chunk(plan: ShiftSetPlan, index: int, *, threads: int = 2) -> ShiftSetChunk:
     """Simulate responses under up to 16 candidate shifts.
+
+    `threads` changes nothing but the time.
 
     Raises
     ------
@@ -233,7 +235,7 @@ def shift_set_chunk(plan: ShiftSetPlan, index: int) -> ShiftSetChunk:
     if not 0 <= index < plan.chunks:
         raise ValueError(f"index must be from 0 to {plan.chunks - 1}, but got {index}")
     places = np.arange(index * CHUNK, min(plan.shifts.size, (index + 1) * CHUNK))
-    with ThreadPoolExecutor(2) as pool:  # the transforms run outside Python's lock
+    with ThreadPoolExecutor(threads) as pool:  # the transforms run outside Python's lock
         p = list(pool.map(lambda place: _candidate_p(plan, int(place)), places))
     return ShiftSetChunk(index, read_only(p))
 

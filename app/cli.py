@@ -17,6 +17,7 @@ from app.commands.breadth import breadth
 from app.commands.brief import brief
 from app.commands.outlook import outlook
 from app.commands.parts import errors, print_json, state_of, workspace_of, write
+from app.commands.scan import scan
 from app.commands.workspace import workspace
 from app.places import software_version
 from app.reading.fields import READING_FIELDS, READING_VIEWS
@@ -265,6 +266,7 @@ def reading(
 pricewake.add_command(breadth)
 pricewake.add_command(brief)
 pricewake.add_command(outlook)
+pricewake.add_command(scan)
 pricewake.add_command(workspace)
 
 

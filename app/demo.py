@@ -5,6 +5,7 @@ from app.places import bundled
 
 FILES = ("economy_monthly.csv", "divisions.csv", "output_quarterly.csv")
 WEIGHTS = "weights.csv"
+PANEL = "panel.csv"
 
 
 def demo_releases() -> tuple[Release, ...]:
@@ -15,3 +16,8 @@ def demo_releases() -> tuple[Release, ...]:
         read_release(name, (folder / name).read_bytes(), metadata=notes.get(name))
         for name in (*FILES, WEIGHTS)
     )
+
+
+def demo_panel() -> Release:
+    """Read the thirty invented economies."""
+    return read_release(PANEL, (bundled("data_samples") / PANEL).read_bytes())

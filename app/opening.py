@@ -10,6 +10,13 @@ _MONEY = re.compile(r"money|\bm[0-4]\b", re.IGNORECASE)
 _PRICES = re.compile(r"price|\bh?icp\b|\bcpi", re.IGNORECASE)
 
 
+def sounds_like(name: str) -> str:
+    """Return money or prices where a series' name says so, else nothing."""
+    if _MONEY.search(name):
+        return "money"
+    return "prices" if _PRICES.search(name) else ""
+
+
 def opening_state(loaded: Mapping[str, Series]) -> ViewState:
     """Return the view to open with: the usual pair if it is loaded, else the first that fits.
 
@@ -20,8 +27,8 @@ def opening_state(loaded: Mapping[str, Series]) -> ViewState:
     if (usual.driver in loaded and usual.response in loaded) or not loaded:
         return usual
     paired = [n for n in loaded if len(_partners(n, loaded)) > 0] or list(loaded)
-    prices = [n for n in paired if _PRICES.search(n) and not _MONEY.search(n)]
-    money = [n for n in paired if _MONEY.search(n)]
+    prices = [n for n in paired if sounds_like(n) == "prices"]
+    money = [n for n in paired if sounds_like(n) == "money"]
     if prices:
         response = prices[0]
         partners = _partners(response, loaded) or [n for n in loaded if n != response] or [response]

@@ -10,15 +10,18 @@ from app.desk import exports as data_exports
 from app.lag.evidence import WORK
 from app.outlook import exports as outlook_exports
 from app.outlook.work import WORK as OUTLOOK_WORK
-from app.pages import breadth, data, lag, outlook, reading
+from app.pages import breadth, data, lag, outlook, reading, scan
 from app.reading import exports as reading_exports
 from app.reading.bridge import WORK as READING_WORK
+from app.scan import exports as scan_exports
+from app.scan.bridge import WORK as SCAN_WORK
 
-PAGES = (data, reading, breadth, lag, outlook)
+PAGES = (data, reading, breadth, lag, scan, outlook)
 WORKS = {
     "lag": WORK,
     "outlook": OUTLOOK_WORK,
     "reading": READING_WORK,
+    "scan": SCAN_WORK,
 }  # page name -> kind -> (state, bridge) -> long work
 EXPORTS = {
     "breadth": breadth_exports.csv_export,
@@ -26,4 +29,5 @@ EXPORTS = {
     "data": data_exports.csv_export,
     "outlook": outlook_exports.csv_export,
     "reading": reading_exports.csv_export,
+    "scan": scan_exports.csv_export,
 }  # page name -> (view, query, bridge) -> file name, text

@@ -16,6 +16,7 @@ from app.memory import server_cache
 from app.page_table import EXPORTS, PAGES, WORKS
 from app.pages import lag
 from app.places import bundled, software_version
+from app.scan import routes as scan_routes
 from app.state import ViewState
 from app.workspace import Workspace
 
@@ -160,6 +161,7 @@ def _register_routes(server: Flask, bridge: Bridge) -> None:
 
     desk_routes.register(server, bridge)
     kept_routes.register(server, bridge)
+    scan_routes.register(server, bridge)
 
     @server.errorhandler(Exception)
     def _failed(error: Exception) -> tuple[dict[str, str], int] | HTTPException:

@@ -11,6 +11,7 @@ from urllib.parse import parse_qsl, urlencode
 from app.breadth import fields as breadth_fields
 from app.outlook import fields as outlook_fields
 from app.reading import fields as reading_fields
+from app.scan import fields as scan_fields
 from app.state_kinds import (
     NAME,
     PERIOD,
@@ -242,6 +243,15 @@ class ViewState:
     against: str = _state("no change", outlook_fields.AGAINST)
     others: str = _state("", outlook_fields.OTHERS)
     recent: str = _state("10", outlook_fields.RECENT)
+    # The Scan page
+    drivers: str = _state("", scan_fields.DRIVERS)
+    responses: str = _state("", scan_fields.RESPONSES)
+    sign: str = _state("any", scan_fields.SIGN)
+    correction: str = _state("bh", scan_fields.CORRECTION)
+    axes: str = _state("linear", scan_fields.AXES)
+    league: str = _state("p_search-up", scan_fields.LEAGUE)
+    league_rows: str = _state("top", scan_fields.LEAGUE_ROWS)
+    begin: str = _state("no", scan_fields.BEGIN)
     # The Data page
     revised: str = _state(
         "growth",

@@ -156,6 +156,14 @@ class Workspace:
             self._placeholder = replace(self._placeholder, marks=tuple(order))
             self._views = {}
 
+    def show_beside(self, release: Release) -> None:
+        """Show one more invented file beside the placeholder; never stored."""
+        with self._lock:
+            shown = self._placeholder
+            if release.name not in {one.name for one in shown.releases}:
+                self._placeholder = replace(shown, releases=(*shown.releases, release))
+                self._views = {}
+
     def hide(self, file: str) -> None:
         """Take a file out of view from today on; its vintages stay."""
         self._set_hidden(file, today())

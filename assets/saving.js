@@ -26,7 +26,7 @@
 
   function printed(view, page, prefix = "lag") {
     const figure = structuredClone(pricewake.theme.figures.get(`${prefix}-${view}`));
-    const [width, height] = SIZES[view] || [1000, 680];
+    const [width, height] = SIZES[view] || (figure.layout.meta || {}).size || [1000, 680];
     const title = wrapped(page.sentence(), Math.floor(width / 9.5));
     const source = wrapped(page.source(), Math.floor(width / 6.5));
     const { layout } = figure;

@@ -55,11 +55,14 @@ RULES = {
     "app/brief/": rule("analytics app dash kaleido markdown_it numpy tomli_w"),
     "app/state.py": rule(
         "analytics app.state_kinds app.breadth.fields app.outlook.fields app.reading.fields"
+        " app.scan.fields"
     ),
     "app/state_kinds.py": rule("analytics"),
     "app/breadth/fields.py": rule("app.state_kinds"),
     "app/outlook/fields.py": rule("app.state_kinds"),
     "app/reading/fields.py": rule("app.state_kinds"),
+    "app/scan/fields.py": rule("app.state_kinds"),
+    "app/scan/workers.py": rule("analytics app distributed"),
     "app/intake/": rule("analytics app.intake app.places numpy openpyxl pandas"),
     "app/figures/": rule(
         "analytics app.compute app.state app.figures app.places numpy pandas plotly",
@@ -68,7 +71,7 @@ RULES = {
     "app/pages/": rule("analytics app dash pandas plotly", types_only="analytics"),
 }
 # Inside functions only: two seconds of statsmodels; the compiled loop and its compiler.
-SLOW_AT_START = words("statsmodels kaleido numba analytics.hac_loop")
+SLOW_AT_START = words("statsmodels kaleido numba analytics.hac_loop distributed dask")
 
 
 def below(name: str, roots: frozenset[str]) -> bool:

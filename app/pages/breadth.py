@@ -102,7 +102,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
     for name, chart in charts.items():
         key = (chart.layout.meta or {}).get("key")
         if key:
-            said[f"{name}-words"] = [said.get(f"{name}-words", ""), _key(key)]
+            said[f"{name}-words"] = [said.get(f"{name}-words", ""), plain.key_list(key)]
     words = said | {
         "as-of": as_of_line(state),
         "notes": _notes(shown),
@@ -224,19 +224,6 @@ def _words(shown: Breadth) -> dict[str, Any]:
         "weights-words": "Shares of the basket at each period's own prices; new weights come in "
         "at the links.",
     }
-
-
-def _key(entries: Any) -> html.Ul:
-    """Return what the colours of a chart stand for."""
-    return html.Ul(
-        [
-            html.Li(
-                [html.Span(className=f"sign {shape}", style={"--sign": f"var(--{token})"}), words]
-            )
-            for shape, token, words in entries
-        ],
-        className="key",
-    )
 
 
 def _notes(shown: Breadth) -> list[Any]:

@@ -171,5 +171,18 @@ def register(
     )
 
 
+def key_list(entries: Sequence[tuple[str, str, str]]) -> html.Ul:
+    """Return what the colours of a chart stand for: shape, colour token and words of each."""
+    return html.Ul(
+        [
+            html.Li(
+                [html.Span(className=f"sign {shape}", style={"--sign": f"var(--{token})"}), words]
+            )
+            for shape, token, words in entries
+        ],
+        className="key",
+    )
+
+
 def _plain(chart: Figure | str) -> Any:
     return json.loads(chart if isinstance(chart, str) else chart.to_json())

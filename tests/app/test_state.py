@@ -32,6 +32,8 @@ OTHER_TEXT = {
     "newest": "2024-Q3",
     "since": "1995-01",
     "split": "1995",
+    "drivers": "Broad money|Narrow money",
+    "responses": "Consumer prices",
 }
 
 
@@ -83,6 +85,8 @@ BY_NAME = {
     "excluded": st.one_of(st.just(""), st.lists(names, min_size=1, max_size=3).map("|".join)),
     "others": st.one_of(st.just(""), st.lists(names, min_size=1, max_size=3).map("|".join)),
     "pace": st.integers(-99, 999).map(str),
+    "drivers": st.one_of(st.just(""), st.lists(names, min_size=1, max_size=3).map("|".join)),
+    "responses": st.one_of(st.just(""), names),
 }
 
 

@@ -1,0 +1,217 @@
+"""From a state to the pairs of a scan, and to what came of it."""
+
+import hashlib
+from dataclasses import dataclass, replace
+from typing import Any
+from urllib.parse import urlencode
+
+from analytics.long_averages import LongAverages, long_averages, yearly_average
+from analytics.panel import (
+    PairScan,
+    PanelPair,
+    PanelScan,
+    pair_scan,
+    pair_seed,
+    panel_result,
+    refused_scan,
+)
+from analytics.series import PERIODS_PER_YEAR, Pair, period_code
+from app.compute import Bridge, grid
+from app.jobs import Work
+from app.places import software_version
+from app.scan.economies import Roles, roles, series_name
+from app.scan.fields import SETTINGS
+from app.state import ViewState, field_kind
+
+LONG = 5  # years that a long average has at least
+
+
+@dataclass(frozen=True)
+class EconomyAverage:
+    """Average growth of one economy's driver and response, percent a year, and over when."""
+
+    economy: str
+    driver: float
+    response: float
+    first: str
+    last: str
+
+
+@dataclass(frozen=True, eq=False)
+class Question:
+    """What a scan asks: its settings and its pairs.
+
+    Attributes
+    ----------
+    state : ViewState
+        As given; only `settings` and the series count.
+    settings : str
+        What the numbers depend on besides the series, as an address carries it.
+    roles : Roles
+        Which series were paired.
+    pairs : tuple of PanelPair
+        Those that can be searched.
+    refused : tuple of PairScan
+        Those that cannot be paired, each with the reason.
+    averages : tuple of EconomyAverage
+        One an economy of five years or more, of its first driver and response.
+    """
+
+    state: ViewState
+    settings: str
+    roles: Roles
+    pairs: tuple[PanelPair, ...]
+    refused: tuple[PairScan, ...]
+    averages: tuple[EconomyAverage, ...]
+
+    @property
+    def chunks(self) -> int:
+        """Pairs to be searched: one a chunk."""
+        return len(self.pairs)
+
+    def result(self, scans: list[PairScan]) -> PanelScan:
+        """Put the searched pairs, in any order, and the refused ones together, as in the files."""
+        by_names = {scan.names: scan for scan in (*self.refused, *scans)}
+        return panel_result([by_names[names] for names in self.roles.pairs])
+
+
+@dataclass(frozen=True, eq=False)
+class Scan:
+    """What is known of a scan: the question, the pairs once they are searched, the averages.
+
+    Attributes
+    ----------
+    question : Question
+        What is asked.
+    panel : PanelScan or None
+        None while pairs are still to be searched.
+    averages : LongAverages or None
+        None where there are too few economies.
+    no_averages : str
+        Why there are none, in one sentence.
+    """
+
+    question: Question
+    panel: PanelScan | None
+    averages: LongAverages | None
+    no_averages: str
+
+
+def settings(state: ViewState) -> str:
+    """Return what a scan's numbers depend on besides the series, as an address carries it."""
+    return urlencode([(name, field_kind(name).write(getattr(state, name))) for name in SETTINGS])
+
+
+def draws(state: ViewState) -> dict[str, Any]:
+    """Return what each pair is searched with, for `pair_scan`."""
+    return {"surrogates": state.surrogates, "seed": state.seed, "sign": state.sign}
+
+
+def scan_key(state: ViewState, bridge: Bridge) -> str:
+    """Return the key of a scan: settings, pairs asked for, and every series in view."""
+    in_view = bridge.in_view(state)
+    parts = [software_version(), settings(state), state.drivers, state.responses]
+    for name, series in in_view.series.items():
+        parts += [name, series.fingerprint, series.adjustment]
+    return hashlib.sha256("\n".join(parts).encode()).hexdigest()[:32]
+
+
+def question(state: ViewState, bridge: Bridge) -> Question:
+    """Return the pairs of a scan.
+
+    Raises
+    ------
+    ValueError
+        There is no pair, or a driver or response is named that is not there; one sentence.
+    """
+    return bridge.memory.once(
+        "scan-question:" + scan_key(state, bridge), lambda: _question(state, bridge)
+    )
+
+
+def _question(state: ViewState, bridge: Bridge) -> Question:
+    found = roles(bridge.in_view(state).series, state.drivers, state.responses)
+    pairs, refused, averages = [], [], {}
+    for economy, driver, response in found.pairs:
+        one = replace(
+            state, driver=series_name(economy, driver), response=series_name(economy, response)
+        )
+        try:
+            paired = bridge.pair(one)
+        except ValueError as error:
+            refused.append(
+                PairScan(
+                    economy=economy,
+                    driver=driver,
+                    response=response,
+                    sign=state.sign,
+                    seed=pair_seed(state.seed, economy, driver, response),
+                    refused=str(error),
+                )
+            )
+            continue
+        if economy not in averages and paired.n >= LONG * PERIODS_PER_YEAR[paired.driver.frequency]:
+            averages[economy] = _average(economy, paired, one, bridge)
+        try:
+            windows, shifts = grid(paired, one)
+        except ValueError as error:
+            short = PanelPair(economy, driver, response, paired)
+            refused.append(refused_scan(short, state.seed, str(error), state.sign))
+            continue
+        pairs.append(PanelPair(economy, driver, response, paired, windows, shifts))
+    return Question(
+        state, settings(state), found, tuple(pairs), tuple(refused), tuple(averages.values())
+    )
+
+
+def _average(economy: str, pair: Pair, state: ViewState, bridge: Bridge) -> EconomyAverage:
+    """Average both sides; a series that is a rate already is not multiplied to a year."""
+    in_view = bridge.in_view(state)
+    means = [
+        yearly_average(rate, periods_per_year=1 if in_view.named(name).kind == "rate" else None)
+        for rate, name in ((pair.driver, state.driver), (pair.response, state.response))
+    ]
+    periods = pair.periods
+    return EconomyAverage(economy, *means, period_code(periods[0]), period_code(periods[-1]))
+
+
+def scan_work(state: ViewState, bridge: Bridge) -> Work:
+    """Return the search of every pair as work, a chunk a pair."""
+
+    def chunk(plan: Question, index: int) -> PairScan:
+        return pair_scan(plan.pairs[index], **draws(state))
+
+    return Work(
+        "scan:" + scan_key(state, bridge),
+        lambda: question(state, bridge),
+        chunk,
+        lambda plan, scans: plan.result(scans),
+    )
+
+
+def scan(state: ViewState, bridge: Bridge, panel: PanelScan | None = None) -> Scan:
+    """Gather what is known of a scan without any long work.
+
+    `panel` is the result where it was made elsewhere.
+
+    Raises
+    ------
+    ValueError
+        There is no pair; one sentence.
+    """
+    asked = question(state, bridge)
+    known = panel or bridge.jobs.remembered(scan_work(state, bridge))
+    averages, why = None, ""
+    try:
+        averages = long_averages(
+            [one.economy for one in asked.averages],
+            [one.driver for one in asked.averages],
+            [one.response for one in asked.averages],
+            log=state.axes == "log",
+        )
+    except ValueError as error:
+        why = str(error)
+    return Scan(replace(asked, state=state), known, averages, why)
+
+
+WORK = {"scan": scan_work}

@@ -1,0 +1,205 @@
+"""What a scan says: the same words on the page, in files and from the command."""
+
+import math
+
+import numpy as np
+
+from analytics.long_averages import LongAverages
+from analytics.panel import LEVEL, PairScan, PanelPair, PanelScan
+from analytics.series import PERIOD_NOUN
+from app.scan.bridge import Question, Scan
+from app.words import counted, p_words, plain, shift_words, signed
+
+CAUTION = (
+    "A scan finds association in past data, many times over. None of it is a cause, and none is"
+    " investment or policy advice; official statistics and your desk's own qualified judgement"
+    " come first."
+)
+CORRECTIONS = {"bh": "Benjamini-Hochberg", "holm": "Holm"}
+NAMED = 10  # economies or pairs named in a sentence
+
+
+def noun(asked: Question) -> str:
+    """Return month, quarter or year where all pairs agree, else period."""
+    found = {PERIOD_NOUN[one.pair.driver.frequency] for one in asked.pairs}
+    return found.pop() if len(found) == 1 else "period"
+
+
+def pair_words(scan: PairScan | PanelPair, asked: Question) -> str:
+    """Name a pair as shortly as it stays clear: by its economy where that has no other pair."""
+    both = f"{scan.driver} → {scan.response}"
+    if not scan.economy:
+        return both
+    alone = sum(economy == scan.economy for economy, _, _ in asked.roles.pairs) == 1
+    return scan.economy if alone else f"{scan.economy}, {both}"
+
+
+def sentence(asked: Question) -> str:
+    """Say what is scanned: pairs, economies, sides, grid."""
+    roles, state = asked.roles, asked.state
+    economies = f"{roles.economies} economies" if roles.economies > 1 else "one economy"
+    stood = f", as it stood on {state.as_of}" if state.as_of else ""
+    return (
+        f"{_listed(roles.drivers)} against {_listed(roles.responses)}:"
+        f" {counted(len(roles.pairs), 'pair')} of {economies}{_grid(asked)}{stood}"
+    )
+
+
+def verdict(known: Scan) -> str:
+    """Say how many pairs hold once all are paid for, and which."""
+    asked, panel = known.question, known.panel
+    if panel is None:
+        return (
+            f"{counted(len(asked.pairs), 'pair')} to be searched, each over its whole map against"
+            f" {asked.state.surrogates:,} unrelated drivers."
+        )
+    judged = int(np.isfinite(panel.p_scan).sum())
+    refused = len(panel.pairs) - judged
+    if not judged:
+        return f"None of {counted(refused, 'pair')} could be searched; the table says why."
+    found, other = found_pairs(panel, asked.state.correction), _other(asked.state.correction)
+    by = CORRECTIONS[asked.state.correction]
+    positive = ", positive relations only" if asked.state.sign == "positive" else ""
+    said = [
+        f"{len(found)} of {counted(judged, 'pair')} hold{'s' if len(found) == 1 else ''} at 5 %"
+        f" once all of them are paid for ({by}{positive})"
+        + (f": {_named(found, asked)}." if found else "."),
+        f"{CORRECTIONS[other]} leaves {len(found_pairs(panel, other)) or 'none'}.",
+    ]
+    if refused:
+        said.append(f"{counted(refused, 'pair')} could not be searched; the table says why.")
+    return " ".join(said)
+
+
+def notes(known: Scan) -> list[str]:
+    """Say what a reader has to know before believing the table."""
+    asked, said = known.question, []
+    lacking = [economy or "series without an economy" for economy in asked.roles.lacking]
+    if lacking:
+        said.append(
+            f"Left out, lacking a driver or a response: {', '.join(lacking[:NAMED])}"
+            f"{f' and {len(lacking) - NAMED} more' if len(lacking) > NAMED else ''}."
+        )
+    count, draws = len(asked.pairs), asked.state.surrogates
+    if count / (draws + 1) > LEVEL:
+        said.append(
+            f"With {draws:,} surrogates the smallest p a pair can have is"
+            f" {p_words(1 / (draws + 1))}; held against {count} pairs, Holm can find none, and"
+            f" Benjamini-Hochberg none that stands alone. From {enough_draws(count):,} surrogates"
+            " on both can."
+        )
+    return said
+
+
+def enough_draws(pairs: int) -> int:
+    """Return the fewest surrogates with which one pair alone can hold at 5 % among `pairs`."""
+    return math.ceil(pairs / LEVEL) - 1
+
+
+def found_pairs(panel: PanelScan, correction: str) -> list[PairScan]:
+    """Return the pairs that hold at 5 % after a correction, in their order."""
+    p = panel.p_scan if correction == "bh" else panel.p_holm
+    return [scan for scan, each in zip(panel.pairs, p.tolist(), strict=True) if each <= LEVEL]
+
+
+def average_words(known: Scan) -> str:
+    """Say what the averages of the economies show, and how much hangs on one of them."""
+    found = known.averages
+    if found is None:
+        return f"No line here: {known.no_averages}."
+    spans = {(one.first, one.last) for one in known.question.averages}
+    when = "{} to {}".format(*next(iter(spans))) if len(spans) == 1 else "each over the span it has"
+    low, high = found.slope_interval
+    what = "elasticity" if found.log else "slope"
+    place = found.names.index(found.most_telling)
+    gone = (
+        f" Left out, having no logarithm: {', '.join(found.left_out[:NAMED])}."
+        if found.left_out
+        else ""
+    )
+    return (
+        f"{len(found.names)} economies, {when}: {what} {plain(found.slope)} (95 % {plain(low)} to"
+        f" {plain(high)}, as if economies were independent of each other), correlation"
+        f" {signed(found.correlation)}. Without {found.most_telling or 'one'}, which tells most,"
+        f" {plain(float(found.slope_without[place]))}; leaving out any other one, it stays from"
+        f" {_rest_words(found, place)}.{gone}"
+    )
+
+
+def shift_words_of(known: Scan) -> str:
+    """Say where the best shifts lie."""
+    panel = known.panel
+    if panel is None:
+        return "The best shifts come with the search."
+    found = found_pairs(panel, known.question.state.correction)
+    unit = noun(known.question)
+    if not found:
+        return "No pair holds, so the best shifts say nothing."
+    shifts = np.array([scan.shift for scan in found])
+    low, high, middle = int(shifts.min()), int(shifts.max()), float(np.median(shifts))
+    return (
+        f"The best shift of the {counted(len(found), 'pair')} that"
+        f" {'holds' if len(found) == 1 else 'hold'} lies from {signed(low, 0)} to"
+        f" {signed(high, 0)} {unit}s, with {signed(middle, 0 if middle.is_integer() else 1)} in the"
+        " middle; above 0 the driver leads."
+    )
+
+
+def map_words(known: Scan, drawn: int) -> str:
+    """Say what the small maps show."""
+    unit, total = noun(known.question), len(known.question.pairs)
+    which = "" if drawn == total else f" The first {drawn} of {total} in the order of the table."
+    held = " A heavy name holds once all pairs are paid for." if known.panel is not None else ""
+    return (
+        f"Correlation, blue below 0 and orange above, by window (up) and shift (across, {unit}s;"
+        f" the dotted line is 0, right of it the driver leads). The ring is the cell that stands"
+        f" out most.{held} A click opens the pair on the Lag page.{which}"
+    )
+
+
+def map_label(scan: PairScan, p: float, known: Scan) -> str:
+    """Return the few words under a small map."""
+    shift = shift_words(scan.shift, noun(known.question))
+    return f"{shift}, r {signed(scan.correlation)}, p {p_words(p)}"
+
+
+def waiting_words(known: Scan) -> str:
+    """Say why the table is empty."""
+    if not known.question.pairs:
+        return "No pair can be searched."
+    return "The table comes once every pair is searched, since p has to pay for all of them."
+
+
+def _rest_words(found: LongAverages, place: int) -> str:
+    rest = np.delete(found.slope_without, place)
+    return f"{plain(float(rest.min()))} to {plain(float(rest.max()))}"
+
+
+def _other(correction: str) -> str:
+    return "holm" if correction == "bh" else "bh"
+
+
+def _named(found: list[PairScan], asked: Question) -> str:
+    words = [f"{pair_words(scan, asked)} {signed(scan.shift, 0)}" for scan in found[:NAMED]]
+    more = f" and {len(found) - NAMED} more" if len(found) > NAMED else ""
+    return ", ".join(words) + more
+
+
+def _listed(names: tuple[str, ...]) -> str:
+    if len(names) > 3:
+        return f"{', '.join(names[:2])} and {len(names) - 2} more"
+    return " and ".join([", ".join(names[:-1]), names[-1]] if len(names) > 1 else list(names))
+
+
+def _grid(asked: Question) -> str:
+    if not asked.pairs:
+        return ""
+    windows = {(one.windows[0], one.windows[-1]) for one in asked.pairs}
+    shifts = {(one.shifts[0], one.shifts[-1]) for one in asked.pairs}
+    if len(windows) > 1 or len(shifts) > 1:
+        return ", each over the windows and shifts that its sample allows"
+    (low, high), (back, ahead) = windows.pop(), shifts.pop()
+    return (
+        f", windows {low} to {high} and shifts {plain(back, 0)} to {signed(ahead, 0)}"
+        f" {noun(asked)}s"
+    )
