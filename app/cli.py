@@ -1,12 +1,7 @@
 """The command `pricewake`: serve the dashboard, or answer without a browser."""
 
 import io
-import signal
-import socket
 import sys
-import threading
-import webbrowser
-from importlib import import_module
 from pathlib import Path
 from typing import Any, NoReturn
 
@@ -18,15 +13,12 @@ from app.commands.brief import brief
 from app.commands.outlook import outlook
 from app.commands.parts import errors, print_json, state_of, workspace_of, write
 from app.commands.scan import scan
+from app.commands.serve import serve
 from app.commands.workspace import workspace
 from app.places import software_version
 from app.reading.fields import READING_FIELDS, READING_VIEWS
 from app.state import ViewState
 
-DEFAULT_PORT = 8391
-COMPILE_AFTER = (
-    10.0  # seconds; by then the first page is shown, and nobody has asked for HAC errors
-)
 VIEW_NAMES = (
     "surface",
     "scatter",
@@ -76,48 +68,6 @@ def pricewake() -> None:
     With FILES and no command, the dashboard opens on them; with nothing at all, on an invented
     economy.
     """
-
-
-@pricewake.command()
-@cli_parts.files
-@click.option(
-    "--port",
-    type=click.IntRange(1, 65535),
-    default=DEFAULT_PORT,
-    show_default=True,
-    help="Port to serve on; where it is taken, the next one that is free.",
-)
-@click.option("--no-browser", is_flag=True, help="Do not open the browser.")
-@cli_parts.desk
-def serve(files: tuple[Path, ...], port: int, no_browser: bool, kept_in: str | None) -> None:
-    """Serve the dashboard on this machine and open the browser (the command when none is named)."""
-    free = _free_port(port)
-    if free != port:
-        click.echo(f"Port {port} is taken; using {free}.")
-    from waitress.server import create_server
-
-    from app.server import build_app
-    from app.store import default_path
-
-    desk = workspace_of(files, kept_in or str(default_path()), at_desk=True)
-    app = build_app(desk)
-    server = create_server(app.server, host="127.0.0.1", port=free, threads=8, ident=None)
-    address = f"http://127.0.0.1:{free}/lag"
-    click.echo(f"Pricewake is at {address}  (Ctrl-C ends it)")
-    if not no_browser:
-        threading.Thread(target=webbrowser.open, args=(address,), daemon=True).start()
-    later = threading.Timer(COMPILE_AFTER, import_module, ("analytics.hac_loop",))
-    later.daemon = True
-    later.start()
-    signal.signal(signal.SIGTERM, signal.default_int_handler)
-    try:
-        server.run()
-    except KeyboardInterrupt:
-        pass
-    finally:
-        server.close()
-        desk.close()
-        click.echo("Pricewake has ended.")
 
 
 @pricewake.command()
@@ -263,6 +213,7 @@ def reading(
     return int(bool(errors(desk) or answer["alerts"]))
 
 
+pricewake.add_command(serve)
 pricewake.add_command(breadth)
 pricewake.add_command(brief)
 pricewake.add_command(outlook)
@@ -288,19 +239,6 @@ def main(arguments: list[str] | None = None) -> NoReturn:
 def _refuse(sentence: str) -> NoReturn:
     click.echo(f"pricewake: {' '.join(sentence.split())}", err=True)
     sys.exit(2)
-
-
-def _free_port(port: int) -> int:
-    """Return the first port from `port` on that nothing listens on."""
-    for candidate in range(port, min(port + 100, 65536)):
-        with socket.socket(socket.AF_INET, socket.SOCK_STREAM) as probe:
-            probe.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
-            try:
-                probe.bind(("127.0.0.1", candidate))
-            except OSError:
-                continue
-            return candidate
-    raise click.UsageError(f"port must be free, but {port} and the 99 after it are taken")
 
 
 def _csv_text(view: str, rows: list[list[Any]]) -> str:

@@ -82,6 +82,7 @@ def slider(
     return html.Div(
         [
             html.Label(kind.label, htmlFor=f"field-{name}", className="hidden-label"),
+            _help(name),
             _native(
                 name,
                 type="range",
@@ -98,7 +99,7 @@ def slider(
 
 
 def save_buttons(view: str) -> html.Div:
-    """Return the buttons that save a view as PNG, SVG and CSV."""
+    """Return the buttons of a view: its numbers as a table, and PNG, SVG and CSV to save."""
     buttons = [
         html.Button(
             f"Save {kind}", **{"data-save": kind.lower(), "data-view": view, "type": "button"}
@@ -106,7 +107,8 @@ def save_buttons(view: str) -> html.Div:
         for kind in ("PNG", "SVG")
     ]
     link = html.A("Save CSV", id=f"csv-{view}", className="button", **{"data-csv": view})
-    return html.Div([*buttons, link], className="save")
+    table = html.Button("Table", type="button", **{"data-table": view, "aria-expanded": "false"})
+    return html.Div([table, *buttons, link], className="save")
 
 
 def view_head(view: str, words: str) -> html.Div:
@@ -123,11 +125,27 @@ def _labelled(name: str, element: Any) -> html.Div:
     kind = field_kind(name)
     return html.Div(
         [
-            html.Label(kind.label, htmlFor=f"field-{name}", title=kind.help),
+            html.Span(
+                [html.Label(kind.label, htmlFor=f"field-{name}"), _help(name)], className="label"
+            ),
             element,
             html.Span(kind.help, id=f"help-{name}", className="hidden-label"),
         ],
         className="control",
+    )
+
+
+def _help(name: str) -> html.Button:
+    """Return the small "?" that shows the sentence of help: assets/help.js."""
+    return html.Button(
+        "?",
+        type="button",
+        className="help",
+        **{
+            "data-help": f"help-{name}",
+            "aria-label": f"Help on {field_kind(name).label}",
+            "aria-describedby": f"help-{name}",
+        },
     )
 
 

@@ -2,25 +2,23 @@
 
 import secrets
 from typing import Any
-from urllib.parse import urlsplit
 
-from dash import Dash, Input, Output, dcc, html
-from flask import Flask, Response, abort, request
-from werkzeug.exceptions import HTTPException
+from dash import Dash, Input, Output
+from flask import Flask, Response, request
 
-from app import kept_routes
+from app import faults, frame, kept_routes
 from app.compute import Bridge
 from app.desk import routes as desk_routes
+from app.guard import Door, guard
 from app.intake.csv_files import MAX_BYTES
 from app.memory import server_cache
 from app.page_table import EXPORTS, PAGES, WORKS
 from app.pages import lag
-from app.places import bundled, software_version
+from app.places import bundled
 from app.scan import routes as scan_routes
 from app.state import ViewState
 from app.workspace import Workspace
 
-HOSTS = ("127.0.0.1", "localhost", "[::1]")
 INDEX = """<!DOCTYPE html>
 <html lang="en">
 <head>
@@ -43,8 +41,11 @@ INDEX = """<!DOCTYPE html>
 """
 
 
-def build_app(workspace: Workspace) -> Dash:
-    """Return the dashboard for a workspace; several can live in one process."""
+def build_app(workspace: Workspace, door: Door = Door()) -> Dash:  # noqa: B008 (it is frozen)
+    """Return the dashboard for a workspace; several can live in one process.
+
+    `door` says under which names, and with which token, requests are let in.
+    """
     server = Flask("app.server", static_folder=None)
     server.config["SECRET_KEY"] = secrets.token_bytes(32)
     server.config["MAX_CONTENT_LENGTH"] = MAX_BYTES
@@ -58,9 +59,10 @@ def build_app(workspace: Workspace) -> Dash:
         serve_locally=True,
         compress=False,
         index_string=INDEX,
+        enable_mcp=False,
     )
     bridge = Bridge(workspace, server_cache(server))
-    app.layout = _frame()
+    app.layout = lambda: frame.frame(shows_invented(bridge))  # anew for each page load
 
     @app.callback(
         Output("page", "children"),
@@ -71,70 +73,44 @@ def build_app(workspace: Workspace) -> Dash:
     def _page(path: str | None, query: str | None) -> tuple[Any, str]:
         page = next((p for p in PAGES if path == p.PATH), lag if path in (None, "/") else None)
         if page is None:
-            return _missing(), "No such page"
+            return frame.missing(), "No such page"
         try:
             return page.layout(query or "", bridge), page.TITLE
         except ValueError as error:  # a workspace that cannot be read
-            return _unreadable(str(error)), page.TITLE
+            return frame.unreadable(str(error)), page.TITLE
 
     for page in PAGES:
         page.register(app, bridge)
     _register_routes(server, bridge)
-    _guard(server, app)
+    faults.register(server)
+    guard(server, app, door)
     return app
 
 
-def _frame() -> html.Div:
-    """Return what stays while pages change: name, navigation, theme switch."""
-    return html.Div(
-        [
-            dcc.Location(id="address", refresh="callback-nav"),
-            html.A("Skip to the page", href="#page", className="skip"),
-            html.Div(
-                [
-                    html.Span("Pricewake", className="name"),
-                    html.Nav(
-                        [
-                            dcc.Link(page.TITLE, href=page.PATH, id=f"nav-{page.TITLE.lower()}")
-                            for page in PAGES
-                        ],
-                        **{"aria-label": "Pages"},
-                    ),
-                    html.Button("Dark", id="theme", type="button", **{"aria-pressed": "false"}),
-                ],
-                className="bar",
-            ),
-            html.Span(id="page-title", className="hidden-label"),
-            html.Main(html.P("Opening …", className="opening"), id="page", tabIndex="-1"),
-            html.Div(id="toast", role="status", className="toast"),
-        ],
-        id="frame",
-    )
-
-
-def _unreadable(sentence: str) -> html.Div:
-    return html.Div(
-        [
-            html.H1("This page cannot be shown"),
-            html.P(sentence, className="message", role="alert"),
-        ],
-        className="headline",
-    )
-
-
-def _missing() -> html.Div:
-    return html.Div(
-        [
-            html.H1("No such page"),
-            html.P(
-                ["This address shows nothing. Try ", dcc.Link("the Lag page", href="/lag"), "."]
-            ),
-        ],
-        className="headline",
-    )
+def shows_invented(bridge: Bridge) -> bool:
+    """Say whether anything in view belongs to the invented economy."""
+    try:
+        shown = bridge.workspace.as_of().series.values()
+    except ValueError:  # a workspace that cannot be read; the page says so
+        return False
+    return any("(invented)" in series.source for series in shown)
 
 
 def _register_routes(server: Flask, bridge: Bridge) -> None:
+    run = secrets.token_hex(8)
+
+    @server.get("/alive")
+    def _alive() -> dict[str, Any]:
+        """Tell which run of the program answers; a page that knew another one opens anew."""
+        return {"run": run, "invented": shows_invented(bridge)}
+
+    @server.after_request
+    def _no_such_page(response: Response) -> Response:
+        known = {"/", *(page.PATH for page in PAGES)}
+        if request.endpoint == "/<path:path>" and request.path not in known:
+            response.status_code = 404
+        return response
+
     @server.get("/export/<page>/<view>.csv")
     def _csv(page: str, view: str) -> Response:
         if page not in EXPORTS:
@@ -162,54 +138,3 @@ def _register_routes(server: Flask, bridge: Bridge) -> None:
     desk_routes.register(server, bridge)
     kept_routes.register(server, bridge)
     scan_routes.register(server, bridge)
-
-    @server.errorhandler(Exception)
-    def _failed(error: Exception) -> tuple[dict[str, str], int] | HTTPException:
-        if isinstance(error, HTTPException):
-            if error.code == 413:
-                limit = MAX_BYTES // 2**20
-                return {
-                    "message": f"a file must be at most {limit} MB, but this one is larger"
-                }, 413
-            return error
-        server.logger.exception("unexpected")
-        return {"message": "something went wrong inside the program; the page is still there"}, 500
-
-
-def _guard(server: Flask, app: Dash) -> None:
-    """Refuse strange hosts and other sites' requests; send the security headers."""
-
-    @server.before_request
-    def _check() -> None:
-        if urlsplit(f"//{request.host.lower()}").hostname not in {h.strip("[]") for h in HOSTS}:
-            abort(421)
-        site = request.headers.get("Sec-Fetch-Site", "same-origin")
-        mode = request.headers.get("Sec-Fetch-Mode", "navigate")
-        if site in ("cross-site", "same-site") and mode != "navigate":
-            abort(403)  # another site may link here, but not set the machine to work
-        if request.method not in ("GET", "HEAD"):
-            if site != "same-origin":
-                abort(403)
-            origin = request.headers.get("Origin")
-            if origin and urlsplit(origin).netloc != request.host:
-                abort(403)
-
-    policy: dict[str, str] = {}
-
-    @server.after_request
-    def _headers(response: Response) -> Response:
-        if not policy:
-            policy["csp"] = (
-                "default-src 'none'; script-src 'self' " + " ".join(app.csp_hashes()) + "; "
-                "style-src 'self' 'unsafe-inline'; img-src 'self' data: blob:; font-src 'self'; "
-                "connect-src 'self'; base-uri 'none'; form-action 'none'; "
-                "frame-ancestors 'none'; object-src 'none'"
-            )
-        response.headers["Content-Security-Policy"] = policy["csp"]
-        response.headers["X-Content-Type-Options"] = "nosniff"
-        response.headers["Referrer-Policy"] = "no-referrer"
-        response.headers["X-Pricewake"] = software_version()
-        known = {"/", *(page.PATH for page in PAGES)}
-        if request.endpoint == "/<path:path>" and request.path not in known:
-            response.status_code = 404  # the frame, which says that there is no such page
-        return response

@@ -29,7 +29,15 @@ def table(
         [
             html.Thead(
                 html.Tr(
-                    [html.Th(name, scope="col", role="columnheader") for name in head], role="row"
+                    [
+                        html.Th(
+                            name or html.Span("Picture", className="hidden-label"),
+                            scope="col",
+                            role="columnheader",
+                        )
+                        for name in head
+                    ],
+                    role="row",
                 ),
                 role="rowgroup",
             ),

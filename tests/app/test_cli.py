@@ -12,10 +12,10 @@ import click
 import pytest
 
 from analytics.series import period_code
-from app import cli
 from app.breadth import fields as breadth_fields
 from app.cli import LAG_FIELDS, main, pricewake
 from app.commands import parts as cli_parts
+from app.commands.serve import free_port
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.intake.reading import read_path
@@ -495,7 +495,7 @@ def test_a_taken_port_gives_way_to_the_next_free_one():
         taken.bind(("127.0.0.1", 0))
         taken.listen()
         port = taken.getsockname()[1]
-        found = cli._free_port(port)
+        found = free_port(port, "127.0.0.1")
         assert port < found < port + 100
 
 

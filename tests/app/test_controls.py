@@ -118,4 +118,11 @@ def test_hostile_names_are_text_and_never_markup():
     name = '"><script>alert(1)</script>'
     drawn = controls.select(ViewState(driver=name), "driver", [name])
     assert [o["children"] for o in options(drawn)] == [name]
-    assert {kind for kind, _ in properties(drawn)} == {"Div", "Label", "Select", "Option", "Span"}
+    assert {kind for kind, _ in properties(drawn)} == {
+        "Button",
+        "Div",
+        "Label",
+        "Select",
+        "Option",
+        "Span",
+    }

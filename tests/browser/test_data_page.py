@@ -115,7 +115,7 @@ def test_own_files_take_the_place_of_the_invented_economy_once_they_are_kept(dat
     assert (shown[0]["driver"], shown[0]["response"]) == ("Money in hand", "Shop prices")
     cell = lag_cell(*growth, window=12, shift=24)
     np.testing.assert_allclose(shown[1], cell.driver, atol=1e-9)
-    assert not browser.find_element(By.ID, "lag-invented").is_displayed()
+    assert not browser.find_element(By.ID, "invented").is_displayed()
     assert severe(browser) == []
     again = Workspace(path=here.store.path)  # another program sees what was kept
     assert list(again.series) == ["Money in hand", "Shop prices"]
