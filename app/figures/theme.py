@@ -1,4 +1,4 @@
-"""The plotly template and the colours, read from assets/tokens.css."""
+"""The plotly template: colours, type and sizes, all read from assets/tokens.css."""
 
 import re
 from functools import lru_cache
@@ -14,12 +14,18 @@ CONFIG = {
     "plotlyServerURL": "",
     "responsive": True,
 }
+CATEGORIES = ("driver", "response", "fit", "mark", "other")  # told apart by every kind of sight
+
+
+@lru_cache(maxsize=1)
+def _tokens() -> str:
+    return (bundled("assets") / "tokens.css").read_text(encoding="utf-8")
 
 
 @lru_cache(maxsize=1)
 def colours() -> dict[str, dict[str, str]]:
     """Return the tokens that hold a colour: {"light": {name: hex}, "dark": {name: hex}}."""
-    text = (bundled("assets") / "tokens.css").read_text(encoding="utf-8")
+    text = _tokens()
     found: dict[str, dict[str, str]] = {"light": {}, "dark": {}}
     for selector, body in re.findall(r"(:root[^{]*)\{([^}]*)\}", text):
         theme = "dark" if "dark" in selector else "light"
@@ -33,6 +39,22 @@ def colour(name: str) -> str:
     The swap goes by value, so no two light tokens may be the same colour (a test holds that).
     """
     return colours()["light"][name]
+
+
+def type_face() -> str:
+    """Return the fonts of controls and charts, as tokens.css names them."""
+    return _token("sans").replace('"', "")
+
+
+def type_size(step: int) -> float:
+    """Return a step of the type scale in pixels, at the browser's usual 16 pixels a rem."""
+    return 16 * float(_token(f"size-{step}").removesuffix("rem"))
+
+
+def _token(name: str) -> str:
+    found = re.search(rf"--{name}:\s*([^;]+);", _tokens())
+    assert found is not None
+    return found.group(1)
 
 
 def diverging() -> list[list[float | str]]:
@@ -66,14 +88,14 @@ def template() -> go.layout.Template:
         "ticks": "outside",
         "ticklen": 4,
         "tickcolor": colour("rule"),
-        "title": {"standoff": 8, "font": {"size": 12}},
+        "title": {"standoff": 8, "font": {"size": type_size(1)}},
         "automargin": False,
     }
     return go.layout.Template(
         layout={
             "font": {
-                "family": "system-ui, -apple-system, Segoe UI, Roboto, Liberation Sans, sans-serif",
-                "size": 12,
+                "family": type_face(),
+                "size": type_size(1),
                 "color": colour("ink"),
             },
             "paper_bgcolor": colour("paper"),
@@ -83,5 +105,7 @@ def template() -> go.layout.Template:
             "margin": {"l": 56, "r": 12, "t": 8, "b": 44},
             "hoverlabel": {"bgcolor": colour("raised"), "font": {"color": colour("ink")}},
             "showlegend": False,
+            "colorway": [colour(name) for name in CATEGORIES],
+            "colorscale": {"sequential": sequential(), "diverging": diverging()},
         }
     )

@@ -118,7 +118,7 @@ def _leave_out(row: Row, chosen: list[str]) -> html.Button:
             "data-set": "excluded",
             "data-value": "|".join(wanted) or "none",
             "aria-pressed": str(row.left_out).lower(),
-            "aria-label": f"{'left' if row.left_out else 'leave'} out: {row.name}",
+            "aria-label": f"{row.name} is left out" if row.left_out else f"Leave out {row.name}",
         },
     )
 
