@@ -44,15 +44,24 @@
     return new URLSearchParams(pairs).toString().replaceAll("%7E", "~").replaceAll("*", "%2A");
   }
 
-  /* Give the links of the other pages the date whose vintages are shown. */
-  function carry(page, day) {
+  /* Give the links of the other pages the date whose vintages are shown; of the two pages of a pair
+     of series, the pair and the cell as well. */
+  const PAIRED = ["lag", "outlook"];
+  const PAIR = ["driver", "response", "window", "shift", "growth", "first", "last", "season", "meet", "windows", "shifts"];
+
+  function carry(page, state, defaults) {
     for (const link of document.querySelectorAll("[id^='nav-']")) {
-      if (link.id === `nav-${page}`) continue;
-      const address = new URL(link.href);
-      if ((address.searchParams.get("as_of") || "") === (day || "")) continue;
-      if (day) address.searchParams.set("as_of", day);
-      else address.searchParams.delete("as_of");
-      window.dash_clientside.set_props(link.id, { href: address.pathname + address.search });
+      const other = link.id.slice("nav-".length);
+      if (other === page) continue;
+      const address = new URL(link.href), before = address.search;
+      const carried = PAIRED.includes(page) && PAIRED.includes(other) ? ["as_of", ...PAIR] : ["as_of"];
+      for (const name of carried) {
+        if (name in state && state[name] !== defaults[name]) address.searchParams.set(name, state[name]);
+        else address.searchParams.delete(name);
+      }
+      if (address.search !== before) {
+        window.dash_clientside.set_props(link.id, { href: address.pathname + address.search });
+      }
     }
   }
 
@@ -65,7 +74,7 @@
       link.href = `/export/${page}/${link.dataset.csv}.csv${search}`;
     }
     window.dash_clientside.set_props(`nav-${page}`, { href: `/${page}${search}` });
-    carry(page, state.as_of);
+    carry(page, state, defaults);
     if (ask) window.dash_clientside.set_props(`${page}-state`, { data: state });
   }
 

@@ -73,12 +73,16 @@ def fan_chart(
                 dash="dot",
             )
         )
-    for row, (_, high) in enumerate(ahead.bands):
+    drawn = np.concatenate([values, ahead.centre, *(end for band in ahead.bands for end in band)])
+    apart = 0.055 * float(np.nanmax(drawn) - np.nanmin(drawn))
+    place = -np.inf
+    for (_, high), label in zip(ahead.bands, ahead.labels, strict=True):
         if not np.isnan(high[-1]):
+            place = max(float(high[-1]), place + apart)  # narrow bands: labels one over the other
             figure.add_annotation(
                 x=when(ahead.periods)[-1],
-                y=float(high[-1]),
-                text=escape(ahead.labels[row], False),
+                y=place,
+                text=escape(label, False),
                 showarrow=False,
                 xanchor="left",
                 xshift=4,
@@ -193,7 +197,7 @@ def statement_lines(
                 )
             )
     figure.add_trace(_line(*history, "response", "observed"))
-    for one in stated:
+    for place, one in enumerate(stated):
         figure.add_trace(
             _line(
                 one.periods,
@@ -201,7 +205,7 @@ def statement_lines(
                 "fit" if one.stands else "quiet",
                 one.name,
                 width=1.8 if one.stands else 1,
-                dash="solid" if one.stands else "dot",
+                dash=DASHES[place % len(DASHES)],
             )
         )
         for hit, symbol, tone in ((1.0, "circle", "other"), (0.0, "x", "alarm")):

@@ -38,7 +38,7 @@ AHEAD = Choice(
 AGAINST = Choice(
     label="Against",
     options={
-        "no change": "no change of the 12-month rate",
+        "no change": "no change",
         "autoregression": "autoregression",
         "mean so far": "mean so far",
     },

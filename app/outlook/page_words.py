@@ -99,7 +99,8 @@ def _fan(known: Outlook) -> list[Any]:
     said.append(
         html.P(
             "The path takes nothing from where the rate stands now: today's gap is neither carried"
-            " on nor made up for. The intervals know only errors of the past.",
+            " on nor made up for. The intervals know only errors of the past, and do not pay for"
+            " having picked this window and shift; the backtest that chooses them anew does.",
             className="quiet",
         )
     )
@@ -227,9 +228,9 @@ def _coverage(known: Outlook) -> list[Any]:
                     f"{100 * seen.share:.0f} %",
                     f"{100 * seen.low:.0f} to {100 * seen.high:.0f} %",
                 ]
+                cells += [f"{seen.n}", p_words(seen.p_kupiec), p_words(seen.p_christoffersen)]
             else:
-                cells += ["", ""]
-            cells += [f"{seen.n}", p_words(seen.p_kupiec), p_words(seen.p_christoffersen)]
+                cells += ["", "", "none", "", ""]
             rows.append(_row(counted(h, found.noun), cells, chosen=h == found.ahead))
     return [
         html.P(

@@ -76,6 +76,19 @@ def test_what_is_drawn_and_said_are_the_numbers_of_the_results(page, desk):
     assert severe(page) == []
 
 
+def test_the_link_to_the_lag_page_carries_the_pair_and_the_cell(page):
+    link = page.find_element(By.ID, "nav-lag").get_attribute("href")
+    assert {"driver=Money", "response=Prices", "window=3", "shift=6"} <= set(
+        link.partition("?")[2].split("&")
+    )
+    page.find_element(By.ID, "nav-lag").click()
+    until(page, "window.pricewake && pricewake.lag && pricewake.lag.state", 30)
+    until(page, "pricewake.lag.state.shift === 6 && pricewake.lag.state.driver === 'Money'")
+    back = page.find_element(By.ID, "nav-outlook").get_attribute("href")
+    assert "shift=6" in back
+    assert severe(page) == []
+
+
 def test_another_rate_asks_for_its_own_past(page):
     Select(page.find_element(By.ID, "field-target")).select_by_value("window")
     until(page, "!document.getElementById('outlook-work').hidden", 20)
