@@ -47,6 +47,7 @@ def build_app(workspace: Workspace, door: Door = Door()) -> Dash:  # noqa: B008 
     `door` says under which names, and with which token, requests are let in.
     """
     server = Flask("app.server", static_folder=None)
+    server.debug = False  # whatever the environment says
     server.config["SECRET_KEY"] = secrets.token_bytes(32)
     server.config["MAX_CONTENT_LENGTH"] = MAX_BYTES
     app = Dash(
