@@ -14,7 +14,9 @@ FORMULA = "=cmd|'/C calc'!A0"
 LINK = "@SUM(1+1) <a href=javascript:window.hostile=4>x</a>"
 TURNED = "evil\u202etxt.exe\u202c &amp; <b>bold</b>"
 LONG = "W" * 10_000
-NAMES = (MARKUP, SCRIPT, FORMULA, LINK, TURNED, LONG)
+ECONOMY = (f"{MARKUP}: Broad money", f"{MARKUP}: Consumer prices")
+NAMES = (MARKUP, SCRIPT, FORMULA, LINK, TURNED, LONG, *ECONOMY)
+WEIGHED = 5  # the first of them are components of a basket
 MONTHS = 132
 
 
@@ -35,11 +37,10 @@ def workspace() -> Workspace:
     """Return a workspace whose series, units, sources and files all have hostile names."""
     prices = read_release(f"{MARKUP}.csv", columns().encode())
     named = [series.name for series in prices.series]
-    shares = np.full((11, len(named)), 1000 / len(named))
+    shares = np.full(11, 1000 / WEIGHED)
     weights = [
-        Series(PREFIX + name, pd.Period("2015"), shares[:, i], kind="level", unit=UNIT)
-        for i, name in enumerate(named)
-        if len(PREFIX + name) <= 200
+        Series(PREFIX + name, pd.Period("2015"), shares, kind="level", unit=UNIT)
+        for name in named[:WEIGHED]
     ]
     index = [
         Series(

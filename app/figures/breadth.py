@@ -145,7 +145,16 @@ def component_strip(
             colorscale=diverging(),
             xgap=0,
             ygap=1 if few else 0,
-            colorbar={"thickness": 8, "outlinewidth": 0, "xpad": 4, "nticks": 6},
+            colorbar={
+                "thickness": 8,
+                "outlinewidth": 0,
+                "xpad": 4,
+                "nticks": 6,
+                "title": {
+                    "text": "rank, 0 to 100" if by_rank else f"{over} rate, percent",
+                    "side": "right",
+                },
+            },
             hovertemplate="%{x|%b %Y}<br>%{y}: " + hover + "<extra></extra>",
         )
     )

@@ -55,12 +55,14 @@ def surface_maps(
             "anchor": f"y{name}",
             "range": [surface.shifts[0] - 0.5, surface.shifts[-1] + 0.5],
             "showticklabels": place + across >= len(surfaces),
+            "title": {"text": "shift (months)"} if place + across >= len(surfaces) else {},
         }
         layout[f"yaxis{name}"] = plain | {
             "domain": [top - 0.68 / down, top],
             "anchor": f"x{name}",
             "range": [surface.windows[0] - 0.5, surface.windows[-1] + 0.5],
             "showticklabels": column == 0,
+            "title": {"text": "window (months)"} if column == 0 else {},
         }
         title, under = (escape(text, False) for text in (_cut(titles[place][0]), titles[place][1]))
         figure.add_annotation(

@@ -45,7 +45,7 @@ def test_the_names_are_cut_and_kept_as_text(bridge):
     names = list(bridge.in_view(ViewState()).series)
     assert FORMULA in names
     assert max(map(len, names)) <= 200
-    assert len(names) == len(NAMES)
+    assert len([name for name in names if not name.startswith("Weight of")]) == len(NAMES)
 
 
 @pytest.mark.parametrize("page", PAGES, ids=lambda page: page.TITLE)
