@@ -8,6 +8,8 @@ from app.breadth.bridge import breadth
 from app.compute import Bridge
 from app.intake.weights import PREFIX, is_weight
 from app.reading.bridge import chosen_series
+from app.scan.bridge import question
+from app.scan.economies import series_name
 from app.state import ViewState
 
 
@@ -84,8 +86,16 @@ def _breadth(state: ViewState, bridge: Bridge) -> tuple[Series, ...]:
     return (*prices, *weights)
 
 
+def _scan(state: ViewState, bridge: Bridge) -> tuple[Series, ...]:
+    loaded = bridge.in_view(state).as_read
+    pairs = question(state, bridge).roles.pairs
+    names = dict.fromkeys(series_name(e, side) for e, *sides in pairs for side in sides)
+    return tuple(loaded[name] for name in names if name in loaded)
+
+
 SERIES_USED: dict[str, Callable[[ViewState, Bridge], tuple[Series, ...]]] = {
     "reading": _reading,
     "breadth": _breadth,
     "lag": _pair,
+    "scan": _scan,
 }  # page name -> series; of a page that is not here, driver and response

@@ -23,6 +23,7 @@ LEADING = {  # views that a brief begins with, the first one on one page; else e
     "reading": ("rates", "base", "rank", "distribution"),
     "breadth": ("contributions", "history", "core", "diffusion"),
     "lag": ("surface", "scatter", "overlay", "profile", "episodes"),
+    "scan": (),  # long work; there for who chooses it
 }
 
 
@@ -141,6 +142,7 @@ def _of_plain(page: ModuleType) -> Callable[[ViewState, Bridge, tuple[str, ...]]
         found = page.answer(state, bridge)
         views = _headings(page)
         of_views = {f"{view}-words" for view in views} | set(views)
+        of_views |= set(getattr(page, "SCREEN_ONLY", ()))
         return Shown(
             state=found.state,
             sentence=found.sentence,

@@ -31,12 +31,13 @@ PATH, TITLE, NAME = "/scan", "Scan", "scan"
 PLACES = (
     "as-of",
     "notes",
-    "table",
+    "pairs",
     "surfaces-words",
     "maps",
     "shifts-words",
     "averages-words",
 )
+SCREEN_ONLY = ("maps",)  # painted by a script; a brief has the chart of the same numbers
 
 
 def layout(query: str, bridge: Bridge) -> html.Div:
@@ -61,7 +62,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
             html.Div(
                 [
                     html.Section(
-                        [_head("pairs", "Every pair"), html.Div(id=f"{NAME}-table")],
+                        [_head("pairs", "Every pair"), html.Div(id=f"{NAME}-pairs")],
                         className="view wide",
                     ),
                     html.Section(
@@ -115,7 +116,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
     words: dict[str, Any] = {
         "as-of": as_of_line(state),
         "notes": _notes(known, bridge, held=held),
-        "table": league_table(known),
+        "pairs": league_table(known),
         "surfaces-words": map_words(known, len(surfaces)),
         "shifts-words": shift_words_of(known),
         "averages-words": average_words(known),

@@ -1,0 +1,198 @@
+"""`pricewake scan`: what it prints and writes, what it goes on from, and its refusals."""
+
+import csv
+import json
+import os
+import signal
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import pytest
+
+from app import cli
+from app.compute import Bridge
+from app.intake.reading import read_path
+from app.scan import run
+from app.scan.bridge import draws, question, scan_work
+from app.scan.result_file import panel_text
+from app.state import ViewState
+from app.workspace import Workspace
+from tests.app.panels import SMALL, panel_file
+
+ROOT = Path(__file__).resolve().parents[2]
+SLOPES = {"Ardenquay": 1.0, "Belmorrow": 0.0, "Corvessa": 0.6}
+FLAGS = ["--windows", "1:4", "--shifts", "-2:8", "--surrogates", "99"]
+KEYS = {"economy", "driver", "response", "window", "shift", "correlation", "p_search", "p_scan"}
+
+
+@pytest.fixture(scope="module")
+def panel(tmp_path_factory):
+    return panel_file(tmp_path_factory.mktemp("panel") / "panel.csv", SLOPES)
+
+
+@pytest.fixture
+def counted(monkeypatch):
+    """Search in this process, and count the pairs that are searched."""
+    from analytics.panel import pair_scan
+
+    seen = []
+
+    def scanned(pairs, asked, _pool):
+        for pair in pairs:
+            seen.append(pair.economy)
+            yield pair_scan(pair, **asked)
+
+    monkeypatch.setattr(run, "scanned", scanned)
+    return seen
+
+
+def call(capsys, *words):
+    with pytest.raises(SystemExit) as left:
+        cli.main(["scan", *map(str, words)])
+    out, err = capsys.readouterr()
+    return left.value.code, out, err
+
+
+def test_the_json_has_every_pair_with_its_keys(capsys, counted, panel):
+    code, out, err = call(capsys, panel, *FLAGS, "--json")
+    answer = json.loads(out)
+    assert (code, err) == (0, "")
+    assert [pair["economy"] for pair in answer["pairs"]] == list(SLOPES) == counted
+    assert all(pair.keys() >= KEYS for pair in answer["pairs"])
+    assert [one["economy"] for one in answer["found"]["holm"]] == ["Ardenquay", "Corvessa"]
+    assert answer["pairs"][0]["shift"] == 5
+    asked = question(ViewState(**SMALL), Bridge(Workspace((read_path(panel),))))
+    assert answer["settings"] == asked.settings
+    assert draws(ViewState(**SMALL)) == {"surrogates": 99, "seed": 1, "sign": "any"}
+
+
+@pytest.mark.usefixtures("counted")
+def test_without_json_it_says_what_holds_and_what_it_does_not_say(capsys, panel):
+    code, out, _ = call(capsys, panel, *FLAGS)
+    assert code == 0
+    assert "2 of 3 pairs hold at 5 % once all of them are paid for" in out
+    assert "Long averages. No line here: long averages must have at least 4 economies" in out
+    assert "None of it is a cause" in out
+
+
+@pytest.mark.usefixtures("counted")
+@pytest.mark.parametrize(
+    ("view", "first", "rows"),
+    [
+        ("pairs", "economy,driver,response,fingerprint", 3),
+        ("surfaces", "economy,driver,response,window,shift,correlation,slope,pairs", 3 * 4 * 11),
+        ("shifts", "economy,driver,response,shift,unit,p_scan,p_holm,found", 3),
+        ("averages", "part,economy,driver,response,first,last,slope_without", 3),
+    ],
+)
+def test_each_view_is_written_as_a_table(capsys, panel, tmp_path, view, first, rows):
+    path = tmp_path / "view.csv"
+    code, _, _ = call(capsys, panel, *FLAGS, "--csv", path, "--view", view)
+    body = [x for x in path.read_text(encoding="utf-8").splitlines() if not x.startswith("# ")]
+    assert code == 0
+    assert body[0].startswith(first)
+    assert len(list(csv.reader(body[1:]))) == rows
+
+
+def test_drivers_and_responses_are_named_by_what_they_are_called_within(capsys, counted, panel):
+    code, out, _ = call(
+        capsys, panel, *FLAGS, "--driver", "consumer prices", "--response", "Broad money", "--json"
+    )
+    assert code == 0
+    assert {pair["driver"] for pair in json.loads(out)["pairs"]} == {"Consumer prices"}
+    assert len(counted) == 3
+    code, _, err = call(capsys, panel, "--driver", "Wages")
+    assert code == 2
+    assert "Drivers must be names of series within an economy, but got 'Wages'" in err
+
+
+def test_a_result_is_gone_on_from_and_nothing_is_searched_twice(capsys, counted, panel, tmp_path):
+    path = tmp_path / "result.csv"
+    assert call(capsys, panel, *FLAGS, "--out", path)[0] == 0
+    whole = path.read_bytes()
+    counted.clear()
+    assert call(capsys, panel, *FLAGS, "--out", path)[0] == 0
+    assert counted == []
+    assert path.read_bytes() == whole
+    # One more economy in the files: only that one is searched.
+    wider = panel_file(tmp_path / "panel.csv", SLOPES | {"Dunmarrel": 0.4})
+    assert call(capsys, wider, *FLAGS, "--out", path)[0] == 0
+    assert counted == ["Dunmarrel"]
+    # Another seed is another question.
+    code, _, err = call(capsys, wider, *FLAGS, "--seed", "2", "--out", path)
+    assert code == 2
+    assert "--out must be a result of the same question" in err
+    # Fewer economies than the file has: their rows would be lost.
+    code, _, err = call(capsys, panel, *FLAGS, "--out", path)
+    assert code == 2
+    assert "which is not asked for" in err
+
+
+def test_new_data_in_an_old_result_are_refused(capsys, counted, panel, tmp_path):
+    path = tmp_path / "result.csv"
+    assert call(capsys, panel, *FLAGS, "--out", path)[0] == 0
+    other = panel_file(tmp_path / "panel.csv", dict.fromkeys(SLOPES, 0.9))
+    code, _, err = call(capsys, other, *FLAGS, "--out", path)
+    assert (code, len(counted)) == (2, 3)
+    assert "the series of Ardenquay / Broad money / Consumer prices have changed" in err
+
+
+def test_a_scan_killed_half_way_goes_on_where_it_was(panel, tmp_path):
+    # Two programs, the first killed without a warning while it searches.
+    path = tmp_path / "result.csv"
+    big = panel_file(tmp_path / "panel.csv", {f"Economy {i:02}": 0.3 for i in range(14)})
+    words = [sys.executable, "-m", "app", "scan", str(big), "--surrogates", "300"]
+    words += ["--windows", "1:4", "--shifts", "-2:8", "--processes", "1"]
+    env = os.environ | {"PYTHONPATH": str(ROOT)}
+    first = subprocess.Popen(
+        [*words, "--out", str(path)], cwd=ROOT, env=env, stdout=subprocess.DEVNULL
+    )
+    end = time.monotonic() + 90
+    while time.monotonic() < end and rows_of(path) < 2:
+        time.sleep(0.02)
+    first.send_signal(signal.SIGKILL)
+    first.wait()
+    left = rows_of(path)
+    assert 2 <= left < 14
+    text = path.read_bytes()
+    assert text.endswith(b"\r\n")
+    subprocess.run([*words, "--out", str(path)], cwd=ROOT, env=env, check=True, capture_output=True)
+    # The same to the byte as a scan that was never stopped.
+    state = ViewState(windows="1:4", shifts="-2:8", surrogates=300)
+    bridge = Bridge(Workspace((read_path(big),)))
+    never_stopped = bridge.jobs.complete(scan_work(state, bridge))
+    assert path.read_bytes().decode() == panel_text(never_stopped, question(state, bridge).settings)
+
+
+def rows_of(path):
+    """Whole rows below the head and the names of the columns."""
+    if not path.exists():
+        return 0
+    return max(0, sum(not line.startswith(b"#") for line in path.read_bytes().splitlines()) - 1)
+
+
+@pytest.mark.parametrize(
+    ("words", "what"),
+    [
+        (["--processes", "2", "--cluster", "tcp://127.0.0.1:9"], "must not both be given"),
+        (["--processes", "0"], "0 is not in the range"),
+        (["--surrogates", "0"], "Surrogates must be a whole number from 1 to 20000"),
+        (["--sign", "up"], "Relations looked for must be one of any, positive"),
+        (["--out", "."], "--out must be a file that may be written"),
+    ],
+)
+def test_wrong_use_is_one_sentence(capsys, panel, words, what):
+    code, out, err = call(capsys, panel, *words)
+    assert (code, out) == (2, "")
+    assert what in err
+    assert err.count("\n") == 1
+
+
+def test_files_without_a_pair_are_one_sentence(capsys, tmp_path):
+    path = tmp_path / "a.csv"
+    path.write_text("period,Wages\n2001-01,100\n2001-02,101\n")
+    code, _, err = call(capsys, path)
+    assert code == 2
+    assert "no economy in the files has both a driver and a response" in err
