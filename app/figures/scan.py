@@ -99,7 +99,7 @@ def surface_maps(
     figure.update_layout(
         template=template(),
         margin={"l": 40, "r": 8, "t": 40, "b": 40},
-        meta={"stamp": stamp, "size": [90 + 185 * across, 210 + 135 * down]},
+        meta={"stamp": stamp, "size": [max(800, 90 + 185 * across), 210 + 135 * down]},
         **layout,
     )
     return figure
@@ -150,7 +150,6 @@ def average_points(
     """Draw a point an economy, with the line, the ellipse, and the line without one economy."""
     telling = found.names.index(found.most_telling)
     without = found.line_without(telling)
-    place = ["top center" if name in named else "" for name in found.names]
     key = [
         ("", "fit", "least squares" + (" of logarithms" if found.log else "")),
         ("dots", "other", f"without {found.most_telling}"),
@@ -165,15 +164,11 @@ def average_points(
             go.Scatter(
                 x=found.driver,
                 y=found.response,
-                mode="markers+text",
+                mode="markers",
                 marker={"size": 8, "color": colour("driver"), "opacity": 0.85},
-                text=[label if there else "" for label, there in zip(labels, place, strict=True)],
-                textposition="top center",
-                textfont={"size": 11},
-                customdata=labels,
+                text=labels,
                 hovertemplate=(
-                    "%{customdata}<br>driver %{x:.1f}, response %{y:.1f} percent a year"
-                    "<extra></extra>"
+                    "%{text}<br>driver %{x:.1f}, response %{y:.1f} percent a year<extra></extra>"
                 ),
                 name="economies",
                 cliponaxis=False,
@@ -181,6 +176,17 @@ def average_points(
         ]
     )
     kind = "log" if found.log else "linear"
+    for name in named:
+        at = found.names.index(name)
+        x, y = float(found.driver[at]), float(found.response[at])
+        figure.add_annotation(
+            x=math.log10(x) if found.log else x,
+            y=math.log10(y) if found.log else y,
+            text=escape(name, False),
+            showarrow=False,
+            yshift=12,
+            font={"size": 11},
+        )
     figure.update_layout(
         template=template(),
         margin={"l": 60, "r": 24, "t": 20, "b": 48},

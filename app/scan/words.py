@@ -61,9 +61,9 @@ def verdict(known: Scan) -> str:
     by = CORRECTIONS[asked.state.correction]
     positive = ", positive relations only" if asked.state.sign == "positive" else ""
     said = [
-        f"{len(found)} of {counted(judged, 'pair')} hold{'s' if len(found) == 1 else ''} at 5 %"
-        f" once all of them are paid for ({by}{positive})"
-        + (f": {_named(found, asked)}." if found else "."),
+        f"{len(found) or 'None'} of {counted(judged, 'pair')}"
+        f" {'holds' if len(found) == 1 else 'hold'} at 5 % once all of them are paid for"
+        f" ({by}{positive})" + (f": {_named(found, asked)}." if found else "."),
         f"{CORRECTIONS[other]} leaves {len(found_pairs(panel, other)) or 'none'}.",
     ]
     if refused:
