@@ -245,3 +245,14 @@ def test_scores_are_the_plain_ones(done):
 def test_models_are_named_in_order(done):
     assert done[1].models == MODELS
     assert repr(done[1]).startswith("Backtest(yearly rate, 109 dates, expanding")
+
+
+def test_units_and_levels_pass_through():
+    """A driver in other units changes nothing; a response doubled or raised is forecast so."""
+    planted = pair()
+    x, y = planted.driver, planted.response
+    rules = {"horizon": 6, "first": 120}
+    plain = run(x, y, **rules).forecasts
+    np.testing.assert_allclose(run(100.0 * x - 3.0, y, **rules).forecasts, plain, atol=1e-9)
+    np.testing.assert_allclose(run(x, 2.0 * y, **rules).forecasts, 2.0 * plain, atol=1e-9)
+    np.testing.assert_allclose(run(x, y + 0.5, **rules).forecasts, plain + 6.0, atol=1e-9)

@@ -17,7 +17,7 @@ def plain_yearly(response, origin, ahead, months, span=12):
     return total
 
 
-def plain_relation(driver, response, window, shift, horizon):
+def plain_relation(driver, response, window, shift, horizon, span=12):
     """Yearly rate by the cell's line, fitted by statsmodels to the pairs known."""
     n = len(response)
     xs, ys = [], []
@@ -30,7 +30,7 @@ def plain_relation(driver, response, window, shift, horizon):
         place = n - 1 + h - shift
         x = driver[place] if place < len(driver) else np.mean(xs)
         months.append(intercept + slope * x)
-    return [plain_yearly(response, n - 1, h, months) for h in range(1, horizon + 1)]
+    return [plain_yearly(response, n - 1, h, months, span) for h in range(1, horizon + 1)]
 
 
 def plain_direct(driver, response, window, shift, own_lags, horizon, *, with_driver, span=12):
