@@ -116,7 +116,10 @@ def diebold_mariano(
     Diebold and Mariano (1995), Journal of Business and Economic Statistics 13, with the factor of
     Harvey, Leybourne and Newbold (1997), International Journal of Forecasting 13. Errors of
     forecasts h periods ahead overlap in h - 1 periods, hence the lags. The rectangular variance can
-    come out negative; Bartlett's, which cannot, then takes its place.
+    come out negative; Bartlett's, which cannot, then takes its place. Of pairs equally good, 1,000
+    a case, p is at most .05 in 5 to 6 % at 600 errors and up to 24 periods ahead, in 7 to 10 % at
+    300 and 12 to 36 ahead, in 8 to 13 % at 120 (tests/bench/calibration_outlook.py): over long
+    horizons and short records it finds too much.
     """
     a, b = np.asarray(loss, dtype=np.float64), np.asarray(benchmark_loss, dtype=np.float64)
     if a.shape != b.shape or a.ndim != 1:
