@@ -4,13 +4,8 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 from typing import Any
 
-from analytics.backtest import (
-    Backtest,
-    BacktestPlan,
-    backtest_chunk,
-    backtest_plan,
-    backtest_result,
-)
+from analytics.backtest import Backtest, backtest_chunk, backtest_result
+from analytics.backtest_plan import BacktestPlan, backtest_plan
 from analytics.outlook import path_reach
 from analytics.series import align
 from app.compute import Bridge, grid

@@ -221,7 +221,7 @@ def charts(known: Outlook) -> dict[str, Figure]:
             known.gap.observed,
             known.gap.expected,
             known.gap.gap,
-            unit_words(found, "window"),
+            unit_words(found, "window").partition(" (")[0],
         )
     if known.direct is not None:
         drawn["direct"] = tested.gain_lines(known.direct, known.added_share, noun)

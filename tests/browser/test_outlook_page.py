@@ -4,16 +4,19 @@ import csv
 import time
 
 import numpy as np
+import pandas as pd
 import pytest
 from selenium.webdriver.common.by import By
 from selenium.webdriver.common.keys import Keys
 from selenium.webdriver.support.ui import Select
 
+from analytics.series import Series
 from app.compute import Bridge
+from app.intake.reading import Release
 from app.outlook.bridge import completed_outlook
 from app.state import ViewState
 from tests.app.outlooks import QUICK, release, released
-from tests.browser.driving import served, until
+from tests.browser.driving import served, size, until
 
 QUERY = f"driver=Money&response=Prices&{QUICK}"
 READY = (
@@ -27,7 +30,11 @@ SAID = "document.getElementById('outlook-statements-words').textContent"
 
 @pytest.fixture(scope="module")
 def desk():
-    return released(140)
+    made = released(140)
+    walk = np.random.default_rng(9).standard_normal(140).cumsum()
+    noise = Series("Noise", pd.Period("2008-01", "M"), 100 * np.exp(walk / 100), "index")
+    made.add(Release("noise.csv", (noise,), ()), "2020-01-10")
+    return made
 
 
 @pytest.fixture(scope="module")
@@ -110,6 +117,37 @@ def test_the_past_is_gone_through_with_progress_and_can_be_stopped(browser, ther
     browser.find_element(By.ID, "outlook-resume").click()
     until(browser, TESTED, 60)
     assert "In past forecasts" in words(browser, "verdict")
+
+
+def test_a_driver_joins_by_its_button_and_leaves_again(page, desk):
+    button = "document.querySelector(\"#outlook-drivers-words [data-set='others']\")"
+    assert page.execute_script(f"return {button}.textContent") == "Noise"
+    page.execute_script(f"{button}.click()")
+    until(page, "pricewake.plain.state.others === 'Noise'")
+    until(page, f"{TESTED} && pricewake.plain.data.figures.drivers", 60)
+    known = completed_outlook(ViewState.from_query(f"{QUERY}&others=Noise"), Bridge(desk))
+    for line in known.lines:
+        np.testing.assert_allclose(trace(page, "drivers", line.name)[1:], line.path, atol=1e-9)
+    table = words(page, "drivers-words")
+    assert f"{known.lines[0].scores.rmse[11]:.2f}" in table
+    assert "weighed by past errors" in table
+    page.execute_script(f"{button}.click()")
+    until(page, f"{TESTED} && pricewake.plain.state.others === ''", 60)
+
+
+def test_a_legend_stays_above_its_chart_when_the_window_changes(page):
+    over = (
+        "(() => { const g = document.querySelector('#outlook-backtest .js-plotly-plot');"
+        " const b = g.querySelector('g.legend .bg').getBoundingClientRect().bottom;"
+        " return Math.abs(b - g.getBoundingClientRect().top - g._fullLayout._size.t) < 3"
+        " && g._fullLayout.width })()"
+    )
+    try:
+        size(page, 400, 800)
+        until(page, f"{over} && {over} < 400")
+    finally:
+        size(page, 1280, 800)
+    until(page, f"{over} && {over} > 500")
 
 
 def test_no_lead_no_path_and_the_page_lives(page):
