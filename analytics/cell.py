@@ -9,7 +9,14 @@ from scipy.special import stdtr
 
 from analytics.rates import trailing_mean
 from analytics.series import FloatArray, read_only
-from analytics.surface import IntArray, growth_pair, locked, smallest_variance
+from analytics.surface import (
+    IntArray,
+    growth_pair,
+    locked,
+    months_read,
+    smallest_variance,
+    without_months,
+)
 
 ELLIPSE_STEPS = 72
 
@@ -47,8 +54,10 @@ class LagCell:
     driver, response : ndarray of float, shape (n,)
         The paired means, in the unit of the series; one pair a month.
     start : int
-        Month t, counted from 0 in the series given, of ``driver[0]``: the last of the months
-        that it averages. ``response[0]`` ends at month ``start + shift``.
+        First month t, counted from 0 in the series given, that the sample has a pair for: the
+        last of the months that the driver averages. The response of month t ends at ``t + shift``.
+    months : ndarray of int, shape (n,)
+        Month t of each pair: ``start + i``, but where months are left out.
     slope, intercept : float
         Least-squares line of the response on the driver.
     correlation : float
@@ -76,6 +85,7 @@ class LagCell:
     driver: FloatArray
     response: FloatArray
     start: int
+    months: IntArray
     slope: float
     intercept: float
     correlation: float
@@ -103,6 +113,7 @@ def lag_cell(
     shift: int,
     slices: int = 8,
     min_pairs: int = 24,
+    kept: ArrayLike | None = None,
 ) -> LagCell:
     """Pairs, line, ellipse and conditional means of one window and one shift.
 
@@ -118,6 +129,8 @@ def lag_cell(
         Number of slices for the conditional means.
     min_pairs : int, default 24
         Fewest pairs accepted.
+    kept : array_like of bool, shape (n,), optional
+        Months that may be read; a pair that averages any other month on either side is left out.
 
     Returns
     -------
@@ -143,6 +156,8 @@ def lag_cell(
     LagCell(window 3, shift 6, 232 pairs, r 1.000, slope 0.5)
     """
     x, y = growth_pair(driver, response)
+    if kept is not None:
+        x, y = without_months(x, kept), without_months(y, kept)
     window, shift, slices = (
         _whole(name, value)
         for name, value in (("window", window), ("shift", shift), ("slices", slices))
@@ -163,6 +178,16 @@ def lag_cell(
     x_level, y_level = float(x.mean()), float(y.mean())
     xs = trailing_mean(x - x_level, window)[first : first + n]
     ys = trailing_mean(y - y_level, window)[first + shift : first + shift + n]
+    months = start + np.arange(n)
+    if kept is not None:
+        whole = months_read(kept, window)
+        chosen = whole[first : first + n] & whole[first + shift : first + shift + n]
+        xs, ys, months, n = xs[chosen], ys[chosen], months[chosen], int(chosen.sum())
+        if n < min_pairs:
+            raise ValueError(
+                f"at least {min_pairs} pairs must be left, but without the months left out window"
+                f" {window} and shift {shift} have {n}"
+            )
     x_mean, y_mean = float(xs.mean()), float(ys.mean())
     dx, dy = xs - x_mean, ys - y_mean
     sxx, syy, sxy = float(dx @ dx), float(dy @ dy), float(dx @ dy)
@@ -185,6 +210,7 @@ def lag_cell(
         driver=read_only(paired_x),
         response=read_only(paired_y),
         start=start,
+        months=locked(months),
         slope=slope,
         intercept=centre[1] - slope * centre[0],
         correlation=correlation,

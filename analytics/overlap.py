@@ -129,3 +129,47 @@ def span_moments(
     y -= y.mean(axis=1, keepdims=True)
     squares = np.einsum("ij,ij->i", y, y)
     return np.stack([np.full(shifts.size, x @ x), squares, y @ x])
+
+
+def kept_moments(
+    xs: FloatArray,
+    ys: FloatArray,
+    x_kept: NDArray[np.bool_],
+    y_kept: NDArray[np.bool_],
+    shifts: IntArray,
+) -> FloatArray:
+    """Return the moments over the pairs whose two means are both kept, at every shift.
+
+    Parameters
+    ----------
+    xs, ys : ndarray of float, shape (N,)
+        Smoothed driver and response of one window.
+    x_kept, y_kept : ndarray of bool, shape (N,)
+        Means of driver and response that may be paired.
+    shifts : ndarray of int, shape (S,)
+        Increasing.
+
+    Returns
+    -------
+    ndarray of float, shape (4, S)
+        Pairs; sums of squares of driver and response and sum of products, about the means.
+    """
+    x_in, y_in = x_kept.astype(np.float64), y_kept.astype(np.float64)
+    before, after = max(0, -int(shifts[0])), max(0, int(shifts[-1]))
+
+    def sums(left: FloatArray, right: FloatArray) -> FloatArray:
+        reached = np.pad(right, (before, after))
+        return np.correlate(reached, left, mode="valid")[shifts + before]
+
+    x, y = xs * x_in, ys * y_in
+    n = sums(x_in, y_in)
+    most = np.maximum(1.0, n)
+    x_sum, y_sum = sums(x, y_in), sums(x_in, y)
+    return np.stack(
+        [
+            n,
+            sums(x * x, y_in) - x_sum**2 / most,
+            sums(x_in, y * y) - y_sum**2 / most,
+            sums(x, y) - x_sum * y_sum / most,
+        ]
+    )

@@ -9,7 +9,7 @@ import numpy as np
 import pandas as pd
 from numpy.typing import ArrayLike, NDArray
 
-from analytics.overlap import overlap_moments, smoothed_rows, span_moments
+from analytics.overlap import kept_moments, overlap_moments, smoothed_rows, span_moments
 from analytics.series import FloatArray, read_only
 
 IntArray = NDArray[np.int64]
@@ -193,6 +193,7 @@ def lag_surface(
     shifts: Iterable[int],
     same_months: bool = False,
     min_pairs: int = 24,
+    kept: ArrayLike | None = None,
 ) -> LagSurface:
     """Correlation and slope of the response on the driver, both averaged, `shift` months later.
 
@@ -207,6 +208,8 @@ def lag_surface(
         window and shift alone and not by sample. By default a cell uses all the pairs it has.
     min_pairs : int, default 24
         A cell with fewer pairs is nan.
+    kept : array_like of bool, shape (n,), optional
+        Months that may be read; a pair that averages any other month on either side is left out.
 
     Returns
     -------
@@ -236,6 +239,8 @@ def lag_surface(
     (1, 6)
     """
     x, y = growth_pair(driver, response)
+    if kept is not None:
+        x, y = without_months(x, kept), without_months(y, kept)
     lengths, leads = lag_grid(windows, shifts, x.size)
     if min_pairs < 3:
         raise ValueError(f"min_pairs must be 3 or more, but got {min_pairs}")
@@ -244,14 +249,20 @@ def lag_surface(
         pairs = np.full((lengths.size, leads.size), max(0, last - first))
     else:
         pairs = np.maximum(0, x.size - lengths[:, None] + 1 - np.abs(leads))
-    if pairs.max() < min_pairs:
-        raise ValueError(
-            f"a cell must have at least {min_pairs} pairs, but no cell of the grid has more than"
-            f" {pairs.max()} of {x.size} months"
-        )
+    _check_pairs(pairs, min_pairs, x.size)
     xs, ys = (smoothed_rows(values - values.mean(), lengths) for values in (x, y))
     sizes = x.size - lengths + 1
-    if same_months:
+    if kept is not None:
+        places = np.arange(x.size)
+        found = np.empty((4, lengths.size, leads.size))
+        for row, window in enumerate(lengths.tolist()):
+            n, read = sizes[row], months_read(kept, window)
+            ends = places[window - 1 :]
+            driven = read & (ends >= first) & (ends < last) if same_months else read
+            found[:, row] = kept_moments(xs[row, :n], ys[row, :n], driven, read, leads)
+        pairs, moments = np.rint(found[0]).astype(np.int64), found[1:]
+        _check_pairs(pairs, min_pairs, x.size)
+    elif same_months:
         spans = [(first - window + 1, last - window + 1) for window in lengths.tolist()]
         rows = zip(xs, ys, sizes, spans, strict=True)
         moments = np.stack([span_moments(a[:n], b[:n], leads, span) for a, b, n, span in rows], 1)
@@ -272,6 +283,36 @@ def lag_surface(
         pairs=locked(pairs),
         same_months=same_months,
     )
+
+
+def _check_pairs(pairs: IntArray, min_pairs: int, months: int) -> None:
+    if pairs.max() < min_pairs:
+        raise ValueError(
+            f"a cell must have at least {min_pairs} pairs, but no cell of the grid has more than"
+            f" {pairs.max()} of {months} months"
+        )
+
+
+def without_months(values: FloatArray, kept: ArrayLike) -> FloatArray:
+    """Put the mean of the months kept in the place of the others, so that nothing feels these.
+
+    Raises
+    ------
+    ValueError
+        `kept` does not have one entry a month, or keeps none.
+    """
+    mask = np.asarray(kept, dtype=bool)
+    if mask.shape != values.shape:
+        raise ValueError(f"kept must have shape {values.shape}, but got {mask.shape}")
+    if not mask.any():
+        raise ValueError("some months must be kept, but all are left out")
+    return np.where(mask, values, values[mask].mean())
+
+
+def months_read(kept: ArrayLike, window: int) -> NDArray[np.bool_]:
+    """Which trailing means read kept months only, shape (n - window + 1,)."""
+    mask = np.asarray(kept, dtype=bool)
+    return np.asarray(np.lib.stride_tricks.sliding_window_view(mask, window).all(axis=1))
 
 
 def _common_months(windows: IntArray, shifts: IntArray, months: int) -> tuple[int, int]:
