@@ -23,6 +23,7 @@ from analytics.series import (
 from analytics.surface import LagSurface, lag_surface
 from app.desk.pending import Pending
 from app.jobs import Jobs
+from app.lag.left_out import kept_months
 from app.memory import Memory
 from app.preparing import Prepared, prepared
 from app.state import StateError, ViewState, field_kind
@@ -142,6 +143,7 @@ class Bridge:
                 shifts=shifts,
                 same_months=question.months == "same",
                 min_pairs=MIN_PAIRS,
+                kept=kept_months(pair, question),
             )
 
         return self.memory.once("surface:" + self.key(question), make)
@@ -152,12 +154,14 @@ class Bridge:
         def make() -> LagCell:
             pair = self.pair(state)
             first, last = cell_span(pair, state)
+            kept = kept_months(pair, state)
             return lag_cell(
                 pair.driver.values[first:last],
                 pair.response.values[first:last],
                 window=state.window,
                 shift=state.shift,
                 min_pairs=MIN_PAIRS,
+                kept=None if kept is None else kept[first:last],
             )
 
         return self.memory.once("cell:" + self.key(state), make)

@@ -9,18 +9,15 @@ from analytics.lag_profile import LagProfile
 from analytics.robust import ParameterPlane
 from analytics.series import period_code
 from app.compute import Bridge
-from app.lag.evidence import (
-    completed,
-    directions_work,
+from app.lag.cells import (
     episode_code,
     inference,
     influence,
     map_hac,
     map_inference,
-    opinions_work,
-    stability_work,
     without_episode,
 )
+from app.lag.evidence import completed, directions_work, opinions_work, stability_work
 from app.pages.lag import LagView
 from app.seasons import season_rows
 

@@ -9,6 +9,7 @@ from typing import Any, cast
 from urllib.parse import parse_qsl, urlencode
 
 from app.breadth import fields as breadth_fields
+from app.lag import fields as lag_fields
 from app.outlook import fields as outlook_fields
 from app.reading import fields as reading_fields
 from app.scan import fields as scan_fields
@@ -181,6 +182,14 @@ class ViewState:
             help="Episode of the driver that is left out of the cell for comparison.",
         ),
     )
+    left_out: str = _state("", lag_fields.LEFT_OUT)
+    pinned: str = _state("", lag_fields.PINNED)
+    points: str = _state("points", lag_fields.POINTS)
+    band: str = _state("off", lag_fields.BAND)
+    band_place: int = _state(50, lag_fields.BAND_PLACE)
+    band_width: int = _state(10, lag_fields.BAND_WIDTH)
+    peaks: str = _state("off", lag_fields.PEAKS)
+    responses: str = _state("", lag_fields.RESPONSES)
     quantity: str = _state(
         "correlation",
         Choice(
@@ -322,8 +331,8 @@ class ViewState:
         cell: dict[str, Any] = {name: getattr(ViewState, name) for name in CELL_FIELDS}
         return replace(self.numbers(), **cell)
 
-    def sentence(self, noun: str = "month", span: str = "") -> str:
-        """Say the state in one sentence; `span` is the sample in words."""
+    def sentence(self, noun: str = "month", span: str = "", without: str = "") -> str:
+        """Say the state in one sentence; `span` and `without` are the sample in words."""
         smoothed = f"{self.window}-{noun} window" if self.window > 1 else f"one {noun} at a time"
         size = f"{abs(self.shift)} {noun}{'' if abs(self.shift) == 1 else 's'}"
         if self.shift > 0:
@@ -333,7 +342,7 @@ class ViewState:
         else:
             relation = f"beside {self.response} of the same {noun}"
         stood = f", as it stood on {self.as_of}" if self.as_of else ""
-        return f"{self.driver}, {smoothed}, {relation}{', ' + span if span else ''}{stood}"
+        return f"{self.driver}, {smoothed}, {relation}{', ' + span if span else ''}{without}{stood}"
 
 
 def kind_of(item: "Field[Any]") -> FieldKind:

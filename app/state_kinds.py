@@ -11,6 +11,9 @@ ONE_PERIOD = r"(?!0000)[0-9]{4}(-(0[1-9]|1[0-2])|-Q[1-4])?"
 PERIOD = rf"({ONE_PERIOD})?"
 RANGE = r"(-?[0-9]{1,3}:-?[0-9]{1,3})?"
 SPAN = rf"({ONE_PERIOD}:{ONE_PERIOD})?"
+SPANS = rf"({ONE_PERIOD}:{ONE_PERIOD}(,{ONE_PERIOD}:{ONE_PERIOD}){{0,9}})?"
+CELL = r"([1-9][0-9]?:-?[0-9]{1,2})?"
+NAMES = r"((?=\S)[^\x00-\x1f\x7f-\x9f\ud800-\udfff]{1,4000}(?<=\S))?"
 
 
 class StateError(ValueError):

@@ -54,11 +54,12 @@ RULES = {
     ),
     "app/brief/": rule("analytics app dash kaleido markdown_it numpy tomli_w"),
     "app/state.py": rule(
-        "analytics app.state_kinds app.breadth.fields app.outlook.fields app.reading.fields"
-        " app.scan.fields"
+        "analytics app.state_kinds app.breadth.fields app.lag.fields app.outlook.fields"
+        " app.reading.fields app.scan.fields"
     ),
     "app/state_kinds.py": rule("analytics"),
     "app/breadth/fields.py": rule("app.state_kinds"),
+    "app/lag/fields.py": rule("app.state_kinds"),
     "app/outlook/fields.py": rule("app.state_kinds"),
     "app/reading/fields.py": rule("app.state_kinds"),
     "app/scan/fields.py": rule("app.state_kinds"),

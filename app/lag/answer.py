@@ -3,7 +3,8 @@
 from typing import Any
 
 from analytics.series import period_code
-from app.lag.evidence import Evidence, episode_code
+from app.lag.cells import episode_code
+from app.lag.evidence import Evidence
 from app.lag.verdict import verdict
 from app.pages.lag import LagView
 

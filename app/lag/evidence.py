@@ -11,11 +11,11 @@ from typing import Any
 
 import numpy as np
 
-from analytics.hac import HacSurface, hac_surface
-from analytics.influence import CellWithout, Episode, InfluenceResult, cell_without, episodes
+from analytics.influence import InfluenceResult
 from analytics.opinions import SecondOpinions, second_opinions
+from analytics.partial_cell import Relation
 from analytics.persistence import PersistenceShift
-from analytics.robust import CellInference, SurfaceInference, cell_inference, surface_inference
+from analytics.robust import CellInference
 from analytics.search import (
     SearchPlan,
     SearchResult,
@@ -23,11 +23,12 @@ from analytics.search import (
     search_plan,
     search_result,
 )
-from analytics.series import PERIODS_PER_YEAR, Pair, period_code
+from analytics.series import Pair
 from analytics.shiftset import ShiftSet, shift_set_chunk, shift_set_plan, shift_set_result
 from analytics.stability import Stability, rolling_stability
-from app.compute import Bridge, cell_span, grid
+from app.compute import Bridge, grid
 from app.jobs import Work
+from app.lag.cells import cell_of, every_month, inference, influence, relation_left, year
 from app.lag.regimes import regimes
 from app.state import StateError, ViewState
 
@@ -43,7 +44,10 @@ class Evidence:
     naive_p : float
         p of the chosen cell as if its overlapping months were independent.
     inference : CellInference
-        The chosen cell, as if it had been the only one looked at.
+        The chosen cell, as if it had been the only one looked at; no month left out.
+    rest : Relation or None
+        The chosen cell without the months left out, where the state names some. All other parts
+        read every month of the sample.
     influence : InfluenceResult
         The chosen cell without each episode.
     search : SearchResult or None
@@ -67,6 +71,7 @@ class Evidence:
     refusal: str = ""
     set_refusal: str = ""
     regimes: tuple[PersistenceShift, PersistenceShift] | None = None
+    rest: Relation | None = None
 
     @property
     def found(self) -> bool:
@@ -109,6 +114,7 @@ def evidence(state: ViewState, bridge: Bridge) -> Evidence:
     ValueError
         One sentence that says why the chosen cell cannot be judged.
     """
+    whole = every_month(state)
     search, shifts = bridge.jobs.remembered(search_work(state, bridge)), None
     refusal, set_refusal = "" if search else _search_refusal(state, bridge), ""
     if search is not None:
@@ -123,7 +129,8 @@ def evidence(state: ViewState, bridge: Bridge) -> Evidence:
         shift_set=shifts,
         refusal=refusal,
         set_refusal=set_refusal,
-        regimes=regimes(state, bridge) if search is not None else None,
+        regimes=regimes(whole, bridge) if search is not None else None,
+        rest=relation_left(state, bridge),
     )
 
 
@@ -140,77 +147,9 @@ def completed(state: ViewState, bridge: Bridge) -> Evidence:
     return known
 
 
-def inference(state: ViewState, bridge: Bridge) -> CellInference:
-    """Slope, correlation and their intervals by effective months, for the chosen cell."""
-    return bridge.memory.once(
-        "inference:" + bridge.key(state), lambda: cell_inference(**_cell(state, bridge))
-    )
-
-
-def influence(state: ViewState, bridge: Bridge) -> InfluenceResult:
-    """Refit the chosen cell without each episode of the driver."""
-    return bridge.memory.once(
-        "influence:" + bridge.key(state), lambda: episodes(**_cell(state, bridge))
-    )
-
-
-def map_inference(state: ViewState, bridge: Bridge) -> SurfaceInference:
-    """Per-cell p and naive p in every cell of the map."""
-
-    def make() -> SurfaceInference:
-        pair, question = bridge.pair(state), state.question()
-        windows, shifts = grid(pair, question)
-        return surface_inference(
-            pair.driver.values,
-            pair.response.values,
-            windows=windows,
-            shifts=shifts,
-            same_months=question.months == "same",
-            periods_per_year=_year(pair),
-        )
-
-    return bridge.memory.once("map-inference:" + bridge.key(state.question()), make)
-
-
-def map_hac(state: ViewState, bridge: Bridge) -> HacSurface:
-    """Bartlett HAC errors with fixed-b p in every cell of the map; each cell its own months."""
-
-    def make() -> HacSurface:
-        pair = bridge.pair(state)
-        windows, shifts = grid(pair, state.question())
-        return hac_surface(pair.driver.values, pair.response.values, windows=windows, shifts=shifts)
-
-    return bridge.memory.once("map-hac:" + bridge.key(state.question()), make)
-
-
-def episode_code(episode: Episode, pair: Pair, state: ViewState) -> str:
-    """Name an episode by the driver's first and last month in it, for example 1978-03:1983-05."""
-    start = cell_span(pair, state)[0]
-    first = pair.periods[start + episode.first_month]
-    last = pair.periods[start + episode.stop_month - 1]
-    return f"{period_code(first)}:{period_code(last)}"
-
-
-def without_episode(state: ViewState, bridge: Bridge) -> tuple[Episode, CellWithout] | None:
-    """Return the episode that the state leaves out and the cell without it, if it names one.
-
-    Raises
-    ------
-    StateError
-        No episode of the chosen cell has these months.
-    """
-    if not state.without:
-        return None
-    pair = bridge.pair(state)
-    for episode in influence(state, bridge).episodes:
-        if episode_code(episode, pair, state) == state.without:
-            return episode, cell_without(**_cell(state, bridge), episode=episode)
-    raise StateError(f"Without must name an episode of this cell, but got {state.without!r}")
-
-
 def search_work(state: ViewState, bridge: Bridge) -> Work:
     """Return the search over the whole map as work."""
-    question = state.question()
+    question = every_month(state).question()
     return Work(
         "search:" + bridge.key(question),
         lambda: search_plan_or_refuse(question, bridge),
@@ -242,7 +181,7 @@ def _search_refusal(state: ViewState, bridge: Bridge) -> str:
             return str(error)
         return ""
 
-    return bridge.memory.once("search-refusal:" + bridge.key(state.question()), make)
+    return bridge.memory.once("search-refusal:" + bridge.key(every_month(state).question()), make)
 
 
 def shift_set_work(state: ViewState, bridge: Bridge) -> Work:
@@ -258,13 +197,13 @@ def shift_set_work(state: ViewState, bridge: Bridge) -> Work:
             seed=state.seed,
         )
 
-    key = bridge.key(replace(state, shift=ViewState.shift, without=""))
+    key = bridge.key(replace(state, shift=ViewState.shift, without="", left_out=""))
     return Work("shift-set:" + key, plan, shift_set_chunk, shift_set_result)
 
 
 def directions_work(state: ViewState, bridge: Bridge) -> Work:
     """Return two searches as work: the driver leading only, and the response leading only."""
-    question = state.question()
+    question = every_month(state).question()
 
     def plan() -> _BothPlans:
         pair = bridge.pair(question)
@@ -310,11 +249,11 @@ def opinions_work(state: ViewState, bridge: Bridge) -> Work:
             window=state.window,
             shift=state.shift,
             max_shift=farthest,
-            periods_per_year=_year(pair),
+            periods_per_year=year(pair),
             variants={f"{other} growth": (changed.driver.values, changed.response.values)},
         )
 
-    return _whole_work("opinions:" + bridge.key(replace(state, without="")), make)
+    return _whole_work("opinions:" + bridge.key(replace(state, without="", left_out="")), make)
 
 
 def stability_work(state: ViewState, bridge: Bridge) -> Work:
@@ -324,8 +263,8 @@ def stability_work(state: ViewState, bridge: Bridge) -> Work:
     """
 
     def make() -> Stability:
-        cell = _cell(state, bridge)
-        pairs, fewest = bridge.cell(state).n, max(24, 2 * state.window)
+        cell = cell_of(state, bridge)
+        pairs, fewest = bridge.cell(every_month(state)).n, max(24, 2 * state.window)
         span = max(10 * cell["periods_per_year"], fewest)
         if span >= pairs:  # no ten years that could move
             span = max(pairs // 2, fewest)
@@ -336,7 +275,7 @@ def stability_work(state: ViewState, bridge: Bridge) -> Work:
             )
         return rolling_stability(**cell, span=span, rng=np.random.default_rng(state.seed))
 
-    return _whole_work("stability:" + bridge.key(replace(state, without="")), make)
+    return _whole_work("stability:" + bridge.key(replace(state, without="", left_out="")), make)
 
 
 @dataclass(frozen=True)
@@ -359,24 +298,8 @@ def _plan(
         shifts=shifts,
         surrogates=state.surrogates,
         seed=state.seed,
-        periods_per_year=_year(pair),
+        periods_per_year=year(pair),
     )
-
-
-def _cell(state: ViewState, bridge: Bridge) -> dict[str, Any]:
-    pair = bridge.pair(state)
-    first, last = cell_span(pair, state)
-    return {
-        "driver": pair.driver.values[first:last],
-        "response": pair.response.values[first:last],
-        "window": state.window,
-        "shift": state.shift,
-        "periods_per_year": _year(pair),
-    }
-
-
-def _year(pair: Pair) -> int:
-    return PERIODS_PER_YEAR[pair.driver.frequency]
 
 
 WORK: dict[str, Callable[[ViewState, Bridge], Work]] = {

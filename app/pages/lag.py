@@ -20,7 +20,8 @@ from app import controls
 from app.compute import MIN_PAIRS, Bridge, Overlay, cell_span, noun, span_words
 from app.figures import lag as figures
 from app.figures.theme import CONFIG
-from app.lag.evidence import map_hac, map_inference
+from app.lag.cells import map_hac, map_inference
+from app.lag.left_out import left_out_words
 from app.pages import lag_evidence
 from app.pages.as_of import as_of_line
 from app.places import software_version
@@ -54,7 +55,8 @@ class LagView:
     @property
     def sentence(self) -> str:
         """The state in one sentence."""
-        return self.state.sentence(noun(self.pair), span_words(self.pair))
+        without = left_out_words(self.pair, self.state)
+        return self.state.sentence(noun(self.pair), span_words(self.pair), without)
 
 
 def view(state: ViewState, bridge: Bridge, asked: Collection[str] = ()) -> LagView:

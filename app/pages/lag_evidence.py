@@ -14,11 +14,8 @@ from app import controls
 from app.compute import Bridge, cell_span, noun
 from app.figures import evidence as figures
 from app.figures.theme import CONFIG
-from app.lag.evidence import (
-    WORK,
-    evidence,
-    without_episode,
-)
+from app.lag.cells import without_episode
+from app.lag.evidence import WORK, evidence
 from app.lag.verdict import verdict
 from app.pages import lag_season, lag_words
 from app.state import StateError, ViewState

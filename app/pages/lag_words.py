@@ -6,7 +6,8 @@ from dash import html
 
 from analytics.series import Pair, period_label
 from app.compute import cell_span, noun
-from app.lag.evidence import Directions, Evidence, episode_code
+from app.lag.cells import episode_code
+from app.lag.evidence import Directions, Evidence
 from app.lag.verdict import effective_words, fragility
 from app.state import ViewState
 from app.words import counted, p_words, percent, plain, runs_words, shift_words, signed

@@ -16,6 +16,7 @@ from analytics.shiftset import shift_set
 from analytics.stability import rolling_stability
 from app.cli import LAG_FIELDS
 from app.compute import Bridge, cell_span
+from app.lag import cells
 from app.lag import evidence as ev
 from app.state import StateError
 from tests.app.economies import LAG, planted, workspace
@@ -95,7 +96,7 @@ def _months_every_cell_has(n, window, shift):
 
 def test_the_same_months_are_fewer_than_all():
     bridge = fresh()
-    own, cut = (ev.inference(replace(SMALL, months=m), bridge) for m in ("own", "same"))
+    own, cut = (cells.inference(replace(SMALL, months=m), bridge) for m in ("own", "same"))
     assert cut.n == 240 - 11 - 12 < own.n == 240 - 2 - LAG
 
 
@@ -106,12 +107,12 @@ def test_every_cell_of_the_map_is_judged_by_analytics(months):
     options = {"windows": range(1, 7), "shifts": range(-6, 13)}
     sides = pair.driver.values, pair.response.values
     same(
-        ev.map_inference(state, bridge),
+        cells.map_inference(state, bridge),
         surface_inference(*sides, **options, same_months=months == "same", periods_per_year=12),
     )
-    same(ev.map_hac(state, bridge), hac_surface(*sides, **options))
-    at = ev.map_inference(state, bridge)
-    assert at.p[2, 6 + LAG] == pytest.approx(ev.inference(state, bridge).p, rel=1e-9)
+    same(cells.map_hac(state, bridge), hac_surface(*sides, **options))
+    at = cells.map_inference(state, bridge)
+    assert at.p[2, 6 + LAG] == pytest.approx(cells.inference(state, bridge).p, rel=1e-9)
 
 
 @pytest.mark.parametrize("first", ["2000-01", "1990Q1"])
@@ -341,8 +342,8 @@ def test_an_episode_is_named_by_its_months_and_found_by_its_name(shift, months):
     bridge, state = fresh(), replace(SMALL, shift=shift, months=months)
     pair = bridge.pair(state)
     start, stop = cell_span(pair, state)
-    parts = ev.influence(state, bridge).episodes
-    codes = [ev.episode_code(episode, pair, state) for episode in parts]
+    parts = cells.influence(state, bridge).episodes
+    codes = [cells.episode_code(episode, pair, state) for episode in parts]
     assert len(set(codes)) == len(parts) > 2
     # They tile the driver's months: each begins in the month after the last one's end.
     ends = [code.split(":") for code in codes]
@@ -353,7 +354,7 @@ def test_an_episode_is_named_by_its_months_and_found_by_its_name(shift, months):
     assert ends[0][0] == names[cell_start]
     assert ends[-1][1] == names[cell_start + bridge.cell(state).n - 1]
     for code, episode in zip(codes, parts, strict=True):
-        found = ev.without_episode(replace(state, without=code), bridge)
+        found = cells.without_episode(replace(state, without=code), bridge)
         same(found[0], episode)
         same(
             found[1],
@@ -366,7 +367,7 @@ def test_an_episode_is_named_by_its_months_and_found_by_its_name(shift, months):
 
 
 def test_no_episode_named_is_none_left_out():
-    assert ev.without_episode(SMALL, fresh()) is None
+    assert cells.without_episode(SMALL, fresh()) is None
 
 
 @pytest.mark.parametrize("name", ["1950-01:1951-01", "2000-03:2000-04", "2001"])
@@ -376,11 +377,11 @@ def test_an_episode_that_this_cell_does_not_have_is_refused(name):
             replace(SMALL, without=name)
         return
     with pytest.raises(StateError, match=f"Without must name an episode of this cell, .*{name}"):
-        ev.without_episode(replace(SMALL, without=name), fresh())
+        cells.without_episode(replace(SMALL, without=name), fresh())
 
 
 def test_episodes_of_quarters_are_named_by_quarters():
     bridge = fresh(*planted(160, first="1980Q1"))
-    code = ev.episode_code(ev.influence(SMALL, bridge).episodes[0], bridge.pair(SMALL), SMALL)
+    code = cells.episode_code(ev.influence(SMALL, bridge).episodes[0], bridge.pair(SMALL), SMALL)
     assert code.startswith("1980-Q3:")  # the third quarter ends the first window of three
-    assert ev.without_episode(replace(SMALL, without=code), bridge)[0].start == 0
+    assert cells.without_episode(replace(SMALL, without=code), bridge)[0].start == 0

@@ -12,19 +12,15 @@ from app import exports
 from app.cli import VIEW_NAMES
 from app.compute import Bridge
 from app.export_rows import SEARCHED, VIEWS
-from app.lag.evidence import (
-    completed,
-    directions_work,
+from app.lag.cells import (
     episode_code,
     inference,
     influence,
     map_hac,
     map_inference,
-    opinions_work,
-    search_work,
-    stability_work,
     without_episode,
 )
+from app.lag.evidence import completed, directions_work, opinions_work, search_work, stability_work
 from app.pages.lag import view
 from tests.app.economies import LAG, planted, workspace
 from tests.app.evidence_cases import STATE, case, noise, rates

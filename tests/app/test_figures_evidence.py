@@ -10,15 +10,8 @@ import pytest
 from analytics.series import period_label
 from app.compute import Bridge, cell_span
 from app.figures import evidence as figures
-from app.lag.evidence import (
-    completed,
-    episode_code,
-    inference,
-    influence,
-    opinions_work,
-    stability_work,
-    without_episode,
-)
+from app.lag.cells import episode_code, inference, influence, without_episode
+from app.lag.evidence import completed, opinions_work, stability_work
 from app.pages.lag import view
 from tests.app.economies import LAG, planted, workspace
 from tests.app.evidence_cases import STATE, case

@@ -8,12 +8,11 @@ import pytest
 
 from app.compute import Bridge
 from app.figures import evidence as figures
+from app.lag.cells import episode_code, influence
 from app.lag.evidence import (
     WORK,
     completed,
     directions_work,
-    episode_code,
-    influence,
     opinions_work,
     search_work,
     shift_set_work,

@@ -21,6 +21,9 @@ OTHER_TEXT = {
     "windows": "1:60",
     "shifts": "-36:60",
     "without": "1978-03:1983-Q1",
+    "left_out": "1978-03:1983-05,1990:1991",
+    "pinned": "7:-12",
+    "responses": "Consumer prices|Narrow money",
     "as_of": "2024-03-12",
     "aggregate": "Consumer prices",
     "trim": "24:31.5",
@@ -74,6 +77,14 @@ BY_NAME = {
     "windows": ranges,
     "shifts": ranges,
     "without": spans,
+    "left_out": st.one_of(
+        st.just(""), st.lists(spans.filter(bool), min_size=1, max_size=5).map(",".join)
+    ),
+    "pinned": st.one_of(
+        st.just(""),
+        st.tuples(st.integers(1, 99), st.integers(-99, 99)).map(lambda c: f"{c[0]}:{c[1]}"),
+    ),
+    "responses": st.one_of(st.just(""), st.lists(names, min_size=1, max_size=3).map("|".join)),
     "as_of": st.one_of(st.just(""), st.dates().map(str)),
     "aggregate": st.one_of(st.just(""), names),
     "series": st.one_of(st.just(""), names),

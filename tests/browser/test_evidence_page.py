@@ -13,7 +13,8 @@ from selenium.webdriver.common.by import By
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.figures.evidence import support_traces
-from app.lag.evidence import completed, episode_code, influence, opinions_work, without_episode
+from app.lag.cells import episode_code, influence, without_episode
+from app.lag.evidence import completed, opinions_work
 from app.lag.verdict import verdict
 from app.state import ViewState
 from app.words import p_words
