@@ -30,6 +30,9 @@ VIEW_NAMES = (
     "opinions",
     "stability",
     "season",
+    "peaks",
+    "compare",
+    "responses",
 )
 LAG_FIELDS = (
     "driver",
@@ -46,6 +49,14 @@ LAG_FIELDS = (
     "shifts",
     "surrogates",
     "seed",
+    "left_out",
+    "pinned",
+    "points",
+    "band",
+    "band_place",
+    "band_width",
+    "peaks",
+    "responses",
     "without",
     "as_of",
 )

@@ -106,14 +106,22 @@ def save_buttons(view: str) -> html.Div:
         )
         for kind in ("PNG", "SVG")
     ]
-    link = html.A("Save CSV", id=f"csv-{view}", className="button", **{"data-csv": view})
     table = html.Button("Table", type="button", **{"data-table": view, "aria-expanded": "false"})
-    return html.Div([table, *buttons, link], className="save")
+    return html.Div([table, *buttons, _csv_link(view)], className="save")
 
 
-def view_head(view: str, words: str) -> html.Div:
-    """Return the heading of a view with its buttons."""
-    return html.Div([html.H2(words), save_buttons(view)], className="view-head")
+def csv_button(view: str) -> html.Div:
+    """Return the button that saves the numbers of a view that has no chart of its own."""
+    return html.Div([_csv_link(view)], className="save")
+
+
+def _csv_link(view: str) -> html.A:
+    return html.A("Save CSV", id=f"csv-{view}", className="button", **{"data-csv": view})
+
+
+def view_head(view: str, words: str, *tools: html.Details) -> html.Div:
+    """Return the heading of a view with its tools, which fold out below, and its buttons."""
+    return html.Div([html.H2(words), *tools, save_buttons(view)], className="view-head")
 
 
 def _native(name: str, **attributes: Any) -> html.Span:

@@ -9,6 +9,14 @@ from analytics.lag_profile import LagProfile
 from analytics.robust import ParameterPlane
 from analytics.series import period_code
 from app.compute import Bridge
+from app.export_tools import (
+    compare_rows,
+    count_rows,
+    density_rows,
+    peak_rows,
+    response_rows,
+    slice_rows,
+)
 from app.lag.cells import (
     episode_code,
     inference,
@@ -55,7 +63,7 @@ def _surface_rows(shown: LagView, bridge: Bridge) -> Rows:
             )
 
 
-def _cell_rows(shown: LagView, _bridge: Bridge) -> Iterable[Sequence[Any]]:
+def _cell_rows(shown: LagView, bridge: Bridge) -> Iterable[Sequence[Any]]:
     yield (
         "part",
         "driver_period",
@@ -68,9 +76,9 @@ def _cell_rows(shown: LagView, _bridge: Bridge) -> Iterable[Sequence[Any]]:
         "slice_high",
         "count",
     )
-    cell, months = shown.cell, shown.pair.periods
+    cell, offset = shown.cell, shown.start - shown.cell.start
     for i in range(cell.n):
-        month = months[shown.start + i]
+        month = shown.pair.periods[offset + cell.months[i]]
         yield (
             "pair",
             period_code(month),
@@ -104,6 +112,8 @@ def _cell_rows(shown: LagView, _bridge: Bridge) -> Iterable[Sequence[Any]]:
             )
     for driver, response in cell.ellipse:
         yield "ellipse", None, None, float(driver), float(response), None, None, None, None, None
+    yield from slice_rows(shown.state, bridge)
+    yield from count_rows(shown.state, bridge)
 
 
 def _overlay_rows(shown: LagView, _bridge: Bridge) -> Iterable[Sequence[Any]]:
@@ -130,12 +140,13 @@ def _profile_rows(shown: LagView, bridge: Bridge) -> Rows:
 
 
 def _plane_rows(shown: LagView, bridge: Bridge) -> Rows:
-    yield "part", "intercept", "slope"
+    yield "part", "intercept", "slope", "density"
     plane: ParameterPlane = inference(shown.state, bridge).plane
-    yield "estimate", float(plane.estimate[0]), float(plane.estimate[1])
+    yield "estimate", float(plane.estimate[0]), float(plane.estimate[1]), None
     for part, outline in (("robust region", plane.robust), ("naive region", plane.naive)):
         for intercept, slope in outline.tolist():
-            yield part, intercept, slope
+            yield part, intercept, slope, None
+    yield from density_rows(shown.state, bridge)
 
 
 def _episode_rows(shown: LagView, bridge: Bridge) -> Rows:
@@ -266,5 +277,17 @@ VIEWS: dict[str, Callable[[LagView, Bridge], Rows]] = {
     "opinions": _opinion_rows,
     "stability": _stability_rows,
     "season": _season_rows,
+    "peaks": peak_rows,
+    "compare": compare_rows,
+    "responses": response_rows,
 }
-SEARCHED = ("surface", "profile", "plane", "episodes", "without", "opinions", "stability")
+SEARCHED = (
+    "surface",
+    "profile",
+    "plane",
+    "episodes",
+    "without",
+    "opinions",
+    "stability",
+    "compare",
+)

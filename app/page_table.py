@@ -7,7 +7,7 @@ module has ``NAME`` and ``answer(state, bridge)``, as in `app.pages.plain`, need
 from app import exports
 from app.breadth import exports as breadth_exports
 from app.desk import exports as data_exports
-from app.lag.evidence import WORK
+from app.lag.work import WORK
 from app.outlook import exports as outlook_exports
 from app.outlook.work import WORK as OUTLOOK_WORK
 from app.pages import breadth, data, lag, outlook, reading, scan

@@ -9,6 +9,7 @@
     directions: "Searching both directions",
     opinions: "Asking other methods",
     stability: "Following the slope through time",
+    responses: "Searching one response after another",
   };
   const work = { running: null, turn: 0, stopped: new Set(), refused: new Set() };
   const byId = (id) => document.getElementById(id);
@@ -60,7 +61,7 @@
   function adopt(data) {
     if (!data) return window.dash_clientside.no_update;
     const page = pricewake.lag;
-    if (!page.state || JSON.stringify(sorted(data.state)) !== JSON.stringify(sorted(page.state))) {
+    if (!page.state || page.answerable(data.state) !== page.answerable(page.state)) {
       return window.dash_clientside.no_update; // the hand has moved on; its own answer is coming
     }
     page.known = data;
@@ -71,6 +72,8 @@
       if (data.figures[name] && place.closest("details").open) pricewake.theme.show(`lag-${name}`, data.figures[name]);
     }
     page.layOver(data);
+    page.peaks = { cell: page.cellName(), traces: data.peaks };
+    if (JSON.stringify(data.peaks) !== page.peaksShown && !page.busy()) page.showTime();
     const query = page.query();
     const jobs = data.jobs.filter((kind) => !work.refused.has(`${kind}?${query}`));
     const next = jobs.find((kind) => !work.stopped.has(stopName(kind)));
@@ -81,8 +84,6 @@
     }
     return window.dash_clientside.no_update;
   }
-
-  const sorted = (state) => Object.entries(state).sort(([a], [b]) => (a < b ? -1 : 1));
 
   document.addEventListener("click", (event) => {
     const page = pricewake.lag;

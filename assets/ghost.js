@@ -40,8 +40,9 @@
       : (value) => axis._offset + axis._length - (value - low) * factor;
   }
 
-  /* Draw with `paint(pen, x, y)`; x and y turn numbers of the axes into pixels. */
-  function show(id, paint) {
+  /* Draw with `paint(pen, x, y)` inside the axes, and with `beside(pen, axes, x, y)` around them; x and
+     y turn numbers of the axes into pixels. */
+  function show(id, paint, beside) {
     const chart = chartOf(id);
     if (!chart || !chart._fullLayout || !chart._fullLayout.xaxis) return;
     const { xaxis, yaxis } = chart._fullLayout;
@@ -52,6 +53,7 @@
     pen.clip();
     paint(pen, scaleOf(xaxis), scaleOf(yaxis));
     pen.restore();
+    if (beside) beside(pen, { xaxis, yaxis }, scaleOf(xaxis), scaleOf(yaxis));
   }
 
   function hide(id) {

@@ -4,49 +4,15 @@
 (function () {
   "use strict";
   const pricewake = (window.pricewake = window.pricewake || {});
-  const { numbers, calendar, ghost, theme, controls, words } = pricewake;
+  const { calendar, ghost, theme, controls, words, lagCell, lagMap, lagScatter, lagTime } = pricewake;
   const RESTING = 140; // milliseconds without a move
-  const page = { data: null, state: null, cell: null, timer: 0, frame: 0, moves: 0 };
+  const SLIDERS = ["window", "shift", "band_place", "band_width"]; // moved by the hand
+  const DRAWN_HERE = ["points", "band", "band_place", "band_width"]; // the server need not answer
+  const OF_THE_CELL = ["window", "shift", "without", "pinned", "peaks", "responses", ...DRAWN_HERE];
+  const page = { data: null, state: null, cell: null, timer: 0, frame: 0, moves: 0, held: false };
 
   const byId = (id) => document.getElementById(id);
-  const { counted, signed } = pricewake.words;
-
-  /* The part of the sample that a cell may use: compute.cell_span. */
-  function span(data, window, shift) {
-    const n = data.driver.values.length;
-    if (!data.same) return [0, n];
-    const first = data.windows[1] - 1 + Math.max(0, -data.shifts[0]);
-    const last = n - 1 - Math.max(0, data.shifts[1]);
-    return [
-      Math.max(0, first - window + 1 + Math.min(0, shift)),
-      Math.min(n, last + 1 + Math.max(0, shift)),
-    ];
-  }
-
-  function cellAt(window, shift) {
-    const data = page.data;
-    const [from, to] = span(data, window, shift);
-    const cut = (side) => (data.same ? data[side].values.slice(from, to) : data[side].values);
-    const cell = numbers.cell(cut("driver"), cut("response"), window, shift, data.minPairs);
-    if (cell) cell.start += from;
-    return cell;
-  }
-
-  /* Both smoothed series on the driver's calendar: compute.Bridge.overlay. */
-  function overlayAt(window, shift) {
-    const data = page.data;
-    const driver = numbers.trailingMean(data.driver.values, window);
-    const response = numbers.trailingMean(data.response.values, window);
-    const low = Math.min(0, -shift), high = driver.length - 1 + Math.max(0, -shift);
-    const ordinals = [], d = [], r = [];
-    for (let k = low; k <= high; k++) {
-      if (!(k < driver.length && k >= 0) && !(k + shift >= 0 && k + shift < response.length)) continue;
-      ordinals.push(data.ordinal + window - 1 + k);
-      d.push(k >= 0 && k < driver.length ? driver[k] : null);
-      r.push(k + shift >= 0 && k + shift < response.length ? response[k + shift] : null);
-    }
-    return { ordinals, driver: d, response: r };
-  }
+  const { counted, signed } = words;
 
   /* Words ------------------------------------------------------------------------------------ */
 
@@ -69,13 +35,9 @@
       }),
     );
     byId("lag-equation").textContent = cell ? words.equation(data, cell) : "";
-    byId("lag-readout").textContent = cell
-      ? `Correlation ${signed(cell.correlation, 2)} over ${counted(cell.n, data.noun)}, ${data.span}.`
-      : `This cell is undefined: it leaves fewer than ${data.minPairs} ${data.noun}s, or one side does not vary.`;
-    const away = counted(Math.abs(state.shift), data.noun);
-    const moved = state.shift === 0 ? "" : `, moved ${state.shift > 0 ? "back" : "forward"} by ${away}`;
+    byId("lag-readout").textContent = words.readout(page);
     byId("lag-driver-words").textContent = data.driver.name;
-    byId("lag-response-words").textContent = data.response.name + moved;
+    byId("lag-response-words").textContent = words.movedResponse(page);
     for (const [name, said] of [
       ["window", counted(state.window, data.noun)],
       ["shift", `${signed(state.shift, 0)} ${data.noun}${Math.abs(state.shift) === 1 ? "" : "s"}`],
@@ -84,204 +46,58 @@
     }
   }
 
-  /* The map ---------------------------------------------------------------------------------- */
-
-  function placeCross() {
-    const chart = ghost.chartOf("lag-surface");
-    const cross = byId("lag-cross");
-    if (!chart || !chart._fullLayout || !chart._fullLayout.xaxis || !cross || !page.state) return;
-    const { xaxis, yaxis } = chart._fullLayout;
-    const left = xaxis._offset + xaxis.c2p(page.state.shift);
-    const top = yaxis._offset + yaxis.c2p(page.state.window);
-    cross.style.transform = `translate(${left}px, ${top}px)`;
-    cross.style.setProperty("--left", `${xaxis._offset - left}px`);
-    cross.style.setProperty("--right", `${xaxis._offset + xaxis._length - left}px`);
-    cross.style.setProperty("--top", `${yaxis._offset - top}px`);
-    cross.style.setProperty("--bottom", `${yaxis._offset + yaxis._length - top}px`);
-    cross.hidden = false;
-  }
-
-  /* The sliders lie on the axes of the map: thumb centre over cell centre. */
-  function placeSliders() {
-    const chart = ghost.chartOf("lag-surface");
-    if (!chart || !chart._fullLayout || !chart._fullLayout.xaxis || !page.data) return;
-    const { xaxis, yaxis } = chart._fullLayout;
-    const thumb = 16;
-    const cells = (bounds) => bounds[1] - bounds[0] + 1;
-    const across = controls.field("shift"), up = controls.field("window");
-    if (!across || !up) return;
-    const wide = xaxis._length / cells(page.data.shifts), tall = yaxis._length / cells(page.data.windows);
-    Object.assign(across.parentElement.parentElement.style, {
-      left: `${xaxis._offset + wide / 2 - thumb / 2}px`,
-      width: `${xaxis._length - wide + thumb}px`,
-      top: `${yaxis._offset + yaxis._length - thumb / 2 + 1}px`,
-    });
-    Object.assign(up.parentElement.parentElement.style, {
-      top: `${yaxis._offset + tall / 2 - thumb / 2}px`,
-      height: `${yaxis._length - tall + thumb}px`,
-      left: `${xaxis._offset - thumb / 2 - 1}px`,
-    });
-    placeCross();
-  }
-
-  function listenToMap() {
-    const chart = ghost.chartOf("lag-surface");
-    if (!chart || !chart.on || chart.dataset.heard) return;
-    chart.dataset.heard = "yes";
-    chart.on("plotly_afterplot", placeSliders);
-    chart.on("plotly_click", (event) => {
-      const point = event.points[0];
-      move({ window: point.y, shift: point.x });
-      settle();
-    });
-    placeSliders();
-  }
-
   /* A move: drawn in the next frame, latest wins ---------------------------------------------- */
-
-  function pointColours(scatter) {
-    const { colorscale, cmin, cmax } = scatter.data[0].marker;
-    const stops = colorscale.map(([at, hex]) => [at, [1, 3, 5].map((i) => parseInt(hex.slice(i, i + 2), 16))]);
-    return (year) => {
-      const at = Math.max(0, Math.min(1, (year - cmin) / (cmax - cmin)));
-      const k = Math.max(1, stops.findIndex(([stop]) => stop >= at));
-      const [[a, from], [b, to]] = [stops[k - 1], stops[k]];
-      const rgb = from.map((c, i) => Math.round(c + ((to[i] - c) * (at - a)) / (b - a || 1)));
-      return `rgba(${rgb.join(",")},0.75)`;
-    };
-  }
-
-  function paintScatter() {
-    const cell = page.cell;
-    ghost.show("lag-scatter", (pen, x, y) => {
-      if (!cell) return;
-      for (let i = 0; i < cell.n; i++) {
-        pen.fillStyle = page.colours[cell.start + i];
-        pen.beginPath();
-        pen.arc(x(cell.driver[i]), y(cell.response[i]), 2.5, 0, 2 * Math.PI);
-        pen.fill();
-      }
-      pen.lineWidth = 1.2;
-      pen.strokeStyle = theme.colour("mark");
-      pen.setLineDash([9, 9]);
-      ghost.path(pen, cell.ellipse.x, cell.ellipse.y, x, y);
-      pen.setLineDash([]);
-      pen.lineWidth = 2;
-      pen.strokeStyle = theme.colour("fit");
-      const ends = endsOf(cell.driver);
-      ghost.path(pen, ends, ends.map((end) => cell.intercept + cell.slope * end), x, y);
-      pen.lineWidth = 1;
-      pen.strokeStyle = theme.colour("response");
-      ghost.path(pen, cell.driverSlices.centre, cell.driverSlices.mean, x, y);
-      pen.strokeStyle = theme.colour("driver");
-      ghost.path(pen, cell.responseSlices.mean, cell.responseSlices.centre, x, y);
-    });
-  }
-
-  function paintOverlay() {
-    const { ordinals, driver, response } = page.overlay;
-    const days = ordinals.map((o) => Date.parse(calendar.firstDay(o, page.data.perYear)));
-    ghost.show("lag-overlay", (pen, x, y) => {
-      pen.lineWidth = 1.8;
-      pen.strokeStyle = theme.colour("driver");
-      ghost.path(pen, days, driver, x, y);
-      pen.strokeStyle = theme.colour("response");
-      pen.setLineDash([5, 2]);
-      ghost.path(pen, days, response, x, y);
-    });
-  }
 
   function draw() {
     page.frame = 0;
     const { window, shift } = page.state;
-    page.cell = cellAt(window, shift);
-    page.overlay = overlayAt(window, shift);
-    placeCross();
+    page.cell = lagCell.cellAt(page.data, window, shift);
+    page.overlay = lagCell.overlayAt(page.data, window, shift);
+    lagMap.placeCross();
     showWords();
-    paintScatter();
-    paintOverlay();
+    lagScatter.paint(page);
+    lagTime.paint(page);
+    pricewake.player.follow();
     page.moves += 1;
     performance.mark("pricewake-painted", { detail: { window, shift } });
   }
 
-  /* `changes` may name window and shift; the sliders, the map and the charts follow. */
+  /* `changes` may name window, shift and the place of the band; sliders, map and charts follow. */
   function move(changes) {
     if (!page.data || page.data.error) return;
     page.state = { ...page.state, ...changes };
-    for (const name of ["window", "shift"]) {
-      const field = controls.field(name);
-      if (Number(field.value) !== page.state[name]) field.value = page.state[name];
-    }
-    if (page.state.without) page.state.without = "";
-    document.querySelector(".lag-page").classList.add("stale");
+    reflect(SLIDERS);
+    if (page.state.without && ("window" in changes || "shift" in changes)) page.state.without = "";
+    if ("window" in changes || "shift" in changes) document.querySelector(".lag-page").classList.add("stale");
     if (!page.frame) page.frame = requestAnimationFrame(draw);
     clearTimeout(page.timer);
-    page.timer = setTimeout(settle, RESTING);
+    page.timer = page.held ? 0 : setTimeout(settle, RESTING);
+  }
+
+  /* While the player plays, nothing settles. */
+  function hold(on) {
+    page.held = on;
+    byId("lag-readout").setAttribute("aria-live", on ? "off" : "polite");
+    if (on) clearTimeout(page.timer);
+    else settle();
+  }
+
+  /* Put the state into the controls that stand on the page. */
+  function reflect(names) {
+    for (const name of names) {
+      const field = controls.field(name);
+      if (field && field.value !== String(page.state[name])) field.value = page.state[name];
+    }
   }
 
   /* The hand rests: charts, address, files ---------------------------------------------------- */
 
-  const endsOf = (values) => values.reduce(([a, b], v) => [Math.min(a, v), Math.max(b, v)], [Infinity, -Infinity]);
-
-  const escaped = (text) => text.replaceAll("&", "&amp;").replaceAll("<", "&lt;").replaceAll(">", "&gt;");
-
-  /* figures.lag.axis_title */
-  function title(side) {
-    const { name, unit } = page.data[side];
-    const shown = name.length <= 32 ? name : `${name.slice(0, 30)}…`;
-    const smoothed = page.state.window === 1 ? "" : `${page.state.window}-${page.data.noun} mean, `;
-    return `${escaped(shown)}${side === "driver" ? ", " : "<br>"}${smoothed}${escaped(unit)}`;
-  }
-
-  function scatterFigure() {
-    const { cell, data, state } = page;
-    const figure = structuredClone(data.figures.scatter);
-    const [points, line, ellipse, across, along] = figure.data;
-    const months = Array.from({ length: cell.n }, (_, i) => data.ordinal + cell.start + i);
-    const ends = endsOf(cell.driver);
-    Object.assign(points, {
-      x: [...cell.driver], y: [...cell.response],
-      text: months.map((o) => `${calendar.label(o, data.perYear)} → ${calendar.label(o + state.shift, data.perYear)}`),
-    });
-    points.marker.color = months.map((o) => calendar.decimalYear(o, data.perYear));
-    Object.assign(line, { x: ends, y: ends.map((end) => cell.intercept + cell.slope * end) });
-    Object.assign(ellipse, cell.ellipse);
-    Object.assign(across, { x: cell.driverSlices.centre, y: cell.driverSlices.mean, customdata: cell.driverSlices.count });
-    Object.assign(along, { x: cell.responseSlices.mean, y: cell.responseSlices.centre, customdata: cell.responseSlices.count });
-    figure.layout.xaxis.title.text = title("driver");
-    figure.layout.yaxis.title.text = title("response");
-    return figure;
-  }
-
-  function overlayFigure() {
-    const { data, overlay } = page;
-    const figure = structuredClone(data.figures.overlay);
-    const x = overlay.ordinals.map((o) => calendar.firstDay(o, data.perYear));
-    const text = overlay.ordinals.map((o) => calendar.label(o, data.perYear));
-    Object.assign(figure.data[0], { x, text, y: overlay.driver });
-    Object.assign(figure.data[1], { x, text, y: overlay.response });
-    return figure;
-  }
-
   const query = () => controls.query(page.state, page.data.defaults);
 
-  /* Lay over the map what the search says of its cells, and the shift set on its row. */
-  function layOver(known) {
-    const { figures } = page.data;
-    const extra = [...known.support];
-    if (known.set.length) {
-      extra.push({
-        type: "scatter", mode: "markers", x: known.set, y: known.set.map(() => page.state.window),
-        marker: { symbol: "square", size: 5, color: "#20242C" }, hoverinfo: "skip", name: "shift set",
-      });
-    }
-    const text = JSON.stringify(extra);
-    if (page.laid === text) return;
-    page.laid = text;
-    theme.show("lag-surface", { ...figures.surface, data: [...figures.surface.data, ...extra] });
+  function publish(ask = true) {
+    controls.publish("lag", page.state, page.data.defaults, ask);
+    pricewake.trail.rested();
   }
-
-  const publish = () => controls.publish("lag", page.state, page.data.defaults);
 
   function settle() {
     clearTimeout(page.timer);
@@ -289,10 +105,16 @@
     if (!page.data || page.data.error || !byId("lag-sentence")) return; // the page may be left already
     if (page.frame) { cancelAnimationFrame(page.frame); draw(); }
     publish();
-    if (page.cell) theme.show("lag-scatter", scatterFigure());
-    theme.show("lag-overlay", overlayFigure());
+    lagMap.layOver(page.known);
+    if (page.cell) theme.show("lag-scatter", lagScatter.figure(page));
+    showTime();
     whenDrawn("lag-scatter");
     whenDrawn("lag-overlay");
+  }
+
+  function showTime() {
+    page.peaksShown = JSON.stringify((page.peaks && page.peaks.cell === page.cellName() && page.peaks.traces) || []);
+    theme.show("lag-overlay", lagTime.figure(page));
   }
 
   /* Take the canvas away once the chart under it has the same numbers. */
@@ -305,6 +127,30 @@
     });
   }
 
+  /* Changes that the server answers: of the question, or of what folds out below. */
+  function ask(changes) {
+    page.state = { ...page.state, ...changes };
+    reflect(Object.keys(changes));
+    window.dash_clientside.set_props("lag-state", { data: page.state });
+  }
+
+  function put(changes) {
+    page.state = { ...page.state, ...changes };
+    reflect(Object.keys(changes));
+    publish();
+  }
+
+  /* Another state of this page, from the history of the browser. */
+  function take(state) {
+    const same = asked(state) === asked(page.state);
+    page.state = state;
+    reflect(Object.keys(state));
+    if (!same) { window.dash_clientside.set_props("lag-state", { data: state }); return; }
+    document.querySelector(".lag-page").classList.add("stale");
+    draw();
+    settle();
+  }
+
   /* What the server sends ---------------------------------------------------------------------- */
 
   function adopt(data) {
@@ -314,6 +160,7 @@
     page.data = data;
     page.question = asked(data.state);
     page.state = data.state;
+    if (data.fresh) page.known = page.peaks = page.closer = null;
     document.querySelector(".lag-page").classList.toggle("broken", Boolean(data.error));
     byId("lag-invented").hidden = !data.invented;
     if (data.error) {
@@ -321,23 +168,27 @@
       byId("lag-readout").textContent = "";
       return data.error;
     }
+    if (before) for (const name of DRAWN_HERE) page.state[name] = before[name];
     if (before && within(before.window, data.windows) && within(before.shift, data.shifts)) {
-      page.state = { ...data.state, window: before.window, shift: before.shift };
+      page.state = { ...page.state, window: before.window, shift: before.shift };
     }
     for (const [name, bounds] of [["window", data.windows], ["shift", data.shifts]]) {
       const field = controls.field(name);
       [field.min, field.max] = bounds;
-      field.value = page.state[name];
     }
-    const colour = pointColours(data.figures.scatter);
+    reflect(SLIDERS);
+    const colour = lagScatter.pointColours(data.figures.scatter);
     page.colours = data.driver.values.map((_, i) => colour(calendar.decimalYear(data.ordinal + i, data.perYear)));
-    page.cell = cellAt(page.state.window, page.state.shift);
-    page.overlay = overlayAt(page.state.window, page.state.shift);
+    page.cell = lagCell.cellAt(data, page.state.window, page.state.shift);
+    page.overlay = lagCell.overlayAt(data, page.state.window, page.state.shift);
     page.laid = "";
-    theme.show("lag-surface", data.figures.surface);
     showWords();
     settle();
-    untilThere(listenToMap, () => ghost.chartOf("lag-surface")?.on);
+    pricewake.player.follow();
+    if (data.fresh) pricewake.trail.begin();
+    untilThere(lagMap.listen, () => ghost.chartOf("lag-surface")?.on);
+    untilThere(lagScatter.listen, () => ghost.chartOf("lag-scatter")?.on);
+    untilThere(lagTime.listen, () => ghost.chartOf("lag-overlay")?.on);
     return (data.notes || []).join(" ");
   }
 
@@ -348,9 +199,9 @@
     else if (tries) setTimeout(() => untilThere(act, there, tries - 1), 50);
   }
 
-  /* What the server has to answer anew: everything in the state but the cell. */
+  /* What the server has to answer anew: everything in the state but the cell and its tools. */
   function asked(state) {
-    return JSON.stringify({ ...state, window: 0, shift: 0, without: "" });
+    return JSON.stringify(Object.entries(state).filter(([name]) => !OF_THE_CELL.includes(name)));
   }
 
   function question(state) {
@@ -360,21 +211,25 @@
   }
 
   controls.on("input", (field, element) => {
-    if (field === "window" || field === "shift") move({ [field]: Number(element.value) });
+    if (SLIDERS.includes(field) && byId("lag-sentence")) move({ [field]: Number(element.value) });
   });
   controls.on("change", (field, element) => {
-    if (!page.state || !byId("lag-sentence")) return;
-    if (field === "window" || field === "shift") return;
-    page.state = { ...page.state, [field]: controls.valueOf(element) };
-    window.dash_clientside.set_props("lag-state", { data: page.state });
+    if (!page.state || !byId("lag-sentence") || SLIDERS.includes(field) || field === "scrub") return;
+    if (DRAWN_HERE.includes(field)) {
+      move({ [field]: controls.valueOf(element) });
+      settle();
+    } else if (OF_THE_CELL.includes(field)) put({ [field]: controls.valueOf(element) });
+    else ask({ [field]: controls.valueOf(element) });
   });
 
   window.dash_clientside = Object.assign({}, window.dash_clientside, { lag: { adopt, question } });
   pricewake.lag = page;
-  Object.assign(page, { move, publish, layOver, query });
+  Object.assign(page, { move, publish, query, settle, hold, ask, put, take, showTime, layOver: lagMap.layOver });
   page.busy = () => Boolean(page.timer || page.frame || document.querySelector(".plot.moving"));
-  page.settle = settle;
-  page.sentence = () => words.sentenceParts(page.data, page.state).map((p) => (typeof p === "string" ? p : p[1] + p[2])).join("");
+  /* What an answer of the server must be about to be shown: all but what is drawn here. */
+  page.answerable = (state) => JSON.stringify(Object.entries(state).filter(([name]) => !DRAWN_HERE.includes(name)).sort(([a], [b]) => (a < b ? -1 : 1)));
+  page.cellName = () => `${page.question} ${page.state.window} ${page.state.shift} ${page.state.peaks}`;
+  page.sentence = () => words.sentence(page);
   page.subtitle = (view) => words.subtitle(page, view);
   page.source = () => page.data.source;
   page.stem = (view, letters) => words.stem(page.state, view, letters);

@@ -66,8 +66,9 @@ RULES = {
     "app/scan/workers.py": rule("analytics app distributed"),
     "app/intake/": rule("analytics app.intake app.places numpy openpyxl pandas"),
     "app/figures/": rule(
-        "analytics app.compute app.state app.figures app.places numpy pandas plotly",
-        types_only="analytics app.compute",
+        "analytics app.compute app.lag.tools app.state app.figures app.places app.words numpy"
+        " pandas plotly",
+        types_only="analytics app.compute app.lag.tools",
     ),
     "app/pages/": rule("analytics app dash pandas plotly", types_only="analytics"),
 }

@@ -5,6 +5,7 @@ from html import escape
 import numpy as np
 import plotly.graph_objects as go
 
+from analytics.error_density import ErrorDensity
 from analytics.influence import CellWithout, Episode, InfluenceResult
 from analytics.opinions import SecondOpinions
 from analytics.robust import CellInference
@@ -14,6 +15,7 @@ from analytics.shiftset import ShiftSet
 from analytics.stability import Stability
 from app.compute import noun
 from app.figures.lag import axis_title, rate_unit
+from app.figures.lag_slices import density_surface
 from app.figures.theme import colour, template
 from app.state import ViewState
 
@@ -63,11 +65,17 @@ def shift_profile(chosen: ShiftSet, pair: Pair) -> go.Figure:
     return figure
 
 
-def parameter_plane(inference: CellInference, pair: Pair) -> go.Figure:
-    """Draw where intercept and slope may lie together, robust and naive, and the zero slope."""
+def parameter_plane(
+    inference: CellInference, pair: Pair, density: ErrorDensity | None = None
+) -> go.Figure:
+    """Draw where intercept and slope may lie together, robust and naive, and the zero slope.
+
+    `density` lies below as a surface: the darker, the likelier an error of that size.
+    """
     plane, unit = inference.plane, escape(rate_unit(pair.response), False)
     figure = go.Figure(
         [
+            *([] if density is None else [density_surface(density)]),
             _outline(plane.robust, "fit", "solid", f"{plane.level:.0%} region, effective months"),
             _outline(plane.naive, "mark", "dash", f"{plane.level:.0%} region, naive"),
             go.Scatter(

@@ -12,12 +12,25 @@ import plotly.graph_objects as go
 
 from analytics.cell import LagCell, SliceMeans
 from analytics.series import PERIOD_NOUN, Pair, Series, period_code, period_label
+from analytics.slices import Counts, SlicePath
 from analytics.surface import LagSurface
 from app.compute import Overlay, noun
+from app.figures.lag_slices import count_traces, side_axes, slice_traces
 from app.figures.theme import colour, diverging, sequential, template, time_scale
 from app.state import ViewState
 
-SCATTER_TRACES = ("points", "line", "ellipse", "driver_slices", "response_slices")
+SCATTER_TRACES = (
+    "points",
+    "line",
+    "ellipse",
+    "driver_slices",
+    "response_slices",
+    "in_band",
+    "path",
+    "driver_counts",
+    "response_counts",
+    "squares",
+)
 OVERLAY_TRACES = ("driver", "response")
 P_MAPS = {"p_cell": "per-cell p", "p_naive": "naive p", "p_hac": "HAC p"}
 
@@ -79,12 +92,20 @@ def surface_heatmap(
     return figure
 
 
-def cell_scatter(cell: LagCell, pair: Pair, state: ViewState, start: int) -> go.Figure:
+def cell_scatter(
+    cell: LagCell,
+    pair: Pair,
+    state: ViewState,
+    start: int,
+    path: SlicePath | None = None,
+    counts: Counts | None = None,
+) -> go.Figure:
     """Draw the pairs of one cell with line, 2-sigma ellipse and slice means.
 
-    `start` is the place in the pair's calendar of the first driver month.
+    `start` is the place in the pair's calendar of ``cell.start``; `path` and `counts` are those of
+    the cell where the state asks for them.
     """
-    months = pair.periods[start : start + cell.n]
+    months = pair.periods[start + cell.months - cell.start]
     ends = cell.driver.min(), cell.driver.max()
     figure = go.Figure(
         [
@@ -108,8 +129,9 @@ def cell_scatter(cell: LagCell, pair: Pair, state: ViewState, start: int) -> go.
                         "nticks": 6,
                     },
                 },
-                text=pair_labels(pair, start, cell.n, state.shift),
+                text=pair_labels(pair, start - cell.start, cell.months, state.shift),
                 hovertemplate="%{text}<br>driver %{x:.2f}, response %{y:.2f}<extra></extra>",
+                visible=state.points != "counts",
                 name="months",
             ),
             go.Scatter(
@@ -130,19 +152,27 @@ def cell_scatter(cell: LagCell, pair: Pair, state: ViewState, start: int) -> go.
             ),
             _slice_trace(cell.driver_slices, across=True),
             _slice_trace(cell.response_slices, across=False),
+            *slice_traces(cell, state, path),
+            *count_traces(counts, noun(pair), squares_shown=state.points == "counts"),
         ]
     )
     figure.update_layout(
-        template=template(),
-        margin={"l": 66, "r": 70, "t": 8, "b": 48},
+        template=template(), margin={"l": 66, "r": 70, "t": 8, "b": 48}, **side_axes(state)
+    )
+    figure.update_layout(
         xaxis={"title": {"text": axis_title(pair.driver, state)}},
         yaxis={"title": {"text": axis_title(pair.response, state, lines=2)}},
     )
     return figure
 
 
-def overlay_lines(overlay: Overlay, pair: Pair, state: ViewState) -> go.Figure:
-    """Draw both smoothed series on one time axis, the response moved back by the shift."""
+def overlay_lines(
+    overlay: Overlay, pair: Pair, state: ViewState, left_out: list[tuple[int, int]] | None = None
+) -> go.Figure:
+    """Draw both smoothed series on one time axis, the response moved back by the shift.
+
+    `left_out` are the stretches of the pair's calendar that no pair reads.
+    """
     months = [period_code(period) for period in overlay.periods]
     when = overlay.periods.to_timestamp()
     figure = go.Figure(
@@ -173,7 +203,19 @@ def overlay_lines(overlay: Overlay, pair: Pair, state: ViewState) -> go.Figure:
         xaxis={"hoverformat": "%b %Y"},
         yaxis={"title": {"text": shared_unit(pair)}},
         hovermode="x unified",
+        dragmode="select",
+        selectdirection="h",
+        newselection={"line": {"color": colour("ink"), "width": 1}},
     )
+    for first, stop in left_out or []:
+        figure.add_vrect(
+            x0=pair.periods[first].start_time,
+            x1=pair.periods[stop - 1].end_time,
+            fillcolor=colour("quiet"),
+            opacity=0.18,
+            line_width=0,
+            label={"text": "left out", "textposition": "top center", "font": {"size": 11}},
+        )
     return figure
 
 
@@ -183,9 +225,12 @@ def decimal_years(periods: pd.PeriodIndex) -> np.ndarray:
     return np.asarray((periods.asfreq("M", how="start").asi8 / 12 + 1970) + 0.5 / per_year)
 
 
-def pair_labels(pair: Pair, start: int, n: int, shift: int) -> list[str]:
-    """Name the two months of each point: driver's, then response's."""
-    months = pair.periods[start : start + n]
+def pair_labels(pair: Pair, first: int, places: np.ndarray, shift: int) -> list[str]:
+    """Name the two months of each point: driver's, then response's.
+
+    `first` is the place in the pair's calendar that `places` are counted from.
+    """
+    months = pair.periods[first + places]
     return [f"{period_label(m)} → {period_label(m + shift)}" for m in months]
 
 

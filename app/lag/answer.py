@@ -56,9 +56,24 @@ def answer(shown: LagView, known: Evidence) -> dict[str, Any]:
             for code in [episode_code(episode, shown.pair, shown.state)]
         ],
         "fragility": known.influence.fragility,
+        "left_out": _left_out_answer(shown, known),
         "breaks": list(shown.breaks),
         "made": list(shown.made),
         "verdict": verdict(known, shown.pair, shown.state),
+    }
+
+
+def _left_out_answer(shown: LagView, known: Evidence) -> dict[str, Any] | None:
+    """Return what the cell is without the months left out; the rest of the answer reads them."""
+    if known.rest is None:
+        return None
+    return {
+        "months": shown.state.left_out,
+        "slope": known.rest.slope,
+        "intercept": known.rest.intercept,
+        "correlation": known.rest.correlation,
+        "p_robust": known.rest.p,
+        "effective_months": known.rest.effective_months,
     }
 
 

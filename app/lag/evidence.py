@@ -41,8 +41,8 @@ class Evidence:
 
     Attributes
     ----------
-    naive_p : float
-        p of the chosen cell as if its overlapping months were independent.
+    naive_p, n : float, int
+        p of the chosen cell as if its overlapping months were independent, and its pairs.
     inference : CellInference
         The chosen cell, as if it had been the only one looked at; no month left out.
     rest : Relation or None
@@ -72,6 +72,7 @@ class Evidence:
     set_refusal: str = ""
     regimes: tuple[PersistenceShift, PersistenceShift] | None = None
     rest: Relation | None = None
+    n: int = 0
 
     @property
     def found(self) -> bool:
@@ -131,6 +132,7 @@ def evidence(state: ViewState, bridge: Bridge) -> Evidence:
         set_refusal=set_refusal,
         regimes=regimes(whole, bridge) if search is not None else None,
         rest=relation_left(state, bridge),
+        n=bridge.cell(state).n,
     )
 
 
@@ -300,12 +302,3 @@ def _plan(
         seed=state.seed,
         periods_per_year=year(pair),
     )
-
-
-WORK: dict[str, Callable[[ViewState, Bridge], Work]] = {
-    "search": search_work,
-    "shift_set": shift_set_work,
-    "directions": directions_work,
-    "opinions": opinions_work,
-    "stability": stability_work,
-}

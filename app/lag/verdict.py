@@ -14,6 +14,29 @@ def effective_words(n: int, effective: float, unit: str) -> str:
 
 def verdict(known: Evidence, pair: Pair, state: ViewState) -> list[str]:
     """Return the verdict for a state: a few sentences, most important first."""
+    return [*_judgement(known, pair, state), *_limits(known, pair, state)]
+
+
+def _limits(known: Evidence, pair: Pair, state: ViewState) -> list[str]:
+    """Say where the search reads other months, or other errors, than what is looked at."""
+    said = []
+    if known.rest is not None:
+        said.append(
+            f"Without the months left out the cell has slope {plain(known.rest.slope)} and"
+            f" per-cell p {p_words(known.rest.p)}; search, shift set and what folds out below read"
+            f" every {noun(pair)} of the sample."
+        )
+    if state.months == "same" and not known.refusal:
+        said.append(
+            f"The search lets each cell use all the {noun(pair)}s it has, not only those that"
+            " every cell has."
+        )
+    if state.quantity == "p_hac":
+        said.append("HAC errors are a map to look at; the search does not use them.")
+    return said
+
+
+def _judgement(known: Evidence, pair: Pair, state: ViewState) -> list[str]:
     found = known.search
     if known.refusal:
         return [f"There is no search here: {known.refusal}.", _cell_sentence(known, pair, state)]

@@ -10,7 +10,7 @@ from collections.abc import Collection
 from dataclasses import asdict, dataclass
 from typing import Any
 
-from dash import ClientsideFunction, Dash, Input, Output, State, dcc, html
+from dash import ClientsideFunction, Dash, Input, Output, State, html
 from plotly.graph_objects import Figure
 
 from analytics.cell import LagCell
@@ -19,11 +19,10 @@ from analytics.surface import LagSurface
 from app import controls
 from app.compute import MIN_PAIRS, Bridge, Overlay, cell_span, noun, span_words
 from app.figures import lag as figures
-from app.figures.theme import CONFIG
 from app.lag.cells import map_hac, map_inference
-from app.lag.left_out import left_out_words
-from app.pages import lag_evidence
-from app.pages.as_of import as_of_line
+from app.lag.left_out import left_out_spans, left_out_words
+from app.lag.tools import counts_of, slice_of
+from app.pages import lag_evidence, lag_layout
 from app.places import software_version
 from app.state import StateError, ViewState
 
@@ -111,12 +110,18 @@ def payload(state: ViewState, bridge: Bridge) -> dict[str, Any]:
         "same": shown.state.months == "same",
         "minPairs": MIN_PAIRS,
         "lost": [pair.lost_driver, pair.lost_response],
+        "leftOut": left_out_spans(pair, shown.state),
+        "without": left_out_words(pair, shown.state),
         "figures": {
             "surface": _plain(
                 figures.surface_heatmap(surface, pair, shown.state, p_map(shown.state, bridge))
             ),
-            "scatter": _plain(figures.cell_scatter(shown.cell, pair, shown.state, shown.start)),
-            "overlay": _plain(figures.overlay_lines(shown.overlay, pair, shown.state)),
+            "scatter": _plain(scatter(shown, bridge)),
+            "overlay": _plain(
+                figures.overlay_lines(
+                    shown.overlay, pair, shown.state, left_out_spans(pair, shown.state)
+                )
+            ),
         },
         "source": _source_line(pair),
         "invented": any("(invented)" in s.source for s in (pair.driver, pair.response)),
@@ -136,109 +141,8 @@ def layout(query: str, bridge: Bridge) -> html.Div:
     data |= {"fresh": True, "notes": [*refused, *data.get("notes", [])]}
     shown = ViewState(**data["state"])
     names = list(bridge.in_view(shown).series)
-    windows, shifts = data.get("windows", [1, 60]), data.get("shifts", [-36, 60])
-    return html.Div(
-        [
-            dcc.Store(id="lag-state", data=data["state"]),
-            dcc.Store(id="lag-question"),
-            dcc.Store(id="lag-data", data=data),
-            html.Header(
-                [
-                    html.H1(id="lag-sentence"),
-                    lag_evidence.strip(),
-                    lag_evidence.verdict_place(),
-                    html.P(id="lag-message", className="message", role="alert"),
-                    as_of_line(shown),
-                    html.P(
-                        [
-                            "Driver or response belong to an invented economy. ",
-                            dcc.Link("Open your own files", href="/data"),
-                        ],
-                        id="lag-invented",
-                        className="invented",
-                        hidden=True,
-                    ),
-                ],
-                className="headline",
-            ),
-            html.Div(
-                [
-                    controls.select(shown, "driver", names),
-                    controls.select(shown, "response", names),
-                    controls.select(shown, "growth"),
-                    controls.text(shown, "first", placeholder="earliest"),
-                    controls.text(shown, "last", placeholder="newest"),
-                    controls.select(shown, "months"),
-                    controls.select(shown, "quantity"),
-                ],
-                className="controls",
-                role="group",
-                **{"aria-label": "What is compared"},
-            ),
-            html.Div(
-                [
-                    html.Section(
-                        [
-                            controls.view_head("surface", "Every window and shift"),
-                            html.Div(
-                                [
-                                    _graph("surface"),
-                                    html.Div(id="lag-cross", **{"aria-hidden": "true"}),
-                                    controls.slider(shown, "window", *windows, vertical=True),
-                                    controls.slider(shown, "shift", *shifts),
-                                ],
-                                className="map",
-                            ),
-                        ],
-                        className="view",
-                    ),
-                    html.Section(
-                        [
-                            controls.view_head("scatter", "The chosen cell"),
-                            html.P(id="lag-equation", className="equation"),
-                            _graph("scatter"),
-                            _key(
-                                ("line", "fit", "least squares"),
-                                ("dash", "mark", "2-sigma ellipse"),
-                                ("diamond", "response", "mean response by driver slice"),
-                                ("square", "driver", "mean driver by response slice"),
-                            ),
-                        ],
-                        className="view",
-                    ),
-                    html.Section(
-                        [
-                            controls.view_head("overlay", "Through time"),
-                            html.Ul(
-                                [
-                                    html.Li(
-                                        [
-                                            html.Span(className=f"sign {sign} {side}"),
-                                            html.Span(id=f"lag-{side}-words"),
-                                        ]
-                                    )
-                                    for sign, side in (("line", "driver"), ("dash", "response"))
-                                ],
-                                className="key",
-                            ),
-                            _graph("overlay"),
-                        ],
-                        className="view wide",
-                    ),
-                ],
-                className="board",
-            ),
-            html.Div(
-                [controls.select(shown, "season"), controls.select(shown, "meet")],
-                className="controls",
-                role="group",
-                **{"aria-label": "How the two are made comparable"},
-            ),
-            lag_evidence.folds(shown),
-            html.P(CAUTION, className="caution"),
-        ],
-        className="lag-page",
-    )
+    ranges = data.get("windows", [1, 60]), data.get("shifts", [-36, 60])
+    return lag_layout.body(shown, data, names, ranges, CAUTION)
 
 
 def register(app: Dash, bridge: Bridge) -> None:
@@ -272,6 +176,18 @@ def register(app: Dash, bridge: Bridge) -> None:
         ClientsideFunction("lag", "adopt"),
         Output("lag-message", "children"),
         Input("lag-data", "data"),
+    )
+
+
+def scatter(shown: LagView, bridge: Bridge) -> Figure:
+    """Draw the chosen cell with what the state asks for besides its points."""
+    return figures.cell_scatter(
+        shown.cell,
+        shown.pair,
+        shown.state,
+        shown.start,
+        slice_of(shown.state, bridge),
+        counts_of(shown.state, bridge),
     )
 
 
@@ -323,18 +239,3 @@ def _side(pair: Pair, side: str) -> dict[str, Any]:
 
 def _plain(figure: Figure) -> Any:
     return json.loads(figure.to_json())
-
-
-def _graph(name: str) -> html.Div:
-    graph = dcc.Graph(id=f"lag-{name}", config=CONFIG, responsive=True)
-    return html.Div(graph, className=f"plot {name}")
-
-
-def _key(*entries: tuple[str, str, str]) -> html.Ul:
-    return html.Ul(
-        [
-            html.Li([html.Span(className=f"sign {sign} {token}"), words])
-            for sign, token, words in entries
-        ],
-        className="key",
-    )

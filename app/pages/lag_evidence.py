@@ -13,30 +13,47 @@ from plotly.graph_objects import Figure
 from app import controls
 from app.compute import Bridge, cell_span, noun
 from app.figures import evidence as figures
+from app.figures import lag_tools as tool_figures
 from app.figures.theme import CONFIG
 from app.lag.cells import without_episode
-from app.lag.evidence import WORK, evidence
+from app.lag.evidence import evidence
+from app.lag.tools import density_of, peaks_of, two_cells
 from app.lag.verdict import verdict
-from app.pages import lag_season, lag_words
+from app.lag.work import WORK
+from app.pages import lag_season, lag_tools, lag_words
 from app.state import StateError, ViewState
 
 FOLDS = {
     "profile": "Which shifts fit as well",
     "plane": "Where intercept and slope may lie",
     "episodes": "Which years carry it",
+    "compare": "Two cells side by side",
+    "peaks": "Peaks that meet across the shift",
+    "responses": "This driver against other responses",
     "opinions": "Second opinions",
     "stability": "The slope through time",
     "season": "The season taken out",
     "method": "How it was searched",
 }
-_NEEDS = {"opinions": ("directions", "opinions"), "stability": ("stability",)}
+_NEEDS = {
+    "opinions": ("directions", "opinions"),
+    "stability": ("stability",),
+    "responses": ("responses",),
+}
+_NO_CHART = ("peaks", "method")  # their numbers are drawn elsewhere, or there are none
 
 
-def strip() -> html.Div:
-    """Return the line of p-values under the headline."""
+def strip(copy: html.Button) -> html.Div:
+    """Return the line of correlation and p-values under the headline; `copy` copies the first."""
     return html.Div(
         [
-            html.P(id="lag-readout", className="readout", **{"aria-live": "polite"}),
+            html.Div(
+                [
+                    html.P(id="lag-readout", className="readout", **{"aria-live": "polite"}),
+                    copy,
+                ],
+                className="readout-line",
+            ),
             html.Dl(id="lag-strip", className="strip"),
         ],
         className="strip-line",
@@ -59,7 +76,8 @@ def verdict_place() -> html.Div:
                 className="work",
                 hidden=True,
             ),
-        ]
+        ],
+        className="verdict-place",
     )
 
 
@@ -69,7 +87,10 @@ def folds(state: ViewState) -> html.Div:
         [controls.number(state, "surrogates"), controls.number(state, "seed")],
         className="controls",
     )
-    inside: dict[str, list[Any]] = {name: [_plot(name)] for name in FOLDS}
+    inside: dict[str, list[Any]] = {
+        name: [] if name in _NO_CHART else [_plot(name)] for name in FOLDS
+    }
+    inside["peaks"] = [controls.csv_button("peaks")]
     inside["episodes"].append(_plot("without"))
     inside["method"] = [tools]
     return html.Div(
@@ -118,7 +139,7 @@ def register(app: Dash, bridge: Bridge) -> None:
         try:
             return answer(controls.sent_state(state), bridge, tuple(opened or ()))
         except ValueError as error:
-            nothing = {"figures": {}, "jobs": [], "support": [], "set": []}
+            nothing = {"figures": {}, "jobs": [], "support": [], "set": [], "peaks": []}
             return [], f"{error}.", *empty, {"state": state, **nothing}
 
 
@@ -133,7 +154,13 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
     refusals: dict[str, str] = {}
     for fold in opened:
         for kind in _NEEDS.get(fold, ()):
-            work = WORK[kind](state, bridge)
+            if kind == "responses" and not state.responses:
+                continue
+            try:
+                work = WORK[kind](state, bridge)
+            except StateError as error:
+                refusals[kind] = str(error)
+                continue
             results[kind] = bridge.jobs.remembered(work)
             refusals[kind] = "" if results[kind] else bridge.jobs.refusal(work)
             if known.refusal and kind == "directions":
@@ -142,7 +169,9 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
                 jobs.append(kind)
     start = cell_span(pair, state)[0]
     charts: dict[str, Figure] = {
-        "plane": figures.parameter_plane(known.inference, pair),
+        "plane": figures.parameter_plane(
+            known.inference, pair, density_of(state, bridge) if "plane" in opened else None
+        ),
         "episodes": figures.episode_shares(known.influence, pair, start),
     }
     if known.found and known.shift_set is not None:
@@ -160,11 +189,27 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
         charts["stability"] = figures.stability_courses(results["stability"], pair, start)
     used = bridge.prepared(state)
     charts |= lag_season.chart(used)
+    both, unpinned = None, ""
+    try:
+        both = two_cells(state, bridge)
+    except ValueError as error:
+        unpinned = str(error)
+    if both is not None:
+        charts["compare"] = tool_figures.compare_scatters(*both, pair, noun(pair))
+    peaks = peaks_of(state, bridge)
+    several = results.get("responses")
+    if several is not None and any(one.best for one in several):
+        charts["responses"] = tool_figures.response_profiles(list(several))
     words = {
         "season": lag_season.words(used, state.season),
         "profile": lag_words.profile_words(known, pair, state),
         "plane": lag_words.plane_words(known, pair),
         "episodes": lag_words.episode_words(known, pair, state, refused),
+        "compare": lag_tools.compare_words(both, known, pair, unpinned),
+        "peaks": lag_tools.peak_words(peaks, pair, state),
+        "responses": lag_tools.response_words(
+            several, state, bridge, refusals.get("responses", "")
+        ),
         "opinions": lag_words.opinion_words(results, refusals, pair),
         "stability": lag_words.stability_words(results, refusals, pair),
         "method": lag_words.method_words(known, pair),
@@ -173,6 +218,11 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
         "state": vars(state),
         "figures": {name: json.loads(chart.to_json()) for name, chart in charts.items()},
         "jobs": jobs,
+        "peaks": (
+            [json.loads(trace.to_json()) for trace in tool_figures.peak_traces(peaks, pair)]
+            if peaks is not None
+            else []
+        ),
         "support": (
             [json.loads(trace.to_json()) for trace in figures.support_traces(known.search)]
             if known.search

@@ -17,37 +17,55 @@ MOST_EPISODES = 8
 
 def p_strip(known: Evidence, state: ViewState, unit: str) -> list[html.Div]:
     """Return the three p-values and what the months are worth, for the line under the headline."""
-    inference, found = known.inference, known.search
+    found = known.search
     whole = p_words(found.p) if found else "not searched"
+    # Without the months left out, where there are some: the cell is then known by `rest`.
+    judged = known.rest or known.inference
+    worth = effective_words(known.n, judged.effective_months, unit)
     return [
         _figure(
             "naive p",
             p_words(known.naive_p),
             "As if the overlapping months of this cell were independent. They are not.",
+            known.naive_p,
         ),
         _figure(
             "per-cell p",
-            p_words(inference.p),
-            f"{effective_words(inference.n, inference.effective_months, unit)};"
-            " as if this cell had been the only one looked at.",
+            p_words(judged.p),
+            f"{worth}; as if this cell had been the only one looked at.",
+            judged.p,
         ),
         _figure(
             "search-adjusted p",
             whole,
             "For the best cell of the whole map, the search paid for; two-sided."
             + (f" One-sided {p_words(found.p_one_sided)}." if found else ""),
+            float(found.p) if found else None,
         ),
         html.Div(
-            html.Dd(effective_words(inference.n, inference.effective_months, unit)),
+            html.Dd(worth),
             title="What overlapping, smoothed months are worth (Bartlett 1946).",
             className="strip-item worth",
         ),
     ]
 
 
-def _figure(name: str, value: str, meaning: str) -> html.Div:
+def _figure(name: str, value: str, meaning: str, digits: float | None) -> html.Div:
+    copy = (
+        []
+        if digits is None
+        else [
+            html.Button(
+                html.Span(f"Copy {name}", className="hidden-label"),
+                type="button",
+                className="copy",
+                title=f"Copy {name} with all digits",
+                **{"data-copy": repr(float(digits)), "data-copied": name},
+            )
+        ]
+    )
     return html.Div(
-        [html.Dt(name), html.Dd(value), html.Span(meaning, className="hidden-label")],
+        [html.Dt(name), html.Dd([value, *copy]), html.Span(meaning, className="hidden-label")],
         title=meaning,
         className="strip-item",
     )

@@ -18,6 +18,7 @@ from app.cli import LAG_FIELDS
 from app.compute import Bridge, cell_span
 from app.lag import cells
 from app.lag import evidence as ev
+from app.lag.work import WORK
 from app.state import StateError
 from tests.app.economies import LAG, planted, workspace
 from tests.app.evidence_cases import STATE, case, noise, rates
@@ -280,7 +281,7 @@ def test_a_refused_shift_set_takes_nothing_else_down():
 @pytest.mark.parametrize("kind", ["directions", "opinions"])
 def test_what_needs_shifts_above_zero_is_refused_without_them(kind):
     bridge, state = fresh(*planted(lag=-4)), replace(SMALL, shift=-4, shifts="-12:0")
-    work = ev.WORK[kind](state, bridge)
+    work = WORK[kind](state, bridge)
     assert bridge.jobs.refusal(work) == ""
     with pytest.raises(ValueError, match="the map has no shift above 0"):
         bridge.jobs.complete(work)
@@ -292,7 +293,7 @@ def test_what_needs_shifts_above_zero_is_refused_without_them(kind):
 
 
 def keys(kind, bridge, **changes):
-    return ev.WORK[kind](replace(SMALL, **changes), bridge).key
+    return WORK[kind](replace(SMALL, **changes), bridge).key
 
 
 @pytest.mark.parametrize(
@@ -320,7 +321,7 @@ def test_a_key_changes_with_everything_its_work_depends_on(kind, free):
 
 def test_kinds_of_work_have_keys_of_their_own():
     bridge = fresh()
-    assert len({keys(kind, bridge) for kind in ev.WORK}) == len(ev.WORK) == 5
+    assert len({keys(kind, bridge) for kind in WORK}) == len(WORK) == 5
 
 
 def test_the_cell_chosen_does_not_change_the_search_and_the_window_changes_the_set():

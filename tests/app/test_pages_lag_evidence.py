@@ -10,7 +10,6 @@ from app.compute import Bridge
 from app.figures import evidence as figures
 from app.lag.cells import episode_code, influence
 from app.lag.evidence import (
-    WORK,
     completed,
     directions_work,
     opinions_work,
@@ -19,6 +18,7 @@ from app.lag.evidence import (
     stability_work,
 )
 from app.lag.verdict import fragility, verdict
+from app.lag.work import WORK
 from app.pages.lag_evidence import FOLDS, answer
 from app.pages.lag_words import MOST_EPISODES
 from app.server import build_app
