@@ -151,7 +151,7 @@ def response_profiles(responses: list[OneResponse]) -> go.Figure:
                 y=line,
                 mode="lines",
                 line={"color": colour("response"), "width": 1.6},
-                hovertemplate="shift %{x:+d}: %{y:+.2f}<extra>" + escape(one.name) + "</extra>",
+                hovertemplate="shift %{x:+d}: %{y:+.2f}<extra></extra>",
                 xaxis=f"x{axis}",
                 yaxis=f"y{axis}",
                 name=one.name,

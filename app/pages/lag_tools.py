@@ -244,8 +244,8 @@ def compare_words(
         *(
             [
                 html.P(
-                    f"Intervals, per-cell and search-adjusted p read every {unit} of the sample; the"
-                    " rest is without the months left out.",
+                    f"Intervals, per-cell and search-adjusted p read every {unit} of the sample;"
+                    " the rest is without the months left out.",
                     className="quiet",
                 )
             ]

@@ -77,7 +77,7 @@ def test_the_map_leaves_cells_without_a_correlation_empty():
 def test_the_scatter_shows_pairs_line_ellipse_and_slices(shift, months):
     result = shown(replace(STATE, shift=shift, months=months))
     cell = result.cell
-    points, line, ellipse, across, along = scatter_of(result).data
+    points, line, ellipse, across, along = scatter_of(result).data[:5]
     np.testing.assert_array_equal(points.x, cell.driver)
     np.testing.assert_array_equal(points.y, cell.response)
     assert len(points.text) == cell.n
@@ -142,6 +142,11 @@ def test_traces_stand_in_the_order_that_the_browser_relies_on():
         "ellipse",
         "driver_slices",
         "response_slices",
+        "in_band",
+        "path",
+        "driver_counts",
+        "response_counts",
+        "squares",
     )
     assert figures.OVERLAY_TRACES == ("driver", "response")
     result = shown()
@@ -152,10 +157,18 @@ def test_traces_stand_in_the_order_that_the_browser_relies_on():
         "2-sigma ellipse",
         "mean response in slices of the driver",
         "mean driver in slices",
+        "in the slice",
+        "mean of the slice as it sweeps",
+        "counts of the driver",
+        "counts of the response",
+        "counts in squares",
     ]
     assert [trace.name for trace in overlay_of(result).data] == list(figures.OVERLAY_TRACES)
-    script = (bundled("assets") / "page-lag.js").read_text(encoding="utf-8")
-    assert "const [points, line, ellipse, across, along] = figure.data;" in script
+    script = (bundled("assets") / "lag-scatter.js").read_text(encoding="utf-8")
+    assert (
+        "const [points, line, ellipse, across, along, held, path, left, right, both] = made.data;"
+        in script
+    )
 
 
 @pytest.mark.parametrize("name", ["surface", "scatter", "overlay"])
@@ -244,7 +257,8 @@ def test_hostile_names_and_units_are_escaped(name):
     title = scatter_of(result).layout.xaxis.title.text
     assert len(title) < 300
     for trace in scatter_of(result).data:
-        assert name not in (trace.hovertemplate or "")  # templates hold no words of a file
+        # templates hold no words of a file; %{x} is a word of theirs
+        assert name == "%{x}" or name not in (trace.hovertemplate or "")
 
 
 def texts(node):

@@ -49,7 +49,11 @@ def text(children):
 def strip_values(found):
     """Name and value of each figure of the strip."""
     return [
-        tuple(part.children for part in parts(item) if type(part).__name__ in ("Dt", "Dd"))
+        tuple(
+            part.children[0] if isinstance(part.children, list) else part.children
+            for part in parts(item)
+            if type(part).__name__ in ("Dt", "Dd")
+        )
         for item in found["strip"]
     ]
 
