@@ -6,7 +6,7 @@ from typing import Any
 from dash import Dash, Input, Output
 from flask import Flask, Response, request
 
-from app import faults, frame, kept_routes
+from app import faults, frame, kept_routes, serving
 from app.compute import Bridge
 from app.desk import routes as desk_routes
 from app.guard import Door, guard
@@ -85,6 +85,7 @@ def build_app(workspace: Workspace, door: Door = Door()) -> Dash:  # noqa: B008 
     _register_routes(server, bridge)
     faults.register(server)
     guard(server, app, door)
+    serving.register(server)
     return app
 
 

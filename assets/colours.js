@@ -46,10 +46,31 @@
     return walk(figure);
   }
 
-  /* Put a figure on screen; `id` is the id of a dcc.Graph. */
+  /* What a chart that Dash does not keep is drawn with: app/figures/theme.CONFIG. */
+  const CONFIG = { displayModeBar: false, displaylogo: false, showSendToCloud: false, plotlyServerURL: "" };
+  const own = new Set();
+
+  function draw(id) {
+    const place = document.getElementById(id);
+    if (!place) return;
+    const figure = themed(shown.get(id));
+    if (!("chart" in place.dataset)) { window.dash_clientside.set_props(id, { figure }); return; }
+    if (!place.offsetParent) return; // folded away: it is drawn when it is shown
+    if (!place.firstElementChild) place.append(document.createElement("div"));
+    for (const chart of own) if (!chart.isConnected) { window.Plotly.purge(chart); own.delete(chart); }
+    const chart = place.firstElementChild;
+    own.add(chart);
+    window.Plotly.react(chart, structuredClone(figure.data), { ...structuredClone(figure.layout), autosize: true }, CONFIG);
+  }
+
+  window.addEventListener("resize", () => {
+    for (const chart of own) if (chart.isConnected && chart.offsetParent) window.Plotly.Plots.resize(chart);
+  });
+
+  /* Put a figure on screen; `id` is the id of a dcc.Graph, or of a place with data-chart. */
   function show(id, figure) {
     shown.set(id, figure);
-    if (document.getElementById(id)) window.dash_clientside.set_props(id, { figure: themed(figure) });
+    draw(id);
   }
 
   function choose(theme) {
@@ -61,9 +82,7 @@
       button.setAttribute("aria-pressed", String(theme === "dark"));
       button.setAttribute("aria-label", theme === "dark" ? "Use light colours" : "Use dark colours");
     }
-    for (const [id, figure] of shown) {
-      if (document.getElementById(id)) window.dash_clientside.set_props(id, { figure: themed(figure) });
-    }
+    for (const id of shown.keys()) draw(id);
   }
 
   let saved = null;

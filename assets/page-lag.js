@@ -94,8 +94,11 @@
 
   const query = () => controls.query(page.state, page.data.defaults);
 
-  function publish(ask = true) {
-    controls.publish("lag", page.state, page.data.defaults, ask);
+  /* The server is told of a state once. */
+  function publish() {
+    const text = JSON.stringify(page.state);
+    controls.publish("lag", page.state, page.data.defaults, text !== page.told);
+    page.told = text;
     pricewake.trail.rested();
   }
 
@@ -131,6 +134,7 @@
   function ask(changes) {
     page.state = { ...page.state, ...changes };
     reflect(Object.keys(changes));
+    page.told = JSON.stringify(page.state);
     window.dash_clientside.set_props("lag-state", { data: page.state });
   }
 
@@ -145,7 +149,7 @@
     const same = asked(state) === asked(page.state);
     page.state = state;
     reflect(Object.keys(state));
-    if (!same) { window.dash_clientside.set_props("lag-state", { data: state }); return; }
+    if (!same) { ask({}); return; }
     document.querySelector(".lag-page").classList.add("stale");
     draw();
     settle();
@@ -160,7 +164,7 @@
     page.data = data;
     page.question = asked(data.state);
     page.state = data.state;
-    if (data.fresh) page.known = page.peaks = page.closer = null;
+    if (data.fresh) Object.assign(page, { known: null, peaks: null, closer: null, told: JSON.stringify(data.state) });
     document.querySelector(".lag-page").classList.toggle("broken", Boolean(data.error));
     byId("lag-invented").hidden = !data.invented;
     if (data.error) {

@@ -112,20 +112,27 @@ def payload(state: ViewState, bridge: Bridge) -> dict[str, Any]:
         "lost": [pair.lost_driver, pair.lost_response],
         "leftOut": left_out_spans(pair, shown.state),
         "without": left_out_words(pair, shown.state),
-        "figures": {
-            "surface": _plain(
-                figures.surface_heatmap(surface, pair, shown.state, p_map(shown.state, bridge))
-            ),
-            "scatter": _plain(scatter(shown, bridge)),
-            "overlay": _plain(
-                figures.overlay_lines(
-                    shown.overlay, pair, shown.state, left_out_spans(pair, shown.state)
-                )
-            ),
-        },
+        "figures": _drawn(shown, bridge),
         "source": _source_line(pair),
         "invented": any("(invented)" in s.source for s in (pair.driver, pair.response)),
     }
+
+
+def _drawn(shown: LagView, bridge: Bridge) -> dict[str, Any]:
+    """Return the three charts; drawing them takes longer than computing them, so they are kept."""
+    pair, state = shown.pair, shown.state
+    units = f"{pair.driver.unit}|{pair.response.unit}"
+
+    def make() -> dict[str, Any]:
+        holes = left_out_spans(pair, state)
+        p = p_map(state, bridge)
+        return {
+            "surface": _plain(figures.surface_heatmap(shown.surface, pair, state, p)),
+            "scatter": _plain(scatter(shown, bridge)),
+            "overlay": _plain(figures.overlay_lines(shown.overlay, pair, state, holes)),
+        }
+
+    return bridge.memory.once(f"drawn:{bridge.key(state)}:{state.to_query()}:{units}", make)
 
 
 def layout(query: str, bridge: Bridge) -> html.Div:

@@ -7,14 +7,13 @@ assets/evidence.js asks for; when it is done, the same callback answers again fr
 import json
 from typing import Any
 
-from dash import Dash, Input, Output, State, dcc, html
+from dash import Dash, Input, Output, dcc, html
 from plotly.graph_objects import Figure
 
 from app import controls
 from app.compute import Bridge, cell_span, noun
 from app.figures import evidence as figures
 from app.figures import lag_tools as tool_figures
-from app.figures.theme import CONFIG
 from app.lag.cells import without_episode
 from app.lag.evidence import evidence
 from app.lag.tools import density_of, peaks_of, two_cells
@@ -128,13 +127,10 @@ def register(app: Dash, bridge: Bridge) -> None:
         Input("lag-state", "data"),
         Input("lag-tick", "data"),
         Input("lag-open", "data"),
-        State("lag-data", "data"),
     )
-    def _judge(
-        state: dict[str, Any], _tick: int, opened: list[str], data: dict[str, Any]
-    ) -> tuple[Any, ...]:
+    def _judge(state: dict[str, Any], _tick: int, opened: list[str]) -> tuple[Any, ...]:
         empty = [[] for _ in FOLDS]
-        if not state or data.get("error"):
+        if not state:
             return [], "", *empty, None
         try:
             return answer(controls.sent_state(state), bridge, tuple(opened or ()))
@@ -241,11 +237,14 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
 
 
 def _plot(name: str) -> html.Div:
-    graph = dcc.Graph(id=f"lag-{name}", config=CONFIG, responsive=True)
+    # Drawn by assets/colours.js when the fold is open: a page of empty charts would load slower.
     return html.Div(
         [
             controls.save_buttons(name),
-            html.Div(graph, className=f"plot fold-plot {name}"),
+            html.Div(
+                html.Div(id=f"lag-{name}", **{"data-chart": "drawn when shown"}),
+                className=f"plot fold-plot {name}",
+            ),
         ],
         hidden=True,
         id=f"place-{name}",
