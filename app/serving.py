@@ -33,7 +33,10 @@ def register(server: Flask) -> None:
             response.direct_passthrough = False
             packed = gzip.compress(response.get_data(), 6, mtime=0)
             kept[request.path] = request.full_path, packed
+        close = getattr(response.response, "close", None)
         response.set_data(packed)
+        if close is not None:
+            close()  # the file
         response.headers["Content-Encoding"] = "gzip"
         response.headers["Content-Length"] = str(len(packed))
         return response
