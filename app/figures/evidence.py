@@ -75,7 +75,6 @@ def parameter_plane(
     plane, unit = inference.plane, escape(rate_unit(pair.response), False)
     figure = go.Figure(
         [
-            *([] if density is None else [density_surface(density)]),
             _outline(plane.robust, "fit", "solid", f"{plane.level:.0%} region, effective months"),
             _outline(plane.naive, "mark", "dash", f"{plane.level:.0%} region, naive"),
             go.Scatter(
@@ -86,6 +85,7 @@ def parameter_plane(
                 hovertemplate="intercept %{x:.3f}, slope %{y:.3f}<extra></extra>",
                 name="estimate",
             ),
+            *([] if density is None else [density_surface(density)]),  # plotly draws it below
         ]
     )
     figure.add_hline(

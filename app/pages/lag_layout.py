@@ -214,11 +214,10 @@ def _keys() -> html.Dialog:
 
 def _copy(number: str, title: str) -> html.Button:
     return html.Button(
-        html.Span(title, className="hidden-label"),
         type="button",
         className="copy",
         title=title,
-        **{"data-copy-number": number},
+        **{"data-copy-number": number, "aria-label": title},
     )
 
 

@@ -56,11 +56,14 @@ def _figure(name: str, value: str, meaning: str, digits: float | None) -> html.D
         if digits is None
         else [
             html.Button(
-                html.Span(f"Copy {name}", className="hidden-label"),
                 type="button",
                 className="copy",
                 title=f"Copy {name} with all digits",
-                **{"data-copy": repr(float(digits)), "data-copied": name},
+                **{
+                    "data-copy": repr(float(digits)),
+                    "data-copied": name,
+                    "aria-label": f"Copy {name}",
+                },
             )
         ]
     )
