@@ -56,7 +56,7 @@ LAG_FIELDS = (
     "band_place",
     "band_width",
     "peaks",
-    "responses",
+    "other_responses",
     "without",
     "as_of",
 )

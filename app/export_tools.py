@@ -128,7 +128,7 @@ def compare_rows(shown: LagView, bridge: Bridge) -> Rows:
 def response_rows(shown: LagView, bridge: Bridge) -> Rows:
     """Give best cell and p of each listed response, then the correlations drawn."""
     yield "part", "response", "window", "shift", "correlation", "search_adjusted_p", "holm_p"
-    if not shown.state.responses:
+    if not shown.state.other_responses:
         return
     found = bridge.jobs.complete(responses_work(shown.state, bridge))
     for one in found:

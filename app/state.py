@@ -189,7 +189,7 @@ class ViewState:
     band_place: int = _state(50, lag_fields.BAND_PLACE)
     band_width: int = _state(10, lag_fields.BAND_WIDTH)
     peaks: str = _state("off", lag_fields.PEAKS)
-    responses: str = _state("", lag_fields.RESPONSES)
+    other_responses: str = _state("", lag_fields.RESPONSES)
     quantity: str = _state(
         "correlation",
         Choice(

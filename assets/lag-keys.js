@@ -28,9 +28,9 @@
 
   function leaveOutResponse(name) {
     const { state } = pricewake.lag;
-    const listed = state.responses.split("|").filter(Boolean);
+    const listed = state.other_responses.split("|").filter(Boolean);
     const now = listed.includes(name) ? listed.filter((each) => each !== name) : [...listed, name];
-    pricewake.lag.put({ responses: now.join("|") });
+    pricewake.lag.put({ other_responses: now.join("|") });
   }
 
   document.addEventListener("keydown", (event) => {

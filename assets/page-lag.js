@@ -8,7 +8,7 @@
   const RESTING = 140; // milliseconds without a move
   const SLIDERS = ["window", "shift", "band_place", "band_width"]; // moved by the hand
   const DRAWN_HERE = ["points", "band", "band_place", "band_width"]; // the server need not answer
-  const OF_THE_CELL = ["window", "shift", "without", "pinned", "peaks", "responses", ...DRAWN_HERE];
+  const OF_THE_CELL = ["window", "shift", "without", "pinned", "peaks", "other_responses", ...DRAWN_HERE];
   const page = { data: null, state: null, cell: null, timer: 0, frame: 0, moves: 0, held: false };
 
   const byId = (id) => document.getElementById(id);

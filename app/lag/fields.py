@@ -57,7 +57,7 @@ PEAKS = Choice(
     display=True,
 )
 RESPONSES = Text(
-    label="Responses",
+    label="Other responses",
     pattern=NAMES,
     shape="names of loaded series parted by |, or empty",
     help="Series that the driver is held against, parted by |; empty takes the chosen one only.",

@@ -144,15 +144,15 @@ def responses_of(state: ViewState, bridge: Bridge) -> tuple[str, ...]:
     StateError
         A name is not loaded or is the driver, or there are more than twelve.
     """
-    listed = [name for name in dict.fromkeys(state.responses.split("|")) if name]
+    listed = [name for name in dict.fromkeys(state.other_responses.split("|")) if name]
     loaded = list(bridge.in_view(state).series)
     for name in listed:
         if name not in loaded:
-            raise StateError(f"Responses must be loaded series, but got {name!r}")
+            raise StateError(f"Other responses must be loaded series, but got {name!r}")
         if name == state.driver:
-            raise StateError(f"Responses must not hold the driver, but got {name!r}")
+            raise StateError(f"Other responses must not hold the driver, but got {name!r}")
     if len(listed) > MOST_RESPONSES:
-        raise StateError(f"Responses must be at most {MOST_RESPONSES}, but got {len(listed)}")
+        raise StateError(f"Other responses must be at most {MOST_RESPONSES}, but got {len(listed)}")
     return tuple(name for name in loaded if name in listed)
 
 
@@ -169,7 +169,7 @@ def responses_work(state: ViewState, bridge: Bridge) -> Work:
     """Return the search of the driver against each listed response as work, one chunk each."""
     names = responses_of(state, bridge)
     if not names:
-        raise StateError("Responses must name at least one series, but got none")
+        raise StateError("Other responses must name at least one series, but got none")
     question = every_month(state)
     keys = [bridge.key(replace(question, response=name).question()) for name in names]
     key = hashlib.sha256("\n".join([*keys, str(state.window)]).encode()).hexdigest()[:32]

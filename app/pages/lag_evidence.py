@@ -150,7 +150,7 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
     refusals: dict[str, str] = {}
     for fold in opened:
         for kind in _NEEDS.get(fold, ()):
-            if kind == "responses" and not state.responses:
+            if kind == "responses" and not state.other_responses:
                 continue
             try:
                 work = WORK[kind](state, bridge)

@@ -263,7 +263,7 @@ def response_words(
     found: tuple[OneResponse, ...] | None, state: ViewState, bridge: Bridge, refused: str
 ) -> list[Any]:
     """Let responses be chosen, and say what the driver is to each."""
-    listed = [name for name in state.responses.split("|") if name]
+    listed = [name for name in state.other_responses.split("|") if name]
     names = [name for name in bridge.in_view(state).series if name != state.driver]
     picks = html.Div(
         [

@@ -26,7 +26,7 @@ from tests.app.economies import LAG, planted, workspace
 from tests.app.evidence_cases import STATE, case, noise, rates
 
 SMALL = replace(STATE, windows="1:6", shifts="-6:12")
-QUARTERS = replace(SMALL, shift=-3, pinned="2:3", peaks="0.5", responses="Prices")
+QUARTERS = replace(SMALL, shift=-3, pinned="2:3", peaks="0.5", other_responses="Prices")
 
 
 def fresh(*series, **options):

@@ -304,7 +304,7 @@ def test_a_pin_outside_the_map_is_said_and_breaks_nothing(bridge):
 
 
 def test_each_response_is_searched_as_if_it_stood_alone_and_paid_for_together(bridge):
-    state = replace(STATE, responses="Noise|Prices")
+    state = replace(STATE, other_responses="Noise|Prices")
     assert responses_of(state, bridge) == ("Prices", "Noise")
     work = WORK["responses"](state, bridge)
     assert work.plan().chunks == 2
@@ -331,12 +331,14 @@ def test_a_response_that_cannot_be_searched_says_why_and_the_others_go_on():
     money, prices, noisy = three()
     flat = replace(noisy, name="Short", values=noisy.values[:30])
     bridge = Bridge(workspace(money, prices, flat))
-    found = bridge.jobs.complete(responses_work(replace(STATE, responses="Prices|Short"), bridge))
+    found = bridge.jobs.complete(
+        responses_work(replace(STATE, other_responses="Prices|Short"), bridge)
+    )
     assert found[0].best is not None
     assert found[1].best is None
     assert found[1].refusal
     assert found[0].p_all == found[0].p
-    listed = replace(STATE, responses="Prices|Short")
+    listed = replace(STATE, other_responses="Prices|Short")
     assert found[1].refusal in str(response_words(found, listed, bridge, ""))
     assert len(response_profiles(list(found)).data) == 2
 
@@ -346,7 +348,7 @@ def test_a_response_that_cannot_be_searched_says_why_and_the_others_go_on():
     [("Nothing", "must be loaded series"), ("Money", "must not hold the driver")],
 )
 def test_responses_that_are_none_are_refused(bridge, responses, words):
-    state = replace(STATE, responses=responses)
+    state = replace(STATE, other_responses=responses)
     with pytest.raises(StateError, match=words):
         responses_of(state, bridge)
     _, _, *folds, data = answer(state, bridge, ("responses",))

@@ -23,7 +23,7 @@ OTHER_TEXT = {
     "without": "1978-03:1983-Q1",
     "left_out": "1978-03:1983-05,1990:1991",
     "pinned": "7:-12",
-    "responses": "Consumer prices|Narrow money",
+    "other_responses": "Consumer prices|Narrow money",
     "as_of": "2024-03-12",
     "aggregate": "Consumer prices",
     "trim": "24:31.5",
@@ -84,7 +84,9 @@ BY_NAME = {
         st.just(""),
         st.tuples(st.integers(1, 99), st.integers(-99, 99)).map(lambda c: f"{c[0]}:{c[1]}"),
     ),
-    "responses": st.one_of(st.just(""), st.lists(names, min_size=1, max_size=3).map("|".join)),
+    "other_responses": st.one_of(
+        st.just(""), st.lists(names, min_size=1, max_size=3).map("|".join)
+    ),
     "as_of": st.one_of(st.just(""), st.dates().map(str)),
     "aggregate": st.one_of(st.just(""), names),
     "series": st.one_of(st.just(""), names),
