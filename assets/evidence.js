@@ -58,6 +58,14 @@
     if (byId("lag-sentence")) window.dash_clientside.set_props("lag-tick", { data: Date.now() });
   }
 
+  /* A button that was pressed and made anew keeps the focus. */
+  function refocus() {
+    const { refocus: selector } = pricewake.lag;
+    if (!selector) return;
+    const button = document.querySelector(selector);
+    if (button && document.activeElement === document.body) button.focus({ preventScroll: true });
+  }
+
   function adopt(data) {
     if (!data) return window.dash_clientside.no_update;
     const page = pricewake.lag;
@@ -72,6 +80,7 @@
       if (data.figures[name] && place.closest("details").open) pricewake.theme.show(`lag-${name}`, data.figures[name]);
     }
     page.layOver(data);
+    setTimeout(refocus, 0);
     page.peaks = { cell: page.cellName(), traces: data.peaks };
     if (JSON.stringify(data.peaks) !== page.peaksShown && !page.busy()) page.showTime();
     const query = page.query();

@@ -61,6 +61,10 @@
     const at = (selector) => event.target.closest && event.target.closest(selector);
     if (event.target.id === "show-keys") showKeys();
     if (event.target.id === "close-keys" || event.target.id === "keys") byId("keys").close();
+    for (const name of ["pin", "response", "without"]) {
+      const button = at(`.folds [data-${name}]`); // it is made anew with the answer
+      if (button) pricewake.lag.refocus = `.folds [data-${name}="${CSS.escape(button.dataset[name])}"]`;
+    }
     if (at("[data-pin]")) pin(at("[data-pin]").dataset.pin);
     if (at("[data-response]")) leaveOutResponse(at("[data-response]").dataset.response);
   });

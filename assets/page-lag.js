@@ -166,7 +166,6 @@
     page.state = data.state;
     if (data.fresh) Object.assign(page, { known: null, peaks: null, closer: null, told: JSON.stringify(data.state) });
     document.querySelector(".lag-page").classList.toggle("broken", Boolean(data.error));
-    byId("lag-invented").hidden = !data.invented;
     if (data.error) {
       byId("lag-sentence").textContent = "Nothing to show for this choice.";
       byId("lag-readout").textContent = "";

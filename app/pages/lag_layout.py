@@ -87,7 +87,7 @@ def body(
                                 ("line", "fit", "least squares"),
                                 ("dash", "mark", "2-sigma ellipse"),
                                 ("diamond", "response", "mean response in slices"),
-                                ("square", "driver", "mean driver in slices"),
+                                ("square", "driver", "mean driver"),
                             ),
                         ],
                         className="view",
@@ -140,15 +140,6 @@ def _headline(shown: ViewState) -> html.Header:
             lag_evidence.verdict_place(),
             html.P(id="lag-message", className="message", role="alert"),
             as_of_line(shown),
-            html.P(
-                [
-                    "Driver or response belong to an invented economy. ",
-                    dcc.Link("Open your own files", href="/data"),
-                ],
-                id="lag-invented",
-                className="invented",
-                hidden=True,
-            ),
         ],
         className="headline",
     )

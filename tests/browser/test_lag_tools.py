@@ -13,7 +13,7 @@ from app.compute import Bridge
 from app.demo import demo_releases
 from app.lag.tools import peaks_of, two_cells
 from app.state import ViewState
-from app.words import plain, signed
+from app.words import plain, shift_words, signed
 from app.workspace import Workspace
 from tests.browser.driving import open_lag, until
 
@@ -46,6 +46,15 @@ def press(driver, *keys):
 
 def choose(driver, field, value):
     driver.find_element(By.CSS_SELECTOR, f"#field-{field} option[value='{value}']").click()
+
+
+def table(driver, fold):
+    """The rows of a fold's table, read at one moment: the words are made anew with each answer."""
+    return driver.execute_script(
+        "return [...document.querySelectorAll(`#lag-${arguments[0]}-words tbody tr`)]"
+        ".map((row) => [...row.children].map((cell) => cell.textContent))",
+        fold,
+    )
 
 
 def unfold(driver, name):
@@ -179,9 +188,10 @@ def test_who_wants_less_motion_gets_single_steps(lag):
 def test_undo_redo_and_the_browsers_back_go_by_places_of_rest(lag):
     length = lag.execute_script("return history.length")
     assert not lag.find_element(By.ID, "undo").is_enabled()
-    field = lag.find_element(By.ID, "field-shift")
-    for _ in range(6):
-        field.send_keys(Keys.ARROW_RIGHT)
+    lag.execute_script(
+        "const f = document.getElementById('field-shift'); for (let k = 25; k <= 30; k++)"
+        " { f.value = k; f.dispatchEvent(new Event('input', {bubbles: true})); }"
+    )
     until(lag, "!document.getElementById('undo').disabled")
     assert lag.execute_script("return history.length") == length + 1  # six steps, one entry
     lag.find_element(By.ID, "field-window").send_keys(Keys.ARROW_UP)
@@ -251,9 +261,10 @@ def test_peaks_are_marked_and_joined(lag, bridge):
     )
     np.testing.assert_allclose(drawn, found.height[:, 0])
     unfold(lag, "fold-peaks")
-    rows = lag.find_elements(By.CSS_SELECTOR, "#lag-peaks-words tbody tr")
+    until(lag, "document.querySelector('#lag-peaks-words table')", 60)
+    rows = table(lag, "peaks")
     assert len(rows) == found.pairs.shape[0] > 2
-    assert rows[0].text.endswith("months")
+    assert [row[2] for row in rows] == [shift_words(int(d), "month") for d in found.distance]
 
 
 def test_a_pinned_cell_is_compared_and_can_be_swapped(lag, bridge):
@@ -266,15 +277,10 @@ def test_a_pinned_cell_is_compared_and_can_be_swapped(lag, bridge):
     until(lag, "document.querySelector('#lag-compare-words table')"
                " && document.querySelector('#lag-compare .points path')", 60)  # fmt: skip
     both = two_cells(ViewState(shift=23, pinned="12:24"), bridge)
-    cells = {
-        row.find_element(By.TAG_NAME, "th").text: [
-            cell.text for cell in row.find_elements(By.TAG_NAME, "td")
-        ]
-        for row in lag.find_elements(By.CSS_SELECTOR, "#lag-compare-words tbody tr")
-    }
+    cells = {name: values for name, *values in table(lag, "compare")}
     assert cells["Shift"] == ["+24 months", "+23 months"]
     assert cells["Slope"] == [plain(one.cell.slope, 3) for one in both]
-    lag.find_element(By.CSS_SELECTOR, "[data-pin=swap]").click()
+    lag.execute_script("document.querySelector('[data-pin=swap]').click()")
     until(lag, "pricewake.lag.state.shift === 24 && pricewake.lag.state.pinned === '12:23'")
 
 
@@ -338,13 +344,10 @@ def test_the_driver_is_held_against_a_response_that_is_chosen(lag):
     unfold(lag, "fold-responses")
     button = "#lag-responses-words [data-response='Consumer prices']"
     until(lag, f'document.querySelector("{button}")', 60)
-    lag.find_element(By.CSS_SELECTOR, button).click()
+    lag.execute_script("document.querySelector(arguments[0]).click()", button)
     until(lag, "document.querySelector('#lag-responses-words table tbody td')", 120)
     until(lag, "document.querySelector('#lag-responses .lines path')")
-    row = lag.execute_script(
-        "return [...document.querySelectorAll('#lag-responses-words tbody tr > *')]"
-        ".map((cell) => cell.textContent)"
-    )
+    (row,) = table(lag, "responses")
     assert row[:3] == ["Consumer prices", "window 10, shift +22 months", "+0.79"]
     assert row[3:] == ["below .001", "below .001"]
 
