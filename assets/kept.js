@@ -21,38 +21,6 @@
     }
   }
 
-  /* An answer puts new elements in place of the old ones; the focus and the open folds stay. */
-  let focused = null;
-  const open = new Set();
-  const described = ({ id, dataset: { correct, series, act: name, file, sheet } }) =>
-    id ? `#${CSS.escape(id)}`
-      : sheet ? `[data-sheet="${CSS.escape(sheet)}"]`
-      : correct ? `[data-correct="${correct}"][data-series="${CSS.escape(series)}"]:not([data-entry])`
-        : name && file ? `[data-act="${name}"][data-file="${CSS.escape(file)}"]` : null;
-
-  document.addEventListener("focusin", ({ target }) => {
-    focused = target.closest(".data-page") ? { target, selector: described(target) } : null;
-  });
-  document.addEventListener("focusout", ({ target }) => setTimeout(() => {
-    if (focused && focused.target === target && target.isConnected && document.activeElement !== target) focused = null;
-  }, 0));
-  document.addEventListener("toggle", ({ target }) => {
-    const { stays } = target.dataset || {};
-    if (stays && target.isConnected) open[target.open ? "add" : "delete"](stays);
-  }, true);
-
-  function restore() {
-    for (const fold of document.querySelectorAll("details[data-stays]")) {
-      if (fold.seen) continue;
-      fold.seen = true;
-      if (open.has(fold.dataset.stays)) fold.open = true;
-    }
-    if (!focused || focused.target.isConnected || !focused.selector) return;
-    if (document.activeElement && document.activeElement !== document.body) return;
-    const again = document.querySelector(`.data-page ${focused.selector}`);
-    if (again) again.focus();
-  }
-
   const refresh = () => props("data-tick", { data: Date.now() });
 
   function show() {
@@ -161,7 +129,6 @@
 
   new MutationObserver((changes) => {
     for (const holder of document.querySelectorAll("[data-entry]")) build(holder);
-    restore();
     for (const { type, target } of changes) {
       if (type === "attributes" && target.tagName === "SELECT") target.value = target.dataset.value;
     }

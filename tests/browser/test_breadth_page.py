@@ -81,6 +81,7 @@ def test_a_heading_orders_the_table_and_says_so(page):
     page.find_element(By.CSS_SELECTOR, "[data-value='rank-up']").click()
     until(page, f"document.querySelector('{first}').textContent === '07 Transport'")
     assert "sort=rank-up" in page.current_url
+    until(page, "document.activeElement.dataset.value === 'rank-down'")  # the button, drawn anew
 
 
 def test_a_component_is_left_out_with_the_keyboard(page, bridge):

@@ -98,6 +98,16 @@ def test_another_series_is_read_and_views_that_it_has_not_are_hidden(page):
     assert page.find_element(By.ID, "csv-rank").is_displayed()
 
 
+def test_an_answer_leaves_open_folds_and_the_focus_where_they_were(page):
+    fold = "#reading-distribution-words details"
+    page.execute_script(f"document.querySelector('{fold} summary').click()")
+    family = Select(page.find_element(By.ID, "field-family"))
+    family.select_by_value("normal")
+    until(page, f"{DRAWN} && document.querySelector('{fold} .chosen').innerText.includes('normal')")
+    until(page, f"document.querySelector('{fold}').open")
+    until(page, "document.activeElement.id === 'field-family'")
+
+
 def test_a_number_field_sets_the_episodes(page, bridge):
     Select(page.find_element(By.ID, "field-beyond")).select_by_value("level")
     until(page, "!pricewake.plain.busy() && pricewake.plain.state.beyond === 'level'")
