@@ -162,18 +162,21 @@ def own_history_rank(rates: ArrayLike, first: int = 0) -> FloatArray:
         ``100 (below + equal / 2) / count``, the value itself among the equal ones: the rank that
         scipy.stats.percentileofscore calls "mean". nan stays nan.
     """
-    values = np.asarray(rates, dtype=np.float64)
-    wanted = values[first:]
-    ranks = np.full(wanted.shape, np.nan)
-    ordered = np.sort(values, axis=0)
-    counts = np.count_nonzero(~np.isnan(values), axis=0)
-    for k, count in enumerate(counts.tolist()):
-        column = ordered[:count, k]
-        known = ~np.isnan(wanted[:, k])
-        below = np.searchsorted(column, wanted[known, k], side="left")
-        upto = np.searchsorted(column, wanted[known, k], side="right")
-        ranks[known, k] = 50.0 * (below + upto) / max(count, 1)
-    return ranks
+    values = np.asarray(rates, dtype=np.float64).T
+    k, n = values.shape
+    order = np.argsort(values, axis=1)  # nan last
+    ordered = np.take_along_axis(values, order, axis=1)
+    place = np.broadcast_to(np.arange(n), (k, n))
+    new = np.ones((k, n + 1), dtype=bool)  # where a run of equal values begins; the end as well
+    new[:, 1:-1] = ordered[:, 1:] != ordered[:, :-1]
+    below = np.maximum.accumulate(np.where(new[:, :-1], place, 0), axis=1)
+    ends = np.where(new[:, 1:], place + 1, n)
+    upto = np.minimum.accumulate(ends[:, ::-1], axis=1)[:, ::-1]
+    counts = np.count_nonzero(~np.isnan(values), axis=1)[:, None]
+    ranks = np.empty((k, n))
+    np.put_along_axis(ranks, order, 50.0 * (below + upto) / np.maximum(counts, 1), axis=1)
+    ranks[np.isnan(values)] = np.nan
+    return np.ascontiguousarray(ranks[:, first:].T)
 
 
 def _share(score: FloatArray, values: FloatArray, weights: ArrayLike | None) -> FloatArray:

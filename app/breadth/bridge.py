@@ -204,8 +204,10 @@ def _computed(
     left_out, label = left_out_of(state, shown.names, notes)
     weighted = None
     if basket is not None:
-        measures = core_measures(state, basket, index, rates, rates_1, span, left_out, label, notes)
         shares = basket_shares(basket, span)
+        measures = core_measures(
+            state, basket, shares, index, rates, rates_1, span, left_out, label, notes
+        )
         weighted = Weighted(
             basket,
             contributions(basket, span),

@@ -18,6 +18,7 @@ MEDIAN, TRIMMED, TOTAL = "Weighted median", "Trimmed mean", "All items"
 def core_measures(
     state: ViewState,
     basket: ChainedBasket,
+    shares: FloatArray,
     index: FloatArray,
     rates: FloatArray,
     rates_1: FloatArray,
@@ -26,20 +27,16 @@ def core_measures(
     label: str,
     notes: list[str],
 ) -> dict[str, FloatArray]:
-    """Return all items, median, trimmed mean and the basket without, in percent over `span`."""
+    """Return all items, median, trimmed mean and the basket without, in percent over `span`.
+
+    `shares` are those of the basket over `span` periods.
+    """
     lower, upper = cuts(state)
     by_month = state.core == "month" and span > 1
-    changes, shares = (
-        (rates_1, basket_shares(basket, 1))
-        if by_month
-        else (
-            rates,
-            basket_shares(basket, span),
-        )
-    )
+    changes, weights = (rates_1, basket_shares(basket, 1)) if by_month else (rates, shares)
     found = {
-        MEDIAN: weighted_median(changes, shares),
-        TRIMMED: trimmed_mean(changes, shares, lower=lower, upper=upper),
+        MEDIAN: weighted_median(changes, weights),
+        TRIMMED: trimmed_mean(changes, weights, lower=lower, upper=upper),
     }
     if by_month:
         found = {name: compounded(values, span) for name, values in found.items()}

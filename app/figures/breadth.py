@@ -65,9 +65,9 @@ def contribution_history(
     `parts` is in the order of the stack; its last entry is the rest.
     """
     when = periods.to_timestamp()
-    labels = [period_label(period) for period in periods]
+    labels = np.array([period_label(period) for period in periods])
     days = (periods + 1).to_timestamp() - when
-    widths = (days.days * 86_400_000).to_list()
+    widths = np.asarray(days.days) * 86_400_000.0
     traces, key = [], []
     for place, (name, values) in enumerate(parts.items()):
         token = _part(place, len(parts))
@@ -181,7 +181,7 @@ def core_lines(
 ) -> go.Figure:
     """Draw core measures beside the rate of all items, which comes first in `measures`."""
     when = periods.to_timestamp()
-    labels = [period_label(period) for period in periods]
+    labels = np.array([period_label(period) for period in periods])
     tokens = ("response", "fit", "other", "mark", "low-2")
     traces, key = [], []
     if trend is not None:
@@ -228,7 +228,7 @@ def core_lines(
 def diffusion_lines(periods: pd.PeriodIndex, lines: dict[str, np.ndarray]) -> go.Figure:
     """Draw shares of components that rise; 50 is where rises and falls balance."""
     when = periods.to_timestamp()
-    labels = [period_label(period) for period in periods]
+    labels = np.array([period_label(period) for period in periods])
     tokens = ("ink", "fit", "mark", "other")
     figure = go.Figure(
         [
@@ -248,7 +248,6 @@ def diffusion_lines(periods: pd.PeriodIndex, lines: dict[str, np.ndarray]) -> go
             for place, (name, values) in enumerate(lines.items())
         ]
     )
-    figure.add_hline(y=50, line={"color": colour("ink"), "width": 0.7, "dash": "dot"})
     figure.update_layout(
         template=template(),
         margin={"l": 56, "r": 12, "t": 8, "b": 28},
@@ -259,6 +258,17 @@ def diffusion_lines(periods: pd.PeriodIndex, lines: dict[str, np.ndarray]) -> go
             ]
         },
         yaxis={"title": {"text": "share (0 to 100)"}, "range": [-2, 102]},
+        shapes=[
+            {
+                "type": "line",
+                "xref": "paper",
+                "x0": 0,
+                "x1": 1,
+                "y0": 50,
+                "y1": 50,
+                "line": {"color": colour("ink"), "width": 0.7, "dash": "dot"},
+            }
+        ],
     )
     return figure
 
@@ -266,7 +276,7 @@ def diffusion_lines(periods: pd.PeriodIndex, lines: dict[str, np.ndarray]) -> go
 def weight_areas(periods: pd.PeriodIndex, parts: dict[str, np.ndarray]) -> go.Figure:
     """Draw effective weights through time, stacked to 100 percent; the last part is the rest."""
     when = periods.to_timestamp()
-    labels = [period_label(period) for period in periods]
+    labels = np.array([period_label(period) for period in periods])
     traces, key = [], []
     for place, (name, values) in enumerate(parts.items()):
         token = _part(place, len(parts))
