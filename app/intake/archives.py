@@ -7,7 +7,7 @@ from collections.abc import Callable
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from app.intake.csv_files import MAX_BYTES
+from app.intake.csv_files import MAX_BYTES, refuse_size
 from app.intake.problems import IntakeError, Problem, counted, display_name, quoted, refusal
 
 if TYPE_CHECKING:
@@ -37,12 +37,7 @@ def open_archive(file: str, content: bytes) -> zipfile.ZipFile:
         It is damaged, locked, packed in another way than by deflation, has too many members, or
         would unpack to too much.
     """
-    if len(content) > MAX_BYTES:
-        raise refusal(
-            file,
-            f"a file must not be larger than {MAX_BYTES / 1024**2:g} MB,"
-            f" but this one has {len(content) / 1024**2:.1f} MB",
-        )
+    refuse_size(file, len(content))
     _refuse_directory(file, content)
     try:
         archive = zipfile.ZipFile(io.BytesIO(content))

@@ -67,6 +67,22 @@ class Sheet:
     quotes: bool = True
 
 
+def refuse_size(file: str, size: int) -> None:
+    """Refuse a file of more bytes than are read.
+
+    Raises
+    ------
+    IntakeError
+        It is too large.
+    """
+    if size > MAX_BYTES:
+        raise refusal(
+            file,
+            f"a file must not be larger than {MAX_BYTES / 1024**2:g} MB,"
+            f" but this one has {size / 1024**2:.1f} MB",
+        )
+
+
 def read_text(file: str, content: bytes) -> tuple[str, list[Problem]]:
     """Turn the bytes of a text file into text, and note the encoding where it is not UTF-8.
 
@@ -75,12 +91,7 @@ def read_text(file: str, content: bytes) -> tuple[str, list[Problem]]:
     IntakeError
         The file is too large, or is no text.
     """
-    if len(content) > MAX_BYTES:
-        raise refusal(
-            file,
-            f"a file must not be larger than {MAX_BYTES / 1024**2:g} MB,"
-            f" but this one has {len(content) / 1024**2:.1f} MB",
-        )
+    refuse_size(file, len(content))
     what = next((name for magic, name in _MAGIC if content.startswith(magic)), None)
     if what:
         raise refusal(file, f"must be {FORMATS}, but this is {what}")

@@ -218,6 +218,7 @@ def read_path(
             raise refusal(file, "must be a file, but there is none of this name")
         if not place.is_file():
             raise refusal(file, "must be a file, but this is a folder or a device")
+        csv_files.refuse_size(file, place.stat().st_size)
         with place.open("rb") as stream:
             content = stream.read(csv_files.MAX_BYTES + 1)
     except (OSError, ValueError) as error:

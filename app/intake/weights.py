@@ -34,17 +34,26 @@ def is_weight(series: Series) -> bool:
 def recognised(file: str, series: Sequence[Series]) -> tuple[Series, ...]:
     """Return the series of a file, as weights where they are weights.
 
-    Weights are at least two annual series, none negative, in a file with "weight" in its name or
-    whose rows sum to 1, 100 or 1000.
+    Weights are at least two annual series in a file with "weight" in its name, or none negative
+    and with rows that sum to 1, 100 or 1000.
+
+    Raises
+    ------
+    IntakeError
+        A weight of a file with "weight" in its name is negative; as series of their own, they
+        would take the place of the components in view.
     """
     if len(series) < 2 or all(map(is_weight, series)):
         return tuple(series)
     table = _table(series)
-    if table is None or table.min(axis=None) < 0:
+    if table is None:
         return tuple(series)
+    if "weight" in PurePath(file).stem.lower():
+        _refuse_negative(file, series)
+        return tuple(_as_weight(one) for one in series)
     sums = _sums(table).to_numpy()
     even = any(np.all(np.abs(sums / total - 1.0) <= 0.002) for total in TOTALS)
-    if not even and "weight" not in PurePath(file).stem.lower():
+    if not even or table.min(axis=None) < 0:
         return tuple(series)
     return tuple(_as_weight(one) for one in series)
 
@@ -78,14 +87,7 @@ def weight_series(
                 f" {one.frequency}",
                 column=name,
             )
-        low = np.flatnonzero(one.values < 0)
-        if low.size:
-            year = one.first.year + int(low[0])
-            raise refusal(
-                file,
-                f"a weight must not be negative, but that of {year} is {one.values[low[0]]:g}",
-                column=name,
-            )
+    _refuse_negative(file, series)
     empty = [year for year, total in _sums(_table(series)).items() if not total > 0]
     if empty:
         raise refusal(
@@ -131,6 +133,18 @@ def canonical(text: str) -> str:
             return text[:start] + header + text[start + len(line) :]
         start += len(line)
     return text
+
+
+def _refuse_negative(file: str, series: Sequence[Series]) -> None:
+    for one in series:
+        low = np.flatnonzero(one.values < 0)
+        if low.size:
+            raise refusal(
+                file,
+                f"a weight must not be negative, but that of {one.first.year + int(low[0])} is"
+                f" {one.values[low[0]]:g}",
+                column=one.name.removeprefix(PREFIX),
+            )
 
 
 def _as_weight(series: Series) -> Series:

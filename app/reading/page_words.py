@@ -12,7 +12,7 @@ from analytics.series import period_label
 from app.reading.alerts import Alert
 from app.reading.episode_words import episode_words
 from app.reading.result import Reading
-from app.reading.words import fit_words, span_words, tail_words, year_words
+from app.reading.words import fit_words, of_hundred, span_words, tail_words, year_words
 from app.words import counted, plain, signed
 
 _COLUMNS = (
@@ -303,8 +303,8 @@ def _quantiles(known: Reading) -> list[Any]:
                 html.Td(plain(p.fits[family].parameters["location"], 3)),
                 html.Td(plain(p.fits[family].parameters["scale"], 3)),
                 html.Td(plain(p.mean, 3)),
-                html.Td(f"{100 * (1 - float(p.fits[family].cdf(known.print_value))):.2g} of 100"),
-                html.Td(f"{100 * p.tail.probability:.2g} of 100"),
+                html.Td(f"{of_hundred(1 - float(p.fits[family].cdf(known.print_value)))} of 100"),
+                html.Td(f"{of_hundred(p.tail.probability)} of 100"),
             ]
         )
         for p in known.parts

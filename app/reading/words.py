@@ -126,9 +126,22 @@ def tail_words(tail: Tail, known: Reading, source: str) -> str:
         return f"{source}: none as high."
     low, high = span_words(tail.return_low, known), span_words(tail.return_high, known)
     return (
-        f"{source}: in {100 * tail.probability:.2g} of 100 {known.noun}s, once in"
+        f"{source}: in {of_hundred(tail.probability)} of 100 {known.noun}s, once in"
         f" {span_words(tail.return_period, known)} ({tail.level:.0%} interval {low} to {high})."
     )
+
+
+def of_hundred(share: float) -> str:
+    """Return how many of a hundred a share is, to two digits: ``100``, ``44``, ``0.031``.
+
+    Examples
+    --------
+    >>> of_hundred(1.0), of_hundred(0.437), of_hundred(0.000312), of_hundred(1e-9)
+    ('100', '44', '0.031', 'fewer than 0.001')
+    """
+    if 0 < 100 * share < 0.001:
+        return "fewer than 0.001"
+    return f"{100 * share:.0f}" if share >= 0.095 else f"{100 * share:.2g}"
 
 
 def span_words(periods: float, known: Reading) -> str:

@@ -9,6 +9,7 @@ import pytest
 from app.intake import csv_files
 from app.intake.reading import (
     IntakeError,
+    read_path,
     read_release,
 )
 
@@ -130,3 +131,11 @@ def test_a_span_of_centuries_for_many_series_is_refused() -> None:
     pairs = "".join(f"1000-01,S{n},1\n2999-12,S{n},2\n" for n in range(800))
     with pytest.raises(IntakeError, match="24,000 of them for 800 series"):
         read_release("a.csv", f"period,series,value\n{pairs}".encode())
+
+
+def test_a_file_on_the_disk_is_refused_by_its_own_size_before_it_is_read(tmp_path, monkeypatch):
+    monkeypatch.setattr("app.intake.csv_files.MAX_BYTES", 2**20)
+    path = tmp_path / "a.csv"
+    path.write_bytes(b"month,A\n" + b"2020-01,1\n" * 300_000)
+    with pytest.raises(IntakeError, match=r"larger than 1 MB, but this one has 2\.9 MB"):
+        read_path(path)

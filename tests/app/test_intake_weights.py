@@ -85,7 +85,6 @@ def test_a_year_left_out_has_no_row():
         ("basket.csv", b"year,Food,Energy\n2023,600,383\n", False),
         ("weights.csv", b"year,Food,Energy\n2023,600,383\n", True),
         ("weights.csv", b"month,Food,Energy\n2023-01,600,400\n2023-02,600,400\n", False),
-        ("weights.csv", b"year,Food,Energy\n2023,600,-383\n", False),
         ("weights.csv", b"year,Food\n2023,1000\n", False),
         ("output.csv", b"year,Gold,Silver\n2023,61,39\n2024,61,42\n", False),
     ],
@@ -141,3 +140,14 @@ def test_an_error_in_the_file_is_handed_on():
         weight_series("w.csv", (), [problem])
     with pytest.raises(IntakeError, match="must hold weights, but holds no series"):
         weight_series("w.csv", ())
+
+
+def test_a_negative_weight_refuses_its_file_and_hides_no_component():
+    """As series of their own, they would take the place of the components in view."""
+    content = b"year,Food,Energy\n2023,60,40\n2024,140,-40\n"
+    with pytest.raises(IntakeError) as caught:
+        read_release("weights.csv", content)
+    assert str(caught.value) == (
+        "weights.csv, column 'Energy': a weight must not be negative, but that of 2024 is -40"
+    )
+    assert [one.unit for one in read_release("shares.csv", content).series] == ["", ""]

@@ -12,9 +12,10 @@ from analytics.rates import growth_rate
 from analytics.series import Series
 from app.compute import Bridge
 from app.demo import demo_releases
+from app.intake.reading import Release
 from app.reading.answer import reading_answer
 from app.reading.bridge import chosen_series, completed_reading, goodness_work, reading
-from app.reading.words import quantities, sentence, verdict
+from app.reading.words import of_hundred, quantities, sentence, verdict
 from app.state import ViewState
 from app.workspace import Workspace
 from tests.app.economies import workspace
@@ -300,3 +301,20 @@ def test_the_answer_has_the_keys_of_the_command(bridge):
     assert len(answer["base_effect"]["history"]) == 24
     assert len(answer["base_effect"]["coming"]) == 12
     assert len(answer["what_if"]["path"]) == 24
+
+
+def test_all_equal_months_are_read_and_what_needs_variation_says_so():
+    flat = Series("Prices", pd.Period("2010-01", "M"), np.full(60, 100.0), "index")
+    known = completed_reading(ViewState(), Bridge(Workspace((Release("a.csv", (flat,), ()),))))
+    assert "did not change" in sentence(known)
+    assert "same as in all" in sentence(known)
+    assert "must vary to have a distribution" in known.refused["distribution"]
+    assert known.base is not None and known.standing is not None
+
+
+@pytest.mark.parametrize(
+    ("share", "words"),
+    [(1.0, "100"), (0.999, "100"), (0.5, "50"), (0.0949, "9.5"), (0.0951, "10"), (2e-5, "0.002")],
+)
+def test_a_share_of_a_hundred_is_never_written_with_a_power(share, words):
+    assert of_hundred(share) == words
