@@ -62,9 +62,14 @@ def combined_backtest(
         )
         weights = combination_weights(scales)
     base, kept = listed[0], rows[0]
-    every = base.forecasts[:, kept].copy()
-    every[base.row(model)] = (weights * forecasts).sum(axis=0)
-    scale, freedom = known_spread(base.outcomes[kept] - every)
+    row = base.row(model)
+    every, scale, freedom = (
+        values[:, kept].copy() for values in (base.forecasts, base.scale, base.freedom)
+    )
+    every[row] = (weights * forecasts).sum(axis=0)
+    scale[row], freedom[row] = (
+        found[0] for found in known_spread((base.outcomes[kept] - every[row])[None])
+    )
     return replace(
         base,
         origins=base.origins[kept],

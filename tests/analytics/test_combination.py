@@ -7,6 +7,7 @@ from analytics.backtest import backtest
 from analytics.backtest_scores import backtest_scores
 from analytics.combination import combination_weights, combined_backtest, combined_path
 from analytics.forecasts import PAST_MEAN, RELATION
+from analytics.intervals import error_fan
 from analytics.outlook_target import outlook_target
 from analytics.simulate import planted_pair
 
@@ -31,7 +32,10 @@ def test_equal_weights_are_the_mean(tests):
     np.testing.assert_allclose(
         found.forecasts[row], (tests["money"].forecasts[row] + tests["noise"].forecasts[row]) / 2
     )
+    fan = error_fan(found.forecasts[row, -1], found.errors(RELATION))
+    np.testing.assert_allclose(found.scale[row, -1], fan.scale)
     other = found.row(PAST_MEAN)
+    np.testing.assert_allclose(found.scale[other, -1], tests["money"].scale[other, -1])
     assert np.array_equal(found.forecasts[other], tests["money"].forecasts[other])
 
 
