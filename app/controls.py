@@ -99,7 +99,7 @@ def slider(
 
 
 def save_buttons(view: str) -> html.Div:
-    """Return the buttons of a view: its numbers as a table, and PNG, SVG and CSV to save."""
+    """Return the buttons of a view: its numbers as a table, files to save, a place in the brief."""
     buttons = [
         html.Button(
             f"Save {kind}", **{"data-save": kind.lower(), "data-view": view, "type": "button"}
@@ -107,7 +107,8 @@ def save_buttons(view: str) -> html.Div:
         for kind in ("PNG", "SVG")
     ]
     table = html.Button("Table", type="button", **{"data-table": view, "aria-expanded": "false"})
-    return html.Div([table, *buttons, _csv_link(view)], className="save")
+    kept = html.Button("Add to brief", type="button", **{"data-brief": view})
+    return html.Div([table, *buttons, _csv_link(view), kept], className="save")
 
 
 def csv_button(view: str) -> html.Div:

@@ -82,12 +82,14 @@ def guard(server: Flask, app: Dash, door: Door) -> None:
             policy["csp"] = (
                 "default-src 'none'; script-src 'self' " + " ".join(app.csp_hashes()) + "; "
                 "style-src 'self' 'unsafe-inline'; img-src 'self' data: blob:; font-src 'self'; "
-                "connect-src 'self'; base-uri 'none'; form-action 'none'; "
+                "connect-src 'self'; frame-src 'self'; base-uri 'none'; form-action 'none'; "
                 "frame-ancestors 'none'; object-src 'none'"
             )
-        response.headers["Content-Security-Policy"] = policy["csp"]
+        response.headers.setdefault(
+            "Content-Security-Policy", policy["csp"]
+        )  # a preview's is its own
         response.headers["X-Content-Type-Options"] = "nosniff"
-        response.headers["X-Frame-Options"] = "DENY"
+        response.headers.setdefault("X-Frame-Options", "DENY")
         response.headers["Cross-Origin-Opener-Policy"] = "same-origin"
         response.headers["Cross-Origin-Resource-Policy"] = "same-origin"
         response.headers["Referrer-Policy"] = "no-referrer"

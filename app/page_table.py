@@ -1,4 +1,4 @@
-"""The pages that show results, in the order of the job, with their files and their long work.
+"""The pages in the order of the job, with their files and their long work.
 
 A page added here is served, exported and offered in the brief; nothing else lists pages. One whose
 module has ``NAME`` and ``answer(state, bridge)``, as in `app.pages.plain`, needs no more.
@@ -10,13 +10,13 @@ from app.desk import exports as data_exports
 from app.lag.work import WORK
 from app.outlook import exports as outlook_exports
 from app.outlook.work import WORK as OUTLOOK_WORK
-from app.pages import breadth, data, lag, outlook, reading, scan
+from app.pages import breadth, brief, data, lag, outlook, reading, scan
 from app.reading import exports as reading_exports
 from app.reading.bridge import WORK as READING_WORK
 from app.scan import exports as scan_exports
 from app.scan.bridge import WORK as SCAN_WORK
 
-PAGES = (data, reading, breadth, lag, scan, outlook)
+PAGES = (data, reading, breadth, lag, scan, outlook, brief)
 WORKS = {
     "lag": WORK,
     "outlook": OUTLOOK_WORK,

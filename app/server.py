@@ -7,6 +7,7 @@ from dash import Dash, Input, Output
 from flask import Flask, Response, request
 
 from app import faults, frame, kept_routes, serving
+from app.brief import routes as brief_routes
 from app.compute import Bridge
 from app.desk import routes as desk_routes
 from app.guard import Door, guard
@@ -138,5 +139,6 @@ def _register_routes(server: Flask, bridge: Bridge) -> None:
         return {"done": progress.done, "total": progress.total}, 200
 
     desk_routes.register(server, bridge)
+    brief_routes.register(server, bridge)
     kept_routes.register(server, bridge)
     scan_routes.register(server, bridge)

@@ -52,7 +52,7 @@ RULES = {
     "app/": rule(
         "analytics app click dash flask flask_caching numpy pandas plotly waitress werkzeug"
     ),
-    "app/brief/": rule("analytics app dash kaleido markdown_it numpy tomli_w"),
+    "app/brief/": rule("analytics app dash flask kaleido markdown_it numpy tomli_w"),
     "app/state.py": rule(
         "analytics app.state_kinds app.breadth.fields app.lag.fields app.outlook.fields"
         " app.reading.fields app.scan.fields"

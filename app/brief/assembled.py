@@ -1,17 +1,18 @@
 """A draft worked out: every part with its words, chart and numbers, and where they came from."""
 
-from collections.abc import Callable, Mapping
-from dataclasses import dataclass
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, replace
 from typing import Any
 
 from app.brief.key_figures import KeyFigure, newest_period
 from app.brief.parts import Draft, Part
 from app.brief.series_used import Provenance, provenance
-from app.brief.sources import Shown, Source, settle, source
+from app.brief.sources import Shown, settle, source, sources
 from app.compute import Bridge
 from app.state import StateError, ViewState
 from app.words import slug
 
+OF_THE_JOB = ("reading", "breadth", "lag", "outlook")  # pages that a brief begins with
 CAUTION = (
     "What stands here describes past data. An association is not a cause, and nothing here is"
     " investment or policy advice. Official statistics and your desk's own qualified judgement come"
@@ -33,8 +34,6 @@ class Section:
         What the page says; None for words, and where `refusal` says why there is nothing.
     stem : str
         Name of its files, without ending; empty unless it is a view.
-    csv : str
-        Its numbers; empty where there are none.
     used : tuple of Provenance
         Series behind it.
     refusal : str
@@ -46,7 +45,6 @@ class Section:
     heading: str = ""
     shown: Shown | None = None
     stem: str = ""
-    csv: str = ""
     used: tuple[Provenance, ...] = ()
     refusal: str = ""
 
@@ -118,8 +116,32 @@ def questions(draft: Draft) -> dict[Question, tuple[str, ...]]:
     return {question: tuple(views) for question, views in found.items()}
 
 
-def assembled(draft: Draft, bridge: Bridge) -> Brief:
-    """Work out a draft; what cannot be shown says why, and the rest stands.
+def settled(page: str, state: ViewState, bridge: Bridge, views: Iterable[str]) -> Shown | str:
+    """Return what a page shows, or the sentence that says why it shows nothing."""
+    try:
+        return settle(state, bridge, source(page), views)
+    except ValueError as error:
+        return str(error)
+
+
+def numbers_of(section: Section, bridge: Bridge) -> str:
+    """Return the numbers of a view as CSV text.
+
+    Raises
+    ------
+    ValueError
+        There are none, in one sentence.
+    """
+    part = section.part
+    return source(part.page).export(part.view, part.state.to_query(), bridge)[1]
+
+
+def assembled(
+    draft: Draft, bridge: Bridge, known: Mapping[Question, Shown | str] | None = None
+) -> Brief:
+    """Put a draft together; what cannot be shown says why, and the rest stands.
+
+    `known` holds what `settled` gave for each of `questions`; without it, that is done here.
 
     Raises
     ------
@@ -129,10 +151,11 @@ def assembled(draft: Draft, bridge: Bridge) -> Brief:
     for part in draft.parts:
         if part.kind != "words":
             source(part.page, part.view)
-    known = {
-        (page, state): _settled(source(page), state, bridge, views)
-        for (page, state), views in questions(draft).items()
-    }
+    if known is None:
+        known = {
+            (page, state): settled(page, state, bridge, views)
+            for (page, state), views in questions(draft).items()
+        }
     series: dict[tuple[str, str], Provenance] = {}
     used: dict[Question, tuple[Provenance, ...]] = {}
     figures: list[Figured] = []
@@ -151,7 +174,7 @@ def assembled(draft: Draft, bridge: Bridge) -> Brief:
             continue
         number += part.kind == "view"
         question = part.page, part.state
-        sections.append(_section(part, number, known[question], used.get(question, ()), bridge))
+        sections.append(_section(part, number, known[question], used.get(question, ())))
     return Brief(
         draft=draft,
         title=draft.title or _usual_title(bridge),
@@ -161,17 +184,7 @@ def assembled(draft: Draft, bridge: Bridge) -> Brief:
     )
 
 
-def _settled(page: Source, state: ViewState, bridge: Bridge, views: tuple[str, ...]) -> Any:
-    """Return what a page shows, or the sentence that says why it shows nothing."""
-    try:
-        return settle(state, bridge, page, views)
-    except ValueError as error:
-        return str(error)
-
-
-def _section(
-    part: Part, number: int, found: Shown | str, used: tuple[Provenance, ...], bridge: Bridge
-) -> Section:
+def _section(part: Part, number: int, found: Shown | str, used: tuple[Provenance, ...]) -> Section:
     page = source(part.page)
     common: dict[str, Any] = {
         "part": part,
@@ -183,13 +196,7 @@ def _section(
         common["stem"] = f"{number:02d}-{slug(part.page)}-{slug(part.view)}"
     if isinstance(found, str):
         return Section(**common, refusal=found)
-    if part.kind == "verdict":
-        return Section(**common, shown=found)
-    try:
-        numbers = page.export(part.view, part.state.to_query(), bridge)[1]
-    except ValueError as error:
-        return Section(**common, shown=found, refusal=str(error))
-    return Section(**common, shown=found, csv=numbers)
+    return Section(**common, shown=found)
 
 
 def _usual_title(bridge: Bridge) -> str:
@@ -200,19 +207,26 @@ def _usual_title(bridge: Bridge) -> str:
 
 
 def prefilled(
-    bridge: Bridge, form: str = "full", given: Mapping[str, ViewState] | None = None
+    bridge: Bridge,
+    form: str = "full",
+    given: Mapping[str, ViewState] | None = None,
+    day: str = "",
 ) -> Draft:
-    """Return the usual brief: each page in the order of the job, that has something to say.
+    """Return the usual brief: each page in the order of the job that has something to say.
 
-    `given` holds the state of a page where it is not the one that the page opens with.
+    `given` holds the state of a page where it is not the one that the page opens with; `day` is
+    the date whose vintages are used, empty for the newest.
+
+    Raises
+    ------
+    StateError
+        No page has anything to say.
     """
-    from app.brief.sources import LEADING, sources
-
     parts: list[Part] = []
     for name, page in sources().items():
-        if name not in LEADING and name != "outlook":
+        if name not in OF_THE_JOB:
             continue
-        state = (given or {}).get(name) or opening(name, bridge)
+        state = (given or {}).get(name) or opening(name, bridge, day)
         try:
             page.show(state, bridge, ())
         except ValueError:
@@ -225,12 +239,12 @@ def prefilled(
     return Draft(form=form, parts=tuple(parts))
 
 
-def opening(page: str, bridge: Bridge) -> ViewState:
+def opening(page: str, bridge: Bridge, day: str = "") -> ViewState:
     """Return the state that a page opens with, its series named."""
-    view = bridge.workspace.as_of()
-    usual = view.opening_state()
-    make: dict[str, Callable[[], ViewState]] = {
-        "reading": lambda: ViewState(series=usual.response if view.series else ""),
-        "breadth": ViewState,
-    }
-    return make.get(page, lambda: usual)()
+    view = bridge.workspace.as_of(day)
+    usual = replace(view.opening_state(), as_of=day)
+    if page == "breadth":
+        return ViewState(as_of=day)
+    if page == "reading":
+        return ViewState(series=usual.response if view.series else "", as_of=day)
+    return usual

@@ -12,14 +12,22 @@ from dataclasses import dataclass, field
 from pathlib import Path
 
 from app.brief import chromium
-from app.brief.assembled import Brief, Section, assembled, questions
+from app.brief.assembled import (
+    Brief,
+    Question,
+    Section,
+    assembled,
+    numbers_of,
+    questions,
+    settled,
+)
 from app.brief.charts import as_picture
 from app.brief.document import document
-from app.brief.folder import LISTED, RECIPE
+from app.brief.folder import RECIPE
 from app.brief.parts import PAPERS, Draft
 from app.brief.pictures import Pictures, missing, png_with, svg_with
-from app.brief.recipe import Comparison, Recipe, compared, csv_files, recipe_text
-from app.brief.sources import settle, source
+from app.brief.recipe import Comparison, Recipe, compared, recipe_text
+from app.brief.sources import Shown, source
 from app.compute import Bridge
 from app.places import software_version
 from app.workspace import today
@@ -30,32 +38,44 @@ _ZIP_DATE = (1980, 1, 1, 0, 0, 0)
 
 @dataclass
 class Building:
-    """A brief that is being made; `steps` is what is left to do, as words and an act."""
+    """A brief that is being made.
+
+    Attributes
+    ----------
+    draft, bridge, pictures, before : Draft, Bridge, Pictures, Recipe or None
+        What to make, from what, with which browser, and what it is held against.
+    numbers, images : bool
+        Whether CSV files, and pictures and PDF, are made; a preview needs neither.
+    paper : str
+        A key of `PAPERS`.
+    steps : list
+        What is left to do: words and an act.
+    files, csv : dict
+        The files so far, and the text of those that hold numbers.
+    said : list of str
+        Sentences on what could not be done.
+    """
 
     draft: Draft
     bridge: Bridge
     pictures: Pictures
     before: Recipe | None = None
+    numbers: bool = True
     images: bool = True
     paper: str = "a4"
     steps: list[tuple[str, Callable[[], None]]] = field(default_factory=list)
     done: int = 0
+    known: dict[Question, Shown | str] = field(default_factory=dict)
     brief: Brief | None = None
     since: Comparison | None = None
     files: dict[str, bytes] = field(default_factory=dict)
+    csv: dict[str, str] = field(default_factory=dict)
     said: list[str] = field(default_factory=list)
 
     def __post_init__(self) -> None:
-        for (page, state), views in questions(self.draft).items():
-            title = source(page).title
-
-            def work(page: str = page, state: object = state, views: object = views) -> None:
-                try:
-                    settle(state, self.bridge, source(page), views)  # type: ignore[arg-type]
-                except ValueError:  # said where the part stands
-                    return
-
-            self.steps.append((f"Working out {title}", work))
+        for question, views in questions(self.draft).items():
+            title = source(question[0]).title
+            self.steps.append((f"Working out {title}", self._work(question, views)))
         self.steps.append(("Putting it together", self._assemble))
 
     @property
@@ -76,23 +96,41 @@ class Building:
         while self.steps:
             self.step()
 
+    def _work(self, question: Question, views: tuple[str, ...]) -> Callable[[], None]:
+        def act() -> None:
+            self.known[question] = settled(*question, self.bridge, views)
+
+        return act
+
     def _assemble(self) -> None:
-        brief = assembled(self.draft, self.bridge)
-        self.brief = brief
-        self.since = compared(self.before, brief) if self.before else None
-        self.files |= {name: text.encode() for name, text in csv_files(brief).items()}
+        brief = self.brief = assembled(self.draft, self.bridge, self.known)
         self.said += brief.refusals
-        drawn = [each for each in brief.sections if each.chart is not None]
-        if self.images:
-            lacking = missing()
-            if lacking:
-                self.said.append(lacking)
-            else:
-                self.steps += [(f"Drawing {each.heading}", self._draw(each)) for each in drawn]
+        views = [each for each in brief.sections if each.stem and each.shown is not None]
+        if self.numbers:
+            self.steps += [(f"Numbers of {each.heading}", self._count(each)) for each in views]
+        lacking = missing() if self.images else ""
+        if lacking:
+            self.said.append(lacking)
+        elif self.images:
+            self.steps += [
+                (f"Drawing {each.heading}", self._draw(each))
+                for each in views
+                if each.chart is not None
+            ]
         self.steps.append(("Writing the page", self._write))
         if self.images:
             self.steps.append(("Printing the PDF", self._print))
-        self.steps.append(("Writing the recipe", self._close))
+        if self.numbers:
+            self.steps.append(("Writing the recipe", self._close))
+
+    def _count(self, section: Section) -> Callable[[], None]:
+        def act() -> None:
+            try:
+                self.csv[f"{VIEWS}/{section.stem}.csv"] = numbers_of(section, self.bridge)
+            except ValueError as error:
+                self.said.append(f"{section.page}, {section.heading}, has no numbers: {error}")
+
+        return act
 
     def _draw(self, section: Section) -> Callable[[], None]:
         def act() -> None:
@@ -114,7 +152,7 @@ class Building:
                 svg = self.pictures.drawn(figure, "svg")
             except chromium.NoChromiumError as error:
                 self.said.append(str(error))
-                self.images = False  # the rest would fail as well
+                self.images = False  # the others would fail as well
                 return
             self.files[f"{VIEWS}/{section.stem}.png"] = png_with(png, {"Title": title, **notes})
             self.files[f"{VIEWS}/{section.stem}.svg"] = svg_with(svg, title, notes)
@@ -122,6 +160,10 @@ class Building:
         return act
 
     def _write(self) -> None:
+        assert self.brief is not None
+        self.files |= {name: text.encode() for name, text in self.csv.items()}
+        if self.before is not None:
+            self.since = compared(self.before, self.brief, self.csv)
         self.files[PAGE] = self._page().encode()
 
     def _page(self, paper: str = "") -> str:
@@ -141,7 +183,7 @@ class Building:
     def _close(self) -> None:
         assert self.brief is not None
         names = [PAGE, *sorted(self.files.keys() - {PAGE})]
-        text = recipe_text(self.brief, {LISTED: names})
+        text = recipe_text(self.brief, self.csv, names)
         self.files = {PAGE: self.files[PAGE], RECIPE: text.encode(), **self.files}
 
 

@@ -18,19 +18,21 @@ HEIGHTS = {  # pixels in the column, by page and view
     "breadth strip": 420,
     "reading distribution": 320,
 }
+NARROW = 20  # letters beside a small chart
 CLEAR = "rgba(0,0,0,0)"
-USUAL, SMALL = 262, 172  # of other views, and of any view on one page
+USUAL, SMALL = 262, 154  # of other views, and of any view on one page
+SMALL_HEIGHTS = {"breadth contributions": 180, "lag surface": 168}
 SIZES = {"lag surface": (1100, 760), "lag scatter": (900, 860), "lag overlay": (1200, 560)}
 PICTURE = (1000, 680)
-CHART_OPTIONS = {**CONFIG, "responsive": True}
+CHART_OPTIONS = {**CONFIG, "responsive": False}  # drawn anew when the column changes
 
 
 def in_column(chart: Mapping[str, Any], name: str, *, small: bool = False) -> dict[str, Any]:
     """Return a chart for the column of the brief; `name` is page and view."""
     figure = deepcopy(dict(chart))
     layout = figure["layout"]
-    layout["height"] = SMALL if small else HEIGHTS.get(name, USUAL)
-    layout["autosize"] = True
+    layout["height"] = SMALL_HEIGHTS.get(name, SMALL) if small else HEIGHTS.get(name, USUAL)
+    layout["autosize"] = False
     layout.pop("width", None)
     layout.update(paper_bgcolor=CLEAR, plot_bgcolor=CLEAR)  # the page shows, white when printed
     keyed = bool((layout.get("meta") or {}).get("key"))
@@ -45,6 +47,8 @@ def in_column(chart: Mapping[str, Any], name: str, *, small: bool = False) -> di
         for key, axis in layout.items():
             if key.startswith(("xaxis", "yaxis")) and axis.get("title"):
                 axis["title"] = {**axis["title"], "font": {"size": 9}}
+                if key.startswith("yaxis"):
+                    axis["title"]["text"] = _parted(axis["title"]["text"])
         layout["showlegend"] = False
         margin = layout.setdefault("margin", {})
         margin["t"] = min(margin.get("t", 8), 8)
@@ -100,6 +104,13 @@ def as_picture(
         layout["legend"] = _legend()
     layout.update(width=width, height=height, autosize=False)
     return figure
+
+
+def _parted(title: str) -> str:
+    """Return an axis title on two lines where one is too long for a small chart."""
+    if len(title) <= NARROW or "<" in title:
+        return title
+    return "<br>".join(textwrap.wrap(title, max(NARROW, len(title) // 2 + 2)))
 
 
 def _legend() -> dict[str, Any]:

@@ -267,11 +267,12 @@ def _provenance(series: Sequence[Provenance], small: bool) -> str:
         return f'<p class="provenance">Numbers from: {said}.</p>'
     body = "".join(
         f'<tr><th scope="row"><bdi>{safe(name)}</bdi></th><td>{safe(kind)}</td>'
-        f'<td>{safe(source)}</td><td>{safe(file)}</td><td class="span">{safe(span)}</td>'
-        f'<td class="mark">{safe(mark)}</td><td>{_dated(day)}</td></tr>'
+        f"<td>{safe(source if file in source else f'{source}; {file}')}</td>"
+        f'<td class="span">{safe(span)}</td><td class="mark">{safe(mark)}</td>'
+        f"<td>{_dated(day)}</td></tr>"
         for name, kind, source, file, span, mark, day in rows
     )
-    titles = ("Series", "Kind", "Source", "File", "Span", "Fingerprint", "Vintage of")
+    titles = ("Series", "Kind", "Source and file", "Span", "Fingerprint", "Vintage of")
     head = "".join(f'<th scope="col">{text}</th>' for text in titles)
     return f"""<section class="provenance">
 <h2>Where the numbers come from</h2>

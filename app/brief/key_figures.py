@@ -9,6 +9,9 @@ from analytics.series import period_label
 from app.breadth.bridge import breadth
 from app.compute import Bridge, noun
 from app.lag.evidence import completed
+from app.outlook.answer import LEVEL
+from app.outlook.bridge import outlook
+from app.outlook.words import best_benchmark, rate_words
 from app.reading.bridge import reading
 from app.reading.words import quantities
 from app.state import ViewState
@@ -137,10 +140,40 @@ def _lag(state: ViewState, bridge: Bridge) -> tuple[KeyFigure, ...]:
     return tuple(found)
 
 
+def _outlook(state: ViewState, bridge: Bridge) -> tuple[KeyFigure, ...]:
+    known = outlook(state, bridge)
+    found, unit = known.found, "%"
+    if known.path is None or known.fan is None:
+        return ()
+    words = rate_words(found, state.target)
+    place = min(found.ahead, known.reach) - 1
+    when = period_label(known.periods[place])
+    low, high = known.fan.band(LEVEL)
+    figures = [
+        KeyFigure(
+            "implied", f"implied {words}, {when}", unit, float(known.fan.centre[place]), "+1"
+        ),
+        KeyFigure("low", f"low end of {LEVEL:.0%}, {when}", unit, float(low[place]), "+1"),
+        KeyFigure("high", f"high end of {LEVEL:.0%}, {when}", unit, float(high[place]), "+1"),
+    ]
+    if known.scores is not None:
+        ahead = min(found.ahead, known.scores.ahead.size)
+        benchmark = best_benchmark(known.scores, ahead)
+        row = known.scores.benchmarks.index(benchmark)
+        ratio = float(known.scores.ratio[row, ahead - 1])
+        label = f"past errors {ahead} {found.noun}s ahead, over those of {benchmark}"
+        figures.append(KeyFigure("ratio", label, "times", ratio, "2"))
+    if known.gap is not None:
+        gap = float(known.gap.gap[-1])
+        figures.append(KeyFigure("gap", "observed less expected, newest", "points", gap, "+2"))
+    return tuple(figures)
+
+
 KEY_FIGURES: dict[str, Callable[[ViewState, Bridge], tuple[KeyFigure, ...]]] = {
     "reading": _reading,
     "breadth": _breadth,
     "lag": _lag,
+    "outlook": _outlook,
 }  # page name -> figures; a page that is not here has none
 
 

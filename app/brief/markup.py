@@ -36,7 +36,10 @@ _KEPT = {
 }
 _CLASSES = re.compile(r"[\w -]*")
 _STYLE = re.compile(r"var\(--[\w-]+\)|#[0-9A-Fa-f]{6}|-?[0-9.]+(%|px|rem|em)?|inline-block|block")
-_DOING = re.compile(r"(?:[.;] *| *)\b[Cc]hoose (?:one|others|another|components)\b[^.]*(?=\.)")
+_DOING = re.compile(  # what to do on a page: nothing can be done on paper
+    r"(?:[.;] *| *)\b[Cc]hoose (?:one|others|another|components)\b[^.]*(?=\.)"
+    r"| *[^.]*\bcan be taken out here\b[^.]*\."
+)
 _TURNING = re.compile("[\u061c\u200e\u200f\u202a-\u202e\u2066-\u2069]")
 
 
@@ -71,7 +74,8 @@ def still(part: Any) -> str:
     if kind not in _KEPT:
         return ""
     tag, text = _KEPT[kind], still(inside)
-    if not text and tag in ("p", "div", "ul", "dl", "h4"):
+    sign = "sign" in str(getattr(part, "className", "")).split()
+    if not text and not sign and tag in ("p", "div", "ul", "ol", "li", "dl", "h4", "span"):
         return ""
     return f"<{tag}{_attributes(part)}>{text}</{tag}>"
 

@@ -6,7 +6,7 @@ from typing import Any
 
 from app.state import StateError, ViewState
 
-FORMS = {"full": "full: every part, one below the other", "one-page": "one page"}
+FORMS = {"full": "in full", "one-page": "on one page"}
 PAPERS = {"a4": "A4", "letter": "letter"}  # as a style sheet calls them
 KINDS = ("verdict", "view", "words")
 MOST_PARTS, MOST_LETTERS, LONGEST_TITLE = 100, 20_000, 200

@@ -3,7 +3,7 @@
 import hashlib
 import platform
 import tomllib
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, fields
 from importlib.metadata import PackageNotFoundError, version
 from typing import Any
@@ -12,6 +12,7 @@ from urllib.parse import parse_qsl, urlencode
 import numpy as np
 
 from app.brief.assembled import Brief, Figured
+from app.brief.folder import LISTED
 from app.brief.key_figures import KeyFigure
 from app.brief.parts import Draft, read_draft
 from app.brief.series_used import Provenance
@@ -21,7 +22,7 @@ from app.places import software_version
 from app.state import ViewState, kind_of
 
 FORMAT = 1
-MOST_BYTES = 4 * 2**20
+MOST_BYTES = 2**20
 LIBRARIES = ("numpy", "pandas", "scipy", "statsmodels", "plotly")
 
 
@@ -74,8 +75,11 @@ class Comparison:
     figures: tuple[Change, ...]
 
 
-def recipe_text(brief: Brief, more: Mapping[str, Any] | None = None) -> str:
-    """Write the recipe of a brief as TOML, `more` after its title; equal briefs, equal texts."""
+def recipe_text(brief: Brief, numbers: Mapping[str, str], files: Sequence[str] = ()) -> str:
+    """Write the recipe of a brief as TOML; equal briefs give equal texts.
+
+    `numbers` holds the CSV files by name, and `files` is every file beside the recipe.
+    """
     import tomli_w
 
     parts = []
@@ -92,7 +96,7 @@ def recipe_text(brief: Brief, more: Mapping[str, Any] | None = None) -> str:
             "format": FORMAT,
             "title": brief.draft.title,
             "form": brief.draft.form,
-            **(more or {}),
+            LISTED: list(files),
             "versions": versions(),
             "part": parts,
             "series": [vars(one) for one in brief.series],
@@ -100,18 +104,11 @@ def recipe_text(brief: Brief, more: Mapping[str, Any] | None = None) -> str:
                 {"page": each.page, "state": each.state, **vars(each.figure)}
                 for each in brief.figures
             ],
-            "file": [
-                {"name": name, "sha256": sum_of(text)} for name, text in csv_files(brief).items()
-            ],
+            "file": [{"name": name, "sha256": sum_of(text)} for name, text in numbers.items()],
             "usual": {item.name: item.default for item in fields(ViewState)},
         },
         multiline_strings=False,
     )
-
-
-def csv_files(brief: Brief) -> dict[str, str]:
-    """Return the files of numbers: name in the folder to text."""
-    return {f"views/{each.stem}.csv": each.csv for each in brief.sections if each.csv}
 
 
 def sum_of(text: str) -> str:
@@ -225,11 +222,11 @@ def missing_series(recipe: Recipe, bridge: Bridge) -> tuple[str, ...]:
     return tuple(dict.fromkeys(one.name for one in recipe.series if one.name not in there))
 
 
-def compared(recipe: Recipe, brief: Brief) -> Comparison:
-    """Hold a brief against the recipe that it was made from."""
+def compared(recipe: Recipe, brief: Brief, numbers: Mapping[str, str]) -> Comparison:
+    """Hold a brief, and its CSV files where they are made, against the recipe it came from."""
     said = [*_data_lines(recipe, brief), *_version_lines(recipe)]
-    made = {name: sum_of(text) for name, text in csv_files(brief).items()}
-    if recipe.sums and not said:
+    made = {name: sum_of(text) for name, text in numbers.items()}
+    if made and not said:
         other = [name for name, mark in recipe.sums.items() if made.get(name) != mark]
         if other:
             said.append(
@@ -247,9 +244,9 @@ def compared(recipe: Recipe, brief: Brief) -> Comparison:
     return Comparison(tuple(said), tuple(figures))
 
 
-def same_files(recipe: Recipe, brief: Brief) -> tuple[int, int]:
+def same_files(recipe: Recipe, numbers: Mapping[str, str]) -> tuple[int, int]:
     """Return how many files of numbers are the same byte for byte as last time, and of how many."""
-    made = {name: sum_of(text) for name, text in csv_files(brief).items()}
+    made = {name: sum_of(text) for name, text in numbers.items()}
     return sum(made.get(name) == mark for name, mark in recipe.sums.items()), len(recipe.sums)
 
 

@@ -7,6 +7,7 @@ from analytics.series import Series, period_code
 from app.breadth.bridge import breadth
 from app.compute import Bridge
 from app.intake.weights import PREFIX, is_weight
+from app.outlook.work import other_drivers
 from app.reading.bridge import chosen_series
 from app.scan.bridge import question
 from app.scan.economies import series_name
@@ -67,6 +68,12 @@ def _pair(state: ViewState, bridge: Bridge) -> tuple[Series, ...]:
     return tuple(loaded[name] for name in (state.driver, state.response) if name in loaded)
 
 
+def _outlook(state: ViewState, bridge: Bridge) -> tuple[Series, ...]:
+    loaded = bridge.in_view(state).as_read
+    others = tuple(loaded[name] for name in other_drivers(state) if name in loaded)
+    return (*_pair(state, bridge), *others)
+
+
 def _reading(state: ViewState, bridge: Bridge) -> tuple[Series, ...]:
     return (bridge.in_view(state).as_read[chosen_series(state, bridge).name],)
 
@@ -98,4 +105,5 @@ SERIES_USED: dict[str, Callable[[ViewState, Bridge], tuple[Series, ...]]] = {
     "breadth": _breadth,
     "lag": _pair,
     "scan": _scan,
+    "outlook": _outlook,
 }  # page name -> series; of a page that is not here, driver and response

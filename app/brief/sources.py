@@ -24,6 +24,7 @@ LEADING = {  # views that a brief begins with, the first one on one page; else e
     "breadth": ("contributions", "history", "core", "diffusion"),
     "lag": ("surface", "scatter", "overlay", "profile", "episodes"),
     "scan": (),  # long work; there for who chooses it
+    "outlook": ("fan", "backtest", "coverage", "gap"),
 }
 
 
@@ -94,11 +95,12 @@ def sources() -> dict[str, Source]:
 
     found = {}
     for page in PAGES:
-        name = getattr(page, "NAME", page.PATH.strip("/"))
+        name = _name(page)
         if page is lag:
             views, show = lag_source.VIEWS, _of_lag
         elif hasattr(page, "answer") and hasattr(page, "PLACES"):
-            views, show = _headings(page), _of_plain(page)
+            laid = _laid_out(page)
+            views, show = {view: one.heading for view, one in laid.items()}, _of_plain(page)
         else:
             continue
         found[name] = Source(
@@ -132,6 +134,10 @@ def source(page: str, view: str = "") -> Source:
     return known[page]
 
 
+def _name(page: ModuleType) -> str:
+    return str(getattr(page, "NAME", page.PATH.strip("/")))
+
+
 def _of_lag(state: ViewState, bridge: Bridge, wanted: tuple[str, ...]) -> Shown:
     return Shown(**lag_source.shown(state, bridge, wanted))
 
@@ -140,8 +146,8 @@ def _of_lag(state: ViewState, bridge: Bridge, wanted: tuple[str, ...]) -> Shown:
 def _of_plain(page: ModuleType) -> Callable[[ViewState, Bridge, tuple[str, ...]], Shown]:
     def show(state: ViewState, bridge: Bridge, _wanted: tuple[str, ...]) -> Shown:
         found = page.answer(state, bridge)
-        views = _headings(page)
-        of_views = {f"{view}-words" for view in views} | set(views)
+        views = _laid_out(page)
+        of_views = {place for view in views.values() for place in view.places}
         of_views |= set(getattr(page, "SCREEN_ONLY", ()))
         return Shown(
             state=found.state,
@@ -151,8 +157,8 @@ def _of_plain(page: ModuleType) -> Callable[[ViewState, Bridge, tuple[str, ...]]
             charts={name: _read(chart) for name, chart in found.charts.items()},
             subtitles=found.subtitles,
             words={
-                view: [found.words.get(f"{view}-words", []), found.words.get(view, [])]
-                for view in views
+                name: [found.words.get(place, []) for place in view.places]
+                for name, view in views.items()
             },
             notes=tuple(
                 found.words[place]
@@ -165,25 +171,35 @@ def _of_plain(page: ModuleType) -> Callable[[ViewState, Bridge, tuple[str, ...]]
     return show
 
 
+@dataclass(frozen=True)
+class _LaidOut:
+    """The heading of a view and the places of words in its section."""
+
+    heading: str
+    places: tuple[str, ...]
+
+
 def _read(chart: Any) -> dict[str, Any]:
     found: dict[str, Any] = json.loads(chart if isinstance(chart, str) else chart.to_json())
     return found
 
 
 @lru_cache
-def _headings(page: ModuleType) -> Mapping[str, str]:
-    """Return the views of a page and the heading of each, as its layout has them."""
+def _laid_out(page: ModuleType) -> Mapping[str, _LaidOut]:
+    """Return the views of a page as its layout has them: a section each, with a heading."""
     from app.workspace import Workspace
 
-    laid = page.layout("", Bridge(Workspace()))
     found = {}
-    for part in _within(laid):
-        if "view-head" in str(getattr(part, "className", "")).split():
-            props = [each.to_plotly_json()["props"] for each in _within(part)]
-            named = [p["data-csv"] for p in props if "data-csv" in p]
-            words = [p["children"] for p in props if isinstance(p.get("children"), str)]
-            if named and words:
-                found[named[0]] = words[0]
+    for section in _within(page.layout("", Bridge(Workspace()))):
+        if section._type != "Section":
+            continue
+        inside = [each.to_plotly_json()["props"] for each in _within(section)]
+        views = [props["data-csv"] for props in inside if "data-csv" in props]
+        heads = [part.children for part in _within(section) if part._type == "H2"]
+        if views and heads and isinstance(heads[0], str):
+            ids = {props.get("id") for props in inside}
+            places = tuple(p for p in page.PLACES if f"{_name(page)}-{p}" in ids)
+            found[views[0]] = _LaidOut(heads[0], places)
     return found
 
 

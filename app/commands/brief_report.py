@@ -108,7 +108,7 @@ def lines(building: Building, folder: Path) -> list[str]:
     found += [f"{text[:1].upper()}{text[1:]}." for text in building.said]
     if before is None or since is None:
         return found
-    same, of = same_files(before, brief)
+    same, of = same_files(before, building.csv)
     found.append(
         f"Since last time: {same} of {counted(of, 'file')} of numbers the same to the byte."
     )
