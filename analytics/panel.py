@@ -1,5 +1,6 @@
 """Many pairs of many economies: each searched by itself, and p-values that pay for all of them."""
 
+from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 
@@ -81,8 +82,8 @@ def panel_result(scans: Sequence[PairScan]) -> PanelScan:
     """
     if not scans:
         raise ValueError("a scan must have at least one pair, but got none")
-    names = [scan.names for scan in scans]
-    twice = next((name for name in names if names.count(name) > 1), None)
+    counts = Counter(scan.names for scan in scans)
+    twice = next((name for name, count in counts.items() if count > 1), None)
     if twice is not None:
         raise ValueError(f"pairs must have different names, but got {twice!r} twice")
     p = np.array([scan.p for scan in scans])

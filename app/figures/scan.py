@@ -29,12 +29,12 @@ def surface_maps(
     """
     across = min(6, max(1, math.ceil(math.sqrt(1.5 * len(surfaces)))))
     down = max(1, math.ceil(len(surfaces) / across))
-    figure = go.Figure()
-    layout: dict[str, object] = {}
+    traces: list[go.Heatmap | go.Scatter] = []
+    annotations, layout = [], {}
     for place, surface in enumerate(surfaces):
         row, column = divmod(place, across)
         name = "" if place == 0 else str(place + 1)
-        figure.add_trace(
+        traces.append(
             go.Heatmap(
                 x=surface.shifts,
                 y=surface.windows,
@@ -65,21 +65,23 @@ def surface_maps(
             "title": {"text": "window (months)"} if column == 0 else {},
         }
         title, under = (escape(text, False) for text in (_cut(titles[place][0]), titles[place][1]))
-        figure.add_annotation(
-            text=f"<b>{title}</b><br>{under}",
-            x=left,
-            y=top,
-            xref="paper",
-            yref="paper",
-            xanchor="left",
-            yanchor="bottom",
-            align="left",
-            showarrow=False,
-            font={"size": 10},
+        annotations.append(
+            {
+                "text": f"<b>{title}</b><br>{under}",
+                "x": left,
+                "y": top,
+                "xref": "paper",
+                "yref": "paper",
+                "xanchor": "left",
+                "yanchor": "bottom",
+                "align": "left",
+                "showarrow": False,
+                "font": {"size": 10},
+            }
         )
         if best[place] is not None:
             window, shift = best[place] or (0, 0)
-            figure.add_trace(
+            traces.append(
                 go.Scatter(
                     x=[shift],
                     y=[window],
@@ -96,13 +98,14 @@ def surface_maps(
                     yaxis=f"y{name}",
                 )
             )
-    figure.update_layout(
-        template=template(),
-        margin={"l": 40, "r": 8, "t": 40, "b": 40},
-        meta={"stamp": stamp, "size": [max(800, 90 + 185 * across), 210 + 135 * down]},
-        **layout,
-    )
-    return figure
+    size = [max(800, 90 + 185 * across), 210 + 135 * down]
+    layout |= {
+        "template": template(),
+        "margin": {"l": 40, "r": 8, "t": 40, "b": 40},
+        "meta": {"stamp": stamp, "size": size},
+        "annotations": annotations,
+    }
+    return go.Figure(traces, layout)
 
 
 def shift_bars(bins: Sequence[Bin], width: int, unit: str) -> go.Figure:

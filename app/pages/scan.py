@@ -20,7 +20,6 @@ from app.scan.words import (
     average_words,
     map_words,
     notes,
-    noun,
     sentence,
     shift_words_of,
     verdict,
@@ -110,7 +109,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
     asked = known.question
     waiting = known.panel is None
     held = waiting and len(asked.pairs) > MANY and state.begin == "no"
-    unit = noun(asked)
+    unit = asked.noun
     surfaces, titles, best, stamp = map_chart_parts(known)
     charts: dict[str, Any] = {}
     words: dict[str, Any] = {
@@ -122,7 +121,10 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
         "averages-words": average_words(known),
     }
     if surfaces:
-        charts["surfaces"] = figures.surface_maps(surfaces, titles, best, stamp)
+        charts["surfaces"] = bridge.memory.once(
+            f"scan-maps:{stamp}",
+            lambda: figures.surface_maps(surfaces, titles, best, stamp).to_json(),
+        )
         words["maps"] = map_list(known, drawn_pairs(known), best, stamp)
     if known.panel is not None:
         width, bins = shift_bins(known)

@@ -7,7 +7,7 @@ from dash import dcc, html
 from analytics.panel import PanelPair
 from app.scan.bridge import Scan
 from app.scan.league import TOP_ROWS, LeagueRow, lag_address, league
-from app.scan.words import map_label, noun, pair_words, waiting_words
+from app.scan.words import map_label, pair_words, waiting_words
 from app.words import p_words, plain, runs_words, signed
 
 COLUMNS = (
@@ -147,7 +147,7 @@ def _row(row: LeagueRow, known: Scan) -> html.Tr:
         [
             html.Th(name, scope="row"),
             *[html.Td(number, className="numeric") for number in numbers],
-            html.Td(fits, title=f"shifts in {noun(known.question)}s"),
+            html.Td(fits, title=f"shifts in {known.question.noun}s"),
             share,
         ],
         className="held" if row.found else "not-held",

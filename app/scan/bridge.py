@@ -1,7 +1,9 @@
 """From a state to the pairs of a scan, and to what came of it."""
 
 import hashlib
+from collections import Counter
 from dataclasses import dataclass, replace
+from functools import cached_property
 from typing import Any
 from urllib.parse import urlencode
 
@@ -15,7 +17,7 @@ from analytics.panel import (
     panel_result,
     refused_scan,
 )
-from analytics.series import PERIODS_PER_YEAR, Pair, period_code
+from analytics.series import PERIOD_NOUN, PERIODS_PER_YEAR, Pair, period_code
 from app.compute import Bridge, grid
 from app.jobs import Work
 from app.places import software_version
@@ -68,6 +70,17 @@ class Question:
     def chunks(self) -> int:
         """Pairs to be searched: one a chunk."""
         return len(self.pairs)
+
+    @cached_property
+    def noun(self) -> str:
+        """Month, quarter or year where all pairs agree, else period."""
+        found = {PERIOD_NOUN[one.pair.driver.frequency] for one in self.pairs}
+        return found.pop() if len(found) == 1 else "period"
+
+    @cached_property
+    def pairs_of(self) -> Counter[str]:
+        """How many pairs each economy has."""
+        return Counter(economy for economy, _, _ in self.roles.pairs)
 
     def result(self, scans: list[PairScan]) -> PanelScan:
         """Put the searched pairs, in any order, and the refused ones together, as in the files."""

@@ -10,7 +10,7 @@ from app.places import software_version
 from app.scan.bridge import Scan, scan, scan_work
 from app.scan.league import drawn_pairs
 from app.scan.result_file import COLUMNS, row
-from app.scan.words import noun, sentence
+from app.scan.words import sentence
 from app.state import StateError, ViewState
 
 Rows = Iterable[Sequence[Any]]
@@ -102,7 +102,7 @@ def _cells(pairs: Iterable[Any]) -> Iterator[Sequence[Any]]:
 def _shifts(known: Scan) -> Rows:
     assert known.panel is not None
     yield ("economy", "driver", "response", "shift", "unit", "p_scan", "p_holm", "found")
-    panel, unit = known.panel, noun(known.question)
+    panel, unit = known.panel, known.question.noun
     by_holm = known.question.state.correction == "holm"
     for one, p_scan, p_holm in zip(
         panel.pairs, panel.p_scan.tolist(), panel.p_holm.tolist(), strict=True

@@ -1,19 +1,30 @@
 """The pairs of a scan in the order asked for, and those whose maps are drawn."""
 
 import hashlib
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from typing import Any
 
 from analytics.long_averages import LongAverages
-from analytics.panel import LEVEL, PairScan, PanelPair, panel_surface
+from analytics.panel import LEVEL, PairScan, PanelPair, pair_fingerprint, panel_surface
 from analytics.surface import LagSurface
 from app.scan.bridge import Scan
 from app.scan.economies import series_name
-from app.scan.words import map_label, noun, pair_words
+from app.scan.words import map_label, pair_words
 from app.state import ViewState
 
 TOP_ROWS = 40
 MOST_MAPS = 36
+CARRIED = (  # fields that the Lag page shares with a scan
+    "growth",
+    "first",
+    "last",
+    "season",
+    "meet",
+    "windows",
+    "shifts",
+    "surrogates",
+    "as_of",
+)
 
 
 @dataclass(frozen=True)
@@ -71,30 +82,14 @@ def lag_address(scan: PairScan | PanelPair, state: ViewState) -> str:
 
     The pair's own seed goes along, so that the search there gives the p of the table.
     """
-    shown = replace(
-        ViewState(),
-        driver=series_name(scan.economy, scan.driver),
-        response=series_name(scan.economy, scan.response),
-        **{
-            name: getattr(state, name)
-            for name in (
-                "growth",
-                "first",
-                "last",
-                "season",
-                "meet",
-                "windows",
-                "shifts",
-                "surrogates",
-                "as_of",
-            )
-        },
-    )
+    carried = {name: getattr(state, name) for name in CARRIED}
     if isinstance(scan, PairScan):
-        shown = replace(shown, seed=scan.seed)
+        carried["seed"] = scan.seed
         if not scan.refused:
-            shown = replace(shown, window=scan.window, shift=scan.shift)
-    return f"/lag?{shown.to_query()}"
+            carried |= {"window": scan.window, "shift": scan.shift}
+    sides = {"driver": scan.driver, "response": scan.response}
+    named = {side: series_name(scan.economy, name) for side, name in sides.items()}
+    return f"/lag?{ViewState(**named, **carried).to_query()}"
 
 
 def shift_bins(known: Scan) -> tuple[int, list[tuple[float, int, int]]]:
@@ -103,7 +98,7 @@ def shift_bins(known: Scan) -> tuple[int, list[tuple[float, int, int]]]:
     Bins are three months wide, one period for quarters and years; shift 0 is the middle of one.
     """
     rows = [row for row in league(known) if not row.scan.refused]
-    width = 3 if noun(known.question) == "month" else 1
+    width = 3 if known.question.noun == "month" else 1
     counts: dict[int, list[int]] = {}
     for row in rows:
         middle = round(row.scan.shift / width) * width
@@ -133,5 +128,6 @@ def map_chart_parts(
         name = pair_words(pair, known.question)
         titles.append((name, "" if row is None else map_label(row.scan, row.p(known), known)))
         best.append(None if row is None else (row.scan.window, row.scan.shift))
-    stamp = hashlib.sha256(repr([titles, best, known.question.settings]).encode()).hexdigest()[:12]
+    marks = [titles, best, known.question.settings, [pair_fingerprint(pair) for pair in pairs]]
+    stamp = hashlib.sha256(repr(marks).encode("utf-8", "surrogatepass")).hexdigest()[:12]
     return [panel_surface(pair) for pair in pairs], titles, best, stamp

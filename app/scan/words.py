@@ -6,7 +6,6 @@ import numpy as np
 
 from analytics.long_averages import LongAverages
 from analytics.panel import LEVEL, PairScan, PanelPair, PanelScan
-from analytics.series import PERIOD_NOUN
 from app.scan.bridge import Question, Scan
 from app.words import counted, p_words, plain, shift_words, signed
 
@@ -19,19 +18,12 @@ CORRECTIONS = {"bh": "Benjamini-Hochberg", "holm": "Holm"}
 NAMED = 10  # economies or pairs named in a sentence
 
 
-def noun(asked: Question) -> str:
-    """Return month, quarter or year where all pairs agree, else period."""
-    found = {PERIOD_NOUN[one.pair.driver.frequency] for one in asked.pairs}
-    return found.pop() if len(found) == 1 else "period"
-
-
 def pair_words(scan: PairScan | PanelPair, asked: Question) -> str:
     """Name a pair as shortly as it stays clear: by its economy where that has no other pair."""
     both = f"{scan.driver} → {scan.response}"
     if not scan.economy:
         return both
-    alone = sum(economy == scan.economy for economy, _, _ in asked.roles.pairs) == 1
-    return scan.economy if alone else f"{scan.economy}, {both}"
+    return scan.economy if asked.pairs_of[scan.economy] == 1 else f"{scan.economy}, {both}"
 
 
 def sentence(asked: Question) -> str:
@@ -132,7 +124,7 @@ def shift_words_of(known: Scan) -> str:
     if panel is None:
         return "The best shifts come with the search."
     found = found_pairs(panel, known.question.state.correction)
-    unit = noun(known.question)
+    unit = known.question.noun
     if not found:
         return "No pair holds, so the best shifts say nothing."
     shifts = np.array([scan.shift for scan in found])
@@ -147,7 +139,7 @@ def shift_words_of(known: Scan) -> str:
 
 def map_words(known: Scan, drawn: int) -> str:
     """Say what the small maps show."""
-    unit, total = noun(known.question), len(known.question.pairs)
+    unit, total = known.question.noun, len(known.question.pairs)
     which = "" if drawn == total else f" The first {drawn} of {total} in the order of the table."
     held = " A heavy name holds once all pairs are paid for." if known.panel is not None else ""
     return (
@@ -159,7 +151,7 @@ def map_words(known: Scan, drawn: int) -> str:
 
 def map_label(scan: PairScan, p: float, known: Scan) -> str:
     """Return the few words under a small map."""
-    shift = shift_words(scan.shift, noun(known.question))
+    shift = shift_words(scan.shift, known.question.noun)
     return f"{shift}, r {signed(scan.correlation)}, p {p_words(p)}"
 
 
@@ -200,6 +192,5 @@ def _grid(asked: Question) -> str:
         return ", each over the windows and shifts that its sample allows"
     (low, high), (back, ahead) = windows.pop(), shifts.pop()
     return (
-        f", windows {low} to {high} and shifts {plain(back, 0)} to {signed(ahead, 0)}"
-        f" {noun(asked)}s"
+        f", windows {low} to {high} and shifts {plain(back, 0)} to {signed(ahead, 0)} {asked.noun}s"
     )

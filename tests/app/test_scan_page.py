@@ -13,11 +13,12 @@ from dash.development.base_component import Component
 from analytics.panel import panel_surface
 from app.compute import Bridge
 from app.demo import demo_releases
+from app.figures.scan import surface_maps
 from app.pages import scan as page
 from app.scan import exports
 from app.scan.bridge import scan, scan_work
 from app.scan.exports import csv_export
-from app.scan.league import league
+from app.scan.league import league, map_chart_parts
 from app.server import build_app
 from app.state import ViewState
 from app.words import p_words, signed
@@ -74,7 +75,8 @@ def test_before_the_search_the_maps_and_averages_are_there_and_the_table_waits()
 
 
 def test_the_maps_have_the_correlations_of_the_surfaces_in_hundredths(done, bridge):
-    figure = done.charts["surfaces"]
+    figure = surface_maps(*map_chart_parts(scan(STATE, bridge)))
+    assert done.charts["surfaces"] == figure.to_json()
     maps = [trace for trace in figure.data if trace.type == "heatmap"]
     rings = [trace for trace in figure.data if trace.type == "scatter"]
     known = scan(STATE, bridge)
@@ -215,8 +217,6 @@ def test_the_work_comes_pair_by_pair():
 
 
 def test_a_cell_without_a_correlation_is_left_out_of_its_map():
-    from app.figures.scan import surface_maps
-
     bridge = Bridge(panel_workspace({"Ardenquay": 1.0}))
     (pair,) = scan(STATE, bridge).question.pairs
     surface = panel_surface(pair)
