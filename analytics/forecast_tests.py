@@ -5,8 +5,7 @@ from typing import Literal
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.special import stdtr, xlogy
-from scipy.stats import chi2
+from scipy.special import chdtrc, chdtri, stdtr, xlogy
 
 from analytics.series import FloatArray
 
@@ -192,7 +191,7 @@ def kupiec(misses: int, n: int, rate: float) -> tuple[float, float]:
     seen = float(xlogy(misses, share) + xlogy(n - misses, 1.0 - share))
     asked = float(xlogy(misses, rate) + xlogy(n - misses, 1.0 - rate))
     ratio = max(0.0, 2.0 * (seen - asked))
-    return ratio, float(chi2.sf(ratio, 1))
+    return ratio, float(chdtrc(1, ratio))
 
 
 def christoffersen(counts: ArrayLike) -> tuple[float, float]:
@@ -216,14 +215,14 @@ def christoffersen(counts: ArrayLike) -> tuple[float, float]:
     free = float(xlogy(table, table).sum() - xlogy(rows, rows).sum())
     tied = float(xlogy(columns, columns).sum() - xlogy(total, total))
     ratio = max(0.0, 2.0 * (free - tied))
-    return ratio, float(chi2.sf(ratio, 1))
+    return ratio, float(chdtrc(1, ratio))
 
 
 def wilson(hits: int, n: int, level: float = 0.95) -> tuple[float, float]:
     """Wilson's (1927) interval of a share; (nan, nan) without trials."""
     if n == 0:
         return np.nan, np.nan
-    z2 = float(chi2.isf(1.0 - level, 1))
+    z2 = float(chdtri(1, 1.0 - level))
     share = hits / n
     centre = (share + z2 / (2 * n)) / (1 + z2 / n)
     half = np.sqrt(z2 * (share * (1 - share) / n + z2 / (4 * n * n))) / (1 + z2 / n)
@@ -257,7 +256,7 @@ def interval_coverage(inside: ArrayLike, level: float) -> Coverage:
     missed = (~hit).astype(np.int64)
     table = np.bincount(2 * missed[:-1] + missed[1:], minlength=4).reshape(2, 2)
     chain, p_chain = christoffersen(table)
-    both = float(chi2.sf(ratio + chain, 2)) if n > 1 else np.nan
+    both = float(chdtrc(2, ratio + chain)) if n > 1 else np.nan
     low, high = wilson(hits, n)
     return Coverage(
         n=n,

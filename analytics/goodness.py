@@ -10,7 +10,6 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike
 from scipy import special
-from scipy.signal import lfilter
 
 from analytics.autoregression import autoregression
 from analytics.distribution import Fit, distribution_fit, sample
@@ -335,6 +334,8 @@ def _scores(coefficients: FloatArray, count: int, n: int, rng: np.random.Generat
     denominator = np.concatenate([[1.0], -coefficients])
     pulse = np.zeros(2000)
     pulse[0] = 1.0
+    from scipy.signal import lfilter
+
     response = lfilter([1.0], denominator, pulse)
     memory = int(np.flatnonzero(np.abs(response) > 1e-3)[-1]) + 1
     shocks = rng.standard_normal((count, memory + n))

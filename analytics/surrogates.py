@@ -3,7 +3,6 @@
 import numpy as np
 from numpy.typing import ArrayLike
 from scipy import fft
-from scipy.signal import lfilter
 
 from analytics.autoregression import Autoregression, autoregression
 from analytics.series import FloatArray
@@ -127,6 +126,8 @@ def _memory(whitening: FloatArray, *, longest: int = 1000) -> int:
     """Periods after which a surprise has lost all but a thousandth of its effect."""
     pulse = np.zeros(longest)
     pulse[0] = 1.0
+    from scipy.signal import lfilter
+
     effect = np.abs(lfilter([1.0], whitening, pulse))
     return int(np.flatnonzero(effect > 1e-3)[-1])
 
