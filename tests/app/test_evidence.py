@@ -24,6 +24,16 @@ from tests.app.economies import LAG, planted, workspace
 from tests.app.evidence_cases import STATE, case, noise, rates
 
 SMALL = replace(STATE, windows="1:6", shifts="-6:12")
+TOOLS = {  # of the chosen cell alone: all long work reads every month, and no tool
+    "left_out": "2005-01:2005-12",
+    "pinned": "2:2",
+    "points": "counts",
+    "band": "driver",
+    "band_place": 40,
+    "band_width": 20,
+    "peaks": "1",
+    "other_responses": "Other",
+}
 EVERY_CHANGE = {
     "response": "Other",
     "window": 5,
@@ -41,6 +51,7 @@ EVERY_CHANGE = {
     "as_of": "2100-01-01",
     "season": "stl",
     "meet": "last",
+    **TOOLS,
 }
 
 
@@ -312,7 +323,7 @@ def test_a_key_changes_with_everything_its_work_depends_on(kind, free):
     whole = keys(kind, bridge)
     assert set(EVERY_CHANGE) | {"driver"} == {*LAG_FIELDS, "quantity"}
     for name, value in EVERY_CHANGE.items():
-        assert (keys(kind, bridge, **{name: value}) == whole) is (name in free), name
+        assert (keys(kind, bridge, **{name: value}) == whole) is (name in {*free, *TOOLS}), name
     assert keys(kind, bridge, driver="Other") != whole
     other = fresh(*planted(seed=12), replace(prices, name="Other"))
     assert keys(kind, other) != whole, "other data"
@@ -320,8 +331,13 @@ def test_a_key_changes_with_everything_its_work_depends_on(kind, free):
 
 
 def test_kinds_of_work_have_keys_of_their_own():
-    bridge = fresh()
-    assert len({keys(kind, bridge) for kind in WORK}) == len(WORK) == 5
+    money, prices = planted()
+    bridge = fresh(money, prices, replace(prices, name="Other"))
+    assert len({keys(kind, bridge, other_responses="Prices") for kind in WORK}) == len(WORK) == 6
+    one = keys("responses", bridge, other_responses="Prices")
+    assert keys("responses", bridge, other_responses="Prices", response="Other", shift=2) == one
+    for change in ({"other_responses": "Prices|Other"}, {"window": 5}, {"seed": 2}):
+        assert keys("responses", bridge, **{"other_responses": "Prices"} | change) != one
 
 
 def test_the_cell_chosen_does_not_change_the_search_and_the_window_changes_the_set():

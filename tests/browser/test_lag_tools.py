@@ -292,7 +292,7 @@ def test_numbers_and_link_are_copied_with_all_digits(lag, address, bridge):
     slope = bridge.cell(ViewState()).slope
     lag.find_element(By.CSS_SELECTOR, "[data-copy-number=slope]").click()
     until(lag, "document.getElementById('toast').textContent.startsWith('Copied the slope')")
-    lag.set_script_timeout(10)
+    lag.set_script_timeout(30)
     copied = lag.execute_async_script(
         "navigator.clipboard.readText().then(arguments[0], (e) => arguments[0](String(e)))"
     )
