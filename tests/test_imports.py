@@ -198,7 +198,7 @@ def test_every_folder_of_the_table_has_files():
         ("analytics/rates.py", "from statsmodels.api import OLS", "before it is needed"),
         ("analytics/rates.py", "if True:\n    import statsmodels", "before it is needed"),
         ("analytics/rates.py", "from scipy.stats import norm", "before it is needed"),
-        ("app/compute.py", "import scipy.stats", "imports scipy.stats"),
+        ("app/compute.py", "import scipy.optimize", "imports scipy.optimize"),
         ("app/compute.py", "import requests", "imports requests"),
         ("app/compute.py", "from app import state\nfrom ..analytics import x", ":2 imports rel"),
         ("app/state.py", "from dash import dcc", "imports dash.dcc"),
