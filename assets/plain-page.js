@@ -33,6 +33,10 @@
     if (!page.timer && !late) { // else the hand has moved on, and its own answer is coming
       page.waiting = null;
       page.state = data.state;
+      for (const [name, value] of Object.entries(data.state)) {
+        const field = data.asked && data.asked[name] !== value && controls.field(name);
+        if (field) field.value = value; // what is shown is not what was asked for
+      }
       controls.publish(name, page.state, data.defaults, false);
     }
     for (const place of root().querySelectorAll(".plain-plot")) {

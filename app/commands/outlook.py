@@ -64,6 +64,8 @@ def outlook(
 
     if words is not None and not kept_in:
         raise click.UsageError("--say keeps a statement in a workspace; name one with --workspace")
+    if supersedes and words is None:
+        raise click.UsageError("--supersedes goes with --say: what is to be said instead")
     desk = workspace_of(files, kept_in)
     given = {**flags, **_as_of(newest)}
     state = state_of(desk.as_of(given.get("as_of") or "").opening_state(), given)

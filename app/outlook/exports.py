@@ -16,6 +16,7 @@ from app.state import ViewState
 from app.words import slug
 
 Rows = Iterable[Sequence[Any]]
+DM = ("rmse", "ratio", "dm", "dm_p", "dm_p_better")  # columns of each benchmark
 TESTED = ("direct", "backtest", "coverage", "through", "drivers")  # views that need the backtest
 
 
@@ -82,6 +83,13 @@ def header(known: Outlook) -> list[tuple[str, str]]:
                 " vintages",
             )
         )
+    for response, count in known.running.items():
+        held = (
+            f"{level:g}: {count.hits[row]} of {count.n[row]} inside; {float(count.low[row])!r} to"
+            f" {float(count.high[row])!r}"
+            for row, level in enumerate(count.levels)
+        )
+        lines.append(("statements that stand", f"{response}; {'; '.join(held)}"))
     lines += [(f"missing ({part})", why) for part, why in known.refused.items()]
     return [*lines, ("note", "an association in past data; not a cause and not advice")]
 
@@ -125,11 +133,11 @@ def _fan_rows(known: Outlook) -> Rows:
 
 
 def _gap_rows(known: Outlook) -> Rows:
-    yield "period", "observed", "expected", "gap"
+    yield "period", "observed", "expected", "gap", "rank_of_gap"
     if known.gap is None:
         return
     first = known.found.pair.response.first
-    columns = (known.gap.observed, known.gap.expected, known.gap.gap)
+    columns = (known.gap.observed, known.gap.expected, known.gap.gap, known.gap_rank)
     for i, place in enumerate(known.gap.place.tolist()):
         yield period_code(first + place), *(float(column[i]) for column in columns)
 
@@ -145,6 +153,7 @@ def _direct_rows(known: Outlook) -> Rows:
         "share_in_past_forecasts",
         "dm_p",
         "rows",
+        "own_lags",
     )
     if known.direct is None:
         return
@@ -160,6 +169,7 @@ def _direct_rows(known: Outlook) -> Rows:
             None if share is None else float(share[i]),
             None if known.added is None else float(known.added.dm[0][i].p),
             int(direct.rows[i]),
+            direct.own_lags,
         )
 
 
@@ -173,7 +183,7 @@ def _backtest_rows(known: Outlook) -> Rows:
         "mae",
         "bias",
         "theil_u2",
-        *(f"{part} {name}" for name in names for part in ("rmse", "ratio", "dm", "dm_p")),
+        *(f"{part} {name}" for name in names for part in DM),
     )
     if scores is None:
         return
@@ -186,6 +196,7 @@ def _backtest_rows(known: Outlook) -> Rows:
                 float(scores.ratio[row, i]),
                 test.statistic,
                 test.p,
+                test.p_better,
             ]
         own = (scores.rmse, scores.mae, scores.bias, scores.u2)
         yield h, int(scores.n[i]), *(float(part[i]) for part in own), *against
@@ -247,7 +258,10 @@ def _through_rows(known: Outlook) -> Rows:
 
 
 def _driver_rows(known: Outlook) -> Rows:
-    yield "driver", "window", "shift", "weight", "ahead", "period", "path", "rmse", "mae", "dates"
+    names = known.lines[0].scores.benchmarks if known.lines else ()
+    ratios = (f"ratio {name}" for name in names)
+    head = ("driver", "window", "shift", "weight", "ahead", "period", "path", "rmse", "mae")
+    yield *head, "dates", *ratios
     for line in known.lines:
         for i, value in enumerate(line.path.tolist()):
             yield (
@@ -261,6 +275,7 @@ def _driver_rows(known: Outlook) -> Rows:
                 float(line.scores.rmse[i]),
                 float(line.scores.mae[i]),
                 int(line.scores.n[i]),
+                *line.scores.ratio[:, i].tolist(),
             )
 
 

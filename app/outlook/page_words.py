@@ -1,25 +1,21 @@
 """The words and tables beside the charts of the Outlook page."""
 
-from collections.abc import Sequence
 from typing import Any
 
 import numpy as np
 from dash import html
 
 from analytics.series import period_label
+from app.outlook.backtest_words import backtest_words, coverage_words, through_words
 from app.outlook.result import Outlook
 from app.outlook.statement_words import statement_parts
+from app.outlook.tables import missing, table_of, table_row, waiting
 from app.outlook.words import (
     BENCHMARK_WORDS,
-    best_benchmark,
     held_words,
-    looked_at,
     rate_words,
-    ratio_words,
 )
 from app.words import counted, p_words, plain, signed
-
-FEW_DATES = 300  # below, the test of equal accuracy was measured to call too many different
 
 
 def view_words(known: Outlook) -> dict[str, Any]:
@@ -29,9 +25,9 @@ def view_words(known: Outlook) -> dict[str, Any]:
         "fan-words": _fan(known),
         "gap-words": _gap(known),
         "direct-words": _direct(known),
-        "backtest-words": _backtest(known),
-        "coverage-words": _coverage(known),
-        "through-words": _through(known),
+        "backtest-words": backtest_words(known),
+        "coverage-words": coverage_words(known),
+        "through-words": through_words(known),
         "drivers-words": _drivers(known),
         **statement_parts(known),
     }
@@ -56,20 +52,10 @@ def subtitles(known: Outlook) -> dict[str, str]:
     }
 
 
-def _missing(known: Outlook, *names: str) -> list[Any]:
-    said = [known.refused[name] for name in names if name in known.refused]
-    return [html.P(f"Not shown: {text}.") for text in dict.fromkeys(said)]
-
-
-def _waiting(known: Outlook) -> list[Any]:
-    refused = _missing(known, "path", "backtest")
-    return refused or [html.P("Shown when the past has been gone through.", className="quiet")]
-
-
 def _fan(known: Outlook) -> list[Any]:
     path, fan, found = known.path, known.fan, known.found
     if path is None or fan is None:
-        return _missing(known, "path")
+        return missing(known, "path")
     off = [held_words(known, row) for row in range(len(known.levels))]
     held = [words for words in off if "held" in words]
     at = counted(min(found.ahead, known.reach), found.noun)
@@ -121,15 +107,15 @@ def _held_shares(known: Outlook) -> str:
 def _gap(known: Outlook) -> list[Any]:
     gap, found = known.gap, known.found
     if gap is None:
-        return _missing(known, "gap")
+        return missing(known, "gap")
     last = float(gap.gap[-1])
-    rank = 100.0 * float((gap.gap <= last).mean())
+    rank = float(known.gap_rank[-1])
     when = found.pair.response.first + int(gap.place[-1])
     return [
         html.P(
             f"In {period_label(when)} the {known.state.window}-{found.noun} mean was"
             f" {plain(float(gap.observed[-1]))}, by the relation {plain(float(gap.expected[-1]))}:"
-            f" {signed(last)}, higher than in {rank:.0f} of 100 {found.noun}s. The line is that of"
+            f" {signed(last)}, as high as or higher than {rank:.0f} of 100. The line is that of"
             " the whole sample, so these are residuals and no forecast errors."
         )
     ]
@@ -138,7 +124,7 @@ def _gap(known: Outlook) -> list[Any]:
 def _direct(known: Outlook) -> list[Any]:
     direct, found = known.direct, known.found
     if direct is None:
-        return _missing(known, "path", "direct")
+        return missing(known, "path", "direct")
     place = min(found.ahead, direct.ahead.size) - 1
     both = float(direct.with_driver[place]), float(direct.without_driver[place])
     at = period_label(found.pair.origin + place + 1)
@@ -155,127 +141,16 @@ def _direct(known: Outlook) -> list[Any]:
         assert share is not None
         said.append(
             html.P(
-                f"In past forecasts {counted(place + 1, found.noun)} ahead the driver took"
-                f" {100 * float(share[place]):.0f} percent off the squared errors"
-                f" (p {p_words(test.p)}); below 0 it did harm."
+                f"In past forecasts {counted(place + 1, found.noun)} ahead the driver"
+                f" {_taken(float(share[place]))} the squared errors (p {p_words(test.p)})."
             )
         )
     return said
 
 
-def _backtest(known: Outlook) -> list[Any]:
-    scores, done, found = known.scores, known.backtest, known.found
-    if scores is None or done is None:
-        return _waiting(known)
-    noun = found.noun
-    head = ["Ahead", "Dates", "RMSE", "MAE", "Bias", "U2"]
-    head += [f"Over {name}" for name in scores.benchmarks] + ["p"]
-    rows = []
-    for h in looked_at(found, scores.ahead.size):
-        best = best_benchmark(scores, h)
-        test = scores.dm[scores.benchmarks.index(best)][h - 1]
-        cells: list[Any] = [f"{scores.n[h - 1]}"]
-        cells += [plain(float(part[h - 1])) for part in (scores.rmse, scores.mae)]
-        cells += [signed(float(scores.bias[h - 1])), plain(float(scores.u2[h - 1]))]
-        for name, ratio in zip(scores.benchmarks, scores.ratio[:, h - 1].tolist(), strict=True):
-            cells.append(html.Strong(plain(ratio)) if name == best else plain(ratio))
-        cells.append(p_words(test.p))
-        rows.append(_row(counted(h, noun), cells, chosen=h == found.ahead))
-    first = period_label(found.pair.response.first + int(done.origins[0]))
-    notes = ["Beyond its shift the relation says the mean of the past."]
-    if int(scores.n[0]) < FEW_DATES:
-        notes.append(
-            f"Over fewer than {FEW_DATES} dates this p comes out too small at long horizons: of"
-            " forecasts that are equally good, 8 to 15 of 100 are called different at 5 %."
-        )
-    return [
-        html.P(
-            f"{counted(done.origins.size, 'past date')} from {first} on, each with"
-            f" {_known_then(known)}. Ratios below 1: the relation was nearer; the best benchmark"
-            " stands out, and p is against it (Diebold-Mariano with the small-sample factor,"
-            " two-sided)."
-        ),
-        _table(head, rows),
-        html.P(" ".join(notes), className="quiet"),
-    ]
-
-
-def _known_then(known: Outlook) -> str:
-    done, found = known.backtest, known.found
-    assert done is not None
-    span = (
-        "all that was known then"
-        if done.scheme == "expanding"
-        else f"the latest {counted(int(done.origins[0]) + 1, found.noun)}"
-    )
-    cell = (
-        "window and shift chosen anew each year"
-        if done.rechosen
-        else f"window {known.state.window} and shift {known.state.shift} kept, which were chosen"
-        " knowing what came, so the scores flatter"
-    )
-    dated = (
-        f"; {counted(known.dated, 'date')} from the vintages of that date"
-        if known.dated
-        else "; the workspace has no vintages of those dates, so today's values are cut there"
-    )
-    return f"{span}, {cell}{dated}"
-
-
-def _coverage(known: Outlook) -> list[Any]:
-    scores, found = known.scores, known.found
-    if scores is None:
-        return _waiting(known)
-    head = ["Ahead", "Interval", "Held", "95 % range", "Outcomes", "p, rate", "p, runs"]
-    rows = []
-    for h in looked_at(found, scores.ahead.size):
-        for level, row in zip(scores.levels, scores.coverage, strict=True):
-            seen = row[h - 1]
-            cells = [f"{100 * level:.0f} %"]
-            if seen.n:
-                cells += [
-                    f"{100 * seen.share:.0f} %",
-                    f"{100 * seen.low:.0f} to {100 * seen.high:.0f} %",
-                ]
-                cells += [f"{seen.n}", p_words(seen.p_kupiec), p_words(seen.p_christoffersen)]
-            else:
-                cells += ["", "", "none", "", ""]
-            rows.append(_row(counted(h, found.noun), cells, chosen=h == found.ahead))
-    return [
-        html.P(
-            "How often the relation's intervals held, had they been drawn at each past date. The"
-            " table counts outcomes that do not overlap; the chart all of them."
-        ),
-        html.Details(
-            [
-                html.Summary("Coverage by horizon"),
-                _table(head, rows),
-                html.P(
-                    "p, rate: that misses come as often as named (Kupiec). p, runs: that a miss"
-                    " says nothing about the next (Christoffersen).",
-                    className="quiet",
-                ),
-            ],
-            **{"data-stays": "outlook-coverage"},
-        ),
-    ]
-
-
-def _through(known: Outlook) -> list[Any]:
-    if known.gain is None or known.scores is None:
-        return _waiting(known)
-    periods, gain = known.gain
-    if not periods.size:
-        return [html.P("No past date has a forecast of both and an outcome.")]
-    found, against = known.found, known.state.against
-    half = gain.size // 2
-    said = (
-        f"{counted(found.ahead, found.noun)} ahead against {BENCHMARK_WORDS[against]}:"
-        f" {ratio_words(known.scores, against, found.ahead)}. Where the line rises the relation"
-        f" helped. Of the {signed(float(gain[-1]), 1)} in all, {signed(float(gain[half]), 1)} came"
-        f" by {period_label(periods[half])}, the middle date."
-    )
-    return [html.P(said)]
+def _taken(share: float) -> str:
+    size = f"{100 * abs(share):.0f} percent"
+    return f"took {size} off" if share >= 0 else f"did harm: it added {size} to"
 
 
 def _drivers(known: Outlook) -> list[Any]:
@@ -288,7 +163,7 @@ def _drivers(known: Outlook) -> list[Any]:
         if name == "drivers" or name.startswith("driver ")
     ]
     if not known.lines:
-        return [*offer, *refused, *(_waiting(known) if not refused else [])]
+        return [*offer, *refused, *(waiting(known) if not refused else [])]
     found = known.found
     ahead = min(found.ahead, known.lines[0].scores.ahead.size)
     benchmarks = known.lines[0].scores.benchmarks
@@ -302,7 +177,7 @@ def _drivers(known: Outlook) -> list[Any]:
         cells += [plain(float(line.scores.rmse[ahead - 1]))]
         cells += [plain(float(ratio)) for ratio in line.scores.ratio[:, ahead - 1]]
         cells += ["" if line.weight is None else plain(line.weight)]
-        rows.append(_row(line.name, cells, chosen=line.window is None))
+        rows.append(table_row(line.name, cells, chosen=line.window is None))
     return [
         *offer,
         *refused,
@@ -310,7 +185,7 @@ def _drivers(known: Outlook) -> list[Any]:
             "Window and shift are those that each driver's backtest uses today. Beyond its shift a"
             " driver says the mean of the past. Weights are the inverse of squared past errors."
         ),
-        _table(head, rows),
+        table_of(head, rows),
     ]
 
 
@@ -335,21 +210,3 @@ def _offered(known: Outlook) -> list[Any]:
             )
         )
     return [html.Div(buttons, className="offered")] if buttons else []
-
-
-def _row(name: str, cells: Sequence[Any], *, chosen: bool = False) -> html.Tr:
-    return html.Tr(
-        [html.Th(name, scope="row"), *(html.Td(cell) for cell in cells)],
-        className="chosen" if chosen else "",
-    )
-
-
-def _table(head: Sequence[str], rows: Sequence[html.Tr]) -> html.Div:
-    table = html.Table(
-        [
-            html.Thead(html.Tr([html.Th(words, scope="col") for words in head])),
-            html.Tbody(list(rows)),
-        ],
-        className="table figures",
-    )
-    return html.Div(table, className="table-place", tabIndex="0", role="group")

@@ -3,6 +3,7 @@
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 
+import numpy as np
 import pandas as pd
 
 from analytics.backtest import Backtest
@@ -149,6 +150,14 @@ class Outlook:
     def periods(self) -> pd.PeriodIndex:
         """The periods of the path."""
         return self.found.pair.ahead(self.reach)
+
+    @property
+    def gap_rank(self) -> FloatArray:
+        """Rank of each gap among all of them, 0 to 100; empty without gaps."""
+        if self.gap is None:
+            return np.zeros(0)
+        order = np.sort(self.gap.gap)
+        return 100.0 * np.searchsorted(order, self.gap.gap, side="right") / order.size
 
     @property
     def added_share(self) -> FloatArray | None:

@@ -13,7 +13,7 @@ from app.compute import Bridge
 from app.figures import outlook as figures
 from app.figures import outlook_backtest as tested
 from app.outlook.bridge import outlook, waiting_kinds
-from app.outlook.inputs import outlook_key
+from app.outlook.inputs import outlook_key, past_views
 from app.outlook.page_words import subtitles, view_words
 from app.outlook.result import Judged, Outlook
 from app.outlook.words import (
@@ -184,7 +184,7 @@ def _kept_charts(known: Outlook, bridge: Bridge) -> dict[str, Figure | str]:
     names = ("target", "scheme", "cells", "windows", "shifts", "ahead", "against", "others")
     key = outlook_key(f"outlook-charts-{there}", known.state, bridge, (*names, "recent"))
     drawn = bridge.memory.once(
-        f"{key}:{known.dated}",
+        f"{key}:{past_views(known.found, bridge).key}",
         lambda: {name: chart.to_json() for name, chart in charts(known).items()},
     )
     stated = statement_chart(known)

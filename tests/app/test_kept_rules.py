@@ -1,12 +1,14 @@
 """Alert rules in a workspace: kept, taken away, remembered, carried out and back."""
 
 import json
+import sqlite3
 import threading
 
 import pytest
 
 from app.cli import main
 from app.kept_rules import MOST, drop_rule, keep_rule, rule_lines, rules_in_force
+from app.migrations import APPLICATION_ID, MIGRATIONS
 from app.reading.alerts import DEFAULT_RULES
 from app.server import build_app
 from app.store import Store
@@ -56,6 +58,23 @@ def test_rules_are_still_there_when_the_file_is_opened_again(tmp_path):
     again = Store(tmp_path / "w.sqlite")
     assert rule_lines(again)[-1] == OWN
     again.close()
+
+
+def test_a_workspace_from_before_there_were_rules_is_brought_up_to_date(tmp_path):
+    path = tmp_path / "old.sqlite"
+    old = sqlite3.connect(path)
+    old.executescript(MIGRATIONS[0])
+    old.execute("INSERT INTO statements VALUES (1, 'at', '2024-03-12', 's', '', 'prices rise')")
+    old.execute(f"PRAGMA application_id = {APPLICATION_ID}")
+    old.execute("PRAGMA user_version = 1")
+    old.commit()
+    old.close()
+    store = Store(path)
+    assert rule_lines(store) == DEFAULT_RULES
+    keep_rule(store, OWN)
+    with store.look() as db:
+        assert db.execute("SELECT content FROM statements").fetchone()[0] == "prices rise"
+    store.close()
 
 
 def test_two_tabs_that_change_rules_at_once_lose_nothing(tmp_path):

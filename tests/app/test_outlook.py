@@ -6,6 +6,7 @@ from dataclasses import replace
 import numpy as np
 import pandas as pd
 import pytest
+from scipy.stats import percentileofscore
 from statsmodels.datasets import macrodata
 
 from analytics.backtest import backtest
@@ -304,6 +305,10 @@ def test_every_view_is_a_file_with_its_header_and_numbers(known):
     assert float(fan[5][6]) == known.fan.band(0.8)[0][5]
     table = rows_of(view_text("backtest", known))
     assert float(table[12][2]) == known.scores.rmse[11]
+    assert float(table[12][10]) == known.scores.dm[0][11].p_better
+    gaps = rows_of(view_text("gap", known))
+    wanted = percentileofscore(known.gap.gap, known.gap.gap[-1], kind="weak")
+    assert float(gaps[-1][4]) == pytest.approx(wanted)
     with pytest.raises(ValueError, match="view must be one of"):
         view_text("nothing", known)
 
@@ -381,6 +386,26 @@ def test_as_of_a_period_uses_nothing_after_it(macro, capsys):
     assert (code, answer["origin"], answer["path"][0]["period"]) == (0, "1990-Q2", "1990-Q3")
 
 
+def test_as_of_a_date_uses_the_vintages_of_that_date(tmp_path, capsys):
+    kept = str(tmp_path / "w.sqlite")
+    desk = Workspace(path=kept)
+    desk.add(release(140, revised=0.01), "2020-01-15")
+    desk.add(release(144), "2020-02-15")
+    desk.close()
+    flags = ["--driver", "Money", "--response", "Prices", "--window", "3", "--shift", "6"]
+    flags += ["--cells", "kept", "--json", "--workspace", kept]
+    now = json.loads(run(["outlook", *flags], capsys)[1].out)
+    then = json.loads(run(["outlook", *flags, "--as-of", "2020-01-31"], capsys)[1].out)
+    assert (then["origin"], now["origin"]) == ("2019-08", "2019-12")
+    assert (then["backtest"]["dates_from_vintages"], now["backtest"]["dates_from_vintages"]) == (
+        0,
+        5,
+    )
+    x, y = (100 * np.diff(np.log(series.values)) for series in release(140, revised=0.01).series)
+    path = implied_path(x, y, window=3, shift=6)
+    np.testing.assert_allclose([r["rate_1m"] for r in then["path"]], path.single, atol=1e-9)
+
+
 def test_the_command_needs_no_files_and_refuses_in_one_sentence(capsys):
     short = ["--first", "2012-01", "--cells", "kept", "--window", "6", "--shift", "12"]
     code, said = run(["outlook", *short, "--json"], capsys)
@@ -392,6 +417,7 @@ def test_the_command_needs_no_files_and_refuses_in_one_sentence(capsys):
         (["--driver", "Wages"], "no loaded series is named 'Wages'"),
         (["--scheme", "both"], "must be one of expanding, rolling"),
         (["--say", "up"], "name one with --workspace"),
+        (["--supersedes", "1"], "goes with --say"),
     ):
         code, said = run(["outlook", *arguments], capsys)
         assert code == 2

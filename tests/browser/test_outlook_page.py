@@ -119,6 +119,16 @@ def test_the_past_is_gone_through_with_progress_and_can_be_stopped(browser, ther
     assert "In past forecasts" in words(browser, "verdict")
 
 
+def test_a_shift_outside_the_map_gives_way_in_its_field_too(page):
+    field = page.find_element(By.ID, "field-shift")
+    field.clear()
+    field.send_keys("30", Keys.TAB)
+    until(page, f"{READY} && document.getElementById('outlook-notes').textContent.includes('30')")
+    shown = page.execute_script("return pricewake.plain.state.shift")
+    assert field.get_attribute("value") == str(shown) != "30"
+    assert f"{shown} is shown" in words(page, "notes")
+
+
 def test_a_driver_joins_by_its_button_and_leaves_again(page, desk):
     button = "document.querySelector(\"#outlook-drivers-words [data-set='others']\")"
     assert page.execute_script(f"return {button}.textContent") == "Noise"
