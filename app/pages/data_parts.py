@@ -381,8 +381,10 @@ def prints_table(found: Revised | None) -> list[Any]:
     if not rows:
         return []
     head = ("Period", "First value", "Stood from", "Latest", "Revision", "Vintages")
-    cut = f"The newest {len(rows)} of {len(places)}; " if len(places) > len(rows) else ""
-    note = html.P(f"{cut}the CSV has every period.".capitalize(), className="quiet")
+    words = "The CSV has every period."
+    if len(places) > len(rows):
+        words = f"The newest {len(rows)} of {len(places)}; the CSV has every period."
+    note = html.P(words, className="quiet")
     label = "First prints and revisions"
     return [_fold("prints", "The numbers", table(head, rows, label, cards=False), note)]
 

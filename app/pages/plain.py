@@ -185,4 +185,4 @@ def key_list(entries: Sequence[tuple[str, str, str]]) -> html.Ul:
 
 
 def _plain(chart: Figure | str) -> Any:
-    return json.loads(chart) if isinstance(chart, str) else chart.to_dict()
+    return json.loads(chart if isinstance(chart, str) else chart.to_json())

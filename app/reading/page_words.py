@@ -37,7 +37,8 @@ def alert_list(known: Reading, found: tuple[Alert, ...]) -> list[Any]:
     if found:
         said = [html.Li([html.Strong("Alert. "), a.sentence], title=a.rule) for a in found]
         parts.append(html.Ul(said, className="alert-list", role="list"))
-    return [*parts, *(html.P(note, className="message") for note in known.notes)]
+    notes = [note for note in known.notes if HERE not in note]  # that one stands under the rates
+    return [*parts, *(html.P(note, className="message") for note in notes)]
 
 
 def rate_table(known: Reading) -> list[Any]:
@@ -48,7 +49,8 @@ def rate_table(known: Reading) -> list[Any]:
                 f"{known.series.name} is a rate already and is used as it is: there is no growth"
                 " rate, base effect or carry-over of it.",
                 className="quiet",
-            )
+            ),
+            *_season(known),
         ]
     if not known.rates:
         return [html.P(f"{known.refused.get('rates', 'There are no rates')}.", className="quiet")]
@@ -69,8 +71,10 @@ def rate_table(known: Reading) -> list[Any]:
 
 
 def _season(known: Reading) -> list[Any]:
-    """Say where rates over less than a year still hold a season."""
-    if known.short is not None or known.series.adjustment != "no" or known.year == 1:
+    """Say that the season was taken out of rates over less than a year, or that they hold it."""
+    if known.short is not None:
+        return [html.P(note, className="quiet") for note in known.notes if HERE in note]
+    if known.series.adjustment != "no" or known.year == 1:
         return []
     text = (
         f"{known.series.name} is said to be unadjusted: rates over less than a year hold its"

@@ -101,6 +101,8 @@ def _adjusted(
         found = season(series).adjusted
     except ValueError as error:
         return None, (f"The season of {series.name} is left in: {error}.",)
+    if series.kind == "rate":
+        return found, (f"{series.name} is read {HERE}; the 12-month view is as it is in the file.",)
     noun = PERIOD_NOUN[series.frequency]
     return found, (
         f"Rates over less than a year are of {series.name} {HERE}; rates over a year, base effects"

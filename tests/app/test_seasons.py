@@ -158,7 +158,8 @@ def test_the_label_stands_on_screen_and_in_files(bridge):
     shown = reading.answer(state, bridge)
     for text in (shown.sentence, shown.source, shown.subtitles["rank"], shown.subtitles["rates"]):
         assert HERE in text
-    assert HERE in words_of(shown.words["alerts"])
+    assert HERE in words_of(shown.words["summary"])
+    assert HERE not in words_of(shown.words["alerts"])  # no reason for alarm
     text = reading_csv("rates", state.to_query(), bridge)[1]
     assert "adjusted here by STL; not official" in text
     column = [float(row["value_adjusted_here"]) for row in rows_of(text)]
