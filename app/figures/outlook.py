@@ -117,7 +117,7 @@ def gap_lines(
         bargap=0,
         xaxis={"anchor": "y2", "range": [*when(periods[[0, -1]])]},
         yaxis={"domain": [0.4, 1]},
-        yaxis2={"domain": [0, 0.32], "title": {"text": "difference, points"}},
+        yaxis2={"domain": [0, 0.32], "title": {"text": "points"}},
     )
     return figure
 
