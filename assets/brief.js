@@ -81,7 +81,7 @@
     byId("brief-title").replaceChildren(element("label", { htmlFor: title.id }, "Title"), title);
     byId("brief-form").value = page.draft.form;
     byId("brief-paper").value = page.paper;
-    const file = element("input", { type: "file", id: "brief-recipe-file", accept: ".toml", className: "hidden-label" });
+    const file = element("input", { type: "file", id: "brief-recipe-file", accept: ".toml", className: "hidden-label", "aria-label": "Recipe file" });
     file.addEventListener("change", () => { if (file.files[0]) open(file.files[0]); file.value = ""; });
     const parts = [button("Open a recipe", () => file.click()), file];
     file.tabIndex = -1;
@@ -132,7 +132,7 @@
     const title = part.kind === "words" || !known ? element("span", { className: "part-name" }, name)
       : element("a", { className: "part-name", href: `${known.path}${part.state ? `?${part.state}` : ""}`, title: "Open this view on its page" }, name);
     const acts = element("span", { className: "part-acts" }, up, down,
-      button("Add words", () => { page.draft.parts.splice(index + 1, 0, { kind: "words", words: "" }); list(); byId(`brief-words-${index + 1}`).focus(); }, `Write words below ${name}`),
+      button("Add words", () => { page.draft.parts.splice(index + 1, 0, { kind: "words", words: "" }); list(); byId(`brief-words-${index + 1}`).focus(); }, `Add words below ${name}`),
       button("Remove", () => { page.draft.parts.splice(index, 1); list(); changed(); }, `Remove ${name}`));
     const row = element("li", { className: `part ${part.kind}` }, element("div", { className: "part-line" }, title, acts));
     if (part.kind === "words") {

@@ -10,7 +10,7 @@ from app.lag.cells import episode_code
 from app.lag.evidence import Directions, Evidence
 from app.lag.verdict import effective_words, fragility
 from app.state import ViewState
-from app.words import counted, p_words, percent, plain, runs_words, shift_words, signed
+from app.words import counted, p_words, percent, plain, runs_words, shift_words, signed, slug
 
 MOST_EPISODES = 8
 
@@ -43,8 +43,14 @@ def p_strip(known: Evidence, state: ViewState, unit: str) -> list[html.Div]:
             float(found.p) if found else None,
         ),
         html.Div(
-            html.Dd(worth),
-            title="What overlapping, smoothed months are worth (Bartlett 1946).",
+            [
+                html.Dt("effective months", className="hidden-label"),
+                html.Dd(
+                    _explained(
+                        worth, "What overlapping, smoothed months are worth (Bartlett 1946)."
+                    )
+                ),
+            ],
             className="strip-item worth",
         ),
     ]
@@ -68,10 +74,22 @@ def _figure(name: str, value: str, meaning: str, digits: float | None) -> html.D
         ]
     )
     return html.Div(
-        [html.Dt(name), html.Dd([value, *copy]), html.Span(meaning, className="hidden-label")],
-        title=meaning,
-        className="strip-item",
+        [html.Dt(_explained(name, meaning)), html.Dd([value, *copy])], className="strip-item"
     )
+
+
+def _explained(words: str, meaning: str) -> list[Any]:
+    """Return words that explain themselves on hover, focus and touch: assets/help.js."""
+    place = f"meaning-{slug(words)}"
+    return [
+        html.Button(
+            words,
+            type="button",
+            className="term",
+            **{"data-help": place, "aria-describedby": place},
+        ),
+        html.Span(meaning, id=place, className="hidden-label"),
+    ]
 
 
 def profile_words(known: Evidence, pair: Pair, state: ViewState) -> list[Any]:

@@ -48,9 +48,14 @@ def text(children):
 
 def strip_values(found):
     """Name and value of each figure of the strip."""
+
+    def first(part):
+        inner = part.children[0] if isinstance(part.children, list) else part.children
+        return inner if isinstance(inner, str) else inner.children
+
     return [
         tuple(
-            part.children[0] if isinstance(part.children, list) else part.children
+            first(part)
             for part in parts(item)
             if type(part).__name__ in ("Dt", "Dd")
         )

@@ -255,7 +255,7 @@ def test_parts_are_ordered_removed_and_written_between_and_the_preview_follows(p
     assert "Reading: headline and verdict" not in names(driver)
 
     def write():
-        driver.find_element(By.CSS_SELECTOR, "[aria-label^='Write words below']").click()
+        driver.find_element(By.CSS_SELECTOR, "[aria-label^='Add words below']").click()
         driver.switch_to.active_element.send_keys("We think **so** <i>x</i>")
 
     preview_after(driver, write)
