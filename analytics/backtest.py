@@ -9,6 +9,7 @@ from analytics.backtest_plan import BacktestPlan, Scheme, backtest_plan, known_a
 from analytics.forecasts import MODELS, Choice, choice_at, forecasts_at
 from analytics.intervals import error_scale, half_width
 from analytics.outlook_target import Target
+from analytics.readable import Readable
 from analytics.series import FloatArray, read_only
 from analytics.surface import IntArray, locked
 
@@ -33,7 +34,7 @@ class BacktestChunk:
 
 
 @dataclass(frozen=True, eq=False)
-class Backtest:
+class Backtest(Readable):
     """Result of `backtest_result`; arrays are read-only.
 
     M models, O dates, H horizons. Horizon h stands in column h - 1.

@@ -7,6 +7,7 @@ import pandas as pd
 
 from analytics.print_rates import growing
 from analytics.rates import Formula, growth_rate
+from analytics.readable import Readable
 from analytics.series import (
     PERIOD_NOUN,
     PERIODS_PER_YEAR,
@@ -17,7 +18,7 @@ from analytics.series import (
 
 
 @dataclass(frozen=True, eq=False)
-class BaseEffects:
+class BaseEffects(Readable):
     """Result of `base_effects`; all in percentage points or percent, oldest period first.
 
     Attributes
@@ -45,7 +46,7 @@ class BaseEffects:
 
 
 @dataclass(frozen=True, eq=False)
-class DropOuts:
+class DropOuts(Readable):
     """Result of `drop_outs`: the year of rates that is still to leave the yearly rate.
 
     Attributes

@@ -7,6 +7,7 @@ import pandas as pd
 
 from analytics.print_rates import growing
 from analytics.rates import Formula
+from analytics.readable import Readable
 from analytics.series import (
     PERIODS_PER_YEAR,
     FloatArray,
@@ -16,7 +17,7 @@ from analytics.series import (
 
 
 @dataclass(frozen=True)
-class CarryOver:
+class CarryOver(Readable):
     """Result of `carry_over`.
 
     Attributes
@@ -37,7 +38,7 @@ class CarryOver:
 
 
 @dataclass(frozen=True, eq=False)
-class Path:
+class Path(Readable):
     """Result of `path_if`: the coming periods if each brings the same rate.
 
     Attributes

@@ -8,6 +8,7 @@ from numpy.typing import ArrayLike
 from scipy.special import stdtr
 
 from analytics.rates import trailing_mean
+from analytics.readable import Readable
 from analytics.series import FloatArray, read_only
 from analytics.surface import (
     IntArray,
@@ -22,7 +23,7 @@ ELLIPSE_STEPS = 72
 
 
 @dataclass(frozen=True, eq=False)
-class SliceMeans:
+class SliceMeans(Readable):
     """Mean of one side within slices of the other, all of the same width.
 
     Attributes
@@ -44,7 +45,7 @@ class SliceMeans:
 
 
 @dataclass(frozen=True, eq=False)
-class LagCell:
+class LagCell(Readable):
     """One window and one shift in full; every array is read-only.
 
     Attributes

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from analytics.readable import Readable
 from analytics.series import FloatArray, read_only
 
 _TIE = 1e-12  # cumulated weights this near one half count as one half
@@ -141,7 +142,7 @@ def centred_mean(values: ArrayLike, width: int) -> FloatArray:
 
 
 @dataclass(frozen=True, eq=False)
-class Tracking:
+class Tracking(Readable):
     """Result of `core_tracking`; all in percentage points.
 
     Attributes

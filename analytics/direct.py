@@ -8,6 +8,7 @@ from numpy.typing import ArrayLike
 from analytics.outlook import outlook_arrays
 from analytics.outlook_target import Target
 from analytics.rates import trailing_mean
+from analytics.readable import Readable
 from analytics.series import FloatArray, read_only
 from analytics.surface import IntArray, locked, smallest_variance
 
@@ -15,7 +16,7 @@ _SPARE = 12  # rows beyond the regressors that a regression must have
 
 
 @dataclass(frozen=True, eq=False)
-class DirectForecasts:
+class DirectForecasts(Readable):
     """Result of `direct_forecasts`; arrays of shape (H,), read-only.
 
     Attributes

@@ -7,6 +7,7 @@ from numpy.typing import ArrayLike
 from scipy import special
 
 from analytics.families import FAMILIES
+from analytics.readable import Readable
 from analytics.series import FloatArray, read_only
 
 FEWEST = 20
@@ -14,7 +15,7 @@ _LOG_2PI = float(np.log(2.0 * np.pi))
 
 
 @dataclass(frozen=True, eq=False)
-class Fit:
+class Fit(Readable):
     """Result of `distribution_fit`.
 
     Attributes
@@ -61,7 +62,7 @@ class Fit:
 
 
 @dataclass(frozen=True, eq=False)
-class KernelFit:
+class KernelFit(Readable):
     """Result of `kernel_fit`: a sum of normal bells, one on each value.
 
     Attributes

@@ -14,6 +14,7 @@ from scipy import special
 from analytics.autoregression import autoregression
 from analytics.distribution import Fit, distribution_fit, sample
 from analytics.families import FAMILIES
+from analytics.readable import Readable
 from analytics.series import FloatArray, read_only
 
 CHUNK = 50  # draws that are simulated and fitted at a time
@@ -103,7 +104,7 @@ class GoodnessChunk:
 
 
 @dataclass(frozen=True, eq=False)
-class Goodness:
+class Goodness(Readable):
     """Result of `goodness_result`.
 
     Attributes

@@ -6,6 +6,7 @@ import numpy as np
 import pandas as pd
 
 from analytics.rates import growth_rate
+from analytics.readable import Readable
 from analytics.series import PERIOD_NOUN, PERIODS_PER_YEAR, Series, period_code
 
 CAGAN_PERCENT = 50.0  # a month: Cagan (1956)
@@ -13,7 +14,7 @@ HYPERINFLATION_MARK = 100.0  # percent over three years: IAS 29, paragraph 3(e)
 
 
 @dataclass(frozen=True)
-class Run:
+class Run(Readable):
     """A contiguous run of periods.
 
     Attributes

@@ -6,9 +6,11 @@ from itertools import pairwise
 from typing import Literal
 
 import numpy as np
+import pandas as pd
 from numpy.typing import ArrayLike
 
 from analytics.partial_cell import BoolArray, PartialCell, Relation
+from analytics.readable import Readable
 from analytics.series import FloatArray, read_only
 from analytics.surface import locked
 
@@ -18,7 +20,7 @@ _TURN = 0.5  # robust z beyond which the driver counts as high or low
 
 
 @dataclass(frozen=True, eq=False)
-class Episode:
+class Episode(Readable):
     """A run of pairs in which the driver stays high or low, and the cell without that run.
 
     Attributes
@@ -67,7 +69,7 @@ class Episode:
 
 
 @dataclass(frozen=True, eq=False)
-class InfluenceResult:
+class InfluenceResult(Readable):
     """Result of `episodes`.
 
     Attributes
@@ -104,9 +106,13 @@ class InfluenceResult:
     removals: int
     level: float
 
+    def to_frame(self) -> pd.DataFrame:
+        """One line an episode, in calendar order: its place, share, and the slope without it."""
+        return pd.concat([episode.to_frame() for episode in self.episodes], ignore_index=True)
+
 
 @dataclass(frozen=True, eq=False)
-class CellWithout:
+class CellWithout(Readable):
     """Result of `cell_without`; arrays are read-only.
 
     Attributes

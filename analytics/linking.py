@@ -7,13 +7,14 @@ from typing import Literal, get_args
 import numpy as np
 import pandas as pd
 
+from analytics.readable import Readable
 from analytics.series import PERIOD_NOUN, PERIODS_PER_YEAR, Series, period_label
 
 Treatment = Literal["exclude", "before", "after", "overlap", "overlap_mean"]
 
 
 @dataclass(frozen=True, eq=False)
-class Linked:
+class Linked(Readable):
     """A series with its earlier or its whole part multiplied by a factor.
 
     Attributes

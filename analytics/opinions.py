@@ -12,6 +12,7 @@ from analytics.distributed_lag import DistributedLag, distributed_lag
 from analytics.effective import without_season
 from analytics.prewhitening import PrewhitenedCorrelation, prewhitened_correlation
 from analytics.projections import LocalProjections, local_projections
+from analytics.readable import Readable
 from analytics.robust import surface_inference
 from analytics.series import PERIOD_NOUN
 from analytics.surface import growth_pair, lag_surface
@@ -90,7 +91,7 @@ class Opinion:
 
 
 @dataclass(frozen=True, eq=False)
-class SecondOpinions:
+class SecondOpinions(Readable):
     """Result of `second_opinions`.
 
     Attributes

@@ -8,12 +8,13 @@ from numpy.typing import ArrayLike
 from analytics.cell import lag_cell
 from analytics.outlook_target import Compounding, outlook_target
 from analytics.rates import trailing_mean
+from analytics.readable import Readable
 from analytics.series import FloatArray, read_only
 from analytics.surface import IntArray, locked
 
 
 @dataclass(frozen=True, eq=False)
-class ImpliedPath:
+class ImpliedPath(Readable):
     """Result of `implied_path`; arrays are read-only.
 
     Attributes
@@ -58,7 +59,7 @@ class ImpliedPath:
 
 
 @dataclass(frozen=True, eq=False)
-class RelationGap:
+class RelationGap(Readable):
     """Result of `relation_gap`; arrays of shape (m,), read-only.
 
     Attributes

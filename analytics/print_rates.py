@@ -6,11 +6,12 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from analytics.rates import Formula, growth_rate, trailing_mean
+from analytics.readable import Readable
 from analytics.series import PERIOD_NOUN, PERIODS_PER_YEAR, FloatArray, Series, period_label
 
 
 @dataclass(frozen=True)
-class PrintRates:
+class PrintRates(Readable):
     """Result of `print_rates`; nan where the series is too short or has a gap there.
 
     Attributes

@@ -8,6 +8,7 @@ import numpy as np
 import pandas as pd
 from numpy.typing import ArrayLike, NDArray
 
+from analytics.readable import Readable
 from analytics.series import FloatArray, Series, read_only
 
 MIN_PRINTS = 24
@@ -16,7 +17,7 @@ IntArray = NDArray[np.int64]
 
 
 @dataclass(frozen=True, eq=False)
-class Revisions:
+class Revisions(Readable):
     """Result of `revisions`; every array has shape (n,) and is read-only.
 
     Attributes
@@ -124,7 +125,7 @@ def revisions(vintages: Sequence[Series]) -> Revisions:
 
 
 @dataclass(frozen=True)
-class BiasTest:
+class BiasTest(Readable):
     """Result of `bias_test`: the line through revisions over first prints, and the joint test.
 
     Attributes

@@ -21,6 +21,7 @@ from analytics.effective import (
     student_t,
     without_season,
 )
+from analytics.readable import Readable
 from analytics.series import FloatArray, read_only
 from analytics.surface import IntArray, growth_pair, lag_surface, smallest_variance
 
@@ -60,7 +61,7 @@ class ParameterPlane:
 
 
 @dataclass(frozen=True, eq=False)
-class CellInference:
+class CellInference(Readable):
     """Inference on one cell, as if it had been the only one looked at.
 
     Attributes
@@ -112,7 +113,7 @@ class CellInference:
 
 
 @dataclass(frozen=True, eq=False)
-class SurfaceInference:
+class SurfaceInference(Readable):
     """Per-cell inference in every cell of a grid; arrays are read-only.
 
     Attributes

@@ -8,6 +8,7 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
+import pandas as pd
 from numpy.typing import ArrayLike, NDArray
 
 from analytics.search_plan import CHUNK, SHIFTS, WINDOWS, SearchPlan, search_plan
@@ -115,6 +116,31 @@ class SearchResult:
         return (
             f"SearchResult(best cell window {self.best_window}, shift {self.best_shift},"
             f" r {self.best_correlation:.2f}, search-adjusted p {self.p:.3g})"
+        )
+
+    @property
+    def verdict(self) -> str:
+        """The result in one sentence, for reading; windows and shifts count periods."""
+        p = "below .001" if self.p < 0.001 else f"{self.p:.3f}".lstrip("0")
+        removed = ", level shifts removed," if self.level_shifts_removed else ""
+        return (
+            f"Of windows {self.windows[0]} to {self.windows[-1]} and shifts {self.shifts[0]:+d} to"
+            f" {self.shifts[-1]:+d}{removed} window {self.best_window} at shift"
+            f" {self.best_shift:+d} stands out most (correlation {self.best_correlation:+.2f});"
+            f" an unrelated driver does as well with probability {p} (search-adjusted, two-sided,"
+            f" {self.surrogates} surrogates, seed {self.seed}). An association, not a cause."
+        )
+
+    def to_frame(self) -> pd.DataFrame:
+        """One line a cell: window, shift, correlation, z, search-adjusted p."""
+        return pd.DataFrame(
+            {
+                "window": np.repeat(self.windows, self.shifts.size),
+                "shift": np.tile(self.shifts, self.windows.size),
+                "correlation": self.correlation.ravel(),
+                "z": self.z.ravel(),
+                "p": self.p_cell.ravel(),
+            }
         )
 
 

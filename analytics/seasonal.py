@@ -6,6 +6,7 @@ from typing import Literal, get_args
 import numpy as np
 import pandas as pd
 
+from analytics.readable import Readable
 from analytics.series import (
     PERIOD_NOUN,
     PERIODS_PER_YEAR,
@@ -21,7 +22,7 @@ _CALENDAR: dict[Frequency, str] = {"monthly": "M", "quarterly": "Q-DEC", "annual
 
 
 @dataclass(frozen=True, eq=False)
-class SeasonalAdjustment:
+class SeasonalAdjustment(Readable):
     """Result of `seasonal_adjustment`, on the calendar of the series.
 
     Attributes

@@ -240,6 +240,18 @@ class Pair:
     lost_driver: int
     lost_response: int
 
+    def __repr__(self) -> str:
+        return (
+            f"Pair({self.driver.name!r} with {self.response.name!r},"
+            f" {period_label(self.driver.first)} to {period_label(self.driver.last)},"
+            f" {self.n} {PERIOD_NOUN[self.driver.frequency]}s)"
+        )
+
+    def to_frame(self) -> pd.DataFrame:
+        """Two columns, driver and response, on the common calendar."""
+        columns = {"driver": self.driver.values, "response": self.response.values}
+        return pd.DataFrame(columns, index=self.periods)
+
     @property
     def periods(self) -> pd.PeriodIndex:
         """The common calendar, shape (n,)."""

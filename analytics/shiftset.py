@@ -10,9 +10,11 @@ from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 
 import numpy as np
+import pandas as pd
 from numpy.typing import ArrayLike
 
 from analytics.kernel import response_kernel
+from analytics.readable import Readable
 from analytics.search_plan import SHIFTS, whole
 from analytics.series import FloatArray, read_only
 from analytics.shift_simulation import (
@@ -82,7 +84,7 @@ class ShiftSetChunk:
 
 
 @dataclass(frozen=True, eq=False)
-class ShiftSet:
+class ShiftSet(Readable):
     """Result of `shift_set`; every array is read-only.
 
     Attributes
@@ -118,6 +120,17 @@ class ShiftSet:
     preview: IntArray
     draws: int
     seed: int
+
+    def to_frame(self) -> pd.DataFrame:
+        """One line a candidate: shift, correlation, p as the true shift, in the set or not."""
+        return pd.DataFrame(
+            {
+                "shift": self.candidates,
+                "correlation": self.correlation,
+                "p": self.p_by_shift,
+                "in_set": np.isin(self.candidates, self.shifts),
+            }
+        )
 
 
 def shift_set_preview(

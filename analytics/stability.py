@@ -8,12 +8,13 @@ from numpy.typing import ArrayLike
 from analytics.autoregression import autoregression
 from analytics.effective import without_season
 from analytics.rates import trailing_mean
+from analytics.readable import Readable
 from analytics.series import FloatArray, read_only
 from analytics.surface import IntArray, growth_pair, locked, smallest_variance
 
 
 @dataclass(frozen=True, eq=False)
-class Course:
+class Course(Readable):
     """One statistic in sample after sample; arrays have shape (R,) and are read-only.
 
     Attributes
@@ -36,7 +37,7 @@ class Course:
 
 
 @dataclass(frozen=True, eq=False)
-class Stability:
+class Stability(Readable):
     """Result of `rolling_stability`.
 
     Attributes

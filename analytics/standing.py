@@ -6,13 +6,14 @@ from typing import Literal, get_args
 import numpy as np
 from numpy.typing import ArrayLike
 
+from analytics.readable import Readable
 from analytics.series import FloatArray, Series, read_only
 
 RankKind = Literal["mean", "weak", "strict"]
 
 
 @dataclass(frozen=True, eq=False)
-class Standing:
+class Standing(Readable):
     """Result of `standing`.
 
     Attributes

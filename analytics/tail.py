@@ -8,11 +8,12 @@ from scipy import special
 
 from analytics.families import FAMILIES
 from analytics.goodness import Goodness
+from analytics.readable import Readable
 from analytics.series import FloatArray
 
 
 @dataclass(frozen=True)
-class Tail:
+class Tail(Readable):
     """Probability of a reading at least as high, and its interval.
 
     Attributes

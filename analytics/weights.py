@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from analytics.readable import Readable
 from analytics.series import FloatArray, read_only
 
 IntArray = NDArray[np.int64]
@@ -108,7 +109,7 @@ def price_updated(weights: ArrayLike, relatives: ArrayLike) -> FloatArray:
 
 
 @dataclass(frozen=True, eq=False)
-class ChainedBasket:
+class ChainedBasket(Readable):
     """Result of `chained_basket`; every array is read-only.
 
     Attributes

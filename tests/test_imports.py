@@ -47,6 +47,7 @@ def rule(allowed: str, *, types_only: str = "", pure: bool = False, slow: bool =
 # The longest matching start of a path counts. `app -> analytics`, never back; figures draw
 # results and pages place them, both without computing; intake and state know no web page.
 RULES = {
+    "analytics/__init__.py": rule("analytics"),  # finds its modules when they are asked for
     "analytics/": rule("analytics numpy scipy pandas statsmodels", pure=True),
     "analytics/hac_loop.py": rule("analytics numba numpy", pure=True, slow=True),
     "app/": rule(
