@@ -54,11 +54,7 @@ def strip_values(found):
         return inner if isinstance(inner, str) else inner.children
 
     return [
-        tuple(
-            first(part)
-            for part in parts(item)
-            if type(part).__name__ in ("Dt", "Dd")
-        )
+        tuple(first(part) for part in parts(item) if type(part).__name__ in ("Dt", "Dd"))
         for item in found["strip"]
     ]
 
@@ -125,7 +121,8 @@ def test_when_all_is_done_the_page_shows_what_python_completes():
         ("search-adjusted p", p_words(search.p)),
     ]
     worth = round(known.inference.effective_months)
-    assert values[3] == (f"{known.inference.n} months behave like {worth} independent ones",)
+    said = f"{known.inference.n} months behave like {worth} independent ones"
+    assert values[3] == ("effective months", said)
     assert f"One-sided {p_words(search.p_one_sided)}." in text(found["strip"])
 
 
