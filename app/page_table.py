@@ -16,7 +16,7 @@ from app.reading.bridge import WORK as READING_WORK
 from app.scan import exports as scan_exports
 from app.scan.bridge import WORK as SCAN_WORK
 
-PAGES = (data, reading, breadth, lag, scan, outlook, brief)
+PAGES = (data, reading, breadth, lag, outlook, scan, brief)
 WORKS = {
     "lag": WORK,
     "outlook": OUTLOOK_WORK,

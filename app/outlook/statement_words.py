@@ -11,6 +11,8 @@ from app.outlook.words import looked_at
 from app.pages.as_of import day_words
 from app.words import counted, plain
 
+SHOWN = 6  # the newest statements; earlier ones fold out
+
 
 def statement_parts(known: Outlook) -> dict[str, Any]:
     """Return the places that follow the statements of the workspace."""
@@ -51,7 +53,13 @@ def _list(known: Outlook) -> list[Any]:
                 " later prints are held against it, and it can never be altered."
             ),
         ]
-    return [*refused, *_running(known), *(_statement(one, known) for one in known.judged[::-1])]
+    shown = [_statement(one, known) for one in known.judged[::-1]]
+    earlier = shown[SHOWN:]
+    fold = html.Details(
+        [html.Summary(counted(len(earlier), "earlier statement")), *earlier],
+        **{"data-stays": "statements-earlier"},
+    )
+    return [*refused, *_running(known), *shown[:SHOWN], *([fold] if earlier else [])]
 
 
 def _running(known: Outlook) -> list[Any]:

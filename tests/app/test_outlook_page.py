@@ -154,6 +154,18 @@ def test_statements_are_listed_with_what_came_of_them():
     )
 
 
+def test_earlier_statements_fold_away():
+    desk = released(140)
+    bridge = Bridge(desk)
+    for number in range(8):
+        say(STATE, f"View {number}.", "", bridge)
+    listed = page.answer(STATE, bridge).words["statements-words"]
+    fold = listed[-1]
+    assert text_of(fold).startswith("2 earlier statements")
+    assert "View 0." in text_of(fold)
+    assert "View 2." not in text_of(fold)
+
+
 def test_a_statement_whose_series_are_gone_is_shown_and_not_scored():
     desk = released(140)
     say(STATE, "Prices ease.", "", Bridge(desk))

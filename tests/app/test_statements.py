@@ -2,6 +2,7 @@
 
 import json
 import sqlite3
+import threading
 from dataclasses import replace
 
 import numpy as np
@@ -138,6 +139,31 @@ def test_superseding_keeps_the_original_and_happens_once(store):
     with pytest.raises(StatementError, match="there is no number 7"):
         keep_statement(store, said(supersedes=7), "2024-12-13")
     assert len(kept_statements(store).statements) == 2
+
+
+def test_of_two_programs_that_supersede_the_same_statement_one_is_refused(tmp_path):
+    programs = [Store(tmp_path / "w.sqlite"), Store(tmp_path / "w.sqlite")]
+    first = keep_statement(programs[0], said(), "2024-11-12")
+    answers: list[object] = []
+
+    def supersede(store):
+        try:
+            answers.append(keep_statement(store, said(supersedes=first), "2024-12-12"))
+        except StatementError as error:
+            answers.append(str(error))
+
+    threads = [threading.Thread(target=supersede, args=(one,)) for one in programs]
+    for thread in threads:
+        thread.start()
+    for thread in threads:
+        thread.join()
+    assert sorted(map(str, answers)) == [
+        "2",
+        "statement 1 is superseded by statement 2 already; supersede that one",
+    ]
+    for one in programs:
+        assert len(kept_statements(one).statements) == 2
+        one.close()
 
 
 def test_statements_make_the_round_trip_through_a_folder(tmp_path, store):
