@@ -22,6 +22,7 @@ from app.breadth.core import core_measures, left_out_of
 from app.breadth.panel import ALL_ITEMS, Panel, chained, components, panel
 from app.breadth.totals import aligned, chosen_total, ended_with_total
 from app.compute import Bridge
+from app.intake.problems import counted, quoted
 from app.state import StateError, ViewState, kind_of
 from app.workspace import WorkspaceView
 
@@ -196,6 +197,7 @@ def _computed(
                 "No published total is loaded that these weights chain to; the total here"
                 " is chained from the components."
             )
+    notes += _seasonal(shown, found, span)
     there = _there(shown, basket)
     rates = np.where(there, change(shown.prices, span), np.nan)
     rates_1 = np.where(there, change(shown.prices, 1), np.nan)
@@ -247,6 +249,21 @@ def _computed(
         table.source,
         table.fingerprint,
     )
+
+
+def _seasonal(shown: Panel, found: Mapping[str, Series], span: int) -> list[str]:
+    """Say that rates over less than a year hold the season of unadjusted components."""
+    if span == PERIODS_PER_YEAR[shown.frequency]:
+        return []
+    bare = [name for name in shown.names if found[name].adjustment == "no"]
+    if not bare:
+        return []
+    verb = "is" if len(bare) == 1 else "are"
+    return [
+        f"{counted(quoted(bare[0]), len(bare) - 1, 'component')} {verb} said to be unadjusted:"
+        f" rates over one {PERIOD_NOUN[shown.frequency]} hold the season. It is not taken out"
+        " here, since contributions must add up to the published total."
+    ]
 
 
 def _until(whole: Panel, state: ViewState) -> Panel:

@@ -345,3 +345,12 @@ def test_names_are_matched_whatever_their_case():
 def test_codes_before_names_are_not_said():
     assert short_name("04.5.1 Electricity") == "Electricity"
     assert short_name("7up") == "7up"
+
+
+def test_rates_over_one_month_of_unadjusted_components_say_so():
+    here = Bridge(Workspace(demo_releases()))
+    monthly = breadth(ViewState(span="month"), here).notes
+    assert any(
+        "'01 Food and soft drinks' (and 11 more components) are said to be" in n for n in monthly
+    )
+    assert not any("unadjusted" in note for note in breadth(ViewState(), here).notes)

@@ -4,6 +4,7 @@ import json
 
 import pytest
 from selenium.webdriver.common.by import By
+from selenium.webdriver.support.ui import Select
 
 from app.demo import demo_releases
 from app.workspace import Workspace
@@ -74,3 +75,22 @@ def test_a_mark_by_hand_and_one_that_cannot_be(desk):
     until(browser, "document.querySelector('#breaks-message .good')")
     (mark,) = here.as_of().marks
     assert mark.period == "1990-01"
+    until(browser, "document.querySelector('[data-break=unmark]')")  # the page is drawn anew
+    until(browser, "document.querySelector('[data-break-box=form] #break-period')")
+    choose = "document.querySelector('[data-break-box=form] [data-part={}]')"
+    assert browser.execute_script(f"return {choose.format('other')}.hidden")
+    box = browser.find_element(By.CSS_SELECTOR, "[data-break-box=form]")
+    for part, value in (
+        ("series", "Narrow money"),
+        ("treatment", "overlap-mean"),
+        ("other", "Broad money"),
+    ):
+        Select(box.find_element(By.CSS_SELECTOR, f"[data-part={part}]")).select_by_value(value)
+    field = browser.find_element(By.ID, "break-period")
+    field.clear()
+    field.send_keys("1987-07")
+    box.find_element(By.XPATH, ".//button").click()
+    until(browser, "document.querySelectorAll('[data-break=unmark]').length === 2")
+    assert "overlap-mean:Broad money" in [mark.treatment for mark in here.as_of().marks]
+    assert "spliced by overlap with Broad money, by the means of a year" in words(browser)
+    assert browser.execute_script("return document.getElementById('data-break-form').open")

@@ -1,12 +1,14 @@
 """Files in through the browser: what a person sees when they are good, and when they are not."""
 
 import json
+from pathlib import Path
 
 import numpy as np
 import pandas as pd
 import pytest
 from selenium.webdriver.common.by import By
 from selenium.webdriver.common.keys import Keys
+from selenium.webdriver.support.ui import Select
 
 from analytics.cell import lag_cell
 from analytics.series import Series
@@ -241,6 +243,22 @@ def test_files_are_dropped(data):
     gone(browser)
     until(browser, "document.querySelectorAll('#data-series tbody tr').length === 3")
     assert [each.name for each in here.releases] == ["one.csv", "two.csv"]
+
+
+def test_another_sheet_of_a_workbook_is_read_in_the_preview(data):
+    browser, _, here = data
+    book = Path(__file__).resolve().parents[1] / "data" / "xlsx_second_sheet.xlsx"
+    choose(browser, book)
+    assert "Broad money" in previewed(browser)
+    sheet = "#data-preview [data-sheet]"
+    for name, said in (("Quarterly", "1 series read"), ("Contents", "must be a month, a quarter")):
+        Select(browser.find_element(By.CSS_SELECTOR, sheet)).select_by_value(name)
+        until(browser, f"document.getElementById('intake-message').innerText.includes('{said}')")
+    until(browser, f"document.querySelector('{sheet}').value === 'Quarterly'")  # the one held
+    assert "xlsx_second_sheet.xlsx, Quarterly" in previewed(browser)
+    act(browser, "keep")
+    gone(browser)
+    assert [one.frequency for one in here.series.values()] == ["quarterly"]
 
 
 def test_a_file_of_forty_megabytes_is_read_or_refused_in_a_sentence(data, tmp_path):
