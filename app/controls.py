@@ -98,7 +98,7 @@ def slider(
     )
 
 
-def save_buttons(view: str) -> html.Div:
+def save_buttons(view: str, *, table: bool = True) -> html.Div:
     """Return the buttons of a view: its numbers as a table, files to save, a place in the brief."""
     buttons = [
         html.Button(
@@ -106,9 +106,10 @@ def save_buttons(view: str) -> html.Div:
         )
         for kind in ("PNG", "SVG")
     ]
-    table = html.Button("Table", type="button", **{"data-table": view, "aria-expanded": "false"})
+    shown = html.Button("Table", type="button", **{"data-table": view, "aria-expanded": "false"})
     kept = html.Button("Add to brief", type="button", **{"data-brief": view})
-    return html.Div([table, *buttons, _csv_link(view), kept], className="save")
+    first = [shown] if table else []
+    return html.Div([*first, *buttons, _csv_link(view), kept], className="save")
 
 
 def csv_button(view: str) -> html.Div:

@@ -108,8 +108,8 @@ def surface_maps(
     return go.Figure(traces, layout)
 
 
-def shift_bars(bins: Sequence[Bin], width: int, unit: str) -> go.Figure:
-    """Draw how many pairs have their best shift where; those that hold at the bottom."""
+def shift_bars(bins: Sequence[Bin], width: int, span: tuple[int, int], unit: str) -> go.Figure:
+    """Draw how many pairs have their best shift where, over the shifts that were searched."""
     where = [middle for middle, _, _ in bins]
     key = [
         ("block", "driver", "hold once all pairs are paid for"),
@@ -140,8 +140,15 @@ def shift_bars(bins: Sequence[Bin], width: int, unit: str) -> go.Figure:
             "zerolinecolor": colour("ink"),
             "zerolinewidth": 0.7,
             "showgrid": False,
+            "range": [span[0] - width, span[1] + width],
+            "tick0": 0,
+            "dtick": {"month": 12, "quarter": 4}.get(unit, 1),
         },
-        yaxis={"title": {"text": "pairs"}, "rangemode": "tozero", "tickformat": "d", "nticks": 6},
+        yaxis={
+            "title": {"text": "pairs"},
+            "rangemode": "tozero",
+            "dtick": max(1, math.ceil(max(held + other for _, held, other in bins) / 6)),
+        },
         meta={"key": key},
     )
     return figure

@@ -52,6 +52,8 @@ def layout(query: str, bridge: Bridge) -> html.Div:
             controls.select(state, "correction"),
             controls.text(state, "first", placeholder="earliest"),
             controls.text(state, "last", placeholder="newest"),
+            controls.text(state, "windows", placeholder="usual"),
+            controls.text(state, "shifts", placeholder="usual"),
             controls.number(state, "surrogates"),
             controls.number(state, "seed"),
         ],
@@ -61,12 +63,24 @@ def layout(query: str, bridge: Bridge) -> html.Div:
             html.Div(
                 [
                     html.Section(
-                        [_head("pairs", "Every pair"), html.Div(id=f"{NAME}-pairs")],
+                        [
+                            html.Div(
+                                [html.H2("Every pair"), controls.csv_button("pairs")],
+                                className="view-head",
+                            ),
+                            html.Div(id=f"{NAME}-pairs"),
+                        ],
                         className="view wide",
                     ),
                     html.Section(
                         [
-                            controls.view_head("surfaces", "The map of each pair"),
+                            html.Div(
+                                [
+                                    html.H2("The map of each pair"),
+                                    controls.save_buttons("surfaces", table=False),
+                                ],
+                                className="view-head",
+                            ),
                             html.Div(id=f"{NAME}-surfaces-words", className="view-words"),
                             html.Div(
                                 html.Div(id=f"{NAME}-maps"),
@@ -127,9 +141,9 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
         )
         words["maps"] = map_list(known, drawn_pairs(known), best, stamp)
     if known.panel is not None:
-        width, bins = shift_bins(known)
+        width, bins, span = shift_bins(known)
         if bins:
-            charts["shifts"] = figures.shift_bars(bins, width, unit)
+            charts["shifts"] = figures.shift_bars(bins, width, span, unit)
     if known.averages is not None:
         charts["averages"] = figures.average_points(
             known.averages,
@@ -156,11 +170,6 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
         words,
         {"scan": f"Searching {len(asked.pairs)} pairs"} if waiting and not held else {},
     )
-
-
-def _head(view: str, words: str) -> html.Div:
-    link = html.A("Save CSV", id=f"csv-{view}", className="button", **{"data-csv": view})
-    return html.Div([html.H2(words), html.Div([link], className="save")], className="view-head")
 
 
 def _notes(known: Scan, bridge: Bridge, *, held: bool) -> list[Any]:

@@ -92,8 +92,11 @@ def lag_address(scan: PairScan | PanelPair, state: ViewState) -> str:
     return f"/lag?{ViewState(**named, **carried).to_query()}"
 
 
-def shift_bins(known: Scan) -> tuple[int, list[tuple[float, int, int]]]:
-    """Return how many pairs have their best shift where: bin width, and middle, found, others.
+def shift_bins(known: Scan) -> tuple[int, list[tuple[float, int, int]], tuple[int, int]]:
+    """Return how many pairs have their best shift where.
+
+    These are the width of a bin; middle, pairs found and others of each bin; and the shifts that
+    were searched, lowest and highest.
 
     Bins are three months wide, one period for quarters and years; shift 0 is the middle of one.
     """
@@ -103,7 +106,12 @@ def shift_bins(known: Scan) -> tuple[int, list[tuple[float, int, int]]]:
     for row in rows:
         middle = round(row.scan.shift / width) * width
         counts.setdefault(middle, [0, 0])[0 if row.found else 1] += 1
-    return width, [(float(middle), *counts[middle]) for middle in sorted(counts)]
+    pairs = known.question.pairs
+    span = (
+        min((pair.shifts[0] for pair in pairs), default=0),
+        max((pair.shifts[-1] for pair in pairs), default=0),
+    )
+    return width, [(float(middle), *counts[middle]) for middle in sorted(counts)], span
 
 
 def named_economies(found: LongAverages) -> tuple[str, ...]:

@@ -129,11 +129,14 @@ def shift_words_of(known: Scan) -> str:
         return "No pair holds, so the best shifts say nothing."
     shifts = np.array([scan.shift for scan in found])
     low, high, middle = int(shifts.min()), int(shifts.max()), float(np.median(shifts))
+    held = "holds" if len(found) == 1 else "hold"
+    which = f"The best shift of the {counted(len(found), 'pair')} that {held}"
+    if low == high:
+        return f"{which} is {shift_words(low, unit)}; above 0 the driver leads."
     return (
-        f"The best shift of the {counted(len(found), 'pair')} that"
-        f" {'holds' if len(found) == 1 else 'hold'} lies from {signed(low, 0)} to"
-        f" {signed(high, 0)} {unit}s, with {signed(middle, 0 if middle.is_integer() else 1)} in the"
-        " middle; above 0 the driver leads."
+        f"{which} lies from {signed(low, 0)} to {signed(high, 0)} {unit}s, with"
+        f" {signed(middle, 0 if middle.is_integer() else 1)} in the middle; above 0 the driver"
+        " leads."
     )
 
 

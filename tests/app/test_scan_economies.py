@@ -209,8 +209,8 @@ def test_among_equal_p_the_strongest_stands_first(known):
 
 
 def test_bins_count_every_searched_pair_once(known):
-    width, bins = shift_bins(known)
-    assert width == 3
+    width, bins, span = shift_bins(known)
+    assert (width, span) == (3, (-2, 8))
     assert sum(held for _, held, _ in bins) == 3
     assert sum(held + other for _, held, other in bins) == 5
     assert [middle for middle, held, _ in bins if held] == [6.0]  # shift 5 lies in 5, 6 and 7
