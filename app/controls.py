@@ -101,9 +101,7 @@ def slider(
 def save_buttons(view: str, *, table: bool = True) -> html.Div:
     """Return the buttons of a view: its numbers as a table, files to save, a place in the brief."""
     buttons = [
-        html.Button(
-            f"Save {kind}", **{"data-save": kind.lower(), "data-view": view, "type": "button"}
-        )
+        html.Button(_save(kind), **{"data-save": kind.lower(), "data-view": view, "type": "button"})
         for kind in ("PNG", "SVG")
     ]
     shown = html.Button("Table", type="button", **{"data-table": view, "aria-expanded": "false"})
@@ -118,7 +116,12 @@ def csv_button(view: str) -> html.Div:
 
 
 def _csv_link(view: str) -> html.A:
-    return html.A("Save CSV", id=f"csv-{view}", className="button", **{"data-csv": view})
+    return html.A(_save("CSV"), id=f"csv-{view}", className="button", **{"data-csv": view})
+
+
+def _save(kind: str) -> list[Any]:
+    """Return the words of a button; where room is short, only the first says the verb."""
+    return [html.Span("Save\N{NO-BREAK SPACE}", className="verb"), kind]
 
 
 def view_head(view: str, words: str, *tools: html.Details) -> html.Div:

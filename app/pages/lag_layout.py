@@ -20,7 +20,7 @@ KEYS = {
         ("Ctrl + Home, Ctrl + End", "least and largest window (on the map)"),
     ),
     "Anywhere outside a text field": (
-        ("Space", "play or pause"),
+        ("Space", "play or pause, while the player is open"),
         ("Ctrl + Z", "back to the state before"),
         ("Ctrl + Shift + Z", "forward again"),
         ("P", "pin the chosen cell"),
