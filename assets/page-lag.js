@@ -5,7 +5,7 @@
   "use strict";
   const pricewake = (window.pricewake = window.pricewake || {});
   const { calendar, ghost, theme, controls, words, lagCell, lagMap, lagScatter, lagTime } = pricewake;
-  const RESTING = 140; // milliseconds without a move
+  const RESTING = 140, HOLDING = 500; // milliseconds without a move; while the pointer is held down
   const SLIDERS = ["window", "shift", "band_place", "band_width"]; // moved by the hand
   const DRAWN_HERE = ["points", "band", "band_place", "band_width"]; // the server need not answer
   const OF_THE_CELL = ["window", "shift", "without", "pinned", "peaks", "other_responses", ...DRAWN_HERE];
@@ -71,7 +71,7 @@
     if ("window" in changes || "shift" in changes) document.querySelector(".lag-page").classList.add("stale");
     if (!page.frame) page.frame = requestAnimationFrame(draw);
     clearTimeout(page.timer);
-    page.timer = page.held ? 0 : setTimeout(settle, RESTING);
+    page.timer = page.held ? 0 : setTimeout(settle, page.pressed ? HOLDING : RESTING);
   }
 
   /* While the player plays, nothing settles. */
@@ -211,6 +211,17 @@
     if (!state || !page.data || asked(state) === page.question) return window.dash_clientside.no_update;
     page.question = asked(state);
     return page.question;
+  }
+
+  /* A pause in the middle of a drag is no rest: on a slow machine a redraw would break the drag. */
+  document.addEventListener("pointerdown", (event) => {
+    page.pressed = Boolean(event.target.closest?.("input[type=range], .plot.scatter"));
+  }, true);
+  for (const kind of ["pointerup", "pointercancel"]) {
+    document.addEventListener(kind, () => {
+      if (page.pressed && page.timer) { clearTimeout(page.timer); page.timer = setTimeout(settle, RESTING); }
+      page.pressed = false;
+    }, true);
   }
 
   controls.on("input", (field, element) => {

@@ -119,20 +119,21 @@ def payload(state: ViewState, bridge: Bridge) -> dict[str, Any]:
 
 
 def _drawn(shown: LagView, bridge: Bridge) -> dict[str, Any]:
-    """Return the three charts; drawing them takes longer than computing them, so they are kept."""
+    """Return the three charts; drawing takes longer than computing, so they are kept as text."""
     pair, state = shown.pair, shown.state
     units = f"{pair.driver.unit}|{pair.response.unit}"
 
-    def make() -> dict[str, Any]:
+    def make() -> dict[str, str]:
         holes = left_out_spans(pair, state)
         p = p_map(state, bridge)
         return {
-            "surface": _plain(figures.surface_heatmap(shown.surface, pair, state, p)),
-            "scatter": _plain(scatter(shown, bridge)),
-            "overlay": _plain(figures.overlay_lines(shown.overlay, pair, state, holes)),
+            "surface": str(figures.surface_heatmap(shown.surface, pair, state, p).to_json()),
+            "scatter": str(scatter(shown, bridge).to_json()),
+            "overlay": str(figures.overlay_lines(shown.overlay, pair, state, holes).to_json()),
         }
 
-    return bridge.memory.once(f"drawn:{bridge.key(state)}:{state.to_query()}:{units}", make)
+    kept = bridge.memory.once(f"drawn:{bridge.key(state)}:{state.to_query()}:{units}", make)
+    return {name: json.loads(text) for name, text in kept.items()}
 
 
 def layout(query: str, bridge: Bridge) -> html.Div:
@@ -242,7 +243,3 @@ def _side(pair: Pair, side: str) -> dict[str, Any]:
         "unit": figures.rate_unit(series),
         "source": series.source,
     }
-
-
-def _plain(figure: Figure) -> Any:
-    return json.loads(figure.to_json())

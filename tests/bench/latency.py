@@ -128,6 +128,7 @@ def page(address: str, query: str, throttle: int, *flags: str) -> list[Row]:
         restyle = driver.execute_async_script(_RESTYLE, 40)
         _throttle(driver, 1)
         open_lag(driver, address, f"{query}&seed={throttle + len(flags)}")
+        driver.execute_script("document.getElementById('tool-player').open = true")
         driver.execute_script(_SHIFTS)
         until(driver, "pricewake.work.running", 60)
         _throttle(driver, throttle)
@@ -224,7 +225,8 @@ def _drag(driver: webdriver.Chrome) -> list[Row]:
         "return {moves: pricewake.lag.moves - seen.moves, gap: Math.max(...seen.gaps)}"
     )
     requests = sum(
-        'Network.requestWillBeSent"' in entry["message"] for entry in driver.get_log("performance")
+        'Network.requestWillBeSent"' in entry["message"] and "/alive" not in entry["message"]
+        for entry in driver.get_log("performance")
     )
     mouse("mouseReleased", at)
     released = time.perf_counter()
@@ -245,7 +247,6 @@ def _drag(driver: webdriver.Chrome) -> list[Row]:
 
 def _player(driver: webdriver.Chrome) -> list[Row]:
     driver.execute_script(
-        "document.getElementById('tool-player').open = true;"
         "document.getElementById('play-speed').value = '30'; pricewake.player.play();" + _WATCH
     )
     start = time.perf_counter()
