@@ -142,7 +142,9 @@ def peak_words(peaks: Peaks | None, pair: Pair, state: ViewState) -> list[Any]:
     """Say which peaks meet across the shift, how far apart, and how easily chance does that."""
     unit = noun(pair)
     if peaks is None:
-        return [html.P("Choose under “Peaks and months left out” how far a peak must stand out.")]
+        return [
+            html.P("No peaks are marked: “Peaks and months left out” sets how far one stands out.")
+        ]
     found, periods = peaks.found, pair.periods[peaks.first :]
     matched = found.pairs.shape[0]
     rows = [
@@ -190,7 +192,7 @@ def compare_words(
         return [html.P(f"{refused}.", className="message")]
     if both is None:
         return [
-            html.P("No cell is pinned. Pin the chosen cell, then move on: both stand here."),
+            html.P("No cell is pinned: a pinned one stands here beside the chosen one."),
             html.Button("Pin this cell", type="button", **{"data-pin": "chosen"}),
         ]
     unit = noun(pair)
@@ -280,7 +282,7 @@ def response_words(
         **{"aria-label": f"Responses, at most {MOST_RESPONSES}"},
     )
     parts: list[Any] = [
-        html.P(f"Choose up to {MOST_RESPONSES} responses for {state.driver}."),
+        html.P(f"{state.driver} against other responses, at most {MOST_RESPONSES} at once."),
         picks,
     ]
     if refused:
