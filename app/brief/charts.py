@@ -20,8 +20,8 @@ HEIGHTS = {  # pixels in the column, by page and view
 }
 NARROW = 20  # letters beside a small chart
 CLEAR = "rgba(0,0,0,0)"
-USUAL, SMALL = 262, 154  # of other views, and of any view on one page
-SMALL_HEIGHTS = {"breadth contributions": 180, "lag surface": 168}
+USUAL, SMALL = 262, 140  # of other views, and of any view on one page
+SMALL_HEIGHTS = {"breadth contributions": 178, "lag surface": 156, "outlook fan": 152}
 SIZES = {"lag surface": (1100, 760), "lag scatter": (900, 860), "lag overlay": (1200, 560)}
 PICTURE = (1000, 680)
 CHART_OPTIONS = {**CONFIG, "responsive": False}  # drawn anew when the column changes
@@ -45,6 +45,8 @@ def in_column(chart: Mapping[str, Any], name: str, *, small: bool = False) -> di
     if small:
         layout["font"] = {"size": 9}
         for key, axis in layout.items():
+            if key.startswith("xaxis"):
+                axis["tickangle"] = 0
             if key.startswith(("xaxis", "yaxis")) and axis.get("title"):
                 axis["title"] = {**axis["title"], "font": {"size": 9}}
                 if key.startswith("yaxis"):

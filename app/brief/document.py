@@ -214,19 +214,21 @@ def _refused(section: Section) -> str:
 def _changes(since: Comparison | None, small: bool) -> str:
     if since is None or not (since.data or since.figures):
         return ""
-    data = "".join(f"<li>{safe(line)}</li>" for line in since.data)
-    rows = [change for change in since.figures if change.moved or not small]
-    if small:
-        rows = rows[:10]
-    table = "".join(_change_row(change) for change in rows)
+    rows = [change for change in since.figures if not small or change.before != change.now]
     head = "".join(
         f'<th scope="col"{" class=numeric" if i > 1 else ""}>{text}</th>'
         for i, text in enumerate(("Page", "Figure", "Last time", "Now", "Change"))
     )
+    body = "".join(_change_row(change) for change in (rows[:8] if small else rows))
+    table = f"<table><thead><tr>{head}</tr></thead><tbody>{body}</tbody></table>" if body else ""
+    told = since.data[:2] if small else since.data
+    data = "".join(f"<li>{safe(line)}</li>" for line in told)
+    if len(told) < len(since.data):
+        data += f"<li>and {len(since.data) - len(told)} more, which the full form lists</li>"
     return f"""<section class="verdict-part changes">
 <h2>What changed since last time</h2>
+<div class="scroll">{table}</div>
 <ul class="notes">{data}</ul>
-<div class="scroll"><table><thead><tr>{head}</tr></thead><tbody>{table}</tbody></table></div>
 </section>"""
 
 
@@ -236,7 +238,7 @@ def _change_row(change: Change) -> str:
         f'<td class="numeric">{safe(text)}</td>'
         for text in (change.before, change.now, change.difference)
     ]
-    return f"<tr{' class=changed' if change.moved else ''}>{''.join(cells)}</tr>"
+    return f"<tr{' class=changed' if change.before != change.now else ''}>{''.join(cells)}</tr>"
 
 
 def _provenance(series: Sequence[Provenance], small: bool) -> str:

@@ -281,8 +281,9 @@ def _change(one: Figured, before: KeyFigure) -> Change:
     same = now.value == before.value or (np.isnan(now.value) and np.isnan(before.value))
     difference = ""
     if not np.isnan(gap) and now.shape != "p":
-        digits = now.shape.lstrip("+")
-        difference = KeyFigure("", "", "", gap + 0.0, f"+{digits}").text
+        digits = int(now.shape.lstrip("+"))
+        gap = round(gap, digits) + 0.0  # no minus before nothing
+        difference = KeyFigure("", "", "", gap, f"+{digits}").text
     unit = f", {now.unit}" if now.unit else ""
     return Change(
         source(one.page).title, f"{now.label}{unit}", before.text, now.text, difference, not same
