@@ -36,10 +36,9 @@ _KEPT = {
 }
 _CLASSES = re.compile(r"[\w -]*")
 _STYLE = re.compile(r"var\(--[\w-]+\)|#[0-9A-Fa-f]{6}|-?[0-9.]+(%|px|rem|em)?|inline-block|block")
-_DOING = re.compile(  # what to do on a page: nothing can be done on paper
-    r"(?:[.;] *| *)\b[Cc]hoose (?:one|others|another|components)\b[^.]*(?=\.)"
-    r"| *[^.]*\bcan be taken out here\b[^.]*\."
-)
+# What to do on a page: nothing can be done on paper.
+_ASIDE = re.compile(r"; choose others[^.]*(?=\.)")
+_DOING = re.compile(r" *(?<![^.] )[^.]*\b(?:[Cc]hoose|can be taken out here)\b[^.]*\.")
 _TURNING = re.compile("[\u061c\u200e\u200f\u202a-\u202e\u2066-\u2069]")
 
 
@@ -63,7 +62,7 @@ def still(part: Any) -> str:
     if isinstance(part, list | tuple):
         return "".join(still(each) for each in part)
     if not isinstance(part, Component):
-        return safe(_DOING.sub("", str(part)))
+        return safe(_DOING.sub("", _ASIDE.sub("", str(part))))
     if getattr(part, "hidden", False):
         return ""
     kind, inside = part._type, getattr(part, "children", None)
