@@ -15,6 +15,8 @@ Kind = Literal["index", "level", "rate"]
 Adjustment = Literal["yes", "no", "unknown"]
 
 PERIODS_PER_YEAR: dict[Frequency, int] = {"monthly": 12, "quarterly": 4, "annual": 1}
+# In English whatever the machine is set to, unlike strftime.
+MONTHS = ("Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec")
 PERIOD_NOUN: dict[Frequency, str] = {"monthly": "month", "quarterly": "quarter", "annual": "year"}
 _FREQUENCY_OF: dict[str, Frequency] = {"M": "monthly", "Q-DEC": "quarterly", "Y-DEC": "annual"}
 
@@ -45,7 +47,7 @@ def period_label(period: pd.Period) -> str:
     """Write a period as people read it: ``Mar 2024``, ``2024 Q1`` or ``2024``."""
     match frequency_of(period):
         case "monthly":
-            return str(period.strftime("%b %Y"))
+            return f"{MONTHS[period.month - 1]} {period.year:04d}"
         case "quarterly":
             return f"{period.year} Q{period.quarter}"
         case "annual":

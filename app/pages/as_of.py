@@ -4,6 +4,7 @@ import datetime
 
 from dash import dcc, html
 
+from analytics.series import MONTHS
 from app.state import ViewState
 
 
@@ -26,4 +27,4 @@ def day_words(day: str) -> str:
     if not day:
         return ""
     date = datetime.date.fromisoformat(day)
-    return f"{date.day} {date:%b} {date.year:04d}"
+    return f"{date.day} {MONTHS[date.month - 1]} {date.year:04d}"

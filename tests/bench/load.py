@@ -1,0 +1,201 @@
+"""Eight tabs at once: what the server answers, how fast, and what memory it ends with.
+
+    python -m tests.bench.load [--seconds 60] [--tabs 8]
+
+Each tab is a client that asks as the pages do: a slider of the Reading page every 0.12 s, other
+pairs and samples on the Lag page, other spans on the Breadth page, chunks of searches, and files.
+The program runs in a process of its own. Printed are the figures, and whether they are within the
+limits: no error, 95 % within 300 ms, memory flat.
+"""
+
+import argparse
+import json
+import random
+import socket
+import statistics
+import subprocess
+import sys
+import threading
+import time
+import urllib.error
+import urllib.request
+from dataclasses import asdict, replace
+from pathlib import Path
+
+from app.state import ViewState
+
+SLIDER = 0.12  # seconds between answers while a slider is dragged: assets/plain-page.js
+LIMIT = 0.300
+FLAT = 1.15  # memory at the end over memory after the first third
+
+
+class Tab(threading.Thread):
+    """One page that somebody drags and asks on."""
+
+    def __init__(self, address: str, seed: int, until: float, shapes: dict[str, list[str]]) -> None:
+        super().__init__(daemon=True)
+        self.address, self.until, self.shapes = address, until, shapes
+        self.random = random.Random(seed)
+        self.times: dict[str, list[float]] = {}
+        self.errors: list[str] = []
+
+    def run(self) -> None:
+        """Ask one thing after another, at the pace of a hand, until the time is over."""
+        while time.monotonic() < self.until:
+            kind = self.random.choices(
+                ("reading", "lag", "breadth", "file", "work"), (60, 15, 10, 10, 5)
+            )[0]
+            start = time.perf_counter()
+            try:
+                getattr(self, f"_{kind}")()
+            except (urllib.error.URLError, OSError, ValueError, KeyError) as error:
+                self.errors.append(f"{kind}: {error}")
+            took = time.perf_counter() - start
+            self.times.setdefault(kind, []).append(took)
+            time.sleep(max(0.0, SLIDER - took))
+
+    def _reading(self) -> None:
+        state = ViewState(coming=round(self.random.uniform(-1, 3) * 20) / 20, draws=99)
+        self._callback("reading", state)
+
+    def _breadth(self) -> None:
+        self._callback("breadth", ViewState(years=self.random.randint(3, 30)))
+
+    def _lag(self) -> None:
+        state = replace(
+            ViewState(),
+            first=f"{self.random.randint(1960, 1975)}-01",
+            driver=self.random.choice(("Broad money", "Narrow money")),
+        )
+        body = {
+            "output": "lag-data.data",
+            "outputs": {"id": "lag-data", "property": "data"},
+            "inputs": [{"id": "lag-question", "property": "data", "value": "any"}],
+            "state": [{"id": "lag-state", "property": "data", "value": asdict(state)}],
+            "changedPropIds": ["lag-question.data"],
+        }
+        self._post(body)
+
+    def _file(self) -> None:
+        query = ViewState(shift=self.random.randint(-36, 60)).to_query()
+        with urllib.request.urlopen(f"{self.address}/export/lag/scatter.csv?{query}") as answer:
+            if not answer.read().startswith(b"# Pricewake"):
+                raise ValueError("no file")
+
+    def _work(self) -> None:
+        query = ViewState(surrogates=200, seed=self.random.randint(1, 3)).to_query()
+        with urllib.request.urlopen(f"{self.address}/lag/work/search?{query}") as answer:
+            json.load(answer)
+
+    def _callback(self, page: str, state: ViewState) -> None:
+        output = next(o for o in self.shapes if f"{page}-sentence.children" in o)
+        parts = [part.rsplit(".", 1) for part in output.strip(".").split("...")]
+        self._post(
+            {
+                "output": output,
+                "outputs": [{"id": name, "property": prop} for name, prop in parts],
+                "inputs": [
+                    {"id": f"{page}-state", "property": "data", "value": asdict(state)},
+                    {"id": f"{page}-tick", "property": "data", "value": 0},
+                ],
+                "changedPropIds": [f"{page}-state.data"],
+            }
+        )
+
+    def _post(self, body: dict[str, object]) -> None:
+        request = urllib.request.Request(
+            f"{self.address}/_dash-update-component",
+            json.dumps(body).encode(),
+            {"Content-Type": "application/json"},
+        )
+        with urllib.request.urlopen(request, timeout=60) as answer:
+            if answer.status != 200 or "response" not in json.load(answer):
+                raise ValueError(f"status {answer.status}")
+
+
+def memory(pid: int) -> float:
+    """Return the resident memory of a process in MB."""
+    for line in Path(f"/proc/{pid}/status").read_text().splitlines():
+        if line.startswith("VmRSS"):
+            return int(line.split()[1]) / 1024
+    return float("nan")
+
+
+def measure(seconds: int, tabs: int) -> bool:
+    """Print the figures; give whether all are within the limits."""
+    with socket.socket() as probe:
+        probe.bind(("127.0.0.1", 0))
+        port = probe.getsockname()[1]
+    address = f"http://127.0.0.1:{port}"
+    running = subprocess.Popen(
+        [
+            sys.executable,
+            "-m",
+            "app",
+            "--no-browser",
+            "--port",
+            str(port),
+            "--workspace",
+            ":memory:",
+        ],
+        stdout=subprocess.DEVNULL,
+    )
+    try:
+        for _ in range(600):
+            try:
+                with urllib.request.urlopen(f"{address}/_dash-dependencies", timeout=5) as answer:
+                    shapes = {each["output"]: [] for each in json.load(answer)}
+                break
+            except OSError:
+                time.sleep(0.1)
+        warm = Tab(address, 0, 0, shapes)
+        for kind in ("reading", "breadth", "lag", "file"):
+            getattr(warm, f"_{kind}")()
+        until = time.monotonic() + seconds
+        clients = [Tab(address, seed + 1, until, shapes) for seed in range(tabs)]
+        for client in clients:
+            client.start()
+        held = []
+        while time.monotonic() < until:
+            time.sleep(1)
+            held.append(memory(running.pid))
+        for client in clients:
+            client.join(90)
+    finally:
+        running.terminate()
+        running.wait(20)
+    errors = [error for client in clients for error in client.errors]
+    kinds: dict[str, list[float]] = {}
+    for client in clients:
+        for kind, times in client.times.items():
+            kinds.setdefault(kind, []).extend(times)
+    every = sorted(each for times in kinds.values() for each in times)
+    print(f"{'asked for':<12}{'times':>7}{'median ms':>11}{'p95 ms':>9}{'most ms':>9}")
+    for kind, times in [*sorted(kinds.items()), ("all", every)]:
+        ordered = sorted(times)
+        p95 = ordered[int(0.95 * (len(ordered) - 1))]
+        print(
+            f"{kind:<12}{len(ordered):>7}{1000 * statistics.median(ordered):>11.0f}"
+            f"{1000 * p95:>9.0f}{1000 * ordered[-1]:>9.0f}"
+        )
+    p95 = every[int(0.95 * (len(every) - 1))]
+    third = statistics.median(held[len(held) // 3 : len(held) // 3 + 5])
+    end = statistics.median(held[-5:])
+    print(f"memory: {held[0]:.0f} MB at first, {third:.0f} after a third, {end:.0f} at the end")
+    print(f"errors: {len(errors)}{'; ' + errors[0] if errors else ''}")
+    held_all = not errors and p95 <= LIMIT and end <= FLAT * third
+    print("within the limits" if held_all else "NOT within the limits")
+    return held_all
+
+
+def main() -> None:
+    """Read the flags and measure."""
+    flags = argparse.ArgumentParser(description=__doc__.splitlines()[0])
+    flags.add_argument("--seconds", type=int, default=60)
+    flags.add_argument("--tabs", type=int, default=8)
+    asked = flags.parse_args()
+    sys.exit(0 if measure(asked.seconds, asked.tabs) else 1)
+
+
+if __name__ == "__main__":
+    main()
