@@ -7,8 +7,11 @@ import time
 from pathlib import Path
 
 import pytest
+from selenium.webdriver.common.by import By
+from selenium.webdriver.common.keys import Keys
 
 from app.server import PAGES
+from app.state import field_kind
 from tests.browser.driving import size, until
 
 AXE = (Path(__file__).parent / "axe.min.js").read_text(encoding="utf-8")
@@ -76,3 +79,115 @@ def test_no_rule_is_broken_with_everything_open_light_dark_and_narrow(own, addre
     assert violations(own) == [], "dark"
     size(own, 400, 800)
     assert violations(own) == [], "narrow and dark"
+
+
+@pytest.mark.parametrize(
+    "path",
+    [
+        "/no-such-page",
+        "/reading?newest=1900-01",
+        "/lag?first=2026-01",
+        "/data?as_of=1990-01-01",
+        "/breadth?aggregate=Nothing+of+the+kind",
+    ],
+)
+def test_pages_that_show_nothing_say_so_and_break_no_rule(own, address, path):
+    size(own, 1280, 800)
+    own.get(f"{address}{path}")
+    until(own, "document.querySelector('h1') && document.querySelector('h1').textContent", 40)
+    time.sleep(1)
+    assert violations(own) == []
+    said = own.execute_script("return document.querySelector('main').innerText")
+    assert len(said) > 40
+    assert "undefined" not in said
+    assert "NaN" not in said
+
+
+@pytest.mark.parametrize("page", PAGES, ids=lambda page: page.TITLE)
+def test_at_twice_the_zoom_nothing_scrolls_sideways_and_every_chart_has_words(own, address, page):
+    # 200 % on a window 1280 wide leaves 640 (WCAG 2.2, 1.4.4 and 1.4.10).
+    size(own, 640, 400)
+    go(own, address, page.PATH + QUICK)
+    assert own.execute_script("return document.documentElement.scrollWidth") <= 640
+    labels = own.execute_script(
+        "return [...document.querySelectorAll('.js-plotly-plot')]"
+        ".filter(c => c.checkVisibility()).map(c => [c.getAttribute('role'),"
+        " c.getAttribute('aria-label')])"
+    )
+    for role, label in labels:
+        assert role == "img"
+        assert ", a chart." in label
+        assert any(letter.isdigit() for letter in label)
+        assert "Click to enter" not in label
+
+
+def test_a_table_holds_the_numbers_that_are_drawn(own, address):
+    size(own, 1280, 800)
+    go(own, address, "/reading" + QUICK)
+    button = own.find_element(By.CSS_SELECTOR, "[data-table='rates']")
+    button.send_keys(Keys.ENTER)
+    assert button.get_attribute("aria-expanded") == "true"
+    place = own.find_element(By.CSS_SELECTOR, ".chart-numbers")
+    assert place.get_attribute("role") == "region"
+    rows = [
+        [cell.get_property("textContent") for cell in row.find_elements(By.XPATH, "./*")]
+        for row in place.find_elements(By.CSS_SELECTOR, "tbody tr:nth-last-child(-n+2)")
+    ]
+    drawn = own.execute_script(
+        "return pricewake.ghost.chartOf('reading-rates')._fullData.map(t => [...t.y].at(-1))"
+    )
+    assert rows[-1][0] == "Oct 2026"
+    shown = [float(cell.replace("\N{MINUS SIGN}", "-")) for cell in rows[-1][1:]]
+    assert shown == [round(value, 3) for value in drawn]
+    button.send_keys(Keys.ENTER)
+    assert not place.is_displayed()
+
+
+def test_help_comes_with_the_keyboard_and_goes_with_escape(own, address):
+    size(own, 1280, 800)
+    go(own, address, "/reading" + QUICK)
+    fields = own.execute_script(
+        "return [...document.querySelectorAll('[data-field]')].map(f => [f.id,"
+        " f.getAttribute('aria-describedby')])"
+    )
+    assert len(fields) >= 10
+    for name, described in fields:
+        sentence = own.execute_script(
+            "return document.getElementById(arguments[0]).textContent", described
+        )
+        assert sentence.endswith("."), name
+        helped = f"[data-help='{described}']"
+        assert own.find_elements(By.CSS_SELECTOR, helped), f"{name} has no visible help"
+    own.execute_script("document.querySelector('[data-help=help-measure]').focus()")
+    hint = own.find_element(By.CSS_SELECTOR, ".hint")
+    assert hint.is_displayed()
+    assert hint.text == field_kind("measure").help
+    own.switch_to.active_element.send_keys(Keys.ESCAPE)
+    assert not hint.is_displayed()
+
+
+def test_the_focus_is_seen_and_no_motion_is_forced(own, address):
+    size(own, 1280, 800)
+    go(own, address, "/lag")
+    seen = own.execute_script(
+        "const found = [];"
+        "for (const e of document.querySelectorAll('main button, main select, main input, main a'))"
+        "{ if (!e.checkVisibility()) continue; e.focus({focusVisible: true});"
+        "  if (document.activeElement !== e) continue;"
+        "  const s = getComputedStyle(e); found.push([e.id || e.textContent,"
+        "  s.outlineStyle, parseFloat(s.outlineWidth)]); }"
+        "return found"
+    )
+    assert len(seen) > 15
+    assert [each for each in seen if each[1] == "none" or each[2] < 2] == []
+    own.execute_cdp_cmd(
+        "Emulation.setEmulatedMedia",
+        {"features": [{"name": "prefers-reduced-motion", "value": "reduce"}]},
+    )
+    moving = own.execute_script(
+        "return [...document.querySelectorAll('*')].filter(e =>"
+        " getComputedStyle(e).animationName !== 'none'"
+        " || parseFloat(getComputedStyle(e).transitionDuration) > 0).length"
+    )
+    own.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": []})
+    assert moving == 0
