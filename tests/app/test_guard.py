@@ -48,7 +48,11 @@ def test_tokens_are_long_and_never_the_same():
 @pytest.mark.parametrize(
     "path", ["/", "/lag", "/alive", "/assets/page.css", "/_dash-layout", "/export/lag/surface.csv"]
 )
-@pytest.mark.parametrize("query", ["", "?token=", "?token=wrong", f"?token={TOKEN[:-1]}"])
+@pytest.mark.parametrize(
+    "query",
+    ["", "?token=", "?token=wrong", f"?token={TOKEN[:-1]}"],
+    ids=["none", "empty", "wrong", "short"],
+)
 def test_nothing_is_given_without_the_token(far, path, query):
     answer = far.test_client().get(path + query, headers=PERSON, **AT)
     assert answer.status_code == 401
