@@ -192,3 +192,18 @@ def test_the_focus_is_seen_and_no_motion_is_forced(own, address):
     )
     own.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": []})
     assert moving == 0
+
+
+def test_a_dark_page_prints_light_and_is_dark_again(own, address):
+    size(own, 1280, 800)
+    go(own, address, "/reading" + QUICK)
+    own.execute_script("document.getElementById('theme').click()")
+    drawn = "pricewake.ghost.chartOf('reading-rates')"
+    own.execute_script("window.dispatchEvent(new Event('beforeprint'))")
+    theme = "return document.documentElement.dataset.theme"
+    assert own.execute_script(theme) == "light"
+    assert own.execute_script(f"return {drawn}._fullLayout.paper_bgcolor").upper() == "#FBFAF6"
+    assert own.execute_script(f"return {drawn}.querySelector('.main-svg').getAttribute('viewBox')")
+    own.execute_script("window.dispatchEvent(new Event('afterprint'))")
+    assert own.execute_script(theme) == "dark"
+    until(own, f"{drawn}._fullLayout.paper_bgcolor.toUpperCase() === '#171A20'")

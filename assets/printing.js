@@ -1,0 +1,37 @@
+/* On paper every page is light, and a chart fits the width of the sheet. */
+(function () {
+  "use strict";
+  const pricewake = (window.pricewake = window.pricewake || {});
+  let before = null;
+
+  function redraw(pick) {
+    for (const [id, figure] of pricewake.theme.figures) {
+      const chart = document.querySelector(`#${CSS.escape(id)} .js-plotly-plot`);
+      if (chart && chart._fullLayout) window.Plotly.react(chart, pick(figure).data, pick(figure).layout);
+    }
+  }
+
+  window.addEventListener("beforeprint", () => {
+    const root = document.documentElement;
+    before = root.dataset.theme;
+    if (before === "dark") {
+      root.dataset.theme = "light";
+      redraw((figure) => structuredClone(figure));
+    }
+    for (const drawing of document.querySelectorAll(".js-plotly-plot .main-svg")) {
+      const [width, height] = ["width", "height"].map((name) => drawing.getAttribute(name));
+      drawing.setAttribute("viewBox", `0 0 ${width} ${height}`);
+      drawing.closest(".svg-container").style.aspectRatio = `${width} / ${height}`;
+    }
+  });
+
+  window.addEventListener("afterprint", () => {
+    for (const drawing of document.querySelectorAll(".js-plotly-plot .main-svg")) {
+      drawing.removeAttribute("viewBox");
+      drawing.closest(".svg-container").style.aspectRatio = "";
+    }
+    if (before !== "dark") return;
+    document.documentElement.dataset.theme = "dark";
+    for (const [id, figure] of [...pricewake.theme.figures]) pricewake.theme.show(id, figure);
+  });
+})();
