@@ -54,7 +54,12 @@ def violations(driver):
 
 def go(driver, address, path, theme="light"):
     driver.get(f"{address}{path}")
-    driver.execute_script("localStorage.setItem('pricewake-theme', arguments[0])", theme)
+    until(driver, SETTLED, 40)
+    driver.execute_script(
+        "if (document.documentElement.dataset.theme !== arguments[0])"
+        " document.getElementById('theme').click()",
+        theme,
+    )
     until(driver, SETTLED, 40)
 
 
