@@ -232,7 +232,7 @@ KINDS = {
     "cell": (size_of_one_cell, [(shape, months) for shape in SHAPES for months in (240, 760)]),
     "set": (coverage_of_the_set, [(case, SETS[case][0]) for case in SETS]),
 }
-FULL = {"size": 400, "power": 200, "cell": 500, "set": 120}
+FULL = {"size": 1000, "power": 200, "cell": 500, "set": 120}
 SMALL = {"size": 8, "power": 8, "cell": 20, "set": 4}
 
 
