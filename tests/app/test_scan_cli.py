@@ -143,7 +143,7 @@ def test_a_scan_killed_half_way_goes_on_where_it_was(panel, tmp_path):
     # Two programs, the first killed without a warning while it searches.
     path = tmp_path / "result.csv"
     big = panel_file(tmp_path / "panel.csv", {f"Economy {i:02}": 0.3 for i in range(9)})
-    words = [sys.executable, "-m", "app", "scan", str(big), "--surrogates", "300"]
+    words = [sys.executable, "-m", "app", "scan", str(big), "--surrogates", "99"]
     words += ["--windows", "1:4", "--shifts", "-2:8", "--processes", "1"]
     env = os.environ | {"PYTHONPATH": str(ROOT)}
     first = subprocess.Popen(
@@ -160,7 +160,7 @@ def test_a_scan_killed_half_way_goes_on_where_it_was(panel, tmp_path):
     assert text.endswith(b"\r\n")
     subprocess.run([*words, "--out", str(path)], cwd=ROOT, env=env, check=True, capture_output=True)
     # The same to the byte as a scan that was never stopped.
-    state = ViewState(windows="1:4", shifts="-2:8", surrogates=300)
+    state = ViewState(windows="1:4", shifts="-2:8", surrogates=99)
     bridge = Bridge(Workspace((read_path(big),)))
     never_stopped = bridge.jobs.complete(scan_work(state, bridge))
     assert path.read_bytes().decode() == panel_text(never_stopped, question(state, bridge).settings)

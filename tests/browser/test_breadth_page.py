@@ -92,8 +92,7 @@ def test_a_component_is_left_out_with_the_keyboard(page, bridge):
     until(page, "pricewake.plain.state.excluded.includes('07 Transport')")
     until(
         page,
-        "document.querySelector('[aria-label=\"07 Transport is left out\"]')"
-        ".getAttribute('aria-pressed') === 'true'",
+        "document.querySelector('[aria-label=\"07 Transport is left out\"][aria-pressed=true]')",
     )
     until(
         page,

@@ -277,8 +277,8 @@ def test_a_file_of_forty_megabytes_is_read_or_refused_in_a_sentence(data, tmp_pa
         previewed(browser)
         act(browser, "keep")
         gone(browser)
-        until(browser, "document.querySelectorAll('#data-series tbody tr').length === 300", 60)
-        assert "290 more series are in the CSV." in text_of(browser, "data-series")
+        until(browser, "document.querySelectorAll('#data-series tbody tr').length === 60", 60)
+        assert "530 more series are in the CSV." in text_of(browser, "data-series")
 
 
 # Corrections, files out of view, dates -------------------------------------------------------

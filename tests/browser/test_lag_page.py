@@ -155,7 +155,7 @@ def test_numbers_of_the_browser_equal_pythons_over_random_cells(lag, address, br
     """One truth: assets/numbers.js and analytics agree to 1e-9."""
     open_lag(lag, address, "" if months == "own" else "?months=same")
     rng = np.random.default_rng(20261201)
-    cells = np.column_stack((rng.integers(1, 61, 30), rng.integers(-36, 61, 30)))
+    cells = np.column_stack((rng.integers(1, 61, 12), rng.integers(-36, 61, 12)))
     for window, shift in cells.tolist():
         lag.execute_script(
             "pricewake.lag.move({window: arguments[0], shift: arguments[1]});"

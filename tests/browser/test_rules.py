@@ -16,6 +16,7 @@ def listed(driver):
 
 
 def test_a_rule_is_kept_raises_its_alert_and_is_taken_away(browser, address):
+    browser.get_log("browser")
     browser.get(f"{address}/reading?draws=99")
     until(browser, DRAWN)
     browser.find_element(By.CSS_SELECTOR, ".rules summary").click()

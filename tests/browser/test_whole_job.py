@@ -7,7 +7,9 @@ components with weights make up the index. What the screen says is held against 
 import csv
 import io
 import re
+import time
 import urllib.request
+import zipfile
 
 import numpy as np
 import pandas as pd
@@ -17,7 +19,6 @@ from selenium.webdriver.common.keys import Keys
 from selenium.webdriver.support.ui import Select
 
 from app.demo import demo_releases
-from app.page_table import PAGES
 from app.workspace import Workspace
 from tests.browser.driving import READY, served, until
 
@@ -195,9 +196,6 @@ def test_the_lag_is_found(browser, place, economy):
     assert f"{intercept:.3f} + {slope:.3f} × driver" in text_of(browser, "lag-equation")
 
 
-@pytest.mark.skipif(
-    "Outlook" not in [page.TITLE for page in PAGES], reason="no Outlook page in this build"
-)
 def test_what_it_implies(browser, place, economy):
     click_page(browser, "Outlook")
     until(browser, f"{said_by('outlook')}.includes('implied')", 60)
@@ -216,3 +214,29 @@ def test_what_it_implies(browser, place, economy):
     # at a window of one; a longer window reaches no further.
     reach = max(row["period"] for row in rows_of(browser, "fan") if row["part"] == "implied")
     assert reach == str(pd.Period("2019-12", "M") + LAG)
+
+
+def test_the_brief_is_taken_along(browser, place, economy, downloads, monkeypatch):
+    monkeypatch.setenv("BROWSER_PATH", "nowhere")  # pictures have a test of their own
+    click_page(browser, "Brief")
+    until(browser, "window.pricewake.brief && pricewake.brief.shown && !pricewake.brief.busy()", 90)
+    assert text_of(browser, "brief-message") == ""
+    browser.find_element(By.ID, "brief-save").click()
+    end = time.monotonic() + 120
+    while not (found := list(downloads.glob("*.zip"))) and time.monotonic() < end:
+        time.sleep(0.2)
+    with zipfile.ZipFile(found[0]) as kept:
+        names = kept.namelist()
+        brief = kept.read("brief.html").decode()
+        (scatter,) = [name for name in names if "scatter" in name and name.endswith(".csv")]
+        text = kept.read(scatter).decode()
+    assert "recipe.toml" in names
+    prices = economy["prices"]
+    monthly = 100 * (prices[-1] / prices[-2] - 1)
+    direction = "rose" if monthly > 0 else "fell"
+    assert f"Shop prices {direction} {abs(monthly):.2f} percent in Dec 2019" in brief
+    assert f"The 12-month rate is {100 * (prices[-1] / prices[-13] - 1):.1f} percent" in brief
+    lines = [line for line in text.splitlines() if not line.startswith("#")]
+    rows = list(csv.DictReader(io.StringIO("\n".join(lines))))
+    assert len(rows) > 150
+    assert "investment or policy advice" in brief
