@@ -40,6 +40,11 @@ FEW_CELLS = (
 )
 
 
+# Every run takes these two; the rest come with `pytest -m long`, as axe takes half a minute a page.
+FEW = [
+    page if page.TITLE in ("Lag", "Brief") else pytest.param(page, marks=pytest.mark.long)
+    for page in PAGES
+]
 QUICK = "?surrogates=99&draws=99"  # long work is not what is looked at here
 
 
@@ -70,7 +75,7 @@ def own(browser, address):
     size(browser, 1280, 800)
 
 
-@pytest.mark.parametrize("page", PAGES, ids=lambda page: page.TITLE)
+@pytest.mark.parametrize("page", FEW, ids=lambda page: page.TITLE)
 def test_no_rule_is_broken_with_everything_open_light_dark_and_narrow(own, address, page):
     size(own, 1280, 800)
     go(own, address, page.PATH + QUICK)
@@ -106,7 +111,7 @@ def test_pages_that_show_nothing_say_so_and_break_no_rule(own, address, path):
     assert "NaN" not in said
 
 
-@pytest.mark.parametrize("page", PAGES, ids=lambda page: page.TITLE)
+@pytest.mark.parametrize("page", FEW, ids=lambda page: page.TITLE)
 def test_at_twice_the_zoom_nothing_scrolls_sideways_and_every_chart_has_words(own, address, page):
     # 200 % on a window 1280 wide leaves 640 (WCAG 2.2, 1.4.4 and 1.4.10).
     size(own, 640, 400)

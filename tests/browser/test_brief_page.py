@@ -197,6 +197,7 @@ def test_the_pdf_is_printed_in_a4_and_no_chart_is_cut(made):
     assert 3 <= len(re.findall(rb"/Type /Page\b", pdf)) <= 12
 
 
+@pytest.mark.long
 def test_one_page_fits_on_one_page_of_either_paper(bridge, _chromium_there):
     states = {name: quick(opening(name, bridge)) for name in OF_THE_JOB}
     draft = prefilled(bridge, "one-page", states)

@@ -261,6 +261,7 @@ def test_another_sheet_of_a_workbook_is_read_in_the_preview(data):
     assert [one.frequency for one in here.series.values()] == ["quarterly"]
 
 
+@pytest.mark.long
 def test_a_file_of_forty_megabytes_is_read_or_refused_in_a_sentence(data, tmp_path):
     browser, _, _ = data
     row = ",".join(["123.456"] * 590)

@@ -22,7 +22,14 @@ def place(browser):
     size(browser, 1280, 800)
 
 
-@pytest.mark.parametrize("page", PAGES, ids=lambda page: page.TITLE)
+@pytest.mark.parametrize(
+    "page",
+    [
+        page if page.TITLE in ("Data", "Breadth") else pytest.param(page, marks=pytest.mark.long)
+        for page in PAGES
+    ],
+    ids=lambda page: page.TITLE,
+)
 def test_no_name_runs_anything_or_breaks_the_page(browser, place, page):
     url, names = place
     query = ViewState(
