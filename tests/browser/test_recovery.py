@@ -16,7 +16,7 @@ from tests.browser.driving import until
 
 ROOT = Path(__file__).resolve().parents[2]
 ANSWERED = "window.pricewake && pricewake.plain && pricewake.plain.data && !pricewake.plain.busy()"
-SAID = "document.getElementById('connection').textContent"
+SAID = "(document.getElementById('connection') || {textContent: ''}).textContent"
 
 
 @contextmanager
@@ -76,7 +76,8 @@ def test_a_killed_program_is_told_and_its_return_opens_the_page_anew(browser, po
         until(browser, ANSWERED, 60)
         until(
             browser,
-            "document.getElementById('reading-whatif-words').textContent.includes('+0.80')",
+            "(document.getElementById('reading-whatif-words') || {textContent: ''})"
+            ".textContent.includes('+0.80')",
             30,
         )
         assert "coming=0.8" in browser.current_url
