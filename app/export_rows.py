@@ -77,8 +77,7 @@ def _cell_rows(shown: LagView, bridge: Bridge) -> Iterable[Sequence[Any]]:
         "count",
     )
     cell, offset = shown.cell, shown.start - shown.cell.start
-    for i in range(cell.n):
-        month = shown.pair.periods[offset + cell.months[i]]
+    for i, month in enumerate(shown.pair.periods[offset + cell.months]):
         yield (
             "pair",
             period_code(month),

@@ -1,5 +1,6 @@
 """Where the files that travel with the program lie: a checkout's folders, or the wheel's copies."""
 
+from functools import lru_cache
 from importlib.metadata import PackageNotFoundError, version
 from pathlib import Path
 
@@ -14,6 +15,7 @@ def bundled(folder: str) -> Path:
     return _HERE / "bundled" / folder
 
 
+@lru_cache(maxsize=1)
 def software_version() -> str:
     """Return the version of the installed program."""
     try:

@@ -161,7 +161,7 @@
     if (!data) return "";
     if (!data.fresh && asked(data.state) !== page.question) return window.dash_clientside.no_update;
     const before = data.fresh ? null : page.state;
-    page.data = data;
+    page.data = data = { ...data, figures: parsed(data.figures || {}) };
     page.question = asked(data.state);
     page.state = data.state;
     if (data.fresh) Object.assign(page, { known: null, peaks: null, closer: null, told: JSON.stringify(data.state) });
@@ -195,6 +195,7 @@
     return (data.notes || []).join(" ");
   }
 
+  const parsed = (texts) => Object.fromEntries(Object.entries(texts).map(([name, text]) => [name, JSON.parse(text)]));
   const within = (value, [low, high]) => value >= low && value <= high;
 
   function untilThere(act, there, tries = 100) {

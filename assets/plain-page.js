@@ -45,7 +45,9 @@
       const section = place.closest(".view");
       place.hidden = !figure;
       if (section) section.querySelector(".save").hidden = !figure;
-      if (figure) pricewake.theme.show(`${name}-${view}`, figure);
+      if (figure === place.drawn) continue;
+      place.drawn = figure;
+      if (figure) pricewake.theme.show(`${name}-${view}`, JSON.parse(figure));
       else pricewake.theme.figures.delete(`${name}-${view}`);
     }
     work(name, data);

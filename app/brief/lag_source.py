@@ -1,5 +1,6 @@
 """The Lag page for a brief: it is drawn by the browser, so its parts are put together here."""
 
+import json
 from typing import Any
 
 from dash import html
@@ -33,7 +34,8 @@ def shown(state: ViewState, bridge: Bridge, wanted: tuple[str, ...]) -> dict[str
     answer = lag_evidence.answer(seen.state, bridge, opened)
     strip, verdict, folds, data = answer[0], answer[1], answer[2:-1], answer[-1]
     words = dict(zip(lag_evidence.FOLDS, folds, strict=True))
-    charts = {**page["figures"], **data["figures"]}
+    drawn = {name: json.loads(chart.to_json()) for name, chart in lag.charts(seen, bridge).items()}
+    charts = {**drawn, **data["figures"]}
     charts["surface"] = _searched(charts["surface"], data, seen.state)
     for name in ("scatter", "overlay"):
         charts[name]["layout"]["showlegend"] = True

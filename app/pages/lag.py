@@ -5,13 +5,13 @@ answered question needs no server: assets/page-lag.js computes the cell from the
 browser test holds its numbers to those of `analytics.cell`.
 """
 
-import json
 from collections.abc import Collection
 from dataclasses import asdict, dataclass
 from typing import Any
 
 from dash import ClientsideFunction, Dash, Input, Output, State, html
 from plotly.graph_objects import Figure
+from plotly.io.json import to_json_plotly
 
 from analytics.cell import LagCell
 from analytics.series import PERIODS_PER_YEAR, FloatArray, Pair, Series
@@ -118,22 +118,34 @@ def payload(state: ViewState, bridge: Bridge) -> dict[str, Any]:
     }
 
 
-def _drawn(shown: LagView, bridge: Bridge) -> dict[str, Any]:
-    """Return the three charts; drawing takes longer than computing, so they are kept as text."""
+def charts(shown: LagView, bridge: Bridge) -> dict[str, Figure]:
+    """Draw the map, the chosen cell and both series through time."""
     pair, state = shown.pair, shown.state
-    units = f"{pair.driver.unit}|{pair.response.unit}"
+    return {
+        "surface": figures.surface_heatmap(shown.surface, pair, state, p_map(state, bridge)),
+        "scatter": scatter(shown, bridge),
+        "overlay": figures.overlay_lines(shown.overlay, pair, state, left_out_spans(pair, state)),
+    }
+
+
+def _drawn(shown: LagView, bridge: Bridge) -> dict[str, str]:
+    """Return the charts as text; drawing takes longer than computing, so they are kept.
+
+    The page puts the numbers of the chosen cell into scatter and overlay itself, at every move:
+    they are sent without.
+    """
+    state = shown.state
+    units = f"{shown.pair.driver.unit}|{shown.pair.response.unit}"
 
     def make() -> dict[str, str]:
-        holes = left_out_spans(pair, state)
-        p = p_map(state, bridge)
-        return {
-            "surface": str(figures.surface_heatmap(shown.surface, pair, state, p).to_json()),
-            "scatter": str(scatter(shown, bridge).to_json()),
-            "overlay": str(figures.overlay_lines(shown.overlay, pair, state, holes).to_json()),
-        }
+        drawn = {name: chart.to_dict() for name, chart in charts(shown, bridge).items()}
+        for trace in (*drawn["scatter"]["data"], *drawn["overlay"]["data"]):
+            for numbers in ("x", "y", "z", "text", "customdata"):
+                trace.pop(numbers, None)
+        del drawn["scatter"]["data"][0]["marker"]["color"]
+        return {name: to_json_plotly(chart) for name, chart in drawn.items()}
 
-    kept = bridge.memory.once(f"drawn:{bridge.key(state)}:{state.to_query()}:{units}", make)
-    return {name: json.loads(text) for name, text in kept.items()}
+    return bridge.memory.once(f"drawn:{bridge.key(state)}:{state.to_query()}:{units}", make)
 
 
 def layout(query: str, bridge: Bridge) -> html.Div:

@@ -4,7 +4,6 @@ A page of this kind has ``answer(state, bridge)``, which returns the words of ea
 charts of each view. assets/plain-page.js is the other half.
 """
 
-import json
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import asdict, dataclass, field
 from typing import Any
@@ -159,7 +158,7 @@ def register(
             "stem": shown.stem,
             "jobs": list(shown.jobs),
             "jobWords": dict(shown.jobs),
-            "figures": {view: _plain(chart) for view, chart in shown.charts.items()},
+            "figures": {view: _text(chart) for view, chart in shown.charts.items()},
         }
         words = [shown.words.get(place, []) for place in places]
         return shown.sentence, shown.verdict, "", False, *words, data
@@ -184,5 +183,6 @@ def key_list(entries: Sequence[tuple[str, str, str]]) -> html.Ul:
     )
 
 
-def _plain(chart: Figure | str) -> Any:
-    return json.loads(chart if isinstance(chart, str) else chart.to_json())
+def _text(chart: Figure | str) -> str:
+    """Return a chart as text: it goes through the JSON of the answer unread."""
+    return chart if isinstance(chart, str) else str(chart.to_json())

@@ -47,7 +47,8 @@ def figures_of(page):
     if page is lag:
         state = ViewState()
         *_, data = lag_evidence.answer(state, bridge(), tuple(lag_evidence.FOLDS))
-        return {**lag.payload(state, bridge())["figures"], **data["figures"]}
+        drawn = lag.charts(lag.view(state, bridge()), bridge()).items()
+        return {view: json.loads(chart.to_json()) for view, chart in drawn} | data["figures"]
     charts = page.answer(ViewState(), bridge()).charts
     return {
         view: json.loads(chart if isinstance(chart, str) else chart.to_json())
