@@ -2,6 +2,7 @@
    have parted, because the width has changed, the chart is drawn once more. */
 (function () {
   "use strict";
+  const pricewake = (window.pricewake = window.pricewake || {});
   const WAIT = 400; // milliseconds after the last change of size
   let timer = 0;
 
@@ -22,4 +23,5 @@
     clearTimeout(timer);
     timer = setTimeout(mend, WAIT);
   }).observe(document.documentElement);
+  pricewake.legends = { mend };
 })();

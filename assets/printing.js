@@ -2,7 +2,10 @@
 (function () {
   "use strict";
   const pricewake = (window.pricewake = window.pricewake || {});
+  const SHEET = 700; // pixels between the margins of A4 or Letter
   let before = null;
+
+  const shown = () => [...document.querySelectorAll(".js-plotly-plot")].filter((c) => c._fullLayout && c.checkVisibility());
 
   function redraw(pick) {
     for (const [id, figure] of pricewake.theme.figures) {
@@ -18,6 +21,10 @@
       root.dataset.theme = "light";
       redraw((figure) => structuredClone(figure));
     }
+    for (const chart of shown()) {
+      window.Plotly.relayout(chart, { width: SHEET, height: chart._fullLayout.height, autosize: false });
+    }
+    pricewake.legends.mend();
     for (const drawing of document.querySelectorAll(".js-plotly-plot .main-svg")) {
       const [width, height] = ["width", "height"].map((name) => drawing.getAttribute(name));
       drawing.setAttribute("viewBox", `0 0 ${width} ${height}`);
@@ -30,6 +37,7 @@
       drawing.removeAttribute("viewBox");
       drawing.closest(".svg-container").style.aspectRatio = "";
     }
+    for (const chart of shown()) window.Plotly.relayout(chart, { width: null, height: null, autosize: true });
     if (before !== "dark") return;
     document.documentElement.dataset.theme = "dark";
     for (const [id, figure] of [...pricewake.theme.figures]) pricewake.theme.show(id, figure);

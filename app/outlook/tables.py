@@ -17,7 +17,9 @@ def missing(known: Outlook, *names: str) -> list[Any]:
 def waiting(known: Outlook) -> list[Any]:
     """Say what a view waits for that needs the past gone through."""
     refused = missing(known, "path", "backtest")
-    return refused or [html.P("Shown when the past has been gone through.", className="quiet")]
+    return refused or [
+        html.P("Shown when the past has been gone through.", className="quiet awaited")
+    ]
 
 
 def table_row(name: str, cells: Sequence[Any], *, chosen: bool = False) -> html.Tr:

@@ -79,6 +79,10 @@ def layout(query: str, bridge: Bridge) -> html.Div:
                     html.Section(
                         [
                             html.H2("As it will look"),
+                            html.P(
+                                "The brief stands here when it has been worked out.",
+                                className="quiet awaited",
+                            ),
                             html.Iframe(id="brief-preview", title="The brief as it will look"),
                         ],
                         className="brief-look",

@@ -197,7 +197,10 @@ def _verdict(in_view: WorkspaceView, found: desk.Revised | None, names: list[str
     verb = "was" if said == ["1 error"] or said == ["1 warning"] else "were"
     words = [f"{' and '.join(said)} {verb} found in the files." if said else ""]
     if not said and in_view.releases:
-        words = ["No error and no warning was found in the files."]
+        words = [
+            "No error and no warning came up as the files were read; what the checks of each"
+            " series found is below."
+        ]
     if names:
         words.append(f"{len(names)} series {'has' if len(names) == 1 else 'have'} been revised.")
     if found is not None and found.result is not None and found.result.n:
