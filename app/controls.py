@@ -1,10 +1,12 @@
 """A field of ViewState as a control on a page: label, native element, one sentence of help.
 
-Native elements keep keyboard and screen-reader behaviour of the browser. Dash has no plain
-``input``, so text fields and sliders are described in ``data-`` attributes, and
-assets/controls.js puts the element in.
+Native elements keep keyboard and screen-reader behaviour of the browser. A page describes each
+control, and the buttons of each view, in ``data-`` attributes of one element; assets/controls.js
+builds them there. As components of their own, every option and button, they would take the page's
+renderer longer than the charts.
 """
 
+import json
 from collections.abc import Iterable
 from typing import Any
 
@@ -28,33 +30,21 @@ def select(
         if isinstance(kind, Choice)
         else {option: option or empty for option in dict.fromkeys([*options, current])}
     )
-    return _labelled(
-        name,
-        html.Select(
-            [
-                html.Option(text, value=value, selected=value == current)
-                for value, text in words.items()
-            ],
-            id=f"field-{name}",
-            **{"data-field": name, "aria-describedby": f"help-{name}"},
-        ),
-    )
+    return _control(name, type="select", value=current, options=json.dumps(list(words.items())))
 
 
 def text(state: ViewState, name: str, placeholder: str = "") -> html.Div:
     """Return a text field; `placeholder` shows what an empty one stands for."""
     kind = field_kind(name)
     assert isinstance(kind, Text)
-    return _labelled(
-        name, _native(name, type="text", value=getattr(state, name), placeholder=placeholder)
-    )
+    return _control(name, type="text", value=getattr(state, name), placeholder=placeholder)
 
 
 def day(state: ViewState, name: str) -> html.Div:
     """Return a field for a date, with the browser's own calendar."""
     kind = field_kind(name)
     assert isinstance(kind, Day)
-    return _labelled(name, _native(name, type="date", value=getattr(state, name)))
+    return _control(name, type="date", value=getattr(state, name))
 
 
 def number(state: ViewState, name: str, step: float = 1) -> html.Div:
@@ -62,9 +52,7 @@ def number(state: ViewState, name: str, step: float = 1) -> html.Div:
     kind = field_kind(name)
     assert isinstance(kind, Whole | Number)
     value = getattr(state, name)
-    return _labelled(
-        name, _native(name, type="number", value=value, min=kind.low, max=kind.high, step=step)
-    )
+    return _control(name, type="number", value=value, min=kind.low, max=kind.high, step=step)
 
 
 def slider(
@@ -79,49 +67,30 @@ def slider(
     """Return a slider over whole periods, lying along an axis of the map, or over numbers."""
     kind = field_kind(name)
     assert isinstance(kind, Whole | Number)
-    return html.Div(
-        [
-            html.Label(kind.label, htmlFor=f"field-{name}", className="hidden-label"),
-            _help(name),
-            _native(
-                name,
-                type="range",
-                value=getattr(state, name),
-                min=low,
-                max=high,
-                step=step,
-                orient="vertical" if vertical else "horizontal",
-            ),
-            html.Span(kind.help, id=f"help-{name}", className="hidden-label"),
-        ],
-        className="slider vertical" if vertical else "slider",
+    return _control(
+        name,
+        "slider vertical" if vertical else "slider",
+        type="range",
+        value=getattr(state, name),
+        min=low,
+        max=high,
+        step=step,
+        orient="vertical" if vertical else "horizontal",
     )
 
 
 def save_buttons(view: str, *, table: bool = True) -> html.Div:
     """Return the buttons of a view: its numbers as a table, files to save, a place in the brief."""
-    buttons = [
-        html.Button(_save(kind), **{"data-save": kind.lower(), "data-view": view, "type": "button"})
-        for kind in ("PNG", "SVG")
-    ]
-    shown = html.Button("Table", type="button", **{"data-table": view, "aria-expanded": "false"})
-    kept = html.Button("Add to brief", type="button", **{"data-brief": view})
-    first = [shown] if table else []
-    return html.Div([*first, *buttons, _csv_link(view), kept], className="save")
+    return _buttons(view, "table png svg csv brief" if table else "png svg csv brief")
 
 
 def csv_button(view: str) -> html.Div:
     """Return the button that saves the numbers of a view that has no chart of its own."""
-    return html.Div([_csv_link(view)], className="save")
+    return _buttons(view, "csv")
 
 
-def _csv_link(view: str) -> html.A:
-    return html.A(_save("CSV"), id=f"csv-{view}", className="button", **{"data-csv": view})
-
-
-def _save(kind: str) -> list[Any]:
-    """Return the words of a button; where room is short, only the first says the verb."""
-    return [html.Span("Save\N{NO-BREAK SPACE}", className="verb"), kind]
+def _buttons(view: str, kinds: str) -> html.Div:
+    return html.Div(className="save", **{"data-saves": view, "data-kinds": kinds})
 
 
 def view_head(view: str, words: str, *tools: html.Details) -> html.Div:
@@ -129,37 +98,11 @@ def view_head(view: str, words: str, *tools: html.Details) -> html.Div:
     return html.Div([html.H2(words), *tools, save_buttons(view)], className="view-head")
 
 
-def _native(name: str, **attributes: Any) -> html.Span:
-    data = {f"data-{key}": str(value) for key, value in attributes.items() if value != ""}
-    return html.Span(className="native", **{"data-native": name, **data})
-
-
-def _labelled(name: str, element: Any) -> html.Div:
+def _control(name: str, look: str = "control", **described: Any) -> html.Div:
     kind = field_kind(name)
-    return html.Div(
-        [
-            html.Span(
-                [html.Label(kind.label, htmlFor=f"field-{name}"), _help(name)], className="label"
-            ),
-            element,
-            html.Span(kind.help, id=f"help-{name}", className="hidden-label"),
-        ],
-        className="control",
-    )
-
-
-def _help(name: str) -> html.Button:
-    """Return the small "?" that shows the sentence of help: assets/help.js."""
-    return html.Button(
-        "?",
-        type="button",
-        className="help",
-        **{
-            "data-help": f"help-{name}",
-            "aria-label": f"Help on {field_kind(name).label}",
-            "aria-describedby": f"help-{name}",
-        },
-    )
+    data = {"label": kind.label, "help-words": kind.help, **described}
+    given = {f"data-{key}": str(value) for key, value in data.items() if value != ""}
+    return html.Div(className=look, **{"data-control": name, **given})
 
 
 def sent_state(values: Any) -> ViewState:

@@ -1,31 +1,81 @@
-/* Native inputs where app/controls.py asked for one, and one listener for every control. */
+/* Controls and the buttons of each view where app/controls.py describes one, and one listener for
+   every control. */
 (function () {
   "use strict";
   const pricewake = (window.pricewake = window.pricewake || {});
 
-  function build(holder) {
-    const { native, type, value, min, max, step, placeholder, accept, orient } = holder.dataset;
-    const input = document.createElement("input");
-    input.type = type;
-    input.id = `field-${native}`;
-    for (const [name, given] of Object.entries({ min, max, step, placeholder, accept })) {
-      if (given !== undefined) input.setAttribute(name, given);
-    }
-    if (type === "file") {
-      input.multiple = true;
-      input.setAttribute("aria-label", "Files of a release");
-    } else {
-      input.dataset.field = native;
-      input.setAttribute("aria-describedby", `help-${native}`);
-      if (value !== undefined) input.value = value;
-    }
-    if (orient) { input.dataset.orient = orient; input.setAttribute("aria-orientation", orient); }
-    holder.replaceChildren(input);
+  function element(kind, attributes, ...children) {
+    const made = document.createElement(kind);
+    for (const [name, value] of Object.entries(attributes)) if (value !== undefined) made.setAttribute(name, value);
+    made.append(...children);
+    return made;
   }
 
+  function input(name, { type, value, min, max, step, placeholder, accept, orient }) {
+    const made = element("input", { type, id: `field-${name}`, min, max, step, placeholder, accept });
+    if (type === "file") {
+      made.multiple = true;
+      made.setAttribute("aria-label", "Files of a release");
+      return made;
+    }
+    made.dataset.field = name;
+    made.setAttribute("aria-describedby", `help-${name}`);
+    if (value !== undefined) made.value = value;
+    if (orient) { made.dataset.orient = orient; made.setAttribute("aria-orientation", orient); }
+    return made;
+  }
+
+  function select(name, { value = "", options }) {
+    const made = element("select", { id: `field-${name}`, "data-field": name, "aria-describedby": `help-${name}` });
+    made.append(...JSON.parse(options).map(([each, words]) => element("option", { value: each }, words)));
+    made.value = value;
+    return made;
+  }
+
+  /* Label, "?" (help.js), the field, and the sentence of help. */
+  function control(holder) {
+    const { control: name, label, helpWords, type } = holder.dataset;
+    const says = element("label", { for: `field-${name}` }, label);
+    const help = element("button", {
+      type: "button", class: "help", "data-help": `help-${name}`, "aria-label": `Help on ${label}`,
+      "aria-describedby": `help-${name}`,
+    }, "?");
+    const head = type === "range" ? [says, help] : [element("span", { class: "label" }, says, help)];
+    if (type === "range") says.className = "hidden-label";
+    const field = type === "select" ? select(name, holder.dataset)
+      : element("span", { class: "native" }, input(name, holder.dataset));
+    return [...head, field, element("span", { id: `help-${name}`, class: "hidden-label" }, helpWords)];
+  }
+
+  const verb = (kind) => [element("span", { class: "verb" }, "Save\u00a0"), kind]; // dropped where room is short
+  const BUTTONS = {
+    table: (view) => element("button", { type: "button", "data-table": view, "aria-expanded": "false" }, "Table"),
+    png: (view) => element("button", { type: "button", "data-save": "png", "data-view": view }, ...verb("PNG")),
+    svg: (view) => element("button", { type: "button", "data-save": "svg", "data-view": view }, ...verb("SVG")),
+    csv: (view) => element("a", { id: `csv-${view}`, class: "button", "data-csv": view, href: csvOf(view) }, ...verb("CSV")),
+    brief: (view) => element("button", { type: "button", "data-brief": view }, "Add to brief"),
+  };
+
+  /* What is built in which places. The renderer may use an element again for another control. */
+  const BUILT = {
+    control,
+    saves: (holder) => holder.dataset.kinds.split(" ").map((kind) => BUTTONS[kind](holder.dataset.saves)),
+    native: (holder) => [input(holder.dataset.native, holder.dataset)],
+  };
+
   new MutationObserver(() => {
-    for (const holder of document.querySelectorAll("[data-native]:empty")) build(holder);
-  }).observe(document.documentElement, { childList: true, subtree: true });
+    for (const [mark, build] of Object.entries(BUILT)) {
+      for (const holder of document.querySelectorAll(`[data-${mark}]`)) {
+        const { [mark]: name, value, options } = holder.dataset;
+        const described = [name, value, options].join("|");
+        if (holder.firstChild && holder.described === described) continue;
+        holder.described = described;
+        holder.replaceChildren(...build(holder));
+      }
+    }
+  }).observe(document.documentElement, {
+    childList: true, subtree: true, attributeFilter: ["data-control", "data-saves", "data-native", "data-value"],
+  });
 
   const heard = { input: [], change: [] };
   for (const kind of ["input", "change"]) {
@@ -65,14 +115,16 @@
     }
   }
 
+  let told = null; // page and state of the files
+  const csvOf = (view) => (told ? `/export/${told.page}/${view}.csv${told.search}` : undefined);
+
   /* Put the state into the address bar, the CSV links and the navigation; ask for its answer. */
   function publish(page, state, defaults, ask = true) {
     const text = query(state, defaults);
     const search = text ? `?${text}` : "";
     history.replaceState(history.state, "", `${location.pathname}${search}`);
-    for (const link of document.querySelectorAll("[data-csv]")) {
-      link.href = `/export/${page}/${link.dataset.csv}.csv${search}`;
-    }
+    told = { page, search };
+    for (const link of document.querySelectorAll("[data-csv]")) link.href = csvOf(link.dataset.csv);
     window.dash_clientside.set_props(`nav-${page}`, { href: `/${page}${search}` });
     carry(page, state, defaults);
     if (ask) window.dash_clientside.set_props(`${page}-state`, { data: state });

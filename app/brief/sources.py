@@ -194,7 +194,9 @@ def _laid_out(page: ModuleType) -> Mapping[str, _LaidOut]:
         if section._type != "Section":
             continue
         inside = [each.to_plotly_json()["props"] for each in _within(section)]
-        views = [props["data-csv"] for props in inside if "data-csv" in props]
+        views = [
+            props[mark] for props in inside for mark in ("data-csv", "data-saves") if mark in props
+        ]
         heads = [part.children for part in _within(section) if part._type == "H2"]
         if views and heads and isinstance(heads[0], str):
             ids = {props.get("id") for props in inside}

@@ -31,7 +31,7 @@ def query(bridge):
 def views_of(component):
     """The views that a page offers as CSV, read from its own buttons."""
     found = []
-    mark = getattr(component, "data-csv", None)
+    mark = getattr(component, "data-csv", None) or getattr(component, "data-saves", None)
     if mark:
         found.append(mark)
     children = getattr(component, "children", None)

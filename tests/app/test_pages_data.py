@@ -154,7 +154,7 @@ def test_the_page_for_an_address_shows_its_date_and_names_refused_values():
     text = words(shown)
     assert "As it stood on must be a date such as 2024-03-12" in text
     good = page.layout("?as_of=2024-02-29", Bridge(Workspace()))
-    (field,) = [p for p in props(good) if p.get("data-native") == "as_of"]
+    (field,) = [p for p in props(good) if p.get("data-control") == "as_of"]
     assert (field["data-type"], field["data-value"]) == ("date", "2024-02-29")
 
 
