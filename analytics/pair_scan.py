@@ -73,6 +73,8 @@ class PairScan:
         Of that cell over all its periods, as the surface has it; percent per percent.
     p_search, p_one_sided : float
         Search-adjusted p of the pair, for relations of any sign and for positive ones.
+    p_error : float
+        Monte Carlo standard error of the p of the relations that were looked for.
     level_shifts_removed : bool
         Whether both series were freed of level shifts before the search.
     shift_set : tuple of int
@@ -105,6 +107,7 @@ class PairScan:
     slope: float = float("nan")
     p_search: float = float("nan")
     p_one_sided: float = float("nan")
+    p_error: float = float("nan")
     level_shifts_removed: bool = False
     shift_set: tuple[int, ...] = ()
     identified: bool = False
@@ -242,6 +245,7 @@ def pair_scan(
         slope=float(surface.slope[place]),
         p_search=float(found.p),
         p_one_sided=float(found.p_one_sided),
+        p_error=found.p_error if sign == "any" else found.p_one_sided_error,
         level_shifts_removed=found.level_shifts_removed,
         shift_set=() if shifts is None else tuple(int(s) for s in shifts.shifts),
         identified=shifts is not None and shifts.identified,

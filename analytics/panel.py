@@ -35,6 +35,7 @@ __all__ = [
     "panel_scan",
     "panel_surface",
     "refused_scan",
+    "unrelated_pairs",
 ]
 
 
@@ -136,6 +137,41 @@ def panel_scan(
             for pair in pairs
         ]
     )
+
+
+def unrelated_pairs(p: ArrayLike, *, above: float = 0.5) -> float:
+    """Estimate how many of the pairs are unrelated, from how many have a large p.
+
+    Parameters
+    ----------
+    p : array_like of float, shape (m,)
+        0 to 1, not adjusted; nan is not counted.
+    above : float, default 0.5
+        Unrelated pairs have a p above this with probability ``1 - above``, related ones hardly.
+
+    Returns
+    -------
+    float
+        ``(1 + #{p > above}) / (1 - above)``, at most the number of pairs: on average not too low,
+        and rough where there are few pairs. Storey, Taylor and Siegmund (2004), Strong control,
+        conservative point estimation and simultaneous conservative consistency of false discovery
+        rates, J. R. Statist. Soc. B 66, 187-205 (formula from memory).
+
+    Raises
+    ------
+    ValueError
+        `above` is not within 0 and 1.
+
+    Examples
+    --------
+    >>> unrelated_pairs([0.001, 0.002, 0.01, 0.4, 0.6])
+    4.0
+    """
+    if not 0.0 < above < 1.0:
+        raise ValueError(f"above must lie within 0 and 1, but got {above}")
+    given = np.asarray(p, dtype=np.float64)
+    given = given[~np.isnan(given)]
+    return min(float(given.size), (1.0 + np.count_nonzero(given > above)) / (1.0 - above))
 
 
 def adjusted_p(p: ArrayLike, method: str) -> FloatArray:

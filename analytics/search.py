@@ -54,6 +54,8 @@ class SearchResult:
         unrelated: ``(1 + #) / (surrogates + 1)``.
     p_one_sided : float
         The same for the largest z: only positive relations count.
+    p_error, p_one_sided_error : float
+        Monte Carlo standard error of each: about how far p moves with another seed.
     p_with_level_shifts : float or None
         p of the pair as given; None where no level shift was removed.
     level_shifts_removed : bool
@@ -90,6 +92,8 @@ class SearchResult:
 
     p: float
     p_one_sided: float
+    p_error: float
+    p_one_sided_error: float
     p_with_level_shifts: float | None
     level_shifts_removed: bool
     spreads_evened: bool
@@ -199,6 +203,8 @@ def search_result(plan: SearchPlan, chunks: Sequence[SearchChunk]) -> SearchResu
     return SearchResult(
         p=judged.p,
         p_one_sided=judged.p_one_sided,
+        p_error=judged.p_error,
+        p_one_sided_error=judged.p_one_sided_error,
         p_with_level_shifts=raw.p if removed else None,
         level_shifts_removed=removed,
         spreads_evened=plan.spreads_evened,
@@ -280,6 +286,8 @@ class _Judged:
 
     p: float
     p_one_sided: float
+    p_error: float
+    p_one_sided_error: float
     p_cell: FloatArray
     z: FloatArray
 
@@ -316,9 +324,31 @@ def _judged(observed: FloatArray, surfaces: list[NDArray[np.float32]]) -> _Judge
     return _Judged(
         float(np.nanmin(p_cell)),
         float((1.0 + above) / (draws + 1.0)) if np.nanmax(z) > 0 else 1.0,
+        _monte_carlo_error(np.abs(z), either, surfaces),
+        _monte_carlo_error(z, np.sort(top), surfaces),
         p_cell,
         z.astype(np.float64),
     )
+
+
+def _monte_carlo_error(
+    size: FloatArray, heights: NDArray[np.float32], surfaces: list[NDArray[np.float32]]
+) -> float:
+    """Return the standard error of p from a finite number of draws, by the delta method.
+
+    Two things are drawn: how many of the sorted `heights` reach the best cell of `size`, and the
+    scale of that cell, whose error moves the cell's own z.
+    """
+    row, column = np.unravel_index(np.nanargmax(size), size.shape)
+    best, draws = float(size[row, column]), heights.size
+    squares = np.concatenate([s[row, column] for s in surfaces]).astype(np.float64) ** 2
+    mean = squares.mean()
+    if best <= 0.0 or mean == 0.0:
+        return 0.0
+    moved = squares.std() / (2.0 * mean * np.sqrt(draws))  # of the scale, relative
+    at = best * np.array([1.0 - moved, 1.0, 1.0 + moved])
+    low, p, high = (1.0 + draws - np.searchsorted(heights, at, side="left")) / (draws + 1.0)
+    return float(np.hypot(np.sqrt(p * (1.0 - p) / draws), (low - high) / 2.0))
 
 
 def _fisher(correlation: FloatArray, out: NDArray[np.float32]) -> None:

@@ -26,6 +26,7 @@ from app.jobs import Jobs
 from app.lag.left_out import kept_months
 from app.memory import Memory
 from app.preparing import Prepared, prepared
+from app.scan.held import HeldResults
 from app.state import StateError, ViewState, field_kind
 from app.workspace import Workspace, WorkspaceView
 
@@ -57,6 +58,7 @@ class Bridge:
         self.memory = Memory(cache)
         self.jobs = Jobs(self.memory)
         self.pending = Pending()
+        self.results = HeldResults()
 
     def in_view(self, state: ViewState) -> WorkspaceView:
         """Return the loaded series, as they stood on the date of the state where it names one."""

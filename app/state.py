@@ -261,6 +261,7 @@ class ViewState:
     league: str = _state("p_search-up", scan_fields.LEAGUE)
     league_rows: str = _state("top", scan_fields.LEAGUE_ROWS)
     begin: str = _state("no", scan_fields.BEGIN)
+    result: str = _state("", scan_fields.RESULT)
     # The Data page
     revised: str = _state(
         "growth",

@@ -119,17 +119,20 @@
 
   controls.on("change", (field, element) => change(field, element, 0));
   controls.on("input", (field, element) => { if (element.type === "range") change(field, element, DRAGGING); });
+  function choose(name, value) {
+    page.state = { ...page.state, [name]: value };
+    const field = controls.field(name);
+    if (field) field.value = value;
+    send();
+  }
   document.addEventListener("click", (event) => {
     const chosen = event.target.closest && event.target.closest("[data-set]");
-    if (!chosen || !root() || !page.state) return;
-    page.state = { ...page.state, [chosen.dataset.set]: chosen.dataset.value };
-    const field = controls.field(chosen.dataset.set);
-    if (field) field.value = chosen.dataset.value;
-    send();
+    if (chosen && root() && page.state) choose(chosen.dataset.set, chosen.dataset.value);
   });
 
   window.dash_clientside = Object.assign({}, window.dash_clientside, { plain: { adopt } });
   Object.assign(page, {
+    choose,
     sentence: () => page.data.sentence,
     subtitle: (view) => (page.data.subtitles || {})[view] || "",
     source: () => page.data.source,

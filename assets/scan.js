@@ -1,4 +1,5 @@
-/* The Scan page: paint the small maps from the numbers of their chart; show the invented panel. */
+/* The Scan page: paint the small maps from the numbers of their chart; open a result file; show the
+   invented panel. */
 (function () {
   "use strict";
   const pricewake = window.pricewake;
@@ -49,7 +50,41 @@
     painted = list.dataset.painted = wanted;
   }
 
-  new MutationObserver(paintAll).observe(document.documentElement, {
+  /* The way back from a result file is there while one is looked at. */
+  function follow() {
+    const back = document.getElementById("scan-back"), state = pricewake.plain.state;
+    if (back && state && back.hidden === Boolean(state.result)) back.hidden = !state.result;
+    paintAll();
+  }
+
+  const say = (words) => window.dash_clientside.set_props("scan-message", { children: words });
+
+  async function open(file) {
+    if (!file || !pricewake.plain.state) return;
+    say(`Reading ${file.name}`);
+    const address = `/scan/result?name=${encodeURIComponent(file.name)}`;
+    const headers = { "Content-Type": "application/octet-stream" };
+    const answer = await fetch(address, { method: "POST", headers, body: file }).catch(() => null);
+    const found = answer ? await answer.json().catch(() => ({})) : {};
+    if (!found.result) return say(found.message || `${file.name} could not be sent; is Pricewake still running?`);
+    if (found.result === pricewake.plain.state.result) return say("");
+    pricewake.plain.choose("result", found.result);
+  }
+
+  document.addEventListener("click", (event) => {
+    if (event.target.id !== "scan-open") return;
+    const field = Object.assign(document.createElement("input"), { type: "file", accept: ".csv", id: "scan-file" });
+    field.className = "hidden-label";
+    field.setAttribute("aria-label", "Result file");
+    document.getElementById("scan-file")?.remove();
+    event.target.after(field);
+    field.click();
+  });
+  document.addEventListener("change", (event) => {
+    if (event.target.id === "scan-file") open(event.target.files[0]);
+  });
+
+  new MutationObserver(follow).observe(document.documentElement, {
     childList: true, subtree: true, attributes: true, attributeFilter: ["data-stamp", "data-theme"],
   });
 

@@ -95,7 +95,8 @@ def _breadth(state: ViewState, bridge: Bridge) -> tuple[Series, ...]:
 
 def _scan(state: ViewState, bridge: Bridge) -> tuple[Series, ...]:
     loaded = bridge.in_view(state).as_read
-    pairs = question(state, bridge).roles.pairs
+    asked = question(state, bridge)
+    pairs = asked.roles.pairs if asked.opened is None else [one.names for one in asked.pairs]
     names = dict.fromkeys(series_name(e, side) for e, *sides in pairs for side in sides)
     return tuple(loaded[name] for name in names if name in loaded)
 

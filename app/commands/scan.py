@@ -1,8 +1,9 @@
 """`pricewake scan`: every economy, driver and response in the files."""
 
 import sys
+from dataclasses import replace
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import click
 
@@ -10,6 +11,9 @@ from app.commands import parts as cli_parts
 from app.commands.parts import errors, print_json, state_of, workspace_of, write
 from app.scan.fields import SCAN_FIELDS, SCAN_VIEWS
 from app.state import ViewState
+
+if TYPE_CHECKING:
+    from app.scan.opened import Opened
 
 
 @click.command()
@@ -48,6 +52,13 @@ from app.state import ViewState
     help="Search on the workers of the Dask scheduler at this address, such as"
     " tcp://192.0.2.7:8786.",
 )
+@click.option(
+    "--from",
+    "opened",
+    type=click.Path(path_type=Path),
+    metavar="RESULT.csv",
+    help="Search nothing and show this result of an earlier scan, checked row by row.",
+)
 @cli_parts.as_json
 @cli_parts.csv_path
 @click.option(
@@ -65,6 +76,7 @@ def scan(
     result: Path | None,
     processes: int | None,
     cluster: str | None,
+    opened: Path | None,
     as_json: bool,
     csv_path: Path | None,
     view: str,
@@ -85,13 +97,20 @@ def scan(
 
     if cluster and processes:
         raise click.UsageError("--processes and --cluster must not both be given")
-    desk = workspace_of(files, kept_in)
     named = {"drivers": "|".join(drivers) or None, "responses": "|".join(responses) or None}
-    state = state_of(ViewState(), {**flags, **named})
-    bridge = Bridge(desk)
-    panel = completed_panel(
-        state, bridge, result=result, processes=processes, cluster=cluster, told=_progress()
-    )
+    given = {**flags, **named}
+    if opened:
+        where = {"--out": result, "--processes": processes, "--cluster": cluster}
+        _refuse_beside(given, [name for name, value in where.items() if value])
+    desk = workspace_of(files, kept_in)
+    state = state_of(ViewState(), given)
+    bridge, panel = Bridge(desk), None
+    if opened:
+        state = replace(state, result=bridge.results.hold(_read(opened)))
+    else:
+        panel = completed_panel(
+            state, bridge, result=result, processes=processes, cluster=cluster, told=_progress()
+        )
     known = scan_of(state, bridge, panel)
     if csv_path:
         write(csv_path, view_text(view, known, every=True))
@@ -109,6 +128,38 @@ def scan(
     for problem in errors(desk):
         click.echo(f"pricewake: {problem}", err=True)
     return int(bool(errors(desk)))
+
+
+def _refuse_beside(given: dict[str, str | None], where: list[str]) -> None:
+    """Refuse what a result file settles by itself."""
+    free = ("as_of", "axes")
+    one_each = {"drivers": "driver", "responses": "response"}
+    asked = [name for name, text in given.items() if text is not None and name not in free]
+    settled = [f"--{one_each.get(name, name).replace('_', '-')}" for name in asked] + where
+    if settled:
+        raise click.UsageError(
+            f"a result holds what was searched, so {settled[0]} cannot go with --from"
+        )
+
+
+def _read(path: Path) -> "Opened":
+    """Read a result file.
+
+    Raises
+    ------
+    UsageError
+        It cannot be read, or is no result; one sentence.
+    """
+    from app.scan.opened import MOST_BYTES, read_result
+
+    try:
+        with path.open("rb") as file:
+            content = file.read(MOST_BYTES + 1)
+    except OSError as error:
+        raise click.UsageError(
+            f"--from must be a file that can be read, but got {str(path)!r}: {error.strerror}"
+        ) from error
+    return read_result(path.name, content)
 
 
 def _progress() -> Any:

@@ -56,6 +56,19 @@ def layout(query: str, bridge: Bridge) -> html.Div:
             controls.text(state, "shifts", placeholder="usual"),
             controls.number(state, "surrogates"),
             controls.number(state, "seed"),
+            html.Div(
+                [
+                    html.Button("Open a result", type="button", id="scan-open"),
+                    html.Button(
+                        "Back to the loaded files",
+                        type="button",
+                        id="scan-back",
+                        hidden=not state.result,
+                        **{"data-set": "result", "data-value": ""},
+                    ),
+                ],
+                className="control result-file",
+            ),
         ],
         [
             html.Div(id=f"{NAME}-as-of"),
@@ -121,6 +134,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
     """
     known = scan(state, bridge)
     asked = known.question
+    state = asked.state
     waiting = known.panel is None
     held = waiting and len(asked.pairs) > MANY and state.begin == "no"
     unit = asked.noun
@@ -190,7 +204,7 @@ def _notes(known: Scan, bridge: Bridge, *, held: bool) -> list[Any]:
                 ]
             )
         )
-    if asked.roles.economies == 1:
+    if asked.roles.economies == 1 and asked.opened is None:
         how: list[Any] = [
             "One economy is loaded. A panel is a file with the columns economy, period, series and"
             " value, or series named such as Abrisund: Broad money; open one on the ",
@@ -207,6 +221,7 @@ def _notes(known: Scan, bridge: Bridge, *, held: bool) -> list[Any]:
 
 def _source(known: Scan, bridge: Bridge) -> str:
     in_view = bridge.in_view(known.question.state)
-    files = [one.name for one in in_view.releases]
+    opened = known.question.opened
+    files = [opened.name] if opened else [one.name for one in in_view.releases]
     more = f" and {len(files) - 4} more" if len(files) > 4 else ""
     return f"Source: {', '.join(files[:4])}{more}. Pricewake {software_version()}."

@@ -1,5 +1,6 @@
 """The table of pairs and the small maps of the Scan page; both lead to the Lag page."""
 
+from collections.abc import Collection
 from typing import Any
 
 from dash import dcc, html
@@ -28,6 +29,7 @@ def league_table(known: Scan) -> list[Any]:
     rows, state = league(known), known.question.state
     if not rows:
         return [html.P(waiting_words(known), className="quiet")]
+    loaded = {pair.names for pair in known.question.pairs}
     sorted_by, _, way = state.league.rpartition("-")
     cut = rows if state.league_rows == "all" or len(rows) <= TOP_ROWS + 1 else rows[:TOP_ROWS]
     more: list[Any] = []
@@ -42,7 +44,7 @@ def league_table(known: Scan) -> list[Any]:
         html.Table(
             [
                 html.Thead(html.Tr([_sorter(*column, sorted_by, way) for column in COLUMNS])),
-                html.Tbody([_row(row, known) for row in cut]),
+                html.Tbody([_row(row, known, loaded) for row in cut]),
             ],
             className="table league",
         ),
@@ -119,9 +121,11 @@ def _sorter(column: str, words: str, sorted_by: str, way: str) -> html.Th:
     )
 
 
-def _row(row: LeagueRow, known: Scan) -> html.Tr:
+def _row(row: LeagueRow, known: Scan, loaded: Collection[tuple[str, str, str]]) -> html.Tr:
     scan, state = row.scan, known.question.state
-    name = dcc.Link(pair_words(scan, known.question), href=lag_address(scan, state))
+    name: Any = pair_words(scan, known.question)
+    if known.question.opened is None or scan.names in loaded:
+        name = dcc.Link(name, href=lag_address(scan, state))
     if scan.refused:
         return html.Tr(
             [

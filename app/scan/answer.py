@@ -5,7 +5,7 @@ from typing import Any
 
 from analytics.panel import PairScan, PanelScan
 from app.scan.bridge import Scan
-from app.scan.words import notes, sentence, verdict
+from app.scan.words import near_pairs, notes, sentence, verdict
 
 
 def scan_answer(known: Scan) -> dict[str, Any]:
@@ -29,9 +29,27 @@ def scan_answer(known: Scan) -> dict[str, Any]:
         "seed": asked.state.seed,
         "sign": asked.state.sign,
         "lacking": list(asked.roles.lacking),
+        "opened": _opened(known),
+        "near": [
+            {"names": list(scan.names), "p": p, "error": error}
+            for scan, p, error in near_pairs(panel, asked.state.correction)
+        ],
         "averages": _averages(known),
         "sentence": sentence(asked),
         "verdict": [verdict(known), *notes(known)],
+    }
+
+
+def _opened(known: Scan) -> dict[str, Any] | None:
+    opened = known.question.opened
+    if opened is None:
+        return None
+    return {
+        "file": opened.name,
+        "content": opened.mark,
+        "pricewake": opened.version,
+        "finished": opened.finished,
+        "drawn": len(known.question.pairs),
     }
 
 

@@ -2,6 +2,7 @@
 
 import hashlib
 from collections import Counter
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import Any
@@ -12,6 +13,7 @@ from analytics.panel import (
     PairScan,
     PanelPair,
     PanelScan,
+    pair_fingerprint,
     pair_scan,
     pair_seed,
     panel_result,
@@ -21,9 +23,10 @@ from analytics.series import PERIOD_NOUN, PERIODS_PER_YEAR, Pair, period_code
 from app.compute import Bridge, grid
 from app.jobs import Work
 from app.places import software_version
-from app.scan.economies import Roles, roles, series_name
+from app.scan.economies import Roles, economy_of, roles, series_name
 from app.scan.fields import SETTINGS
-from app.state import ViewState, field_kind
+from app.scan.opened import Opened
+from app.state import StateError, ViewState, field_kind
 
 LONG = 5  # years that a long average has at least
 
@@ -57,6 +60,9 @@ class Question:
         Those that cannot be paired, each with the reason.
     averages : tuple of EconomyAverage
         One an economy of five years or more, of its first driver and response.
+    opened : Opened or None
+        The result file that is looked at, where one is; then `pairs` and `averages` are of those
+        rows whose series are loaded just as they were.
     """
 
     state: ViewState
@@ -65,6 +71,7 @@ class Question:
     pairs: tuple[PanelPair, ...]
     refused: tuple[PairScan, ...]
     averages: tuple[EconomyAverage, ...]
+    opened: Opened | None = None
 
     @property
     def chunks(self) -> int:
@@ -75,6 +82,8 @@ class Question:
     def noun(self) -> str:
         """Month, quarter or year where all pairs agree, else period."""
         found = {PERIOD_NOUN[one.pair.driver.frequency] for one in self.pairs}
+        if self.opened is not None:
+            found = {_noun(scan.first) for scan in self.opened.panel.pairs if not scan.refused}
         return found.pop() if len(found) == 1 else "period"
 
     @cached_property
@@ -123,7 +132,7 @@ def draws(state: ViewState) -> dict[str, Any]:
 def scan_key(state: ViewState, bridge: Bridge) -> str:
     """Return the key of a scan: settings, pairs asked for, and every series in view."""
     in_view = bridge.in_view(state)
-    parts = [software_version(), settings(state), state.drivers, state.responses]
+    parts = [software_version(), settings(state), state.drivers, state.responses, state.result]
     for name, series in in_view.series.items():
         parts += [name, series.fingerprint, series.adjustment]
     return hashlib.sha256("\n".join(parts).encode()).hexdigest()[:32]
@@ -135,15 +144,54 @@ def question(state: ViewState, bridge: Bridge) -> Question:
     Raises
     ------
     ValueError
-        There is no pair, or a driver or response is named that is not there; one sentence.
+        There is no pair, a driver or response is named that is not there, or the result that is
+        named is not held; one sentence.
     """
+    if state.result:
+        return _reopened(state, bridge)
     return bridge.memory.once(
         "scan-question:" + scan_key(state, bridge), lambda: _question(state, bridge)
     )
 
 
 def _question(state: ViewState, bridge: Bridge) -> Question:
-    found = roles(bridge.in_view(state).series, state.drivers, state.responses)
+    return _paired(
+        state, bridge, roles(bridge.in_view(state).series, state.drivers, state.responses)
+    )
+
+
+def _reopened(state: ViewState, bridge: Bridge) -> Question:
+    """Return the question behind a result file, with those of its pairs that are loaded."""
+    opened = bridge.results.found(state.result)
+    if opened is None:
+        raise StateError(
+            "the result of this address is not held any more; open its file again, or go back to"
+            " the loaded files"
+        )
+    state = opened.in_state(state)
+    was = {scan.names: scan.fingerprint for scan in opened.panel.pairs}
+    found = Roles(
+        tuple(was),
+        *(tuple(dict.fromkeys(names[side] for names in was)) for side in (1, 2)),
+        len({economy for economy, _, _ in was}),
+        (),
+    )
+    loaded = {economy_of(name) for name in bridge.in_view(state).series}
+    there = [names for names in was if {(names[0], each) for each in names[1:]} <= loaded]
+    asked = bridge.memory.once(
+        f"scan-opened:{scan_key(state, bridge)}",
+        lambda: _paired(state, bridge, replace(found, pairs=tuple(there)), was),
+    )
+    return replace(asked, state=state, roles=found, refused=(), opened=opened)
+
+
+def _paired(
+    state: ViewState,
+    bridge: Bridge,
+    found: Roles,
+    was: Mapping[tuple[str, str, str], str] | None = None,
+) -> Question:
+    """Pair the series; with the fingerprints of a result file, only what is still the same."""
     pairs, refused, averages = [], [], {}
     for economy, driver, response in found.pairs:
         one = replace(
@@ -163,18 +211,34 @@ def _question(state: ViewState, bridge: Bridge) -> Question:
                 )
             )
             continue
+        whole = PanelPair(economy, driver, response, paired)
+        if was is not None and not _as_it_was(whole, one, was):
+            continue
         if economy not in averages and paired.n >= LONG * PERIODS_PER_YEAR[paired.driver.frequency]:
             averages[economy] = _average(economy, paired, one, bridge)
         try:
             windows, shifts = grid(paired, one)
         except ValueError as error:
-            short = PanelPair(economy, driver, response, paired)
-            refused.append(refused_scan(short, state.seed, str(error), state.sign))
+            refused.append(refused_scan(whole, state.seed, str(error), state.sign))
             continue
-        pairs.append(PanelPair(economy, driver, response, paired, windows, shifts))
+        pairs.append(replace(whole, windows=windows, shifts=shifts))
     return Question(
         state, settings(state), found, tuple(pairs), tuple(refused), tuple(averages.values())
     )
+
+
+def _as_it_was(pair: PanelPair, state: ViewState, was: Mapping[tuple[str, str, str], str]) -> bool:
+    """Whether growth rates and grid have the fingerprint that the result file gives."""
+    try:
+        windows, shifts = grid(pair.pair, state)
+    except ValueError:
+        return False
+    return pair_fingerprint(replace(pair, windows=windows, shifts=shifts)) == was[pair.names]
+
+
+def _noun(code: str) -> str:
+    """Return the noun of a period as files carry it: ``2024-03``, ``2024-Q1`` or ``2024``."""
+    return "quarter" if "Q" in code else "month" if "-" in code else "year"
 
 
 def _average(economy: str, pair: Pair, state: ViewState, bridge: Bridge) -> EconomyAverage:
@@ -213,6 +277,8 @@ def scan(state: ViewState, bridge: Bridge, panel: PanelScan | None = None) -> Sc
         There is no pair; one sentence.
     """
     asked = question(state, bridge)
+    if asked.opened is not None:
+        state, panel = asked.opened.in_state(state), asked.opened.panel
     known = panel or bridge.jobs.remembered(scan_work(state, bridge))
     averages, why = None, ""
     try:
@@ -224,6 +290,8 @@ def scan(state: ViewState, bridge: Bridge, panel: PanelScan | None = None) -> Sc
         )
     except ValueError as error:
         why = str(error)
+        if asked.opened is not None and not asked.averages:
+            why = "a result file holds no series, and those behind this one are not loaded"
     return Scan(replace(asked, state=state), known, averages, why)
 
 

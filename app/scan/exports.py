@@ -9,8 +9,9 @@ from app.exports import csv_text
 from app.places import software_version
 from app.scan.bridge import Scan, scan, scan_work
 from app.scan.league import drawn_pairs
+from app.scan.opened import Opened
 from app.scan.result_file import COLUMNS, row
-from app.scan.words import sentence
+from app.scan.words import notes, sentence
 from app.state import StateError, ViewState
 
 Rows = Iterable[Sequence[Any]]
@@ -60,9 +61,16 @@ def header(known: Scan) -> list[tuple[str, str]]:
         ("view", sentence(asked)),
         ("settings", asked.settings),
         ("state", f"/scan?{asked.state.to_query()}"),
+        *([("result", opened_line(asked.opened))] if asked.opened is not None else []),
+        *[("said", note) for note in notes(known)],
         ("note", "p_scan by Benjamini-Hochberg; p_holm by Holm; over all pairs of the scan"),
         ("note", "an association in past data; not a cause and not advice"),
     ]
+
+
+def opened_line(opened: Opened) -> str:
+    """Name the result file that was opened."""
+    return f"{opened.name}; content {opened.mark}; written by Pricewake {opened.version}"
 
 
 def _pairs(known: Scan) -> Rows:

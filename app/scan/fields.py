@@ -69,6 +69,13 @@ BEGIN = Choice(
     display=True,
 )
 
+RESULT = Text(
+    label="Opened result",
+    pattern=r"([0-9a-f]{16})?",
+    shape="the mark of a result that is open, or empty",
+    help="Mark of a result file that was opened on the Scan page; empty scans the loaded files.",
+)
+
 SETTINGS = (  # fields of the state that a scan's numbers depend on, besides the series
     "growth",
     "first",

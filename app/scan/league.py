@@ -106,11 +106,9 @@ def shift_bins(known: Scan) -> tuple[int, list[tuple[float, int, int]], tuple[in
     for row in rows:
         middle = round(row.scan.shift / width) * width
         counts.setdefault(middle, [0, 0])[0 if row.found else 1] += 1
-    pairs = known.question.pairs
-    span = (
-        min((pair.shifts[0] for pair in pairs), default=0),
-        max((pair.shifts[-1] for pair in pairs), default=0),
-    )
+    ends = [end for pair in known.question.pairs for end in (pair.shifts[0], pair.shifts[-1])]
+    ends += [row.scan.shift for row in rows]
+    span = min(ends, default=0), max(ends, default=0)
     return width, [(float(middle), *counts[middle]) for middle in sorted(counts)], span
 
 

@@ -111,7 +111,7 @@ class ResultFile:
     def _rows(self, text: str, wanted: Mapping[Any, str]) -> tuple[PairScan, ...]:
         """Return the pairs that the file holds; the last line counts only if it is whole."""
         lines = text.split(_LINE_END)[:-1]
-        top = len(list(takewhile(_is_head, lines)))
+        top = len(list(takewhile(is_head, lines)))
         said = dict(line[2:].split(": ", 1) for line in lines[:top])
         body = lines[top:]
         if said.get("view") != _MARK or not body or body[0] != ",".join(COLUMNS):
@@ -126,7 +126,7 @@ class ResultFile:
         found = {}
         for values in csv.DictReader(body):
             try:
-                scan = _read_row(values)
+                scan = read_row(values)
             except ValueError:
                 raise self._stranger() from None
             if scan.names not in wanted:
@@ -175,7 +175,8 @@ class ResultFile:
         )
 
 
-def _is_head(line: str) -> bool:
+def is_head(line: str) -> bool:
+    """Whether a line says what the file holds."""
     return line.startswith("# ") and ": " in line
 
 
@@ -187,7 +188,7 @@ def _written(value: Any) -> Any:
     return value
 
 
-def _read_row(values: Mapping[str, Any]) -> PairScan:
+def read_row(values: Mapping[str, Any]) -> PairScan:
     """Read a row back; every kind of field is told from the field's default."""
     read: dict[str, Any] = {}
     for item in fields(PairScan):

@@ -5,7 +5,8 @@ import math
 import numpy as np
 
 from analytics.long_averages import LongAverages
-from analytics.panel import LEVEL, PairScan, PanelPair, PanelScan
+from analytics.panel import LEVEL, PairScan, PanelPair, PanelScan, unrelated_pairs
+from app.places import software_version
 from app.scan.bridge import Question, Scan
 from app.words import counted, p_words, plain, shift_words, signed
 
@@ -16,6 +17,7 @@ CAUTION = (
 )
 CORRECTIONS = {"bh": "Benjamini-Hochberg", "holm": "Holm"}
 NAMED = 10  # economies or pairs named in a sentence
+ENOUGH = 20  # pairs from which their p-values say how many are related
 
 
 def pair_words(scan: PairScan | PanelPair, asked: Question) -> str:
@@ -31,6 +33,8 @@ def sentence(asked: Question) -> str:
     roles, state = asked.roles, asked.state
     economies = f"{roles.economies} economies" if roles.economies > 1 else "one economy"
     stood = f", as it stood on {state.as_of}" if state.as_of else ""
+    if asked.opened is not None:
+        stood = f", opened from {asked.opened.name}"
     return (
         f"{_listed(roles.drivers)} against {_listed(roles.responses)}:"
         f" {counted(len(roles.pairs), 'pair')} of {economies}{_grid(asked)}{stood}"
@@ -65,7 +69,7 @@ def verdict(known: Scan) -> str:
 
 def notes(known: Scan) -> list[str]:
     """Say what a reader has to know before believing the table."""
-    asked, said = known.question, []
+    asked, said = known.question, opened_words(known)
     lacking = [economy or "series without an economy" for economy in asked.roles.lacking]
     if lacking:
         said.append(
@@ -73,6 +77,9 @@ def notes(known: Scan) -> list[str]:
             f"{f' and {len(lacking) - NAMED} more' if len(lacking) > NAMED else ''}."
         )
     count, draws = len(asked.pairs), asked.state.surrogates
+    if known.panel is not None:
+        count = int(np.isfinite(known.panel.p_scan).sum())
+        said += [*missed_words(known.panel, asked), *near_words(known.panel, asked)]
     if count / (draws + 1) > LEVEL:
         said.append(
             f"With {draws:,} surrogates the smallest p a pair can have is"
@@ -81,6 +88,100 @@ def notes(known: Scan) -> list[str]:
             " on both can."
         )
     return said
+
+
+def opened_words(known: Scan) -> list[str]:
+    """Say which file a result comes from, what made it, and what of it can be drawn."""
+    asked, opened = known.question, known.question.opened
+    if opened is None:
+        return []
+    state, mine = asked.state, software_version()
+    other = "" if opened.version == mine else f"; this is {mine}"
+    said = [
+        f"Opened from {opened.name}, written by Pricewake {opened.version}{other}: seed"
+        f" {state.seed}, {state.surrogates:,} surrogates, content {opened.mark}. Drivers,"
+        " sample, grid and draws are the file's; order and correction are yours."
+    ]
+    if opened.cut:
+        said.append("The last line of the file is cut short and left out.")
+    if not opened.finished:
+        said.append(
+            "That scan had not come to its end: p-values are held against the pairs in the file"
+            " only, and rise when the others come."
+        )
+    there, rows = len(asked.pairs), len(opened.panel.pairs)
+    if there == rows:
+        said.append("Maps and averages are of the loaded series, just those that were searched.")
+    elif there:
+        said.append(
+            f"A result file holds no series: maps and averages are of the {there} of"
+            f" {counted(rows, 'pair')} whose series are loaded just as they were searched."
+        )
+    else:
+        said.append(
+            "A result file holds no series, so maps and averages are missing; they come once the"
+            " files that were searched are loaded."
+        )
+    return said
+
+
+def missed_words(panel: PanelScan, asked: Question) -> list[str]:
+    """Say how many related pairs must be expected among those not named, where it can be said."""
+    p = np.array([scan.p for scan in panel.pairs])
+    judged = int(np.isfinite(p).sum())
+    if judged < ENOUGH:
+        return []
+    related, found = judged - unrelated_pairs(p), len(found_pairs(panel, asked.state.correction))
+    false = (
+        "; of those that hold, 1 in 20 or fewer is expected to be false"
+        if found and asked.state.correction == "bh"
+        else ""
+    )
+    if related <= found:
+        return [
+            "The share of large p-values gives no sign of related pairs beyond those that hold,"
+            f" which excludes none{false}."
+        ]
+    return [
+        f"By the share of large p-values about {related:.0f} of {counted(judged, 'pair')} are"
+        f" related (a rough estimate after Storey, Taylor and Siegmund 2004): expect to miss about"
+        f" {related - found:.0f}{false}."
+    ]
+
+
+def near_pairs(panel: PanelScan, correction: str) -> list[tuple[PairScan, float, float]]:
+    """Return the pairs that other draws may decide otherwise: pair, adjusted p, its error.
+
+    The error is the Monte Carlo standard error of p times what the adjustment multiplied p by;
+    near means within two of them of 5 %.
+    """
+    adjusted = panel.p_scan if correction == "bh" else panel.p_holm
+    found = []
+    for scan, p in zip(panel.pairs, adjusted.tolist(), strict=True):
+        error = scan.p_error * p / scan.p
+        if abs(p - LEVEL) <= 2.0 * error:
+            found.append((scan, p, error))
+    return found
+
+
+def near_words(panel: PanelScan, asked: Question) -> list[str]:
+    """Name the pairs that other draws may decide otherwise."""
+    near = near_pairs(panel, asked.state.correction)
+    if not near:
+        return []
+    named = [
+        f"{pair_words(scan, asked)} (p {_thousandths(p)} ± {_thousandths(error)})"
+        for scan, p, error in near[:NAMED]
+    ]
+    more = f" and {len(near) - NAMED} more" if len(near) > NAMED else ""
+    return [
+        f"Within two Monte Carlo standard errors of 5 %, so that another seed may decide otherwise:"
+        f" {', '.join(named)}{more}. More surrogates make the error smaller."
+    ]
+
+
+def _thousandths(value: float) -> str:
+    return f"{max(value, 0.001):.3f}".lstrip("0")
 
 
 def enough_draws(pairs: int) -> int:
@@ -143,6 +244,8 @@ def shift_words_of(known: Scan) -> str:
 def map_words(known: Scan, drawn: int) -> str:
     """Say what the small maps show."""
     unit, total = known.question.noun, len(known.question.pairs)
+    if not drawn:
+        return "No map here: the series behind the result are not loaded."
     which = "" if drawn == total else f" The first {drawn} of {total} in the order of the table."
     held = " A heavy name holds once all pairs are paid for." if known.panel is not None else ""
     return (
@@ -187,6 +290,14 @@ def _listed(names: tuple[str, ...]) -> str:
 
 
 def _grid(asked: Question) -> str:
+    if asked.opened is not None and len(asked.pairs) < len(asked.roles.pairs):
+        grid = (("windows", asked.state.windows, plain), ("shifts", asked.state.shifts, signed))
+        named = []
+        for what, text, written in grid:
+            low, _, high = text.partition(":")
+            if text:
+                named.append(f"{what} {plain(int(low), 0)} to {written(int(high), 0)}")
+        return f", {' and '.join(named)} {asked.noun}s" if named else ""
     if not asked.pairs:
         return ""
     windows = {(one.windows[0], one.windows[-1]) for one in asked.pairs}

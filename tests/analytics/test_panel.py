@@ -20,6 +20,7 @@ from analytics.panel import (
     panel_scan,
     panel_surface,
     refused_scan,
+    unrelated_pairs,
 )
 from analytics.search import lag_search
 from analytics.series import Series, align
@@ -226,3 +227,18 @@ def test_quarters_are_searched_in_whole_years_of_four():
 def test_errors(call, what):
     with pytest.raises(ValueError, match=what):
         call(panel_pairs({"Ardenquay": 1.0})[0])
+
+
+def test_unrelated_pairs_are_counted_from_large_p_values():
+    assert unrelated_pairs([0.001, 0.002, 0.01, 0.4, 0.6]) == 2 / 0.5
+    assert unrelated_pairs([0.9, np.nan, 0.8]) == 2.0  # at most the pairs that have a p
+    assert unrelated_pairs([0.1, 0.9], above=0.2) == 2.0
+    # A planted truth: 600 of 1,000 unrelated, whose p is uniform; 400 far below.
+    rng = np.random.default_rng(2)
+    guesses = [
+        unrelated_pairs(np.concatenate([rng.uniform(size=600), rng.beta(0.2, 20.0, 400)]))
+        for _ in range(200)
+    ]
+    assert np.mean(guesses) == pytest.approx(602, abs=5)  # (1 + 300) / .5
+    with pytest.raises(ValueError, match="above must lie within 0 and 1, but got 1"):
+        unrelated_pairs([0.5], above=1)

@@ -235,3 +235,17 @@ def test_errors(change, sentence):
     given |= {"surrogates": 19} | change
     with pytest.raises(ValueError, match=sentence):
         lag_search(given.pop("driver"), given.pop("response"), **given)
+
+
+def test_the_monte_carlo_error_is_how_far_p_moves_from_seed_to_seed():
+    # Counting alone, sqrt(p (1 - p) / B), says .022 here: the scale of the best cell is drawn too.
+    rng = np.random.default_rng(0)
+    driver = rng.standard_normal(240)
+    response = 0.25 * np.roll(driver, 6) + rng.standard_normal(240)
+    grid = {"windows": (1, 4, 7, 10), "shifts": range(-6, 13, 2), "surrogates": 249}
+    found = [lag_search(driver, response[::-1], **grid, seed=seed) for seed in range(40)]
+    for p, error in (("p", "p_error"), ("p_one_sided", "p_one_sided_error")):
+        drawn = np.array([getattr(one, p) for one in found])
+        said = np.array([getattr(one, error) for one in found])
+        assert 0.02 < drawn.mean() < 0.98
+        assert 0.7 < said.mean() / drawn.std(ddof=1) < 1.4, (drawn.mean(), said.mean())

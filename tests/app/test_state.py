@@ -15,6 +15,7 @@ NAMES = [item.name for item in fields(ViewState)]
 # Free text has no table to take another allowed value from.
 OTHER_TEXT = {
     "driver": "Narrow money",
+    "result": "0123456789abcdef",
     "response": "Consumer prices, adjusted",
     "first": "1965-03",
     "last": "2024-Q4",
@@ -70,6 +71,7 @@ ranges = st.one_of(
     st.tuples(st.integers(-999, 999), st.integers(-999, 999)).map(lambda r: f"{r[0]}:{r[1]}"),
 )
 BY_NAME = {
+    "result": st.from_regex(r"[0-9a-f]{16}|", fullmatch=True),
     "driver": names,
     "response": names,
     "first": periods,
