@@ -11,6 +11,7 @@ from app.compute import Bridge
 from app.figures.theme import colours
 from app.scan.bridge import scan, scan_work
 from app.scan.league import league
+from app.scan.result_file import panel_text
 from app.state import ViewState
 from tests.app.panels import SMALL, panel_workspace
 from tests.browser import driving
@@ -152,3 +153,23 @@ def test_nothing_runs_over_the_side(page, width):
     until(page, f"innerWidth === {width}")
     until(page, "document.documentElement.scrollWidth <= innerWidth")  # once charts have followed
     size(page, 1280, 800)
+
+
+def test_a_result_file_is_opened_and_left_again(page, known, tmp_path):
+    path = tmp_path / "result.csv"
+    path.write_text(panel_text(known.panel, known.question.settings), encoding="utf-8", newline="")
+    page.execute_script("HTMLInputElement.prototype.click = () => {}")  # no dialog of the system
+    page.find_element(By.ID, "scan-open").click()
+    page.find_element(By.ID, "scan-file").send_keys(str(path))
+    until(page, ANSWERED + " && pricewake.plain.data.state.result", 30)
+    until(page, "document.getElementById('scan-sentence').textContent.endsWith('result.csv')")
+    assert names(page) == [row.scan.economy for row in league(known)]
+    assert "result=" in page.current_url
+    path.write_text("a,b\r\n", encoding="utf-8")
+    page.find_element(By.ID, "scan-open").click()
+    page.find_element(By.ID, "scan-file").send_keys(str(path))
+    until(page, "document.getElementById('scan-message').textContent.includes('something else')")
+    assert len(names(page)) == 5  # what was there stays
+    page.find_element(By.ID, "scan-back").click()
+    until(page, ANSWERED + " && !location.search.includes('result=')", 30)
+    until(page, "document.getElementById('scan-back').hidden")
