@@ -64,6 +64,7 @@ def build_app(workspace: Workspace, door: Door = Door()) -> Dash:  # noqa: B008 
         enable_mcp=False,
     )
     bridge = Bridge(workspace, server_cache(server))
+    server.extensions["pricewake"] = bridge
     app.layout = lambda: frame.frame(shows_invented(bridge))  # anew for each page load
 
     @app.callback(
@@ -88,6 +89,14 @@ def build_app(workspace: Workspace, door: Door = Door()) -> Dash:  # noqa: B008 
     guard(server, app, door)
     serving.register(server)
     return app
+
+
+def first_page_made(server: Flask) -> None:
+    """Make the page that opens first, before anyone asks; what it took is kept for who does."""
+    try:
+        lag.layout("", server.extensions["pricewake"])
+    except ValueError:  # a workspace that cannot be read; the page will say so
+        return
 
 
 def shows_invented(bridge: Bridge) -> bool:

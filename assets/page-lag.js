@@ -69,8 +69,14 @@
     reflect(SLIDERS);
     if (page.state.without && ("window" in changes || "shift" in changes)) page.state.without = "";
     if ("window" in changes || "shift" in changes) document.querySelector(".lag-page").classList.add("stale");
-    if (!page.frame) page.frame = requestAnimationFrame(draw);
     clearTimeout(page.timer);
+    page.timer = 0;
+    if (!page.frame) page.frame = requestAnimationFrame(() => { draw(); wait(); });
+  }
+
+  /* The rest is counted from the frame that was drawn, so that a slow machine does not redraw charts
+     between two moves. */
+  function wait() {
     page.timer = page.held ? 0 : setTimeout(settle, page.pressed ? HOLDING : RESTING);
   }
 

@@ -51,7 +51,7 @@ def serve(
         click.echo(f"Port {port} is taken; using {free}.")
     from waitress.server import create_server
 
-    from app.server import build_app
+    from app.server import build_app, first_page_made
     from app.store import default_path
 
     desk = workspace_of(files, kept_in or str(default_path()), at_desk=True)
@@ -66,6 +66,7 @@ def serve(
     click.echo(f"Pricewake is at {address}  (Ctrl-C ends it)")
     if not no_browser:
         threading.Thread(target=webbrowser.open, args=(address,), daemon=True).start()
+    threading.Thread(target=first_page_made, args=(app.server,), daemon=True).start()
     later = threading.Timer(COMPILE_AFTER, import_module, ("analytics.hac_loop",))
     later.daemon = True
     later.start()
