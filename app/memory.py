@@ -64,7 +64,8 @@ class Memory:
                     if self._cache is None:
                         self._kept[key] = found
                     else:
-                        self._cache.set(key, found)
+                        with self._guard:  # it drops the oldest, which two threads must not do at once
+                            self._cache.set(key, found)
         finally:
             with self._guard:
                 self._locks.pop(key, None)

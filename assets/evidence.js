@@ -23,7 +23,7 @@
     byId("lag-progress").hidden = stopped;
     byId("lag-cancel").hidden = stopped;
     byId("lag-resume").hidden = !stopped;
-    byId("lag-progress-words").textContent = stopped ? "The search was stopped." : `${WORDS[kind]}, ${done} of ${total}`;
+    byId("lag-progress-words").textContent = stopped ? "The search was stopped." : `${WORDS[kind]}${total > 1 ? `, ${done} of ${total}` : ""}`;
     if (!stopped) { byId("lag-progress").max = total; byId("lag-progress").value = done; }
   }
 

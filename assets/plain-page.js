@@ -66,7 +66,7 @@
     for (const part of ["progress", "cancel"]) at(part).hidden = stopped;
     at("resume").hidden = !stopped;
     const words = (page.data.jobWords || {})[kind] || kind.replaceAll("_", " ");
-    at("progress-words").textContent = stopped ? `Stopped: ${words}.` : `${words}, ${done} of ${total}`;
+    at("progress-words").textContent = stopped ? `Stopped: ${words}.` : `${words}${total > 1 ? `, ${done} of ${total}` : ""}`;
     if (!stopped) { at("progress").max = total; at("progress").value = done; }
   }
 
