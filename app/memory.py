@@ -64,7 +64,7 @@ class Memory:
                     if self._cache is None:
                         self._kept[key] = found
                     else:
-                        with self._guard:  # it drops the oldest, which two threads must not do at once
+                        with self._guard:  # two threads must not drop the oldest at once
                             self._cache.set(key, found)
         finally:
             with self._guard:
