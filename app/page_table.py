@@ -18,6 +18,7 @@ from app.scan.bridge import WORK as SCAN_WORK
 
 PAGES = (data, reading, breadth, lag, outlook, scan, brief)
 WORKS = {
+    "data": data.WORK,
     "lag": WORK,
     "outlook": OUTLOOK_WORK,
     "reading": READING_WORK,

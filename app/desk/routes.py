@@ -7,7 +7,11 @@ from flask import Flask, request
 from app.compute import Bridge
 from app.intake.problems import IntakeError
 from app.intake.reading import Release, read_release
-from app.state import StateError
+from app.pages import data_lists
+from app.pages.tables import Page, described
+from app.state import StateError, ViewState
+
+MOST_LETTERS = 200  # of what is looked for
 
 Reply = tuple[dict[str, Any], int]
 
@@ -75,6 +79,21 @@ def register(server: Flask, bridge: Bridge) -> None:
         for token in _sent().get("tokens") or ():
             pending.drop(str(token))
         return {}, 200
+
+    @server.get("/rows/<name>")
+    def _rows(name: str) -> Reply:
+        """Give one page of a long list, ready to be built by assets/tables.js."""
+        asked = request.args
+        try:
+            at = int(asked.get("at", "1"))
+            state = ViewState.from_query(request.query_string.decode(errors="replace"))
+            page = Page(asked.get("find", "")[:MOST_LETTERS], at)
+            table = data_lists.rows(name, state, asked.get("token", ""), page, bridge)
+        except ValueError as error:
+            return {"message": str(error)}, 422
+        if table is None:
+            return {"message": "this list is no longer there; open the page anew"}, 404
+        return {"table": described(table)}, 200
 
     @server.post("/workspace/<act>")
     def _change(act: str) -> Reply:

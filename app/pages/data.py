@@ -4,6 +4,7 @@ Files are read, shown and only then kept: assets/intake.js sends them, app/desk/
 and the buttons of the preview decide.
 """
 
+from collections.abc import Callable
 from typing import Any
 
 from dash import Dash, Input, Output, dcc, html
@@ -13,9 +14,12 @@ from app.compute import Bridge
 from app.desk import bridge as desk
 from app.desk import seasons
 from app.figures.data import revisions_chart
+from app.jobs import Work
 from app.pages import data_breaks, data_season, plain
+from app.pages import data_lists as lists
 from app.pages import data_parts as parts
 from app.pages.as_of import day_words
+from app.pages.tables import ROWS, packed
 from app.places import software_version
 from app.state import ViewState
 from app.words import counted, signed
@@ -91,6 +95,7 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
     problems = in_view.problems
     hidden = bridge.workspace.hidden_files()
     files = parts.files_table(in_view, hidden)
+    found_breaks = data_breaks.checked(in_view, state, bridge)
     return plain.Answer(
         state=state,
         sentence=_sentence(in_view, len(shown)),
@@ -101,17 +106,29 @@ def answer(state: ViewState, bridge: Bridge) -> plain.Answer:
         charts=charts,
         subtitles=subtitles,
         words={
-            "problems": [html.H2("Found in the files"), *parts.problem_table(problems)]
+            "problems": [
+                html.H2("Found in the files"),
+                lists.problem_table(problems, "", state),
+            ]
             if problems
             else [],
-            "breaks": data_breaks.section(in_view, state, bridge),
-            "series": parts.series_table(in_view, shown) if shown else _nothing(in_view),
+            "breaks": data_breaks.section(in_view, found_breaks, state),
+            "series": _listed(in_view, state) if shown else _nothing(in_view),
             "files": [html.H2("Files"), *files] if files else [],
             "season-words": data_season.words(season),
             "prints": parts.prints_table(found),
             "revisions-words": parts.revisions_words(found, names, in_view.placeholder),
         },
+        jobs={"checks": f"Checking {len(in_view.as_read)} series"} if found_breaks is None else {},
     )
+
+
+def checks(state: ViewState, bridge: Bridge) -> Work:
+    """Return the checks of every series in view as work."""
+    return data_breaks.work_of(bridge.in_view(state), state, bridge)
+
+
+WORK: dict[str, Callable[[ViewState, Bridge], Work]] = {"checks": checks}
 
 
 def register(app: Dash, bridge: Bridge) -> None:
@@ -125,7 +142,7 @@ def register(app: Dash, bridge: Bridge) -> None:
     )
     def _preview(tokens: list[str]) -> list[Any]:
         found = [(token, bridge.pending.found(token)) for token in tokens or ()]
-        return preview([(t, r) for t, r in found if r is not None], bridge)
+        return packed(preview([(t, r) for t, r in found if r is not None], bridge))
 
 
 def preview(found: list[tuple[str, Any]], bridge: Bridge) -> list[Any]:
@@ -209,6 +226,13 @@ def _verdict(in_view: WorkspaceView, found: desk.Revised | None, names: list[str
             f" average ({found.unit})."
         )
     return " ".join(word for word in words if word)
+
+
+def _listed(in_view: WorkspaceView, state: ViewState) -> list[Any]:
+    found = lists.series_table(in_view, state)
+    total = len(desk.all_series(in_view))
+    more = [html.P(f"{total} series; the CSV has them all.", className="quiet")]
+    return [found, *(more if total > ROWS else [])]
 
 
 def _nothing(in_view: WorkspaceView) -> list[Any]:

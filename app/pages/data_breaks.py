@@ -1,5 +1,6 @@
 """The part of the Data page on checks and breaks: what was found, breaks to mark, breaks marked."""
 
+import json
 from collections.abc import Mapping, Sequence
 from typing import Any
 
@@ -7,16 +8,14 @@ from dash import html
 
 from analytics.series import PERIOD_NOUN, Series, period_label
 from app.compute import Bridge
-from app.desk.findings import Found, found_in
+from app.desk.findings import Found, checks_work, found_in
+from app.jobs import Work
 from app.marks import mark_when, mark_words
-from app.pages.data_parts import table
+from app.pages.tables import FIRST, Page, page_of, table
 from app.state import ViewState
-from app.words import counted
 from app.workspace import WorkspaceView
 
-MOST_FINDINGS = 200
-MOST_CHECKED = 300  # series, at about 6 ms each; the command checks all
-MOST_OTHERS = 30  # series offered for a splice by overlap
+AT_ONCE = 60  # series that are checked without saying so
 CHOICES = {
     "exclude": "mean of both",
     "before": "{noun} before",
@@ -37,52 +36,79 @@ def places() -> list[html.Div]:
     ]
 
 
-def section(in_view: WorkspaceView, state: ViewState, bridge: Bridge) -> list[Any]:
-    """Return findings, marks and the form for another mark; empty where nothing is in view."""
-    loaded = in_view.as_read
-    if not loaded:
+def section(in_view: WorkspaceView, found: Sequence[Found] | None, state: ViewState) -> list[Any]:
+    """Return findings, marks and the form for another mark; empty where nothing is in view.
+
+    `found` is None while the series are being checked.
+    """
+    if not in_view.as_read:
         return []
-    found = found_in(in_view, bridge.workspace, bridge.memory, state.window, MOST_CHECKED)
     parts: list[Any] = [html.H2("Checks and breaks")]
-    parts += _findings(found, loaded) if found else [_quiet("The checks found nothing.")]
-    if len(loaded) > MOST_CHECKED:
-        more = f"The first {MOST_CHECKED} of {len(loaded)} series were checked;"
-        parts.append(_quiet(f"{more} pricewake inspect checks all."))
-    parts += _marks(in_view)
-    parts.append(_form(loaded))
-    return parts
+    if found is None:
+        parts.append(_quiet("The series are being checked."))
+    else:
+        parts.append(
+            findings_table(found, in_view, state) if found else _quiet("The checks found nothing.")
+        )
+    return [*parts, *_marks(in_view), _form(in_view.as_read), *_names(in_view.as_read)]
 
 
-def _findings(found: Sequence[Found], loaded: Mapping[str, Series]) -> list[Any]:
-    rows = []
-    for each in found[:MOST_FINDINGS]:
+def checked(
+    in_view: WorkspaceView, state: ViewState, bridge: Bridge, *, wait: bool = False
+) -> list[Found] | None:
+    """Return what the checks find, or None where that is long work that is still to be done.
+
+    With `wait` it is done here.
+    """
+    work = work_of(in_view, state, bridge)
+    known = bridge.jobs.remembered(work)
+    if known is None and (wait or len(in_view.as_read) <= AT_ONCE):
+        known = bridge.jobs.complete(work)
+    if known is None:
+        return None
+    return found_in(in_view, bridge.workspace, state.window, known)
+
+
+def work_of(in_view: WorkspaceView, state: ViewState, bridge: Bridge) -> Work:
+    """Return the checks as long work."""
+    return checks_work(in_view, bridge.workspace, bridge.memory, state.window)
+
+
+def findings_table(
+    found: Sequence[Found], in_view: WorkspaceView, state: ViewState, page: Page = FIRST
+) -> html.Table:
+    """Return what the checks found, with a way forward for each."""
+
+    def row(each: Found) -> tuple[Any, ...]:
         one = each.finding
         way: Any = f"{one.way[:1].upper()}{one.way[1:]}."
         if each.marked:
             way = "Marked as a break, see below."
         elif one.check in MARKABLE and one.period is not None:
             way = f"{way} Its growth is then taken from:"
-            way = [html.Span(way, className="under"), _box(loaded[one.series], loaded, each)]
-        rows.append(
-            (
-                html.Span(
-                    one.severity,
-                    className=f"weight {one.severity}",
-                    style={"whiteSpace": "nowrap"},
-                ),
-                one.series,
-                period_label(one.period) if one.period is not None else "",
-                one.message,
-                way,
-            )
+            way = [html.Span(way, className="under"), _box(in_view.as_read[one.series], each)]
+        return (
+            html.Span(
+                one.severity, className=f"weight {one.severity}", style={"whiteSpace": "nowrap"}
+            ),
+            one.series,
+            period_label(one.period) if one.period is not None else "",
+            one.message,
+            way,
         )
-    more = len(found) - len(rows)
-    note = [_quiet(f"{counted(more, 'more finding')} not shown here.")] if more > 0 else []
+
     head = ("Weight", "Series", "When", "What was found", "What can be done")
-    return [table(head, rows, "What the checks found"), *note]
+    return page_of(
+        found,
+        page,
+        lambda each: f"{each.finding.severity}\n{each.finding.series}\n{each.finding.message}",
+        lambda chosen: table(head, [row(each) for each in chosen], "What the checks found"),
+        f"/rows/findings?{state.to_query()}",
+        "a finding",
+    )
 
 
-def _box(series: Series, loaded: Mapping[str, Series], found: Found) -> html.Div:
+def _box(series: Series, found: Found) -> html.Div:
     code, period = found.code, found.finding.period
     when = period_label(period)
     return html.Div(
@@ -90,7 +116,8 @@ def _box(series: Series, loaded: Mapping[str, Series], found: Found) -> html.Div
             *_treatments(
                 PERIOD_NOUN[series.frequency],
                 f"Growth of {series.name} in {when} taken from",
-                _others(series, period, loaded),
+                _list_of(series),
+                series.name,
             ),
             html.Button(
                 f"Mark break at {when}",
@@ -104,17 +131,22 @@ def _box(series: Series, loaded: Mapping[str, Series], found: Found) -> html.Div
     )
 
 
-def _others(series: Series, period: Any, loaded: Mapping[str, Series]) -> list[str]:
-    """Return series that could be an overlap: same calendar, not a rate, there on both sides."""
-    names = [
-        name
-        for name, one in loaded.items()
-        if name != series.name
-        and one.kind == series.kind
-        and one.frequency == series.frequency
-        and one.first < period <= one.last
+def _list_of(series: Series) -> str:
+    """Return the list of names that could be an overlap: same calendar, same kind."""
+    return f"names-{series.kind}-{series.frequency}"
+
+
+def _names(loaded: Mapping[str, Series]) -> list[html.Span]:
+    """Return the names that drop-downs are filled from, once for all of them."""
+    lists: dict[str, list[str]] = {}
+    for name, one in loaded.items():
+        if one.kind != "rate":
+            lists.setdefault("names-all", []).append(name)
+            lists.setdefault(_list_of(one), []).append(name)
+    return [
+        html.Span(id=key, hidden=True, **{"data-names": json.dumps(names, ensure_ascii=False)})
+        for key, names in lists.items()
     ]
-    return names[:MOST_OTHERS]
 
 
 def _marks(in_view: WorkspaceView) -> list[Any]:
@@ -156,13 +188,12 @@ def _marks(in_view: WorkspaceView) -> list[Any]:
 
 
 def _form(loaded: Mapping[str, Series]) -> html.Details:
-    names = {name: name for name, one in loaded.items() if one.kind != "rate"}
     return html.Details(
         [
             html.Summary("Mark a break by hand"),
             html.Div(
                 [
-                    _select(names, "Series with a break", "series"),
+                    _names_select("Series with a break", "series", "names-all"),
                     html.Span(
                         className="native",
                         **{
@@ -172,7 +203,7 @@ def _form(loaded: Mapping[str, Series]) -> html.Details:
                             "data-placeholder": "such as 1987-07",
                         },
                     ),
-                    *_treatments("period", "Growth at the break taken from", list(names)),
+                    *_treatments("period", "Growth at the break taken from", "names-all"),
                     html.Span(
                         className="native",
                         **{
@@ -192,20 +223,23 @@ def _form(loaded: Mapping[str, Series]) -> html.Details:
     )
 
 
-def _treatments(noun: str, label: str, others: Sequence[str]) -> list[html.Select]:
+def _treatments(noun: str, label: str, names: str, own: str = "") -> list[html.Select]:
     """Return the choice of a treatment, and of the overlapping series for those that need one."""
-    ways = CHOICES | (OVERLAPS if others else {})
-    options = {key: words.format(noun=noun) for key, words in ways.items()}
-    named = _select({name: f"with {name}" for name in others}, f"{label}: series", "other")
-    named.hidden = True
-    return [_select(options, label, "treatment"), *([named] if others else [])]
-
-
-def _select(options: Mapping[str, str], label: str, part: str) -> html.Select:
-    return html.Select(
+    options = {key: words.format(noun=noun) for key, words in (CHOICES | OVERLAPS).items()}
+    other = _names_select(f"{label}: series", "other", names, **{"data-before": "with "})
+    other.hidden = True
+    setattr(other, "data-except", own)
+    choice = html.Select(
         [html.Option(words, value=value) for value, words in options.items()],
-        **{"aria-label": label, "data-part": part},
+        **{"aria-label": label, "data-part": "treatment"},
     )
+    return [choice, other]
+
+
+def _names_select(label: str, part: str, names: str, **marks: str) -> html.Select:
+    """Return a drop-down that assets/tables.js fills from a list of the page once it is shown."""
+    marks |= {"aria-label": label, "data-part": part, "data-options": f"#{names}"}
+    return html.Select(**marks)
 
 
 def _quiet(words: str) -> html.P:

@@ -1,159 +1,21 @@
 """Parts of the Data page: tables of series, files, problems and revisions, and the preview."""
 
 from collections.abc import Sequence
-from typing import Any, get_args
+from typing import Any
 
 from dash import html
 
-from analytics.series import PERIOD_NOUN, Adjustment, Kind, Series, period_label
-from app.desk.bridge import Revised, against_kept, all_series
-from app.figures.data import sparkline
-from app.intake.problems import Problem
+from analytics.series import period_label
+from app.desk.bridge import Revised, all_series
 from app.intake.reading import Release
 from app.pages.as_of import day_words
+from app.pages.data_lists import preview_table, problem_table
+from app.pages.tables import names_select, table
+from app.state import ViewState
 from app.words import MINUS, counted, p_words, plain, signed
 from app.workspace import LoadedFile, WorkspaceView
 
-MOST_ROWS = 60  # Dash takes seconds for hundreds of rows; the CSV has them all
-MOST_PROBLEMS = 200
 MOST_PRINTS = 24
-ADJUSTED = {"yes": "adjusted", "no": "not adjusted", "unknown": "not said"}
-
-
-def table(
-    head: Sequence[str], rows: Sequence[Sequence[Any]], label: str, *, cards: bool = True
-) -> html.Table:
-    """Return a table; with `cards` it becomes a list of cards where the page is narrow."""
-    names = [name or "Picture" for name in head]
-    return html.Table(
-        [
-            html.Thead(
-                html.Tr(
-                    [
-                        html.Th(
-                            name or html.Span("Picture", className="hidden-label"),
-                            scope="col",
-                            role="columnheader",
-                        )
-                        for name in head
-                    ],
-                    role="row",
-                ),
-                role="rowgroup",
-            ),
-            html.Tbody(
-                [
-                    html.Tr(
-                        [
-                            html.Td(cell, role="cell", **{"data-label": name})
-                            for name, cell in zip(names, row, strict=True)
-                        ],
-                        role="row",
-                    )
-                    for row in rows
-                ],
-                role="rowgroup",
-            ),
-        ],
-        className="table cards" if cards else "table",
-        role="table",
-        **{"aria-label": label},
-    )
-
-
-def series_table(in_view: WorkspaceView, shown: dict[str, tuple[Series, str]]) -> list[Any]:
-    """Return the series in view, with what can be corrected."""
-    fixed = in_view.placeholder
-    rows = [
-        (
-            spark(one),
-            [html.Strong(name), html.Span(_origin(one, file), className="quiet under")],
-            one.kind if fixed else _choice(one, "kind", {k: k for k in get_args(Kind)}),
-            (one.unit or "not named") if fixed else _entry(one),
-            ADJUSTED[one.adjustment]
-            if fixed
-            else _choice(one, "adjustment", {k: ADJUSTED[k] for k in get_args(Adjustment)}),
-            PERIOD_NOUN[one.frequency],
-            f"{period_label(one.first)} to {period_label(one.last)}",
-            _values(one),
-            f"{in_view.vintages.get(name, 1)}",
-        )
-        for name, (one, file) in list(shown.items())[:MOST_ROWS]
-    ]
-    head = ("", "Series", "Kind", "Unit", "Season", "Every", "Span", "Values", "Vintages")
-    more = len(shown) - MOST_ROWS
-    note = [html.P(f"{more} more series are in the CSV.", className="quiet")] if more > 0 else []
-    return [table(head, rows, "Series in view"), *note]
-
-
-def spark(series: Series) -> html.Span:
-    """Return the small line of a series, with its ends in words."""
-    first, last = (f"{series.values[place]:.4g}" for place in (0, -1))
-    words = f"{series.name}: from {first} in {period_label(series.first)} to {last}"
-    return html.Span(
-        className="spark",
-        role="img",
-        style={"--line": f'url("{sparkline(series.values)}")'},
-        **{"aria-label": f"{words} in {period_label(series.last)}"},
-    )
-
-
-def _origin(series: Series, file: str) -> str:
-    return file if series.source in ("", file) else f"{series.source}; {file}"
-
-
-def _values(series: Series) -> str:
-    missing = series.gaps.size
-    return f"{series.values.size - missing}" + (f", {missing} missing" if missing else "")
-
-
-def _choice(series: Series, field: str, options: dict[str, str]) -> html.Select:
-    current = getattr(series, field)
-    words = {"kind": "Kind", "adjustment": "Seasonal adjustment"}[field]
-    return html.Select(
-        [
-            html.Option(text, value=value, selected=value == current)
-            for value, text in options.items()
-        ],
-        **{
-            "aria-label": f"{words} of {series.name}",
-            "data-correct": field,
-            "data-series": series.name,
-            "data-value": current,
-        },
-    )
-
-
-def _entry(series: Series) -> html.Span:
-    return html.Span(
-        className="native",
-        **{
-            "data-entry": "text",
-            "data-correct": "unit",
-            "data-series": series.name,
-            "data-value": series.unit,
-            "data-label": f"Unit of {series.name}",
-            "data-placeholder": "not named",
-        },
-    )
-
-
-def problem_table(problems: Sequence[Problem]) -> list[Any]:
-    """Return what intake found, with the place of each thing."""
-    rows = [
-        (
-            html.Span(problem.severity, className=f"weight {problem.severity}"),
-            problem.file,
-            f"{problem.row}" if problem.row else "whole file",
-            problem.column or "",
-            problem.message,
-        )
-        for problem in problems[:MOST_PROBLEMS]
-    ]
-    more = len(problems) - MOST_PROBLEMS
-    note = [html.P(f"{more} more were found.", className="quiet")] if more > 0 else []
-    head = ("Weight", "File", "Row", "Column", "What was found")
-    return [table(head, rows, "What was found in the files"), *note]
 
 
 def files_table(in_view: WorkspaceView, hidden: Sequence[LoadedFile]) -> list[Any]:
@@ -207,26 +69,10 @@ def preview(found: Sequence[tuple[str, Release]], in_view: WorkspaceView, today:
     """Return what was understood in files that are not kept yet, with the two ways on."""
     if not found:
         return []
-    kept = {} if in_view.placeholder else {n: one for n, (one, _) in all_series(in_view).items()}
     parts: list[Any] = [
         html.H2("Understood, and not kept yet", id="data-preview-head", tabIndex="-1"),
     ]
     for token, release in found:
-        rows = [
-            (
-                spark(one),
-                html.Strong(one.name),
-                one.kind,
-                one.unit or "not named",
-                PERIOD_NOUN[one.frequency],
-                f"{period_label(one.first)} to {period_label(one.last)}",
-                _values(one),
-                against_kept(one, kept.get(one.name)),
-            )
-            for one in release.series[:MOST_ROWS]
-        ]
-        head = ("", "Series", "Kind", "Unit", "Every", "Span", "Values", "Against what is kept")
-        more = len(release.series) - MOST_ROWS
         parts += [
             html.Section(
                 [
@@ -246,13 +92,12 @@ def preview(found: Sequence[tuple[str, Release]], in_view: WorkspaceView, today:
                         ],
                         className="view-head",
                     ),
-                    table(head, rows, f"Series understood in {release.name}"),
+                    preview_table(token, release, in_view),
                     *(
-                        [html.P(f"{more} more series are not listed.", className="quiet")]
-                        if more > 0
+                        [problem_table(release.problems, token, ViewState())]
+                        if release.problems
                         else []
                     ),
-                    *(problem_table(release.problems) if release.problems else []),
                 ],
                 className="previewed",
             )
@@ -317,11 +162,7 @@ def revisions_words(found: Revised | None, names: Sequence[str], fixed: bool) ->
     chooser = html.Div(
         [
             html.Label("Series", htmlFor="field-series"),
-            html.Select(
-                [html.Option(name, value=name, selected=name == found.name) for name in names],
-                id="field-series",
-                **{"data-field": "series"},
-            ),
+            names_select(names, found.name, id="field-series", **{"data-field": "series"}),
         ],
         className="control",
     )

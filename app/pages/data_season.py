@@ -8,6 +8,7 @@ from plotly.graph_objects import Figure
 from app.desk.seasons import ChosenSeason
 from app.figures.season import season_lines
 from app.pages import plain
+from app.pages.tables import names_select
 from app.seasons import season_words
 
 USED = (
@@ -29,11 +30,9 @@ def words(found: ChosenSeason | None) -> list[Any]:
     chooser = html.Div(
         [
             html.Label("Series", htmlFor="field-unadjusted"),
-            html.Select(
-                [
-                    html.Option(name, value=name, selected=name == found.series.name)
-                    for name in found.names
-                ],
+            names_select(
+                found.names,
+                found.series.name,
                 id="field-unadjusted",
                 **{"data-field": "unadjusted"},
             ),

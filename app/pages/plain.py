@@ -14,6 +14,7 @@ from plotly.graph_objects import Figure
 from app import controls
 from app.compute import Bridge
 from app.figures.theme import CONFIG
+from app.pages.tables import packed
 from app.state import ViewState
 
 
@@ -160,7 +161,7 @@ def register(
             "jobWords": dict(shown.jobs),
             "figures": {view: _text(chart) for view, chart in shown.charts.items()},
         }
-        words = [shown.words.get(place, []) for place in places]
+        words = [packed(shown.words.get(place, [])) for place in places]
         return shown.sentence, shown.verdict, "", False, *words, data
 
     app.clientside_callback(

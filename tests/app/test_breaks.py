@@ -8,7 +8,7 @@ import pandas as pd
 import pytest
 
 from analytics.series import Series
-from app import exports
+from app import exports, page_table
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.desk.findings import found_in
@@ -180,14 +180,36 @@ def test_the_page_marks_and_takes_away_over_its_routes():
 def test_the_part_of_the_page_lists_findings_and_marks():
     here = desk(made("Wide", break_at=60), made("Old"))
     bridge = Bridge(here)
-    shown = str(data_breaks.section(here.as_of(), ViewState(), bridge))
+
+    def section():
+        found = data_breaks.checked(here.as_of(), ViewState(), bridge)
+        return str(data_breaks.section(here.as_of(), found, ViewState()))
+
+    shown = section()
     assert "Mark break at Jan 2005" in shown and "overlap, means of a year" in shown
-    assert shown.count("with Old") == 2  # beside what was found, and in the form by hand
+    assert 'data-names=\'["Wide", "Old"]\'' in shown
+    assert "data-options='#names-level-monthly'" in shown and "data-except='Wide'" in shown
     here.mark("Wide", "2005-01", "overlap:Old")
-    shown = str(data_breaks.section(here.as_of(), ViewState(), bridge))
+    shown = section()
     assert "Break treated at Jan 2005: spliced by overlap with Old." in shown
     assert "Mark break at Jan 2005" not in shown and "Remove the break of Wide" in shown
-    assert data_breaks.section(Workspace().as_of(), ViewState(), bridge) == []
+    assert data_breaks.section(Workspace().as_of(), [], ViewState()) == []
+
+
+def test_many_series_are_checked_in_steps_and_all_of_them():
+    many = [made(f"S{k}", n=60) for k in range(data_breaks.AT_ONCE)]
+    here = desk(*many, made("Wide", break_at=60))
+    bridge, state = Bridge(here), ViewState()
+    assert data_breaks.checked(here.as_of(), state, bridge) is None
+    assert "being checked" in str(data_breaks.section(here.as_of(), None, state))
+    work = page_table.WORKS["data"]["checks"](state, bridge)
+    steps = [bridge.jobs.step(work)]
+    while steps[-1].result is None:
+        steps.append(bridge.jobs.step(work))
+    assert [step.done for step in steps] == [1, 2, 3]
+    found = data_breaks.checked(here.as_of(), state, bridge)
+    assert [f.finding for f in found] == [f.finding for f in found_in(here.as_of(), here)]
+    assert "Wide" in {each.finding.series for each in found}
 
 
 # Kept and forgotten --------------------------------------------------------------------------

@@ -161,9 +161,37 @@ def test_the_page_for_an_address_shows_its_date_and_names_refused_values():
 def test_a_very_long_list_is_cut_and_says_so():
     many = tuple(Series(f"S{k}", pd.Period("2024-01", "M"), [1.0, 2.0]) for k in range(320))
     text = words(answer(Workspace((Release("a.csv", many, ()),))).words["series"])
-    assert "260 more series are in the CSV." in text
+    assert "320 series; the CSV has them all." in text
     assert "S59" in text
     assert "S60" not in text
+
+
+def test_every_page_of_a_long_list_can_be_asked_for():
+    many = tuple(
+        Series(f"S{k}", pd.Period("2024-01", "M"), [1.0, 2.0], unit=("even", "odd")[k % 2])
+        for k in range(150)
+    )
+    client = build_app(Workspace((Release("a.csv", many, ()),))).server.test_client()
+
+    def asked(query):
+        tag, marks, _, (_, _, *rows) = client.get(f"/rows/series?{query}").json["table"]
+        assert tag == "table"
+        return marks, [row[3][2][2] for row in rows]
+
+    marks, names = asked("at=3")
+    assert names == [f"S{k}" for k in range(120, 150)]
+    assert [marks[f"data-{key}"] for key in ("total", "found", "at", "pages")] == [
+        *("150", "150", "3", "3")
+    ]
+    marks, names = asked("at=9&find=ODD+s14")  # each word somewhere in name, unit or source
+    assert names == ["S141", "S143", "S145", "S147", "S149"]
+    assert (marks["data-found"], marks["data-at"], marks["data-pages"]) == ("5", "1", "1")
+    marks, names = asked("find=nowhere")
+    assert (names, marks["data-found"]) == ([], "0")
+    for query, code in (("series?at=x", 422), ("series?as_of=x", 422), ("other", 404)):
+        refused = client.get(f"/rows/{query}")
+        assert refused.status_code == code and len(refused.json["message"].splitlines()) == 1
+    assert client.get("/rows/preview?token=none").status_code == 404
 
 
 # The preview ---------------------------------------------------------------------------------

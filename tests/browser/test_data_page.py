@@ -279,7 +279,46 @@ def test_a_file_of_forty_megabytes_is_read_or_refused_in_a_sentence(data, tmp_pa
         act(browser, "keep")
         gone(browser)
         until(browser, "document.querySelectorAll('#data-series tbody tr').length === 60", 60)
-        assert "530 more series are in the CSV." in text_of(browser, "data-series")
+        assert "1 to 60 of 590" in text_of(browser, "data-series")
+
+
+def test_the_last_of_many_series_is_found_and_corrected(data):
+    browser, url, here = data
+    hostile = "<img src=x onerror=alert(1)> of 299"
+    names = [f"Component {k}" for k in range(298)] + ["Bread", hostile]
+    many = tuple(Series(name, pd.Period("2020-01", "M"), [1.0, 2.0, 3.0]) for name in names)
+    here.add(Release("many.csv", many, ()))
+    opened(browser, url)
+    first = "document.querySelector('#data-series tbody strong')?.innerText"
+    words = "document.querySelector('#data-series .page-words').innerText"
+    until(browser, f"{first} === 'Component 0' && {words} === '1 to 60 of 300'")
+    until(browser, "!document.getElementById('data-breaks').innerText.includes('being checked')")
+    foot = browser.find_element(By.CSS_SELECTOR, "#data-series [data-foot] [data-turn='1']")
+    for k in range(1, 5):
+        foot.click()
+        until(browser, f"{first} === 'Component {60 * k}'")
+    assert browser.execute_script(f"return {words}") == "241 to 300 of 300"
+    assert foot.get_attribute("aria-disabled") == "true"
+    assert hostile in text_of(browser, "data-series")
+    unit = browser.find_element(By.CSS_SELECTOR, "#data-series [aria-label='Unit of Bread']")
+    unit.send_keys("2015 = 100", Keys.TAB)
+    anew = "document.querySelector('[data-entry][data-series=\"Bread\"]').dataset.value"
+    until(browser, f"{anew} === '2015 = 100'")  # the answer keeps the page and the focus
+    until(browser, "document.activeElement.dataset.correct === 'adjustment'")
+    assert browser.execute_script("return document.activeElement.dataset.series") == "Bread"
+    assert here.named("Bread").unit == "2015 = 100"
+    find = browser.find_element(By.CSS_SELECTOR, "#data-series [data-find]")
+    find.send_keys("onerror")
+    until(
+        browser, f"{first} === '{hostile}' && {words} === '1 to 1 of 1 that match, of 300 in all'"
+    )
+    assert browser.execute_script("return document.activeElement.dataset.find") == ""
+    find.send_keys(Keys.CONTROL, "a", Keys.BACKSPACE)
+    until(browser, f"{words} === '1 to 60 of 300'")
+    assert (
+        browser.execute_script("return document.querySelectorAll('#data-series img').length") == 0
+    )
+    assert severe(browser) == []
 
 
 # Corrections, files out of view, dates -------------------------------------------------------
