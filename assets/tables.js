@@ -1,10 +1,12 @@
-/* Tables and long lists of names, built from one attribute that the server writes (app/pages/packing.py
-   and app/controls.py): a script makes a thousand rows while Dash would make thirty. Only text and
-   attributes are set, never markup. A new answer changes the cells that differ and leaves the others,
-   so that the focus and a half-typed unit stay. */
+/* Tables and long lists of names, built from one attribute that the server writes
+   (app/pages/tables.py): a script makes a thousand rows while the renderer makes thirty. Only text
+   and attributes are set, never markup. A new answer changes the cells that differ and leaves the
+   others, so that the focus and a half-typed unit stay. */
 (function () {
   "use strict";
   const kept = new Map(); // what was looked for, and the page of the table, by the table's label
+  const shown = new Map(); // the newest holder of a table, by the same label
+  let focused = null; // the element in a table that has the focus, or had it when it was taken away
   const SOON = 150; // milliseconds after the last letter
   const isElement = (spec) => Array.isArray(spec);
   const same = (one, other) => JSON.stringify(one) === JSON.stringify(other);
@@ -59,15 +61,16 @@
     const { find } = kept.get(nameOf(holder));
     const first = (at - 1) * rows + 1, last = Math.min(found, at * rows);
     const range = Number(found) ? `${first} to ${last} of ${found}` : "none";
-    const text = words || (find ? `${range} that match, of ${total} in all` : range);
+    const text = words || (find ? `${range} found, ${total} in all` : range);
     for (const place of holder.querySelectorAll(".page-words")) if (place.textContent !== text) place.textContent = text;
     for (const button of holder.querySelectorAll("[data-turn]")) {
       const there = Number(at) + Number(button.dataset.turn);
       button.setAttribute("aria-disabled", String(there < 1 || there > Number(pages)));
+      button.hidden = Number(pages) < 2;
     }
   }
 
-  const nameOf = (holder) => holder.spec[1]["aria-label"] || holder.closest("[id]").id;
+  const nameOf = (holder, spec = holder.spec) => spec[1]["aria-label"] || holder.closest("[id]").id;
 
   function show(holder, spec) {
     const table = holder.querySelector("table");
@@ -115,11 +118,22 @@
     show(holder, spec);
   }
 
+  /* The renderer makes a new holder with every answer: what was built moves over, focus and all. */
+  function moveIn(holder, spec) {
+    const name = nameOf(holder, spec), before = shown.get(name);
+    if (before && before !== holder && !before.isConnected) {
+      holder.spec = before.spec;
+      holder.replaceChildren(...before.childNodes);
+    }
+    shown.set(name, holder);
+  }
+
   function take(holder) {
     const text = holder.dataset.built;
     if (holder.text === text) return;
     holder.text = text;
     const spec = JSON.parse(text);
+    moveIn(holder, spec);
     holder.asked = (holder.asked || 0) + 1;
     const wanted = "data-address" in spec[1] && kept.get(spec[1]["aria-label"]);
     if (!wanted || (!wanted.find && wanted.at === 1)) return show(holder, spec);
@@ -148,8 +162,15 @@
 
   function look() {
     for (const holder of document.querySelectorAll("[data-built]")) take(holder);
+    for (const [name, holder] of shown) if (!holder.isConnected) shown.delete(name);
     for (const select of document.querySelectorAll("select[data-options]")) fill(select);
+    if (focused && focused.isConnected && document.activeElement === document.body) focused.focus({ preventScroll: true });
   }
+
+  document.addEventListener("focusin", ({ target }) => { focused = target.closest("[data-built]") ? target : null; });
+  document.addEventListener("focusout", ({ target }) => setTimeout(() => {
+    if (focused === target && target.isConnected && document.activeElement !== target) focused = null;
+  }, 0));
 
   new MutationObserver(look).observe(document.documentElement, {
     childList: true, subtree: true, attributes: true, attributeFilter: ["data-built", "data-options", "data-names", "hidden"],
