@@ -42,8 +42,8 @@ def rate_lines(yearly: Series, quarter: Series | None) -> go.Figure:
         "percent" if quarter is not None else _unit(yearly),
         legend=True,
         span=yearly.periods,
+        hovermode="x unified",
     )
-    figure.update_layout(hovermode="x unified")
     return figure
 
 
@@ -115,8 +115,8 @@ def base_bars(base: BaseEffects, drops: DropOuts | None, noun: str) -> go.Figure
             )
         )
         _today(figure, base.periods[-1], drops.periods[0])
-    _dress(figure, "percentage points", legend=True)
-    figure.update_layout(barmode="relative", bargap=0.25, hovermode="x unified")
+    bars = {"barmode": "relative", "bargap": 0.25, "hovermode": "x unified"}
+    _dress(figure, "percentage points", legend=True, **bars)
     return figure
 
 
@@ -149,8 +149,7 @@ def path_lines(yearly: Series | None, path: Path, periods_per_year: int) -> go.F
         )
     )
     figure = go.Figure(traces)
-    _dress(figure, "yearly rate, percent", legend=True)
-    figure.update_layout(hovermode="x unified")
+    _dress(figure, "yearly rate, percent", legend=True, hovermode="x unified")
     return figure
 
 
@@ -247,7 +246,12 @@ def ring() -> dict[str, object]:
 
 
 def _dress(
-    figure: go.Figure, unit: str, *, legend: bool = False, span: pd.PeriodIndex | None = None
+    figure: go.Figure,
+    unit: str,
+    *,
+    legend: bool = False,
+    span: pd.PeriodIndex | None = None,
+    **layout: object,
 ) -> None:
     if span is not None:  # markers at the end would have plotly add years of white
         ends = when(span[[0, -1]])
@@ -259,6 +263,7 @@ def _dress(
         legend=above(),
         xaxis={"hoverformat": "%b %Y"},
         yaxis={"title": {"text": unit}},
+        **layout,
     )
 
 
