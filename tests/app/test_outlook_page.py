@@ -59,10 +59,11 @@ def values(trace, axis="y"):
 
 
 def test_the_page_has_a_place_for_every_view_and_every_word(bridge):
-    ids = {getattr(part, "id", None) for part in walk(page.layout(f"?{QUERY}", bridge))}
+    parts = list(walk(page.layout(f"?{QUERY}", bridge)))
+    ids = {getattr(part, "id", None) for part in parts}
     assert {f"outlook-{place}" for place in page.PLACES} <= ids
     assert {f"outlook-{view}" for view in VIEWS} <= ids
-    assert {f"csv-{view}" for view in VIEWS} <= ids
+    assert {getattr(part, "data-saves", None) for part in parts} >= set(VIEWS)
 
 
 def test_everything_is_drawn_once_the_past_has_been_gone_through(answer):
