@@ -7,18 +7,25 @@
   const byId = (id) => document.getElementById(id);
   const props = (id, values) => window.dash_clientside.set_props(id, values);
 
-  /* One line a file; a refusal is marked. */
+  const MANY = 8; // lines of files that are well; more are folded
+
+  function paragraph({ text, bad }) {
+    const line = document.createElement("p");
+    line.textContent = text;
+    line.className = bad ? "bad" : "good";
+    return line;
+  }
+
+  /* One line a file; a refusal is marked. Of many files the refusals come first. */
   function say(lines) {
     const place = byId("intake-message");
     if (!place) return;
-    place.replaceChildren(
-      ...lines.map(({ text, bad }) => {
-        const line = document.createElement("p");
-        line.textContent = text;
-        line.className = bad ? "bad" : "good";
-        return line;
-      }),
-    );
+    const good = lines.filter((line) => !line.bad);
+    if (good.length <= MANY) return place.replaceChildren(...lines.map(paragraph));
+    const fold = document.createElement("details"), head = document.createElement("summary");
+    head.textContent = `${good.length} files: ${good[0].done || "read; nothing is kept yet"}`;
+    fold.append(head, ...good.map(paragraph));
+    place.replaceChildren(...lines.filter((line) => line.bad).map(paragraph), fold);
   }
 
   function progress(words, share) {

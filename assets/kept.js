@@ -47,11 +47,10 @@
     const field = byId("stands-from");
     const answer = await post("/intake/keep", { tokens, day: field ? field.value : "" });
     const kept = answer.kept || [];
-    const lines = kept.map((each) => ({ text: `${each.file}: ${each.series.length} series kept.` }));
+    const lines = kept.map((each) => ({ text: `${each.file}: ${each.series.length} series kept.`, done: "kept" }));
     if (answer.message) lines.push({ text: answer.message, bad: true });
     say(lines);
-    if (!answer.message) tokens = [];
-    else if (kept.length) tokens = tokens.slice(kept.length);
+    tokens = answer.left || tokens;
     show();
     forgetPairs();
     refresh();

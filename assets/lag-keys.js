@@ -33,6 +33,12 @@
     pricewake.lag.put({ other_responses: now.join("|") });
   }
 
+  document.addEventListener("change", ({ target }) => {
+    if (!target.dataset || !target.dataset.addResponse || !target.value) return;
+    pricewake.lag.refocus = ".folds [data-add-response]";
+    leaveOutResponse(target.value);
+  });
+
   document.addEventListener("keydown", (event) => {
     if (!byId("lag-sentence") || !pricewake.lag.state || event.altKey || event.metaKey) return;
     const typed = event.target.matches && event.target.matches(TYPED);

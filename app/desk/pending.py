@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 
 from app.intake.reading import Release, read_release
 
-MOST_FILES = 60
+MOST_FILES = 600
 MOST_BYTES = 256 * 2**20
 
 

@@ -45,22 +45,23 @@ def register(server: Flask, bridge: Bridge) -> None:
         tokens, day = sent.get("tokens"), sent.get("day", "")
         if not isinstance(tokens, list) or not all(isinstance(each, str) for each in tokens):
             return {"message": "the page must send the files to keep, but did not"}, 422
-        kept, lost = [], 0
+        kept, left, lost = [], list(tokens), 0
         try:
             for token in tokens:
                 release = pending.found(token)
-                if release is None:
-                    lost += 1
-                    continue
-                desk.add(release, day)
-                pending.drop(token)
-                kept.append(_described(release))
+                if release is not None:
+                    desk.add(release, day)
+                    pending.drop(token)
+                    kept.append(_described(release))
+                lost += release is None
+                left.remove(token)
         except ValueError as error:
-            return {"message": str(error), "kept": kept}, 422
+            return {"message": str(error), "kept": kept, "left": left}, 422
         if lost:
-            said = "a file is no longer held for a look; open it again"
-            return {"message": said, "kept": kept}, 422
-        return {"kept": kept}, 200
+            files = "a file is" if lost == 1 else f"{lost} files are"
+            said = f"{files} no longer held for a look; open {'it' if lost == 1 else 'them'} again"
+            return {"message": said, "kept": kept, "left": left}, 422
+        return {"kept": kept, "left": left}, 200
 
     @server.post("/intake/sheet")
     def _sheet() -> Reply:

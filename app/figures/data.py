@@ -10,6 +10,7 @@ from analytics.series import FloatArray, period_label
 from app.figures.theme import colour, template
 
 WIDE, TALL = 120, 28  # of the small line, in its own units
+STRETCHES = 60  # of a long series, in the small line
 
 
 def sparkline(values: FloatArray) -> str:
@@ -42,16 +43,24 @@ def sparkline(values: FloatArray) -> str:
 
 def _kept(values: FloatArray) -> np.ndarray:
     """Places of the values that are drawn, in order."""
-    if values.size <= 2 * 60:
+    if values.size <= 2 * STRETCHES:
         return np.arange(values.size)
-    kept = {0, values.size - 1}
-    for stretch in np.array_split(np.arange(values.size), 60):
-        part = values[stretch]
-        if np.isnan(part).any():
-            kept.add(int(stretch[np.isnan(part)][0]))
-        if not np.isnan(part).all():
-            kept |= {int(stretch[np.nanargmin(part)]), int(stretch[np.nanargmax(part)])}
-    return np.array(sorted(kept))
+    size, longer = divmod(values.size, STRETCHES)
+    edge = longer * (size + 1)  # the first stretches are one value longer
+    kept = [np.array([0, values.size - 1])]
+    for start, stretches in (
+        (0, values[:edge].reshape(longer, size + 1)),
+        (edge, values[edge:].reshape(STRETCHES - longer, size)),
+    ):
+        gone = np.isnan(stretches)
+        begins = start + stretches.shape[1] * np.arange(stretches.shape[0])
+        seen = ~gone.all(axis=1)
+        kept += [
+            (begins + np.where(gone, np.inf, stretches).argmin(axis=1))[seen],
+            (begins + np.where(gone, -np.inf, stretches).argmax(axis=1))[seen],
+            (begins + gone.argmax(axis=1))[gone.any(axis=1)],
+        ]
+    return np.unique(np.concatenate(kept))
 
 
 def revisions_chart(result: Revisions, start: int, unit: str) -> go.Figure:

@@ -9,9 +9,11 @@ from app import controls
 from app.compute import Bridge, noun
 from app.lag.evidence import Evidence
 from app.lag.tools import MOST_RESPONSES, OneCell, OneResponse, Peaks
+from app.pages.tables import names_select
 from app.state import ViewState
 from app.words import counted, p_words, plain, shift_words, signed
 
+MOST_BUTTONS = 20  # names beside each other; more are chosen from a list
 SPEEDS = {"3": "slow", "10": "usual", "30": "fast"}  # cells a second
 
 
@@ -267,6 +269,17 @@ def response_words(
     """Let responses be chosen, and say what the driver is to each."""
     listed = [name for name in state.other_responses.split("|") if name]
     names = [name for name in bridge.in_view(state).series if name != state.driver]
+    others: list[Any] = []
+    if len(names) > MOST_BUTTONS:
+        others = [
+            names_select(
+                [name for name in names if name not in listed],
+                "",
+                first="add a response",
+                **{"aria-label": "Add a response", "data-add-response": "yes"},
+            )
+        ]
+        names = [name for name in names if name in listed]
     picks = html.Div(
         [
             html.Button(
@@ -276,7 +289,8 @@ def response_words(
                 **{"data-response": name, "aria-pressed": str(name in listed).lower()},
             )
             for name in names
-        ],
+        ]
+        + others,
         className="tool-row",
         role="group",
         **{"aria-label": f"Responses, at most {MOST_RESPONSES}"},

@@ -168,7 +168,13 @@ def page_of(
     return table
 
 
-def names_select(names: Iterable[str], current: str, **marks: str) -> html.Select:
-    """Return a drop-down of series names; assets/tables.js fills it, a thousand names at once."""
-    text = json.dumps([(name, name) for name in names], ensure_ascii=False, separators=(",", ":"))
+def names_select(
+    names: Iterable[str], current: str, *, first: str = "", **marks: str
+) -> html.Select:
+    """Return a drop-down of series names; assets/tables.js fills it, a thousand names at once.
+
+    `first` is what stands before the names where none is chosen.
+    """
+    pairs = [*([("", first)] if first else []), *((name, name) for name in names)]
+    text = json.dumps(pairs, ensure_ascii=False, separators=(",", ":"))
     return html.Select(**{**marks, "data-options": text, "data-value": current})

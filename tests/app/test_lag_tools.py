@@ -327,6 +327,18 @@ def test_each_response_is_searched_as_if_it_stood_alone_and_paid_for_together(br
     ]
 
 
+def test_responses_are_chosen_from_a_list_where_they_are_many():
+    money, prices, _ = three()
+    others = [replace(prices, name=f"Component {k}") for k in range(40)]
+    bridge = Bridge(workspace(money, prices, *others))
+    state = replace(STATE, other_responses="Component 7")
+    drawn = str(response_words(None, state, bridge, ""))
+    assert drawn.count("Button(") == 1  # the one chosen; it can be taken away
+    assert "data-response='Component 7'" in drawn
+    assert '["","add a response"]' in drawn and '["Component 8","Component 8"]' in drawn
+    assert '["Component 7"' not in drawn
+
+
 def test_a_response_that_cannot_be_searched_says_why_and_the_others_go_on():
     money, prices, noisy = three()
     flat = replace(noisy, name="Short", values=noisy.values[:30])

@@ -12,6 +12,7 @@ from analytics.series import Series
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.desk import bridge as desk
+from app.desk import pending
 from app.desk.exports import csv_export
 from app.figures.data import revisions_chart, sparkline
 from app.intake.problems import Problem
@@ -242,6 +243,18 @@ def test_a_previewed_file_is_kept_only_when_asked(own):
     assert again.status_code == 422
     assert "no longer held for a look; open it again" in again.json["message"]
     assert len(here.releases) == 1
+
+
+def test_files_that_gave_way_are_counted_and_the_others_kept(own, monkeypatch):
+    monkeypatch.setattr(pending, "MOST_FILES", 2)
+    client, here = own
+    tokens = [
+        client.post(f"/intake?preview=1&name={k}.csv", data=GOOD).json["token"] for k in range(4)
+    ]
+    kept = post(client, "/intake/keep", {"tokens": tokens})
+    assert (kept.status_code, kept.json["left"]) == (422, [])
+    assert kept.json["message"] == "2 files are no longer held for a look; open them again"
+    assert [each.name for each in here.releases] == ["2.csv", "3.csv"]
 
 
 def test_a_discarded_file_is_gone(own):

@@ -25,6 +25,7 @@ import pandas as pd
 from analytics.series import Series
 from app.intake.problems import Problem
 from app.intake.reading import Release
+from app.kept_rules import keep_rule, rule_lines
 from app.workspace import Workspace
 
 ROOT = Path(__file__).resolve().parents[2]
@@ -35,7 +36,7 @@ def changes(seed: int) -> Iterator[tuple[str, int, int]]:
     """Kinds, sizes and seeds of the changes of one round, the same for child and parent."""
     rng = random.Random(seed)
     for _ in range(WRITES):
-        kind = rng.choice(("load", "load", "correct", "mark", "statement", "hide"))
+        kind = rng.choice(("load", "load", "correct", "mark", "statement", "rule", "hide"))
         yield kind, rng.randint(1, 40), rng.randrange(2**31)
 
 
@@ -68,6 +69,8 @@ def write(path: str, seed: int) -> None:
         elif kind == "hide":
             desk.add(Release(f"hidden {place}.csv", (), ()))
             desk.hide(f"hidden {place}.csv")
+        elif kind == "rule":
+            keep_rule(desk.store, f"rate_12m above {place}")
         else:
             table = "marks (series, period, treatment, at)"
             if kind == "statement":
@@ -97,6 +100,7 @@ def check(path: Path, seed: int, acknowledged: int) -> list[str]:
     with desk.store.look() as db:
         marks = {row["period"] for row in db.execute("SELECT period FROM marks")}
         statements = {row["content"] for row in db.execute("SELECT content FROM statements")}
+    rules = set(rule_lines(desk.store))
     desk.close()
     latest: dict[str, int] = {}
     for place, (kind, size, own) in enumerate(changes(seed), start=1):
@@ -115,6 +119,7 @@ def check(path: Path, seed: int, acknowledged: int) -> list[str]:
                 "hide": f"hidden {place}.csv" in hidden,
                 "mark": f"{place}" in marks,
                 "statement": f"{place}" in statements,
+                "rule": f"rate_12m above {place}" in rules,
                 "correct": True,
             }[kind]
         if kind == "correct" and place <= acknowledged:

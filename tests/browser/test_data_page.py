@@ -245,6 +245,24 @@ def test_files_are_dropped(data):
     assert [each.name for each in here.releases] == ["one.csv", "two.csv"]
 
 
+def test_a_whole_folder_of_files_is_opened_at_once(data):
+    browser, _, here = data
+    folder = Path(__file__).resolve().parents[1] / "data"
+    files = sorted(path for path in folder.glob("*.*") if path.suffix not in (".py", ".pyc"))
+    assert len(files) > 60
+    names = "\n".join(str(path) for path in files)
+    browser.find_element(By.ID, "field-files").send_keys(names)
+    until(browser, "document.getElementById('intake-message').innerText", 90)
+    assert text_of(browser, "intake-message") == f"{len(files)} files: read; nothing is kept yet"
+    previewed(browser)
+    act(browser, "keep")
+    gone(browser)
+    until(browser, "document.getElementById('intake-message').innerText.includes('kept')", 60)
+    assert text_of(browser, "intake-message") == f"{len(files)} files: kept"
+    assert {each.name for each in here.releases} == {path.name for path in files}
+    assert severe(browser) == []
+
+
 def test_another_sheet_of_a_workbook_is_read_in_the_preview(data):
     browser, _, here = data
     book = Path(__file__).resolve().parents[1] / "data" / "xlsx_second_sheet.xlsx"
