@@ -86,7 +86,7 @@ def preview(found: Sequence[tuple[str, Release]], in_view: WorkspaceView, today:
                                 **{
                                     "data-act": "discard",
                                     "data-token": token,
-                                    "aria-label": f"Discard {release.name}",
+                                    "aria-label": f"Discard this file: {release.name}",
                                 },
                             ),
                         ],

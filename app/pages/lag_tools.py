@@ -234,7 +234,7 @@ def compare_words(
         html.Table(
             [
                 html.Thead(
-                    html.Tr([html.Th(text, scope="col") for text in ("", "Pinned", "Chosen")])
+                    html.Tr([html.Th(text, scope="col") for text in ("Of the cell", "Pinned", "Chosen")])
                 ),
                 html.Tbody(
                     [
