@@ -105,6 +105,29 @@ def _control(name: str, look: str = "control", **described: Any) -> html.Div:
     return html.Div(className=look, **{"data-control": name, **given})
 
 
+def label(words: str, control: str, sentence: str) -> list[Any]:
+    """Return label, "?" and help of a control that is no field of the state.
+
+    The control has the id `control`; its sentence has it too, with ``help-`` before it instead
+    of ``field-``.
+    """
+    described = f"help-{control.removeprefix('field-')}"
+    mark = html.Button(
+        "?",
+        type="button",
+        className="help",
+        **{
+            "data-help": described,
+            "aria-label": f"Help on {words}",
+            "aria-describedby": described,
+        },
+    )
+    return [
+        html.Span([html.Label(words, htmlFor=control), mark], className="label"),
+        html.Span(sentence, id=described, className="hidden-label"),
+    ]
+
+
 def sent_state(values: Any) -> ViewState:
     """Return the state that a page sent.
 

@@ -78,7 +78,12 @@
   function tools() {
     const title = element("input", { type: "text", id: "brief-title-field", value: page.draft.title, maxLength: page.offer.longest.title, placeholder: "made from the print" });
     title.addEventListener("input", () => { page.draft.title = title.value; changed(); });
-    byId("brief-title").replaceChildren(element("label", { htmlFor: title.id }, "Title"), title);
+    const described = "help-brief-title-field";
+    title.setAttribute("aria-describedby", described);
+    const help = element("button", { type: "button", className: "help", "aria-label": "Help on Title", "data-help": described, "aria-describedby": described }, "?");
+    byId("brief-title").replaceChildren(
+      element("span", { className: "label" }, element("label", { htmlFor: title.id }, "Title"), help), title,
+      element("span", { id: described, className: "hidden-label" }, "Heading of the brief; empty makes one from the newest print."));
     byId("brief-form").value = page.draft.form;
     byId("brief-paper").value = page.paper;
     const file = element("input", { type: "file", id: "brief-recipe-file", accept: ".toml", className: "hidden-label", "aria-label": "Recipe file" });

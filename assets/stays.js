@@ -17,8 +17,8 @@
     if (correct) return by(`[data-correct="${correct}"][data-series="${CSS.escape(series)}"]:not([data-entry])`);
     if (sheet) return by(`[data-sheet="${CSS.escape(sheet)}"]`);
     if (name && file) return by(`[data-act="${name}"][data-file="${CSS.escape(file)}"]`);
-    if (!set) return null;
-    const like = `[data-set="${set}"]`;
+    if (!set && !element.closest(".lag-page")) return null; // there the answer has the same parts again
+    const like = set ? `[data-set="${set}"]` : element.tagName;
     const [part, place] = placeOf(element, like);
     return () => document.querySelectorAll(`#${CSS.escape(part.id)} ${like}`)[place];
   }
@@ -30,7 +30,7 @@
   }
 
   document.addEventListener("focusin", ({ target }) => {
-    focused = target.closest("[data-page]") ? { target, again: described(target) } : null;
+    focused = target.closest("[data-page], .lag-page") ? { target, again: described(target) } : null;
   });
   document.addEventListener("focusout", ({ target }) => setTimeout(() => {
     if (focused && focused.target === target && target.isConnected && document.activeElement !== target) focused = null;

@@ -6,6 +6,7 @@ import numpy as np
 from dash import html
 
 from analytics.series import period_label
+from app import controls
 from app.outlook.result import Judged, Outlook
 from app.outlook.words import looked_at
 from app.pages.as_of import day_words
@@ -35,8 +36,16 @@ def _supersedes(known: Outlook) -> list[Any]:
     return [
         html.Div(
             [
-                html.Label("Supersedes", htmlFor="statement-supersedes"),
-                html.Select(options, id="statement-supersedes"),
+                *controls.label(
+                    "Supersedes",
+                    "statement-supersedes",
+                    "The statement that no longer stands once this one is kept; both stay listed.",
+                ),
+                html.Select(
+                    options,
+                    id="statement-supersedes",
+                    **{"aria-describedby": "help-statement-supersedes"},
+                ),
             ],
             className="control",
         )

@@ -8,6 +8,7 @@ from typing import Any
 
 from dash import ClientsideFunction, Dash, Input, Output, dcc, html
 
+from app import controls
 from app.brief.assembled import CAUTION, opening, prefilled
 from app.brief.parts import FORMS, LONGEST_TITLE, MOST_LETTERS, PAPERS, sent_draft
 from app.brief.sources import sources
@@ -40,8 +41,18 @@ def layout(query: str, bridge: Bridge) -> html.Div:
             html.Div(
                 [
                     html.Div(id="brief-title", className="control"),
-                    _select("form", "Form", FORMS),
-                    _select("paper", "Paper of the PDF", {"a4": "A4", "letter": "Letter"}),
+                    _select(
+                        "form",
+                        "Form",
+                        FORMS,
+                        "Every view with its words, or what fits one printed page.",
+                    ),
+                    _select(
+                        "paper",
+                        "Paper of the PDF",
+                        {"a4": "A4", "letter": "Letter"},
+                        "Size of the sheet of the PDF; the page itself prints on either.",
+                    ),
                     html.Div(
                         [
                             _button("brief-save", "Save all files"),
@@ -132,13 +143,14 @@ def offer(bridge: Bridge, day: str = "") -> dict[str, Any]:
     }
 
 
-def _select(name: str, label: str, options: dict[str, str]) -> html.Div:
+def _select(name: str, label: str, options: dict[str, str], says: str) -> html.Div:
     return html.Div(
         [
-            html.Label(label, htmlFor=f"brief-{name}"),
+            *controls.label(label, f"brief-{name}", says),
             html.Select(
                 [html.Option(words, value=value) for value, words in options.items()],
                 id=f"brief-{name}",
+                **{"aria-describedby": f"help-brief-{name}"},
             ),
         ],
         className="control",

@@ -5,6 +5,7 @@ from typing import Any
 from dash import html
 from plotly.graph_objects import Figure
 
+from app import controls
 from app.desk.seasons import ChosenSeason
 from app.figures.season import season_lines
 from app.pages import plain
@@ -29,12 +30,16 @@ def words(found: ChosenSeason | None) -> list[Any]:
         return [html.P(text, className="empty")]
     chooser = html.Div(
         [
-            html.Label("Series", htmlFor="field-unadjusted"),
+            *controls.label(
+                "Series",
+                "field-unadjusted",
+                "The series, said to be unadjusted, whose season is shown; no page changes.",
+            ),
             names_select(
                 found.names,
                 found.series.name,
                 id="field-unadjusted",
-                **{"data-field": "unadjusted"},
+                **{"data-field": "unadjusted", "aria-describedby": "help-unadjusted"},
             ),
         ],
         className="control",

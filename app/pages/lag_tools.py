@@ -25,11 +25,22 @@ def player() -> html.Details:
             html.Div(
                 [
                     html.Button("Play", id="play", type="button"),
-                    _choice("play-along", "Sweep", {"shift": "shift", "window": "window"}),
-                    _choice("play-speed", "Speed", SPEEDS, "10"),
+                    _choice(
+                        "play-along",
+                        "Sweep",
+                        {"shift": "shift", "window": "window"},
+                        says="Whether the player moves the shift or the window.",
+                    ),
+                    _choice(
+                        "play-speed", "Speed", SPEEDS, "10", says="3, 10 or 30 cells a second."
+                    ),
                     html.Div(
                         [
-                            html.Label("Place", htmlFor="field-scrub"),
+                            *controls.label(
+                                "Place",
+                                "field-scrub",
+                                "Cell that the player stands on; move it to look around.",
+                            ),
                             html.Span(
                                 className="native",
                                 **{
@@ -38,11 +49,6 @@ def player() -> html.Details:
                                     "data-min": "0",
                                     "data-max": "1",
                                 },
-                            ),
-                            html.Span(
-                                "Cell that the player stands on.",
-                                id="help-scrub",
-                                className="hidden-label",
                             ),
                         ],
                         className="control scrub",
@@ -124,16 +130,19 @@ def range_choice() -> html.Div:
     )
 
 
-def _choice(name: str, label: str, options: dict[str, str], chosen: str = "") -> html.Div:
+def _choice(
+    name: str, label: str, options: dict[str, str], chosen: str = "", *, says: str
+) -> html.Div:
     return html.Div(
         [
-            html.Label(label, htmlFor=name),
+            *controls.label(label, name, says),
             html.Select(
                 [
                     html.Option(words, value=value, selected=value == chosen)
                     for value, words in options.items()
                 ],
                 id=name,
+                **{"aria-describedby": f"help-{name}"},
             ),
         ],
         className="control",
@@ -234,7 +243,9 @@ def compare_words(
         html.Table(
             [
                 html.Thead(
-                    html.Tr([html.Th(text, scope="col") for text in ("Of the cell", "Pinned", "Chosen")])
+                    html.Tr(
+                        [html.Th(text, scope="col") for text in ("Of the cell", "Pinned", "Chosen")]
+                    )
                 ),
                 html.Tbody(
                     [

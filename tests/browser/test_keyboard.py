@@ -4,6 +4,8 @@ The success criteria named are those of WCAG 2.2: 2.1.2 no trap, 2.4.1 skip link
 2.4.7 and 2.4.11 the focus is seen and not covered, 2.5.8 targets of at least 24 by 24 pixels.
 """
 
+import time
+
 import pytest
 from selenium.webdriver.common.action_chains import ActionChains
 from selenium.webdriver.common.keys import Keys
@@ -15,6 +17,7 @@ from tests.browser.test_accessibility import QUICK, SETTLED
 MOST_STOPS = 600
 # Told of the element that has the focus; null once the Tab key has left the page.
 STOP = """
+const named = e => e.id || e.getAttribute('aria-label') || e.textContent.slice(0, 40);
 const e = document.activeElement;
 if (!e || e === document.body || e === document.documentElement) return null;
 window.walked = window.walked || [];
@@ -24,9 +27,8 @@ const box = e.getBoundingClientRect(), style = getComputedStyle(e);
 const within = (value, most) => Math.min(Math.max(value, 0), most - 1);
 const over = document.elementFromPoint(within(box.left + box.width / 2, innerWidth),
   within(box.top + box.height / 2, innerHeight));
-const section = e.closest('.view, .fold, .headline, section') || e;
 return {
-  name: e.id || e.getAttribute('aria-label') || e.textContent.slice(0, 40),
+  name: named(e),
   kind: e.tagName, again,
   forward: !before || again || Boolean(before.compareDocumentPosition(e) & 4),
   inside: box.bottom > 0 && box.top < innerHeight && box.right > 0 && box.left < innerWidth,
@@ -37,9 +39,12 @@ return {
 """
 # What the keyboard must reach: everything that can be pressed or filled in and is there to see.
 LEFT_OUT = """
-return [...document.querySelectorAll('#frame :is(a[href], button, input, select, textarea, summary)')]
-  .filter(e => e.checkVisibility({visibilityProperty: true}) && !e.disabled && e.tabIndex >= 0)
-  .filter(e => !walked.includes(e)).map(e => e.id || e.textContent || e.outerHTML.slice(0, 80));
+const named = e => e.id || e.getAttribute('aria-label') || e.textContent.slice(0, 40);
+const pressed = 'a[href], button, input, select, textarea, summary';
+return [...document.querySelectorAll(`#frame :is(${pressed})`)]
+  .filter(e => e.checkVisibility({visibilityProperty: true}))
+  .filter(e => !e.disabled && e.tabIndex >= 0)
+  .map(named).filter(name => !walked.map(named).includes(name));
 """
 UNHELPED = """
 return [...document.querySelectorAll('main :is(.control, .slider) :is(select, input)')]
@@ -81,6 +86,7 @@ def test_the_tab_key_reaches_everything_in_order_and_is_always_seen(own, address
     own.get(address + page.PATH + QUICK)
     until(own, SETTLED + " && !(pricewake.brief && pricewake.brief.busy())", 90)
     own.execute_script(OPEN)
+    time.sleep(1)  # what has been opened asks for its numbers
     until(own, SETTLED, 60)
     press(own, Keys.TAB)
     first = own.execute_script(STOP)
@@ -99,15 +105,16 @@ def test_the_tab_key_reaches_everything_in_order_and_is_always_seen(own, address
             not stop["forward"]
             or not stop["inside"]
             or stop["covered"]
-            or stop["outline"] < 2
+            or (stop["outline"] < 2 and stop["kind"] != "IFRAME")  # what is inside has it
             or stop["small"]
             or (stop["again"] and not parts_of_one)
         ):
             wrong.append(stop)
-    assert wrong == [], wrong
+    assert wrong == [], str(wrong)
     assert stop is None, f"2.1.2: {stops} stops and no end"
     assert stops > 20
-    assert own.execute_script(LEFT_OUT) == []
+    left_out = own.execute_script(LEFT_OUT)
+    assert left_out == [], str(left_out)
     assert own.execute_script(UNHELPED) == []
 
 
