@@ -1,6 +1,7 @@
 """Which pair a page opens with when the address names none."""
 
 import re
+from collections import Counter
 from collections.abc import Mapping
 
 from analytics.series import PERIODS_PER_YEAR, Series
@@ -26,7 +27,9 @@ def opening_state(loaded: Mapping[str, Series]) -> ViewState:
     usual = ViewState()
     if (usual.driver in loaded and usual.response in loaded) or not loaded:
         return usual
-    paired = [n for n in loaded if len(_partners(n, loaded)) > 0] or list(loaded)
+    calendars = {name: series.frequency for name, series in loaded.items()}
+    many = Counter(calendars.values())
+    paired = [n for n, calendar in calendars.items() if many[calendar] > 1] or list(loaded)
     prices = [n for n in paired if sounds_like(n) == "prices"]
     money = [n for n in paired if sounds_like(n) == "money"]
     if prices:
