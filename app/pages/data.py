@@ -198,7 +198,9 @@ def _sentence(in_view: WorkspaceView, series: int) -> str:
     if in_view.placeholder:
         return "An invented economy stands here until you open files of your own."
     if not series:
-        return f"Nothing is in view{stood}."
+        return (
+            f"Nothing is in view on {day_words(in_view.day)}." if stood else "Nothing is in view."
+        )
     files = counted(len(in_view.releases), "file")
     return f"{series} series from {files}{stood or ', as they stand now'}."
 

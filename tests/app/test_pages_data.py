@@ -100,7 +100,7 @@ def test_an_empty_workspace_says_what_to_do():
         Release("a.csv", (Series("Prices", pd.Period("2024-01", "M"), [1.0]),), ()), "2024-02-12"
     )
     shown = answer(here, ViewState(as_of="2024-01-31"))
-    assert shown.sentence == "Nothing is in view, as they stood on 31 Jan 2024."
+    assert shown.sentence == "Nothing is in view on 31 Jan 2024."
     assert "the first file stands from 12 Feb 2024" in words(shown.words["series"])
 
 
