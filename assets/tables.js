@@ -45,13 +45,13 @@
   function bar(holder, place) {
     const attributes = place === "top" ? {} : { "data-foot": true };
     const parts = [
-      ["span", { role: place === "top" ? "status" : "presentation", class: "page-words" }],
+      ["span", { class: "page-words", ...(place === "top" ? { role: "status" } : {}) }],
       ["button", { type: "button", "data-turn": "-1" }, "Previous"],
       ["button", { type: "button", "data-turn": "1" }, "Next"],
     ];
     if (place === "top") {
       const noun = holder.spec[1]["data-noun"];
-      parts.unshift(["label", {}, ["span", {}, `Find ${noun}`], ["input", { type: "search", "data-find": true, autocomplete: "off", spellcheck: "false" }]]);
+      parts.unshift(["label", {}, ["span", {}, `Find ${noun}`], ["input", { type: "search", "data-find": true, "aria-label": `Find ${noun}: ${holder.spec[1]["aria-label"]}`, autocomplete: "off", spellcheck: "false" }]]);
     }
     return made("div", { class: "page-bar", ...attributes }, ...parts);
   }
@@ -183,6 +183,16 @@
     Object.assign(kept.get(nameOf(holder)), { find: target.value.trim(), at: 1 });
     clearTimeout(timer);
     timer = setTimeout(() => ask(holder), SOON);
+  });
+
+  /* A link to another page of the program, followed as the renderer's own are. */
+  document.addEventListener("click", (event) => {
+    const link = event.target.closest && event.target.closest("[data-built] a[data-route]");
+    if (!link || event.button || event.ctrlKey || event.metaKey || event.shiftKey || event.altKey) return;
+    event.preventDefault();
+    history.pushState({}, "", link.getAttribute("href"));
+    window.dispatchEvent(new CustomEvent("_dashprivate_pushstate"));
+    window.scrollTo(0, 0);
   });
 
   document.addEventListener("click", async (event) => {

@@ -86,7 +86,7 @@ def register(server: Flask, bridge: Bridge) -> None:
         """Give one page of a long list, ready to be built by assets/tables.js."""
         asked = request.args
         try:
-            at = int(asked.get("at", "1"))
+            at = _whole(asked.get("at", "1"))
             state = ViewState.from_query(request.query_string.decode(errors="replace"))
             page = Page(asked.get("find", "")[:MOST_LETTERS], at)
             table = data_lists.rows(name, state, asked.get("token", ""), page, bridge)
@@ -115,6 +115,12 @@ def register(server: Flask, bridge: Bridge) -> None:
         except (StateError, ValueError) as error:
             return {"message": str(error)}, 422
         return {}, 200
+
+
+def _whole(text: str) -> int:
+    if not (text.isascii() and text.isdigit() and len(text) <= 9):
+        raise ValueError(f"a page must be a whole number, but got {text[:20]!r}")
+    return int(text)
 
 
 def _sent() -> dict[str, Any]:

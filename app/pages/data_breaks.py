@@ -45,7 +45,7 @@ def section(in_view: WorkspaceView, found: Sequence[Found] | None, state: ViewSt
         return []
     parts: list[Any] = [html.H2("Checks and breaks")]
     if found is None:
-        parts.append(_quiet("The series are being checked."))
+        parts.append(_quiet("The checks of these series are not done yet."))
     else:
         parts.append(
             findings_table(found, in_view, state) if found else _quiet("The checks found nothing.")

@@ -62,7 +62,7 @@ def table(
 
 
 def packed(words: Any) -> Any:
-    """Return components with every table that holds no link of Dash's own packed.
+    """Return components with every table packed that holds nothing but HTML and links.
 
     Examples
     --------
@@ -90,12 +90,15 @@ def described(part: Any) -> Any:
     """Return a component as text or ``[tag, attributes, *children]``; None where it cannot be."""
     if not isinstance(part, Component):
         return str(part)
-    if part._namespace != "dash_html_components":
-        return None
     props = dict(part.to_plotly_json()["props"])
+    tag = part._type.lower()
+    if tag == "link":
+        tag, props["data-route"] = "a", "yes"  # followed without a new load
+    elif part._namespace != "dash_html_components":
+        return None
     inside = props.pop("children", None)
     children = inside if isinstance(inside, list | tuple) else [inside]
-    found = [part._type.lower(), _attributes(props)]
+    found = [tag, _attributes(props)]
     for each in _flat(children):
         one = described(each)
         if one is None:

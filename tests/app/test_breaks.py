@@ -201,7 +201,7 @@ def test_many_series_are_checked_in_steps_and_all_of_them():
     here = desk(*many, made("Wide", break_at=60))
     bridge, state = Bridge(here), ViewState()
     assert data_breaks.checked(here.as_of(), state, bridge) is None
-    assert "being checked" in str(data_breaks.section(here.as_of(), None, state))
+    assert "not done yet" in str(data_breaks.section(here.as_of(), None, state))
     work = page_table.WORKS["data"]["checks"](state, bridge)
     steps = [bridge.jobs.step(work)]
     while steps[-1].result is None:

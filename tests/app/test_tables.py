@@ -53,9 +53,12 @@ def test_tables_are_packed_wherever_they_stand_and_the_page_keeps_its_own():
     assert sent[0].children[0].children == "words"
 
 
-def test_a_table_with_links_of_the_router_is_left_to_dash():
-    linked = html.Table(html.Tbody(html.Tr(html.Td(dcc.Link("pair", href="/lag")))))
-    assert packed(linked) is linked
+def test_links_of_the_router_stay_links_and_what_is_no_html_is_left_to_dash():
+    linked = html.Table(html.Tbody(html.Tr(html.Td(dcc.Link("pair", href="/lag?shift=3")))))
+    link = described(linked)[2][2][2][2]
+    assert link == ["a", {"href": "/lag?shift=3", "data-route": "yes"}, "pair"]
+    charted = html.Table(html.Tbody(html.Tr(html.Td(dcc.Graph()))))
+    assert packed(charted) is charted
 
 
 @pytest.mark.parametrize("count", [0, 1, FEW])

@@ -310,7 +310,7 @@ def test_the_last_of_many_series_is_found_and_corrected(data):
     first = "document.querySelector('#data-series tbody strong')?.innerText"
     words = "document.querySelector('#data-series .page-words').innerText"
     until(browser, f"{first} === 'Component 0' && {words} === '1 to 60 of 300'")
-    until(browser, "!document.getElementById('data-breaks').innerText.includes('being checked')")
+    until(browser, "!document.getElementById('data-breaks').innerText.includes('not done yet')")
     foot = browser.find_element(By.CSS_SELECTOR, "#data-series [data-foot] [data-turn='1']")
     for k in range(1, 5):
         foot.click()
