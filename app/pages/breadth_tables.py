@@ -16,8 +16,8 @@ def component_table(shown: Breadth) -> list[Any]:
     columns = (
         ("name", "Component"),
         ("weight", "Weight, %"),
-        ("rate", f"{over} rate, %"),
-        *((("rate_1m", f"one-{noun} rate, %"),) if shown.span > 1 else ()),
+        ("rate", f"{over[0].upper()}{over[1:]} rate, %"),
+        *((("rate_1m", f"One-{noun} rate, %"),) if shown.span > 1 else ()),
         ("rank", "Rank in own history"),
         ("points", f"Contribution, {over}"),
         *((("points_1m", f"Contribution, one-{noun}"),) if shown.span > 1 else ()),
