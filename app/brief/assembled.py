@@ -6,6 +6,7 @@ from typing import Any
 
 from app.brief.key_figures import KeyFigure, newest_period
 from app.brief.parts import Draft, Part
+from app.brief.remembered import Remembered, remembered
 from app.brief.series_used import Provenance, provenance
 from app.brief.sources import Shown, settle, source, sources
 from app.compute import Bridge
@@ -84,6 +85,8 @@ class Brief:
         Every series behind a number, each once.
     figures : tuple of Figured
         Key figures of every page and state.
+    remembered : Remembered
+        What it shows from the workspace besides the series.
     """
 
     draft: Draft
@@ -91,6 +94,7 @@ class Brief:
     sections: tuple[Section, ...]
     series: tuple[Provenance, ...]
     figures: tuple[Figured, ...]
+    remembered: Remembered
 
     @property
     def refusals(self) -> tuple[str, ...]:
@@ -181,6 +185,7 @@ def assembled(
         sections=tuple(sections),
         series=tuple(series.values()),
         figures=tuple(figures),
+        remembered=remembered(draft, {one.name for one in series.values()}, bridge),
     )
 
 

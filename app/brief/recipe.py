@@ -15,6 +15,7 @@ from app.brief.assembled import Brief, Figured
 from app.brief.folder import LISTED
 from app.brief.key_figures import KeyFigure
 from app.brief.parts import Draft, read_draft
+from app.brief.remembered import Remembered, differences, read_remembered, written
 from app.brief.series_used import Provenance
 from app.brief.sources import source
 from app.compute import Bridge
@@ -22,7 +23,7 @@ from app.places import software_version
 from app.state import ViewState, kind_of
 
 FORMAT = 1
-MOST_BYTES = 2**20
+MOST_BYTES = 16 * 2**20  # statements of years
 LIBRARIES = ("numpy", "pandas", "scipy", "statsmodels", "plotly")
 
 
@@ -46,6 +47,8 @@ class Recipe:
         SHA-256 of each file of numbers.
     versions : mapping of str to str
         Programs that made it.
+    remembered : Remembered or None
+        What it showed from the workspace; None where it does not say.
     """
 
     draft: Draft
@@ -53,6 +56,7 @@ class Recipe:
     figures: tuple[Figured, ...]
     sums: Mapping[str, str]
     versions: Mapping[str, str]
+    remembered: Remembered | None = None
 
 
 @dataclass(frozen=True)
@@ -105,6 +109,7 @@ def recipe_text(brief: Brief, numbers: Mapping[str, str], files: Sequence[str] =
                 for each in brief.figures
             ],
             "file": [{"name": name, "sha256": sum_of(text)} for name, text in numbers.items()],
+            "workspace": written(brief.remembered),
             "usual": {item.name: item.default for item in fields(ViewState)},
         },
         multiline_strings=False,
@@ -169,6 +174,7 @@ def read_recipe(text: str) -> Recipe:
             ),
             sums={one["name"]: one["sha256"] for one in found.get("file", [])},
             versions=dict(found.get("versions", {})),
+            remembered=read_remembered(found["workspace"]) if "workspace" in found else None,
         )
     except RecipeError:
         raise
@@ -225,6 +231,8 @@ def missing_series(recipe: Recipe, bridge: Bridge) -> tuple[str, ...]:
 def compared(recipe: Recipe, brief: Brief, numbers: Mapping[str, str]) -> Comparison:
     """Hold a brief, and its CSV files where they are made, against the recipe it came from."""
     said = [*_data_lines(recipe, brief), *_version_lines(recipe)]
+    if recipe.remembered is not None:
+        said += differences(recipe.remembered, brief.remembered)
     made = {name: sum_of(text) for name, text in numbers.items()}
     if made and not said:
         other = [name for name, mark in recipe.sums.items() if made.get(name) != mark]

@@ -75,16 +75,21 @@ def brief(
     from app.brief.building import Building
     from app.brief.folder import check_folder, write_folder
     from app.brief.pictures import Pictures
+    from app.brief.remembered import restore
     from app.commands.brief_report import draft_of, figures_csv, lines, recipe_of
     from app.compute import Bridge
 
+    not_restored: tuple[str, ...] = ()
     check_folder(folder)
     before = recipe_of(recipe_path) if recipe_path else None
     desk = workspace_of(files, kept_in)
+    if before is not None and before.remembered is not None and kept_in is None:
+        not_restored = restore(before.remembered, desk)
     bridge = Bridge(desk)
     draft = draft_of(before, bridge, flags, form, title)
     pictures = Pictures()
     building = Building(draft, bridge, pictures, before, images=not no_pictures, paper=paper)
+    building.said += not_restored
     try:
         building.finish()
     finally:
