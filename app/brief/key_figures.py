@@ -13,6 +13,7 @@ from app.outlook.answer import LEVEL
 from app.outlook.bridge import outlook
 from app.outlook.words import best_benchmark, rate_words
 from app.reading.bridge import reading
+from app.reading.fields import MEASURE
 from app.reading.words import quantities
 from app.state import ViewState
 from app.words import p_words, plain, signed
@@ -55,16 +56,22 @@ _RATES = (
     ("rate_3m_annualised", "3-month rate, annualised", "%", "+1"),
     ("rate_12m", "12-month rate", "%", "+1"),
     ("change_12m", "change in the 12-month rate", "points", "+2"),
-    ("rank_percent", "rank in history", "of 100", "1"),
+    ("rank_percent", "rank in history of the {measure}", "of 100", "1"),
     ("change_36m", "change over 36 months", "%", "+1"),
 )
 
 
 def _reading(state: ViewState, bridge: Bridge) -> tuple[KeyFigure, ...]:
     known = reading(state, bridge)
-    values = quantities(known)
+    values, measure = quantities(known), MEASURE.options[state.measure]
     found = [
-        KeyFigure(key, f"{known.series.name}, {words}", unit, float(values[key]), shape)
+        KeyFigure(
+            key,
+            f"{known.series.name}, {words.format(measure=measure)}",
+            unit,
+            float(values[key]),
+            shape,
+        )
         for key, words, unit, shape in _RATES
         if not np.isnan(values[key])
     ]
@@ -153,8 +160,20 @@ def _outlook(state: ViewState, bridge: Bridge) -> tuple[KeyFigure, ...]:
         KeyFigure(
             "implied", f"implied {words}, {when}", unit, float(known.fan.centre[place]), "+1"
         ),
-        KeyFigure("low", f"low end of {LEVEL:.0%}, {when}", unit, float(low[place]), "+1"),
-        KeyFigure("high", f"high end of {LEVEL:.0%}, {when}", unit, float(high[place]), "+1"),
+        KeyFigure(
+            "low",
+            f"low end of the {100 * LEVEL:.0f} % interval, {when}",
+            unit,
+            float(low[place]),
+            "+1",
+        ),
+        KeyFigure(
+            "high",
+            f"high end of the {100 * LEVEL:.0f} % interval, {when}",
+            unit,
+            float(high[place]),
+            "+1",
+        ),
     ]
     if known.scores is not None:
         ahead = min(found.ahead, known.scores.ahead.size)

@@ -80,9 +80,9 @@ def still(part: Any) -> str:
 
 
 def _says_something(button: Component) -> bool:
-    """Whether a button is a heading to sort by, a name to choose, or a choice that was made."""
+    """Whether a button is a heading to sort by, a term, a name to choose, or a choice made."""
     said = button.to_plotly_json()["props"]
-    if said.get("className") == "sorter" or "data-without" in said:
+    if said.get("className") in ("sorter", "term") or "data-without" in said:
         return True
     return bool(said.get("aria-pressed") == "true")
 

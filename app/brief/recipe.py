@@ -24,6 +24,7 @@ from app.state import ViewState, kind_of
 
 FORMAT = 1
 MOST_BYTES = 16 * 2**20  # statements of years
+TOGETHER = 4  # series of one span whose changes share a line
 LIBRARIES = ("numpy", "pandas", "scipy", "statsmodels", "plotly")
 
 
@@ -234,7 +235,7 @@ def compared(recipe: Recipe, brief: Brief, numbers: Mapping[str, str]) -> Compar
     if recipe.remembered is not None:
         said += differences(recipe.remembered, brief.remembered)
     made = {name: sum_of(text) for name, text in numbers.items()}
-    if made and not said:
+    if made and not said and brief.draft.parts == recipe.draft.parts:
         other = [name for name, mark in recipe.sums.items() if made.get(name) != mark]
         if other:
             said.append(
@@ -261,17 +262,23 @@ def same_files(recipe: Recipe, numbers: Mapping[str, str]) -> tuple[int, int]:
 def _data_lines(recipe: Recipe, brief: Brief) -> list[str]:
     now = {(one.name, one.kind == "weights"): one for one in brief.series}
     said = []
+    spans: dict[str, list[str]] = {}
     for one in recipe.series:
         new = now.get((one.name, one.kind == "weights"))
         if new is None:
             said.append(f"{one.name}: no longer used")
         elif new.fingerprint != one.fingerprint:
-            span = ""
+            span = f"{one.first} to {one.last} both times"
             if (new.first, new.last) != (one.first, one.last):
-                span = f", {one.first} to {one.last} before and {new.first} to {new.last} now"
-            said.append(
-                f"{one.name}: fingerprint {one.fingerprint} before, {new.fingerprint} now{span}"
-            )
+                span = f"{one.first} to {one.last} before, {new.first} to {new.last} now"
+            changed = f"{one.name}: fingerprint {one.fingerprint} before, {new.fingerprint} now"
+            spans.setdefault(span, []).append(changed)
+    for span, changes in spans.items():
+        said += (
+            [f"{line}; {span}" for line in changes]
+            if len(changes) < TOGETHER
+            else [f"{len(changes)} series, {span}; {'; '.join(changes)}"]
+        )
     return said
 
 

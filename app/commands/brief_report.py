@@ -8,7 +8,7 @@ import click
 
 from app.brief.assembled import opening, prefilled
 from app.brief.building import Building
-from app.brief.parts import Draft, read_draft
+from app.brief.parts import Draft, Part, read_draft
 from app.brief.recipe import MOST_BYTES, Recipe, missing_series, read_recipe, same_files
 from app.commands.parts import state_of
 from app.compute import Bridge
@@ -78,7 +78,21 @@ def draft_of(
         more = f" and {len(lacking) - 4} more" if len(lacking) > 4 else ""
         raise click.UsageError(f"the recipe needs series that are not in the files: {listed}{more}")
     draft = before.draft if form is None else replace(before.draft, form=form)
+    if draft.form == "one-page" != before.draft.form:
+        draft = replace(draft, parts=_first_views(draft.parts))
     return read_draft_title(draft, title)
+
+
+def _first_views(parts: tuple[Part, ...]) -> tuple[Part, ...]:
+    """Return the parts with the first view of each page and state alone, as one page holds."""
+    seen, kept = set(), []
+    for part in parts:
+        question = part.page, part.state
+        if part.kind != "view" or question not in seen:
+            kept.append(part)
+        if part.kind == "view":
+            seen.add(question)
+    return tuple(kept)
 
 
 def read_draft_title(draft: Draft, title: str | None) -> Draft:
@@ -108,16 +122,22 @@ def lines(building: Building, folder: Path) -> list[str]:
     found += [f"{text[:1].upper()}{text[1:]}." for text in building.said]
     if before is None or since is None:
         return found
-    same, of = same_files(before, building.csv)
-    found.append(
-        f"Since last time: {same} of {counted(of, 'file')} of numbers the same to the byte."
-    )
+    if brief.draft.parts == before.draft.parts:
+        same, of = same_files(before, building.csv)
+        found.append(
+            f"Since last time: {same} of {counted(of, 'file')} of numbers the same to the byte."
+        )
     found += [f"Changed: {line}." for line in since.data]
+    moved = [change for change in since.figures if change.moved]
+    seen = [change for change in moved if change.before != change.now]
     found += [
         f"{change.page}, {change.label}: {change.before} before, {change.now} now."
-        for change in since.figures
-        if change.moved
+        for change in seen
     ]
+    if len(seen) < len(moved):
+        found.append(
+            f"{counted(len(moved) - len(seen), 'more key figure')} moved by less than is shown."
+        )
     return found
 
 

@@ -139,7 +139,7 @@ def test_next_month_rolls_forward_and_marks_what_changed(recipe, tmp_path, made)
             f"{name}: fingerprint {old[name].fingerprint} before, {new[name].fingerprint}"
             in changed
         )
-    assert "2010-01 to 2022-06 before and 2010-01 to 2022-07 now" in changed
+    assert "6 series, 2010-01 to 2022-06 before, 2010-01 to 2022-07 now; " in changed
     assert same_files(recipe, again.csv)[0] == 0
     moved = {change.label: change for change in again.since.figures if change.moved}
     assert len(moved) > 10
