@@ -17,6 +17,7 @@ from werkzeug.wrappers import Response as Answer
 from app.places import software_version
 
 LOOPBACK = frozenset({"127.0.0.1", "localhost", "::1"})
+FILES = ("/intake", "/scan/result")  # requests that are a file, and have limits of their own
 MAX_WORDS = 2 * 2**20  # bytes of a request that is no file
 SHUT = frozenset({"/_reload-hash"})  # what the framework opens for developers
 TOKEN_LETTERS = 43  # 32 random bytes in letters that an address may hold
@@ -60,7 +61,7 @@ def guard(server: Flask, app: Dash, door: Door) -> None:
             abort(421)
         if request.path in SHUT:
             abort(404)
-        if request.path != "/intake":
+        if request.path not in FILES:
             request.max_content_length = MAX_WORDS
         site = request.headers.get("Sec-Fetch-Site", "same-origin")
         mode = request.headers.get("Sec-Fetch-Mode", "navigate")

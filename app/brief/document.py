@@ -221,7 +221,7 @@ def _changes(since: Comparison | None, small: bool) -> str:
     )
     body = "".join(_change_row(change) for change in (rows[:8] if small else rows))
     table = f"<table><thead><tr>{head}</tr></thead><tbody>{body}</tbody></table>" if body else ""
-    told = since.data[:2] if small else since.data
+    told = [line.partition("; ")[0] for line in since.data[:2]] if small else since.data
     data = "".join(f"<li>{safe(line)}</li>" for line in told)
     if len(told) < len(since.data):
         data += f"<li>and {len(since.data) - len(told)} more, which the full form lists</li>"

@@ -28,11 +28,13 @@ def recipe_of(path: Path) -> Recipe:
         It cannot be read or followed; one sentence.
     """
     try:
-        if path.stat().st_size > MOST_BYTES:
+        with path.open("rb") as file:
+            content = file.read(MOST_BYTES + 1)
+        if len(content) > MOST_BYTES:
             raise click.UsageError(
                 f"--recipe must be a recipe.toml, but {str(path)!r} is too large"
             )
-        text = path.read_text(encoding="utf-8")
+        text = content.decode("utf-8")
     except UnicodeDecodeError:
         raise click.UsageError(f"--recipe must be text, but {str(path)!r} is not") from None
     except OSError as error:

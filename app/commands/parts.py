@@ -1,5 +1,6 @@
 """What several commands share: arguments and flags, files to a workspace, output."""
 
+import contextlib
 import json
 import math
 from collections.abc import Callable
@@ -138,8 +139,13 @@ def write(path: Path, text: str) -> None:
         if path.is_dir():
             raise IsADirectoryError(0, "that is a folder")
         part = path.with_name(f"{path.name}.part")
-        part.write_text(text, encoding="utf-8", newline="")
-        part.replace(path)
+        try:
+            part.write_text(text, encoding="utf-8", newline="")
+            part.replace(path)
+        except OSError:
+            with contextlib.suppress(OSError):
+                part.unlink()
+            raise
     except OSError as error:
         raise click.UsageError(
             f"--csv must be a file that may be written, but got {str(path)!r}: {error.strerror}"

@@ -14,11 +14,10 @@ import numpy as np
 
 from analytics.panel import PairScan, PanelScan, panel_result
 from app.scan.fields import SETTINGS
-from app.scan.result_file import COLUMNS, is_head, read_row
+from app.scan.result_file import COLUMNS, MOST_BYTES, is_head, read_row
 from app.scan.task import ScanError
 from app.state import StateError, ViewState
 
-MOST_BYTES = 32 * 2**20
 MOST_ROWS = 20_000
 _LONGEST = 4000  # signs of a name or a reason
 _FURTHEST = 10_000  # periods of a window or a shift
@@ -70,10 +69,7 @@ def read_result(name: str, content: bytes) -> Opened:
         It is too large, no result of a scan, or one row is not as a scan writes it; one sentence.
     """
     if len(content) > MOST_BYTES:
-        raise ScanError(
-            f"a result must have at most {MOST_BYTES >> 20} MB, but {name!r} has"
-            f" {len(content) / 2**20:.0f}"
-        )
+        raise ScanError(f"a result must have at most {MOST_BYTES >> 20} MB, but {name!r} has more")
     try:
         text = content.decode("utf-8-sig")
     except UnicodeDecodeError:

@@ -21,6 +21,7 @@ from app.places import software_version
 from app.scan.task import ScanError
 
 COLUMNS = (*(item.name for item in fields(PairScan)), "p_scan", "p_holm")
+MOST_BYTES = 32 * 2**20
 _MARK = "every pair in the files"
 _LINE_END = "\r\n"
 
@@ -102,7 +103,13 @@ class ResultFile:
         try:
             if not self.path.exists():
                 return ""
-            return self.path.read_bytes().decode("utf-8")
+            if not self.path.is_file() and not self.path.is_dir():  # a device never ends
+                raise self._stranger()
+            with self.path.open("rb") as file:
+                content = file.read(MOST_BYTES + 1)
+            if len(content) > MOST_BYTES:
+                raise self._stranger()
+            return content.decode("utf-8")
         except UnicodeDecodeError:
             raise self._stranger() from None
         except OSError as error:

@@ -3,6 +3,8 @@
 import csv
 import json
 import os
+import re
+import resource
 import signal
 import subprocess
 import sys
@@ -188,6 +190,38 @@ def test_wrong_use_is_one_sentence(capsys, panel, words, what):
     assert (code, out) == (2, "")
     assert what in err
     assert err.count("\n") == 1
+
+
+@pytest.mark.usefixtures("counted")
+def test_a_disk_that_fills_half_way_leaves_whole_rows_and_no_half_file(panel, tmp_path, capsys):
+    # The size that files may have runs out, as a disk does.
+    before = resource.getrlimit(resource.RLIMIT_FSIZE)
+    handler = signal.signal(signal.SIGXFSZ, signal.SIG_IGN)
+    resource.setrlimit(resource.RLIMIT_FSIZE, (1200, before[1]))
+    try:
+        code, _, err = call(capsys, panel, *FLAGS, "--out", tmp_path / "r.csv")
+        assert code == 2
+        assert re.search(
+            r"--out must be a file that may be written.*(no space|too large)", err, re.I
+        )
+        code, _, err = call(
+            capsys, panel, *FLAGS, "--csv", tmp_path / "v.csv", "--view", "surfaces"
+        )
+        assert code == 2
+        assert "--csv must be a file that may be written" in err
+    finally:
+        resource.setrlimit(resource.RLIMIT_FSIZE, before)
+        signal.signal(signal.SIGXFSZ, handler)
+    assert os.listdir(tmp_path) == ["r.csv"]
+    assert (tmp_path / "r.csv").read_bytes().endswith(b"\r\n")
+    assert call(capsys, panel, *FLAGS, "--out", tmp_path / "r.csv")[0] == 0  # and goes on
+    assert rows_of(tmp_path / "r.csv") == 3
+
+
+def test_a_device_is_no_result_and_is_not_read_to_its_end(capsys, panel):
+    for words in (["--out", "/dev/zero"], ["--from", "/dev/zero"]):
+        code, _, err = call(capsys, panel, *words)
+        assert (code, err.count("\n")) == (2, 1)
 
 
 def test_files_without_a_pair_are_one_sentence(capsys, tmp_path):
