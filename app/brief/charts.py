@@ -20,8 +20,8 @@ HEIGHTS = {  # pixels in the column, by page and view
 }
 NARROW = 20  # letters beside a small chart
 CLEAR = "rgba(0,0,0,0)"
-USUAL, SMALL = 262, 140  # of other views, and of any view on one page
-SMALL_HEIGHTS = {"breadth contributions": 178, "lag surface": 156, "outlook fan": 152}
+USUAL, SMALL = 262, 126  # of other views, and of any view on one page
+SMALL_HEIGHTS = {"breadth contributions": 150, "lag surface": 146, "outlook fan": 146}
 SIZES = {"lag surface": (1100, 760), "lag scatter": (900, 860), "lag overlay": (1200, 560)}
 PICTURE = (1000, 680)
 CHART_OPTIONS = {**CONFIG, "responsive": False}  # drawn anew when the column changes

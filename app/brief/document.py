@@ -17,6 +17,7 @@ from app.pages.as_of import day_words
 from app.places import bundled, software_version
 
 _HERE = Path(__file__).resolve().parent
+MOST_ROWS = 4  # key figures that changed, on one page
 MANY = 8  # series of one file and kind that are listed one by one
 
 
@@ -219,12 +220,13 @@ def _changes(since: Comparison | None, small: bool) -> str:
         f'<th scope="col"{" class=numeric" if i > 1 else ""}>{text}</th>'
         for i, text in enumerate(("Page", "Figure", "Last time", "Now", "Change"))
     )
-    body = "".join(_change_row(change) for change in (rows[:8] if small else rows))
+    body = "".join(_change_row(change) for change in (rows[:MOST_ROWS] if small else rows))
     table = f"<table><thead><tr>{head}</tr></thead><tbody>{body}</tbody></table>" if body else ""
     told = [line.partition("; ")[0] for line in since.data[:2]] if small else since.data
     data = "".join(f"<li>{safe(line)}</li>" for line in told)
-    if len(told) < len(since.data):
-        data += f"<li>and {len(since.data) - len(told)} more, which the full form lists</li>"
+    left = len(since.data) - len(told) + (max(0, len(rows) - MOST_ROWS) if small else 0)
+    if left:
+        data += f"<li>and {left} more, which the full form lists</li>"
     return f"""<section class="verdict-part changes">
 <h2>What changed since last time</h2>
 <div class="scroll">{table}</div>
