@@ -9,6 +9,7 @@
     line.textContent = text;
     line.className = bad ? "bad" : "good";
     byId("breaks-message").replaceChildren(line);
+    if (bad) byId("breaks-message").scrollIntoView({ block: "nearest" }); // it may stand below a long list
   }
 
   async function send(act, body) {
@@ -23,6 +24,14 @@
     } catch (_) {
       return "The program does not answer; is Pricewake still running?";
     }
+  }
+
+  /* The button goes with the answer: go on to the next finding, else to what was done. */
+  function goOn(button, row, tries = 100) {
+    if (button.isConnected && tries) return setTimeout(() => goOn(button, row, tries - 1), 50);
+    if (document.activeElement !== document.body) return;
+    const next = row && row.isConnected && row.nextElementSibling;
+    ((next && next.querySelector("select, button")) || byId("breaks-message")).focus({ preventScroll: true });
   }
 
   /* Treatments by overlap need the overlapping series named, too. */
@@ -52,10 +61,12 @@
         });
       }
     }
+    const row = button.closest("tr");
     const refused = await send(act, body);
     if (refused) return say(refused, true);
     window.dash_clientside.set_props("data-tick", { data: Date.now() });
     const done = act === "mark" ? "is marked and treated on every page" : "is no longer marked";
     say(`The break of ${body.series} at ${body.period} ${done}.`, false);
+    if (row) goOn(button, row);
   });
 })();

@@ -21,6 +21,7 @@
     const place = byId("intake-message");
     if (!place) return;
     const good = lines.filter((line) => !line.bad);
+    if (good.length < lines.length) setTimeout(() => place.scrollIntoView({ block: "nearest" }), 0);
     if (good.length <= MANY) return place.replaceChildren(...lines.map(paragraph));
     const fold = document.createElement("details"), head = document.createElement("summary");
     head.textContent = `${good.length} files: ${good[0].done || "read; nothing is kept yet"}`;

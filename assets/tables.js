@@ -63,6 +63,7 @@
     const range = Number(found) ? `${first} to ${last} of ${found}` : "none";
     const text = words || (find ? `${range} found, ${total} in all` : range);
     for (const place of holder.querySelectorAll(".page-words")) if (place.textContent !== text) place.textContent = text;
+    holder.querySelector("[data-foot]").hidden = Number(pages) < 2;
     for (const button of holder.querySelectorAll("[data-turn]")) {
       const there = Number(at) + Number(button.dataset.turn);
       button.setAttribute("aria-disabled", String(there < 1 || there > Number(pages)));

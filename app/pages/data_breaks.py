@@ -32,7 +32,7 @@ def places() -> list[html.Div]:
     """Return the places of this part in the page: what was done last, and all the rest."""
     return [
         html.Div(id="data-breaks"),
-        html.Div(id="breaks-message", className="message said", role="alert"),
+        html.Div(id="breaks-message", className="message said", role="alert", tabIndex="-1"),
     ]
 
 
