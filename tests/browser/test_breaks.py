@@ -52,6 +52,7 @@ def test_a_break_is_found_marked_said_and_taken_away(desk):
     open_data(browser, url)
     browser.find_element(By.CSS_SELECTOR, "[data-break=unmark]").click()
     until(browser, "!document.querySelector('[data-break=unmark]')")
+    until(browser, "document.activeElement.id === 'breaks-message'")  # its button is gone
     assert here.as_of().marks == ()
     severe = [e for e in browser.get_log("browser") if e["level"] == "SEVERE"]
     assert severe == [], json.dumps(severe)
