@@ -99,7 +99,8 @@ def _search_lines(known: Evidence) -> list[tuple[str, str]]:
     lines.append(
         (
             "search",
-            f"p {float(found.p)!r}; one-sided {float(found.p_one_sided)!r}; best cell window"
+            f"p {float(found.p)!r}; one-sided {float(found.p_one_sided)!r}; Monte Carlo"
+            f" standard error of p {found.p_error!r}; best cell window"
             f" {found.best_window} shift {found.best_shift}; surrogates {found.surrogates}; seed"
             f" {found.seed}; level shifts removed {'yes' if found.level_shifts_removed else 'no'}"
             + (f"; p with them {left_in!r}" if left_in is not None else ""),

@@ -84,6 +84,7 @@ def _search_answer(known: Evidence) -> dict[str, Any]:
     return {
         "p": float(found.p),
         "p_one_sided": float(found.p_one_sided),
+        "p_error": found.p_error,
         "p_with_level_shifts": found.p_with_level_shifts,
         "level_shifts_removed": found.level_shifts_removed,
         "surrogates": found.surrogates,

@@ -39,7 +39,8 @@ def p_strip(known: Evidence, state: ViewState, unit: str) -> list[html.Div]:
             "search-adjusted p",
             whole,
             "For the best cell of the whole map, the search paid for; two-sided."
-            + (f" One-sided {p_words(found.p_one_sided)}." if found else ""),
+            + (f" One-sided {p_words(found.p_one_sided)}." if found else "")
+            + (f" Another seed moves p by about {_moved(found.p_error)}." if found else ""),
             float(found.p) if found else None,
         ),
         html.Div(
@@ -54,6 +55,11 @@ def p_strip(known: Evidence, state: ViewState, unit: str) -> list[html.Div]:
             className="strip-item worth",
         ),
     ]
+
+
+def _moved(error: float) -> str:
+    """Write a Monte Carlo standard error of p: ``.009``, or that it is too small to matter."""
+    return "less than .001" if error < 0.0005 else f"{error:.3f}".lstrip("0")
 
 
 def _figure(name: str, value: str, meaning: str, digits: float | None) -> html.Div:

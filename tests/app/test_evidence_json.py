@@ -50,6 +50,7 @@ def test_the_json_of_the_command_is_the_evidence():
     }  # fmt: skip
     assert found["search"]["p"] == known.search.p
     assert found["search"]["p_one_sided"] == known.search.p_one_sided
+    assert found["search"]["p_error"] == known.search.p_error
     assert (found["search"]["surrogates"], found["search"]["seed"]) == (250, 5)
     assert found["search"]["method"] == known.search.method
     assert found["best"]["window"] == known.search.best_window

@@ -337,6 +337,7 @@ def test_the_header_names_what_the_search_was_and_gave(name):
     for said in (
         f"p {found.p!r};",
         f"one-sided {found.p_one_sided!r};",
+        f"Monte Carlo standard error of p {found.p_error!r};",
         f"best cell window {found.best_window} shift {found.best_shift};",
         "surrogates 260;",
         "seed 7;",

@@ -124,6 +124,8 @@ def test_when_all_is_done_the_page_shows_what_python_completes():
     said = f"{known.inference.n} months behave like {worth} independent ones"
     assert values[3] == ("effective months", said)
     assert f"One-sided {p_words(search.p_one_sided)}." in text(found["strip"])
+    moved = f"{search.p_error:.3f}".lstrip("0")
+    assert f"Another seed moves p by about {moved}." in text(found["strip"])
 
 
 def test_an_unrelated_pair_shows_no_set_and_asks_for_none():
