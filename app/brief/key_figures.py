@@ -53,11 +53,11 @@ class KeyFigure:
 
 _RATES = (
     ("rate_1m", "rate over one period", "%", "+2"),
-    ("rate_3m_annualised", "3-month rate, annualised", "%", "+1"),
-    ("rate_12m", "12-month rate", "%", "+1"),
+    ("rate_3m_annualised", "3-month rate, annualised", "%", "+2"),
+    ("rate_12m", "12-month rate", "%", "+2"),
     ("change_12m", "change in the 12-month rate", "points", "+2"),
     ("rank_percent", "rank in history of the {measure}", "of 100", "1"),
-    ("change_36m", "change over 36 months", "%", "+1"),
+    ("change_36m", "change over 36 months", "%", "+2"),
 )
 
 
@@ -83,7 +83,7 @@ def _reading(state: ViewState, bridge: Bridge) -> tuple[KeyFigure, ...]:
                 f"{known.series.name}, carry-over to {year}",
                 "%",
                 float(known.carried.next_year),
-                "+1",
+                "+2",
             )
         )
     return tuple(found)
@@ -105,7 +105,7 @@ def _breadth(state: ViewState, bridge: Bridge) -> tuple[KeyFigure, ...]:
     if shown.weighted is not None:
         for place, (name, values) in enumerate(shown.weighted.measures.items()):
             label = f"{name[0].lower()}{name[1:]}, {over}"
-            found.append(KeyFigure(f"measure_{place}", label, "%", float(values[-1]), "+1"))
+            found.append(KeyFigure(f"measure_{place}", label, "%", float(values[-1]), "+2"))
     return tuple(found)
 
 
@@ -158,21 +158,21 @@ def _outlook(state: ViewState, bridge: Bridge) -> tuple[KeyFigure, ...]:
     low, high = known.fan.band(LEVEL)
     figures = [
         KeyFigure(
-            "implied", f"implied {words}, {when}", unit, float(known.fan.centre[place]), "+1"
+            "implied", f"implied {words}, {when}", unit, float(known.fan.centre[place]), "+2"
         ),
         KeyFigure(
             "low",
             f"low end of the {100 * LEVEL:.0f} % interval, {when}",
             unit,
             float(low[place]),
-            "+1",
+            "+2",
         ),
         KeyFigure(
             "high",
             f"high end of the {100 * LEVEL:.0f} % interval, {when}",
             unit,
             float(high[place]),
-            "+1",
+            "+2",
         ),
     ]
     if known.scores is not None:
