@@ -92,5 +92,5 @@ def _compiled(kept: bool) -> "Callable[..., None]":
 
 try:
     fill_cells = _compiled(kept=True)
-except RuntimeError:  # no folder to keep it in
+except Exception:  # no folder to keep it in, or what is kept there is broken
     fill_cells = _compiled(kept=False)

@@ -35,8 +35,8 @@
   function choose([from, to]) {
     const { data } = pricewake.lag;
     const ordinalOf = (day) => {
-      const date = new Date(day);
-      return Math.floor(((date.getUTCFullYear() - 1970) * 12 + date.getUTCMonth()) / (12 / data.perYear));
+      const [year, month] = day.split("-").map(Number); // read as written: a Date would be of the time zone
+      return Math.floor(((year - 1970) * 12 + month - 1) / (12 / data.perYear));
     };
     const least = data.ordinal, most = data.ordinal + data.driver.values.length - 1;
     const ends = [ordinalOf(from), ordinalOf(to)].sort((a, b) => a - b).map((o) => Math.max(least, Math.min(most, o)));

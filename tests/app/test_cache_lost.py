@@ -1,7 +1,12 @@
-"""The cache is emptied again and again while pages ask: every answer is there, and the same."""
+"""Caches that are emptied or broken while they are used: every answer is there, and the same."""
 
+import os
+import subprocess
+import sys
 import threading
+from pathlib import Path
 
+import pytest
 from flask import Flask
 
 from app.compute import Bridge
@@ -47,3 +52,39 @@ def test_a_cache_that_is_lost_while_running_changes_no_answer():
     assert failed == []
     assert len(found) == 280
     assert all(slope == wanted[shift] for shift, slope in found)
+
+
+BROKEN = """
+import importlib, sys
+from pathlib import Path
+import numpy as np
+import analytics.hac_loop as loop
+
+def filled():
+    rng = np.random.default_rng(1)
+    x, y = rng.normal(size=(2, 1, 60))
+    out = np.full((4, 1, 2), np.nan)
+    loop.fill_cells(x, y, np.array([60]), np.array([0, 3]), np.array([4]), 0, 1, out)
+    return out
+
+usual = filled()
+kept = [path for path in Path(sys.argv[1]).rglob("*.nb?")]
+assert len(kept) >= 2, kept
+for path in kept:
+    path.write_bytes(b'half')
+importlib.reload(loop)
+assert np.array_equal(filled(), usual)
+"""
+
+
+@pytest.mark.long
+def test_a_broken_copy_of_the_compiled_loop_is_made_anew(tmp_path):
+    done = subprocess.run(
+        [sys.executable, "-c", BROKEN, str(tmp_path)],
+        cwd=Path(__file__).resolve().parents[2],
+        env={**os.environ, "NUMBA_CACHE_DIR": str(tmp_path)},
+        capture_output=True,
+        text=True,
+        check=False,
+    )
+    assert done.returncode == 0, done.stderr[-800:]

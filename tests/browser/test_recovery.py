@@ -11,8 +11,11 @@ from contextlib import contextmanager
 from pathlib import Path
 
 import pytest
+from selenium.webdriver.common.keys import Keys
 
+from app.page_table import PAGES
 from tests.browser.driving import until
+from tests.browser.test_accessibility import QUICK, SETTLED
 
 ROOT = Path(__file__).resolve().parents[2]
 ANSWERED = "window.pricewake && pricewake.plain && pricewake.plain.data && !pricewake.plain.busy()"
@@ -81,3 +84,28 @@ def test_a_killed_program_is_told_and_its_return_opens_the_page_anew(browser, po
             30,
         )
         assert "coming=0.8" in browser.current_url
+
+
+@pytest.mark.long
+@pytest.mark.parametrize(
+    "page", [page for page in PAGES if page.TITLE != "Reading"], ids=lambda page: page.TITLE
+)
+def test_every_page_stays_while_the_program_is_away_and_opens_anew_when_it_is_back(
+    browser, port, page
+):
+    address = f"http://127.0.0.1:{port}{page.PATH}{QUICK}"
+    with program(port):
+        browser.get(address)
+        until(browser, SETTLED, 60)
+        headline = browser.execute_script("return document.querySelector('h1').textContent")
+    if page.TITLE == "Lag":  # the browser computes: the hand moves on without the program
+        browser.find_element("id", "field-shift").send_keys(Keys.ARROW_RIGHT)
+        until(browser, "document.querySelector('h1').textContent.includes('25 months later')")
+        headline = headline.replace("24 months", "25 months")
+    browser.execute_script("document.dispatchEvent(new Event('visibilitychange'))")  # look now
+    until(browser, f"{SAID}.includes('Pricewake does not answer')", 30)
+    assert browser.execute_script("return document.querySelector('h1').textContent") == headline
+    with program(port):
+        until(browser, f"{SAID}.includes('started again; this page has been opened anew')", 60)
+        until(browser, SETTLED, 60)
+        assert browser.execute_script("return document.querySelector('h1').textContent") == headline
