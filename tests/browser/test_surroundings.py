@@ -14,7 +14,7 @@ WORDS = (
 )
 DONE = (
     "![...document.querySelectorAll('.work')].some(work => work.checkVisibility())"
-    " && !document.querySelector('main').innerText.includes('not searched')"
+    " && !/not searched|being worked out/.test(document.querySelector('main').innerText)"
 )
 # A drag across "Through time" as the chart library reports it: months as written, no time zone.
 DRAGGED = (
