@@ -111,7 +111,7 @@ def _search_lines(known: Evidence) -> list[tuple[str, str]]:
         lines.append(("shift set", f"none: {known.set_refusal}"))
     if known.found and known.shift_set is not None:
         kept = " ".join(str(int(s)) for s in known.shift_set.shifts)
-        lines.append((f"shift set {known.shift_set.level:.0%}", kept or "empty"))
+        lines.append((f"shift set {100 * known.shift_set.level:.0f} %", kept or "empty"))
     return lines
 
 

@@ -50,7 +50,7 @@ def shift_profile(chosen: ShiftSet, pair: Pair) -> go.Figure:
                 mode="markers",
                 marker={"size": 6, "color": colour("fit")},
                 hovertemplate="shift %{x:+d}: correlation %{y:+.2f}<br>%{text}<extra></extra>",
-                name=f"{chosen.level:.0%} shift set",
+                name=f"{100 * chosen.level:.0f} % shift set",
             ),
         ]
     )
@@ -75,8 +75,10 @@ def parameter_plane(
     plane, unit = inference.plane, escape(rate_unit(pair.response), False)
     figure = go.Figure(
         [
-            _outline(plane.robust, "fit", "solid", f"{plane.level:.0%} region, effective months"),
-            _outline(plane.naive, "mark", "dash", f"{plane.level:.0%} region, naive"),
+            _outline(
+                plane.robust, "fit", "solid", f"{100 * plane.level:.0f} % region, effective months"
+            ),
+            _outline(plane.naive, "mark", "dash", f"{100 * plane.level:.0f} % region, naive"),
             go.Scatter(
                 x=[inference.intercept],
                 y=[inference.slope],
@@ -279,7 +281,7 @@ def stability_courses(stable: Stability, pair: Pair, start: int) -> go.Figure:
                 opacity=0.2,
                 line={"width": 0},
                 hoverinfo="skip",
-                name=f"{stable.level:.0%} of samples if the relation were constant",
+                name=f"{100 * stable.level:.0f} % of samples if the relation were constant",
             ),
             go.Scatter(
                 x=days,

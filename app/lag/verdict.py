@@ -161,18 +161,19 @@ def _set_sentence(known: Evidence, pair: Pair, state: ViewState) -> str:
     if not chosen.identified:
         reach = f"{runs_words([int(s) for s in chosen.shifts])} {unit}s"
         return (
-            f"At window {state.window} the lag is not identified: the {chosen.level:.0%} shift set"
-            f" is {reach}, which reaches over more than half of the range."
+            f"At window {state.window} the lag is not identified: the"
+            f" {100 * chosen.level:.0f} % shift set is {reach}, which reaches over more"
+            " than half of the range."
         )
     if chosen.shifts.size == 1:
         return (
             f"At window {state.window} the data tell {shift_words(int(chosen.shifts[0]), unit)}"
-            f" apart from every other shift ({chosen.level:.0%} shift set)."
+            f" apart from every other shift ({100 * chosen.level:.0f} % shift set)."
         )
     return (
         f"At window {state.window} the data cannot tell shifts"
         f" {runs_words([int(s) for s in chosen.shifts])} {unit}s apart"
-        f" ({chosen.level:.0%} shift set)."
+        f" ({100 * chosen.level:.0f} % shift set)."
     )
 
 

@@ -105,8 +105,9 @@ def against_benchmarks(known: Outlook) -> list[str]:
     if missed:
         shown = found.ahead if found.ahead in missed else missed[-1]
         benchmark = best_benchmark(scores, shown)
+        beat = "clearly beat" if any(_nearer(scores, h) for h in missed) else "beat"
         said.append(
-            f"In past forecasts the relation did not beat its best benchmark at"
+            f"In past forecasts the relation did not {beat} its best benchmark at"
             f" {_listed(missed)} {found.noun}s ahead (at {shown}:"
             f" {BENCHMARK_WORDS[benchmark]}, {ratio_words(scores, benchmark, shown)})."
         )
@@ -125,6 +126,11 @@ def against_benchmarks(known: Outlook) -> list[str]:
     if not horizons:
         said.append("No past forecast has an outcome to be judged by yet.")
     return said
+
+
+def _nearer(scores: Scores, h: int) -> bool:
+    """Say whether its errors were smaller than the best benchmark's, surely or not."""
+    return bool(scores.ratio[scores.benchmarks.index(best_benchmark(scores, h)), h - 1] < 1)
 
 
 def _beaten_ones(scores: Scores, horizons: list[int]) -> str:

@@ -118,9 +118,9 @@ def profile_words(known: Evidence, pair: Pair, state: ViewState) -> list[Any]:
     return [
         html.P(
             f"Filled points: shifts that a simulated test at window {state.window} does not"
-            f" reject ({known.shift_set.level:.0%}, {known.shift_set.draws} simulated responses"
-            " a shift). Rings: the quick closed-form preview. The window is taken as chosen"
-            " beforehand; having looked at many is not paid for here."
+            f" reject ({100 * known.shift_set.level:.0f} %, {known.shift_set.draws} simulated"
+            " responses a shift). Rings: the quick closed-form preview. The window is taken as"
+            " chosen beforehand; having looked at many is not paid for here."
         )
     ]
 
@@ -131,7 +131,7 @@ def plane_words(known: Evidence, pair: Pair) -> list[Any]:
     low, high = inference.slope_interval
     return [
         html.P(
-            f"Slope {plain(inference.slope, 3)}, {inference.level:.0%} interval"
+            f"Slope {plain(inference.slope, 3)}, {100 * inference.level:.0f} % interval"
             f" {plain(low, 3)} to {plain(high, 3)}; correlation"
             f" {signed(inference.correlation)} ({signed(inference.correlation_interval.low)} to"
             f" {signed(inference.correlation_interval.high)}). "

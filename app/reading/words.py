@@ -127,7 +127,8 @@ def tail_words(tail: Tail, known: Reading, source: str) -> str:
     low, high = span_words(tail.return_low, known), span_words(tail.return_high, known)
     return (
         f"{source}: in {of_hundred(tail.probability)} of 100 {known.noun}s, once in"
-        f" {span_words(tail.return_period, known)} ({tail.level:.0%} interval {low} to {high})."
+        f" {span_words(tail.return_period, known)}"
+        f" ({100 * tail.level:.0f} % interval {low} to {high})."
     )
 
 
@@ -197,7 +198,7 @@ def fit_words(known: Reading) -> str:
             text += f" Taken as independent, the months would give p {where} (published table)."
     if goodness.ties > 0.05 and min(found) <= 0.05:
         text += (
-            f" {goodness.ties:.0%} of the readings occur more than once: rounding at the"
+            f" {100 * goodness.ties:.0f} % of the readings occur more than once: rounding at the"
             " source alone can make a fit fail."
         )
     return text

@@ -345,7 +345,7 @@ def test_the_header_names_what_the_search_was_and_gave(name):
     ):
         assert said in head["search"]
     assert head["null hypothesis"] == found.method.replace(",", ";")
-    assert head["shift set 95%"] == " ".join(str(s) for s in known.shift_set.shifts)
+    assert head["shift set 95 %"] == " ".join(str(s) for s in known.shift_set.shifts)
     for said in (
         f"effective months {known.inference.effective_months!r}",
         f"p {known.inference.p!r}",

@@ -77,7 +77,7 @@ def test_the_profile_marks_the_set_and_the_preview():
         np.testing.assert_array_equal(trace.y, [by_shift[s] for s in trace.x])
     p_of = dict(zip(chosen.candidates, chosen.p_by_shift, strict=True))
     assert list(kept.text) == [f"p as the true shift {p_of[s]:.3f}" for s in chosen.shifts]
-    assert kept.name == "95% shift set"
+    assert kept.name == "95 % shift set"
 
 
 def test_the_plane_draws_both_regions_and_no_slope():

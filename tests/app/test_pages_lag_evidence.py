@@ -258,7 +258,7 @@ def test_the_fold_of_the_plane_names_its_interval():
     judged = completed(SMALL, bridge).inference
     low, high = judged.slope_interval
     said = text(taken(SMALL, bridge)["plane"])
-    assert f"Slope {judged.slope:.3f}, 95% interval {low:.3f} to {high:.3f}" in said
+    assert f"Slope {judged.slope:.3f}, 95 % interval {low:.3f} to {high:.3f}" in said
     assert "Seasonal means are taken out first." in said
 
 

@@ -58,7 +58,7 @@ def numbers_of(known, pair, state):
         if found.p_with_level_shifts is not None:
             written.append(p_words(found.p_with_level_shifts))
     if chosen is not None:
-        written += [runs_words(chosen.shifts.tolist()), f"{chosen.level:.0%}"]
+        written += [runs_words(chosen.shifts.tolist()), f"{100 * chosen.level:.0f} %"]
     return [*written, known.refusal, known.set_refusal]
 
 
@@ -135,7 +135,7 @@ def test_the_shift_set_of_a_strong_lag_is_said_to_be_one_shift(lag, name):
     assert case(name)[2].shift_set.shifts.tolist() == [lag]
     assert (
         f"At window 3 the data tell {shift_words(lag, 'month')} apart from every other shift"
-        " (95% shift set)."
+        " (95 % shift set)."
     ) in said(name)
 
 
@@ -244,7 +244,7 @@ def test_a_set_over_more_than_half_of_the_range_is_not_identified():
     wide = replace(known.shift_set, shifts=np.array([-10, 5, 6, 20]), identified=False)
     text = " ".join(verdict(replace(known, shift_set=wide), bridge.pair(state), state))
     assert (
-        f"At window 3 the lag is not identified: the 95% shift set is {MINUS}10, +5 to +6, +20"
+        f"At window 3 the lag is not identified: the 95 % shift set is {MINUS}10, +5 to +6, +20"
         " months, which reaches over more than half of the range."
     ) in text
 
