@@ -46,6 +46,7 @@ def test_the_list_of_keys_and_the_notice_of_a_lost_program_break_no_rule(own, ad
     assert violations(own) == [], "notice, dark"
 
 
+@pytest.mark.long
 def test_all_tools_of_the_lag_page_at_work_break_no_rule(own, address):
     go(
         own,

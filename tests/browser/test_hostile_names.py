@@ -135,6 +135,7 @@ def test_a_brief_of_hostile_names_is_harmless_when_opened_from_its_file(browser,
         until(browser, f"document.documentElement.scrollWidth <= {width}", 15)
 
 
+@pytest.mark.long
 def test_hostile_words_of_a_statement_stay_words(browser, place):
     url, names = place
     query = ViewState(driver=names[0], response=names[1], shift=6).to_query()

@@ -61,7 +61,7 @@ LOST = (
     "said.textContent = 'Pricewake does not answer. What is on the page stays.'"
 )
 FEW = [
-    page if page.TITLE in ("Reading", "Brief") else pytest.param(page, marks=pytest.mark.long)
+    page if page.TITLE == "Reading" else pytest.param(page, marks=pytest.mark.long)
     for page in PAGES
 ]
 
