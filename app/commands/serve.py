@@ -18,9 +18,10 @@ if TYPE_CHECKING:
     from app.guard import Door
 
 DEFAULT_PORT = 8391
-COMPILE_AFTER = (
-    10.0  # seconds; by then the first page is shown, and nobody has asked for HAC errors
-)
+# Seconds. The browser has the empty page by then, and reads scripts until it asks for its content:
+FIRST_PAGE_AFTER = 0.3
+# The first page is shown by then, and nobody has asked for HAC errors:
+COMPILE_AFTER = 10.0
 
 
 @click.command()
@@ -66,10 +67,13 @@ def serve(
     click.echo(f"Pricewake is at {address}  (Ctrl-C ends it)")
     if not no_browser:
         threading.Thread(target=webbrowser.open, args=(address,), daemon=True).start()
-    threading.Thread(target=first_page_made, args=(app.server,), daemon=True).start()
-    later = threading.Timer(COMPILE_AFTER, import_module, ("analytics.hac_loop",))
-    later.daemon = True
-    later.start()
+    for seconds, act, given in (
+        (FIRST_PAGE_AFTER, first_page_made, app.server),
+        (COMPILE_AFTER, import_module, "analytics.hac_loop"),
+    ):
+        later = threading.Timer(seconds, act, (given,))
+        later.daemon = True
+        later.start()
     signal.signal(signal.SIGTERM, signal.default_int_handler)
     try:
         server.run()

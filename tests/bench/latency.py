@@ -21,6 +21,7 @@ import time
 import urllib.request
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
+from itertools import count
 
 import numpy as np
 import pandas as pd
@@ -32,6 +33,7 @@ from app.intake.reading import Release
 from app.workspace import Workspace
 from tests.browser.driving import READY, chromium, open_lag, served, until
 
+_SEEDS = count(2)  # a search of its own for each page, none of them remembered
 MONTHS_760 = "?first=1963-07"
 MOVES = 100
 CALM = (
@@ -134,7 +136,7 @@ def page(address: str, query: str, throttle: int, *flags: str) -> list[Row]:
         _throttle(driver, throttle)
         restyle = driver.execute_async_script(_RESTYLE, 40)
         _throttle(driver, 1)
-        open_lag(driver, address, f"{query}&surrogates=9999&seed={throttle + 10 * len(flags)}")
+        open_lag(driver, address, f"{query}&surrogates=9999&seed={next(_SEEDS)}")
         driver.execute_script("document.getElementById('tool-player').open = true")
         driver.execute_async_script("requestAnimationFrame(() => setTimeout(arguments[0], 100))")
         driver.execute_script(_SHIFTS)
