@@ -44,6 +44,8 @@ def sentence(asked: Question) -> str:
 def verdict(known: Scan) -> str:
     """Say how many pairs hold once all are paid for, and which."""
     asked, panel = known.question, known.panel
+    if panel is None and not asked.pairs:
+        return "No pair of a driver and a response is long enough to be searched."
     if panel is None:
         return (
             f"{counted(len(asked.pairs), 'pair')} to be searched, each over its whole map against"
@@ -244,6 +246,8 @@ def shift_words_of(known: Scan) -> str:
 def map_words(known: Scan, drawn: int) -> str:
     """Say what the small maps show."""
     unit, total = known.question.noun, len(known.question.pairs)
+    if not drawn and known.question.opened is None:
+        return "No map here: no pair is long enough to be searched."
     if not drawn:
         return "No map here: the series behind the result are not loaded."
     which = "" if drawn == total else f" The first {drawn} of {total} in the order of the table."

@@ -5,12 +5,14 @@ import socket
 import threading
 from collections.abc import Iterator
 from contextlib import contextmanager
+from typing import Any
 
 from selenium import webdriver
 from selenium.webdriver.chrome.options import Options
 from selenium.webdriver.chrome.service import Service
 from selenium.webdriver.support.ui import WebDriverWait
 from waitress.server import create_server
+from waitress.wasyncore import close_all
 
 from app.server import build_app
 from app.workspace import Workspace
@@ -50,25 +52,23 @@ def served(workspace: Workspace) -> Iterator[str]:
     with socket.socket() as probe:
         probe.bind(("127.0.0.1", 0))
         port = probe.getsockname()[1]
+    sockets: dict[int, Any] = {}
     server = create_server(
-        build_app(workspace).server, host="127.0.0.1", port=port, threads=8, ident=None
+        build_app(workspace).server,
+        host="127.0.0.1",
+        port=port,
+        threads=8,
+        ident=None,
+        map=sockets,
     )
-    closing = threading.Event()
-
-    def run() -> None:
-        try:
-            server.run()
-        except OSError:  # its sockets were closed while it waited for them
-            if not closing.is_set():
-                raise
-
-    thread = threading.Thread(target=run, daemon=True)
+    thread = threading.Thread(target=server.run, daemon=True)
     thread.start()
     try:
         yield f"http://127.0.0.1:{port}"
-    finally:
-        closing.set()
-        server.close()
+    finally:  # in this order: a thread left over would write to what others have opened since
+        server.task_dispatcher.shutdown()
+        server.trigger.pull_trigger(lambda: close_all(sockets))  # by the thread that reads them
+        thread.join(10)
 
 
 @contextmanager
