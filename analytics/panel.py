@@ -171,7 +171,7 @@ def unrelated_pairs(p: ArrayLike, *, above: float = 0.5) -> float:
         raise ValueError(f"above must lie within 0 and 1, but got {above}")
     given = np.asarray(p, dtype=np.float64)
     given = given[~np.isnan(given)]
-    return min(float(given.size), (1.0 + np.count_nonzero(given > above)) / (1.0 - above))
+    return float(min(given.size, (1.0 + np.count_nonzero(given > above)) / (1.0 - above)))
 
 
 def adjusted_p(p: ArrayLike, method: str) -> FloatArray:

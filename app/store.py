@@ -10,6 +10,7 @@ import sqlite3
 import sys
 import threading
 import time
+from collections import Counter
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager, suppress
 from pathlib import Path
@@ -21,6 +22,9 @@ T = TypeVar("T")
 MEMORY = ":memory:"
 PATIENCE = 30.0  # seconds that a change waits for other programs
 _BUSY = {sqlite3.SQLITE_BUSY, sqlite3.SQLITE_LOCKED}
+# Files that this process holds open. Opening and closing one by other means gives up the locks of
+# its connections (POSIX), and the next program to close it takes away a log still in use.
+_HELD: Counter[tuple[int, int]] = Counter()
 _DAMAGED = {sqlite3.SQLITE_CORRUPT, sqlite3.SQLITE_NOTADB, sqlite3.SQLITE_FORMAT}
 _UNWRITABLE = {
     sqlite3.SQLITE_READONLY,
@@ -77,6 +81,7 @@ class Store:
         self.path = None if str(path) == MEMORY else Path(path)
         self._lock = threading.RLock()
         self._changes = 0
+        self._held: tuple[int, int] | None = None
         if self.path is not None:
             _make_private(self.path)
         with self._told():
@@ -86,10 +91,13 @@ class Store:
                 isolation_level=None,
                 check_same_thread=False,
             )
+            if self.path is not None:
+                self._held = _identity(self.path)
+                _HELD[self._held] += 1
             try:
                 self._set_up()
             except BaseException:
-                self._connection.close()
+                self.close()
                 raise
 
     def _set_up(self) -> None:
@@ -171,6 +179,9 @@ class Store:
         """Close the file; the last program to do so folds the log into it."""
         with self._lock, suppress(sqlite3.Error):
             self._connection.close()
+        if self._held is not None:
+            _HELD[self._held] -= 1
+            self._held = None
 
     @contextmanager
     def _told(self) -> Iterator[None]:
@@ -237,9 +248,16 @@ def _make_private(path: Path) -> None:
         ) from None
 
 
+def _identity(path: Path) -> tuple[int, int]:
+    found = path.stat()
+    return found.st_dev, found.st_ino
+
+
 def _refuse_other_content(path: Path) -> None:
     if not path.is_file():
         raise WorkspaceError(f"a workspace must be a file, but {str(path)!r} is a folder or device")
+    if _HELD[_identity(path)]:  # it is a workspace, and must not be read here but by SQLite
+        return
     with path.open("rb") as stream:
         start = stream.read(16)
     if start and start != b"SQLite format 3\x00":

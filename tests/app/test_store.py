@@ -311,6 +311,22 @@ def test_threads_and_other_programs_write_at_once_without_loss_or_lock(tmp_path)
     two.close()
 
 
+def test_a_second_look_at_the_file_in_one_program_loses_no_change_of_the_first(tmp_path):
+    path = tmp_path / "desk.sqlite"
+    one = Store(path)
+    with one.change() as db:
+        db.execute("INSERT INTO marks (series, period, treatment, at) VALUES ('count','','0','')")
+    two = Store(path)
+    subprocess.run([sys.executable, "-c", WRITER, str(path), "process", "3"], cwd=ROOT, check=True)
+    with one.change() as db:  # the other program has closed the file; its log must still be there
+        db.execute(MARK, ("thread", "0", "", ""))
+    assert path.with_name("desk.sqlite-wal").exists()
+    subprocess.run([sys.executable, "-c", WRITER, str(path), "another", "2"], cwd=ROOT, check=True)
+    assert len(marks(one)) == len(marks(two)) == 1 + 3 + 1 + 2
+    one.close()
+    two.close()
+
+
 def test_many_programs_may_make_the_same_file_at_once(tmp_path):
     path = tmp_path / "new" / "desk.sqlite"
     program = "import sys; from app.store import Store; Store(sys.argv[1]).close()"

@@ -11,8 +11,8 @@ from selenium import webdriver
 from selenium.webdriver.chrome.options import Options
 from selenium.webdriver.chrome.service import Service
 from selenium.webdriver.support.ui import WebDriverWait
+from waitress.channel import HTTPChannel
 from waitress.server import create_server
-from waitress.wasyncore import close_all
 
 from app.server import build_app
 from app.workspace import Workspace
@@ -67,8 +67,17 @@ def served(workspace: Workspace) -> Iterator[str]:
         yield f"http://127.0.0.1:{port}"
     finally:  # in this order: a thread left over would write to what others have opened since
         server.task_dispatcher.shutdown()
-        server.trigger.pull_trigger(lambda: close_all(sockets))  # by the thread that reads them
+        server.trigger.pull_trigger(lambda: _closed(sockets))  # by the thread that reads them
         thread.join(10)
+
+
+def _closed(sockets: dict[int, Any]) -> None:
+    for each in list(sockets.values()):
+        if isinstance(each, HTTPChannel):
+            each.handle_close()  # with what it has not sent yet
+        else:
+            each.close()
+    sockets.clear()
 
 
 @contextmanager
