@@ -40,10 +40,9 @@ FEW_CELLS = (
 )
 
 
-# Every run takes these two; the rest come with `pytest -m long`, as axe takes half a minute a page.
+# Every run takes this one; the rest come with `pytest -m long`, as axe takes half a minute a page.
 FEW = [
-    page if page.TITLE in ("Lag", "Brief") else pytest.param(page, marks=pytest.mark.long)
-    for page in PAGES
+    page if page.TITLE == "Lag" else pytest.param(page, marks=pytest.mark.long) for page in PAGES
 ]
 QUICK = "?surrogates=99&draws=99"  # long work is not what is looked at here
 
@@ -202,6 +201,7 @@ def test_the_focus_is_seen_and_no_motion_is_forced(own, address):
     assert moving == 0
 
 
+@pytest.mark.long
 def test_a_dark_page_prints_light_and_is_dark_again(own, address):
     size(own, 1280, 800)
     go(own, address, "/reading" + QUICK)

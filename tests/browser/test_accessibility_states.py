@@ -59,6 +59,7 @@ def test_all_tools_of_the_lag_page_at_work_break_no_rule(own, address):
     assert violations(own) == []
 
 
+@pytest.mark.long
 def test_files_read_refused_and_not_kept_yet_break_no_rule(own, tmp_path):
     good, faulty, refused = (tmp_path / name for name in ("good.csv", "faulty.csv", "refused.csv"))
     good.write_text("period,Prices\n2024-01,100\n2024-02,101\n2024-03,102\n")

@@ -150,7 +150,7 @@ def test_browser_address_equals_pythons(lag, address):
     assert state(lag)["first"] == "1970-01"
 
 
-@pytest.mark.parametrize("months", ["own", "same"])
+@pytest.mark.parametrize("months", ["own", pytest.param("same", marks=pytest.mark.long)])
 def test_numbers_of_the_browser_equal_pythons_over_random_cells(lag, address, bridge, months):
     """One truth: assets/numbers.js and analytics agree to 1e-9."""
     open_lag(lag, address, "" if months == "own" else "?months=same")
