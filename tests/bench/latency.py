@@ -236,10 +236,10 @@ def _drag(driver: webdriver.Chrome) -> list[Row]:
         "return {moves: pricewake.lag.moves - seen.moves, gap: Math.max(...seen.gaps)}"
     )
     requests = [
-        sent["request"]["url"].split("?")[0].split("/", 3)[-1]
+        told["request"]["url"].split("?")[0].split("/", 3)[-1]
         for entry in driver.get_log("performance")
-        if (sent := json.loads(entry["message"])["message"]["params"]).get("request")
-        and "/alive" not in sent["request"]["url"]
+        if (told := json.loads(entry["message"])["message"]["params"]).get("request")
+        and "/alive" not in told["request"]["url"]
     ]
     mouse("mouseReleased", at)
     released = time.perf_counter()
