@@ -35,6 +35,11 @@ def browser(_chromium_there, downloads):
         yield driver
 
 
+@pytest.fixture(scope="module", autouse=True)
+def _blank_page(browser):
+    driving.blank(browser)
+
+
 @pytest.fixture(scope="session")
 def address():
     """Give the address of a dashboard that shows the invented economy."""

@@ -105,6 +105,8 @@ def chromium(
     driver = _Chrome(options=options, service=Service(shutil.which("chromedriver")))
     try:
         size(driver, width, height)
+        # A page has the focus however many other windows the machine shows.
+        driver.execute_cdp_cmd("Emulation.setFocusEmulationEnabled", {"enabled": True})
         if downloads:
             driver.execute_cdp_cmd(
                 "Browser.setDownloadBehavior", {"behavior": "allow", "downloadPath": downloads}
@@ -120,6 +122,16 @@ def size(driver: webdriver.Chrome, width: int, height: int) -> None:
         "Emulation.setDeviceMetricsOverride",
         {"width": width, "height": height, "deviceScaleFactor": 1, "mobile": False},
     )
+
+
+def blank(driver: webdriver.Chrome) -> None:
+    """Leave the page that is open, its size, its theme and its logs behind."""
+    driver.execute_script("try { localStorage.clear(); sessionStorage.clear() } catch {}")
+    driver.get("about:blank")
+    size(driver, 1280, 800)
+    driver.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": "", "features": []})
+    driver.get_log("browser")
+    driver.get_log("performance")
 
 
 def until(driver: webdriver.Chrome, script: str, seconds: float = 15) -> object:

@@ -1,6 +1,6 @@
 """Every page, in every state, by axe-core (tests/browser/axe.min.js, MPL 2.0, text beside it).
 
-The rules are those of WCAG 2.2, levels A and AA, and the program's own good practice.
+The rules are those of WCAG 2.2, levels A and AA, and the program's browser good practice.
 """
 
 import time
@@ -67,25 +67,18 @@ def go(driver, address, path, theme="light"):
     until(driver, SETTLED, 40)
 
 
-@pytest.fixture(scope="module")
-def own(browser, address):
-    yield browser
-    browser.execute_script("localStorage.setItem('pricewake-theme', 'light')")
-    size(browser, 1280, 800)
-
-
 @pytest.mark.parametrize("page", FEW, ids=lambda page: page.TITLE)
-def test_no_rule_is_broken_with_everything_open_light_dark_and_narrow(own, address, page):
-    size(own, 1280, 800)
-    go(own, address, page.PATH + QUICK)
-    own.execute_script(OPEN_ALL)
-    until(own, SETTLED, 40)
-    assert violations(own) == [], "light"
-    own.execute_script("document.getElementById('theme').click()")
-    size(own, 400, 800)
-    until(own, SETTLED, 40)
-    assert own.execute_script("return document.documentElement.dataset.theme") == "dark"
-    assert violations(own) == [], "narrow and dark"
+def test_no_rule_is_broken_with_everything_open_light_dark_and_narrow(browser, address, page):
+    size(browser, 1280, 800)
+    go(browser, address, page.PATH + QUICK)
+    browser.execute_script(OPEN_ALL)
+    until(browser, SETTLED, 40)
+    assert violations(browser) == [], "light"
+    browser.execute_script("document.getElementById('theme').click()")
+    size(browser, 400, 800)
+    until(browser, SETTLED, 40)
+    assert browser.execute_script("return document.documentElement.dataset.theme") == "dark"
+    assert violations(browser) == [], "narrow and dark"
 
 
 @pytest.mark.parametrize(
@@ -98,25 +91,27 @@ def test_no_rule_is_broken_with_everything_open_light_dark_and_narrow(own, addre
         "/breadth?aggregate=Nothing+of+the+kind",
     ],
 )
-def test_pages_that_show_nothing_say_so_and_break_no_rule(own, address, path):
-    size(own, 1280, 800)
-    own.get(f"{address}{path}")
-    until(own, "document.querySelector('h1') && document.querySelector('h1').textContent", 40)
+def test_pages_that_show_nothing_say_so_and_break_no_rule(browser, address, path):
+    size(browser, 1280, 800)
+    browser.get(f"{address}{path}")
+    until(browser, "document.querySelector('h1') && document.querySelector('h1').textContent", 40)
     time.sleep(1)
-    assert violations(own) == []
-    said = own.execute_script("return document.querySelector('main').innerText")
+    assert violations(browser) == []
+    said = browser.execute_script("return document.querySelector('main').innerText")
     assert len(said) > 40
     assert "undefined" not in said
     assert "NaN" not in said
 
 
 @pytest.mark.parametrize("page", FEW, ids=lambda page: page.TITLE)
-def test_at_twice_the_zoom_nothing_scrolls_sideways_and_every_chart_has_words(own, address, page):
+def test_at_twice_the_zoom_nothing_scrolls_sideways_and_every_chart_has_words(
+    browser, address, page
+):
     # 200 % on a window 1280 wide leaves 640 (WCAG 2.2, 1.4.4 and 1.4.10).
-    size(own, 640, 400)
-    go(own, address, page.PATH + QUICK)
-    assert own.execute_script("return document.documentElement.scrollWidth") <= 640
-    labels = own.execute_script(
+    size(browser, 640, 400)
+    go(browser, address, page.PATH + QUICK)
+    assert browser.execute_script("return document.documentElement.scrollWidth") <= 640
+    labels = browser.execute_script(
         "return [...document.querySelectorAll('.js-plotly-plot')]"
         ".filter(c => c.checkVisibility()).map(c => [c.getAttribute('role'),"
         " c.getAttribute('aria-label')])"
@@ -128,19 +123,19 @@ def test_at_twice_the_zoom_nothing_scrolls_sideways_and_every_chart_has_words(ow
         assert "Click to enter" not in label
 
 
-def test_a_table_holds_the_numbers_that_are_drawn(own, address):
-    size(own, 1280, 800)
-    go(own, address, "/reading" + QUICK)
-    button = own.find_element(By.CSS_SELECTOR, "[data-table='rates']")
+def test_a_table_holds_the_numbers_that_are_drawn(browser, address):
+    size(browser, 1280, 800)
+    go(browser, address, "/reading" + QUICK)
+    button = browser.find_element(By.CSS_SELECTOR, "[data-table='rates']")
     button.send_keys(Keys.ENTER)
     assert button.get_attribute("aria-expanded") == "true"
-    place = own.find_element(By.CSS_SELECTOR, ".chart-numbers")
+    place = browser.find_element(By.CSS_SELECTOR, ".chart-numbers")
     assert place.get_attribute("role") == "region"
     rows = [
         [cell.get_property("textContent") for cell in row.find_elements(By.XPATH, "./*")]
         for row in place.find_elements(By.CSS_SELECTOR, "table:nth-of-type(1) tbody tr:last-child")
     ]
-    drawn = own.execute_script(
+    drawn = browser.execute_script(
         "return pricewake.ghost.chartOf('reading-rates')._fullData.slice(0, 2)"
         ".map(t => [...t.y].at(-1))"
     )
@@ -151,33 +146,33 @@ def test_a_table_holds_the_numbers_that_are_drawn(own, address):
     assert not place.is_displayed()
 
 
-def test_help_comes_with_the_keyboard_and_goes_with_escape(own, address):
-    size(own, 1280, 800)
-    go(own, address, "/reading" + QUICK)
-    fields = own.execute_script(
+def test_help_comes_with_the_keyboard_and_goes_with_escape(browser, address):
+    size(browser, 1280, 800)
+    go(browser, address, "/reading" + QUICK)
+    fields = browser.execute_script(
         "return [...document.querySelectorAll('[data-field]')].map(f => [f.id,"
         " f.getAttribute('aria-describedby')])"
     )
     assert len(fields) >= 10
     for name, described in fields:
-        sentence = own.execute_script(
+        sentence = browser.execute_script(
             "return document.getElementById(arguments[0]).textContent", described
         )
         assert sentence.endswith("."), name
         helped = f"[data-help='{described}']"
-        assert own.find_elements(By.CSS_SELECTOR, helped), f"{name} has no visible help"
-    own.execute_script("document.querySelector('[data-help=help-measure]').focus()")
-    hint = own.find_element(By.CSS_SELECTOR, ".hint")
+        assert browser.find_elements(By.CSS_SELECTOR, helped), f"{name} has no visible help"
+    browser.execute_script("document.querySelector('[data-help=help-measure]').focus()")
+    hint = browser.find_element(By.CSS_SELECTOR, ".hint")
     assert hint.is_displayed()
     assert hint.text == field_kind("measure").help
-    own.switch_to.active_element.send_keys(Keys.ESCAPE)
+    browser.switch_to.active_element.send_keys(Keys.ESCAPE)
     assert not hint.is_displayed()
 
 
-def test_the_focus_is_seen_and_no_motion_is_forced(own, address):
-    size(own, 1280, 800)
-    go(own, address, "/lag")
-    seen = own.execute_script(
+def test_the_focus_is_seen_and_no_motion_is_forced(browser, address):
+    size(browser, 1280, 800)
+    go(browser, address, "/lag")
+    seen = browser.execute_script(
         "const found = [];"
         "for (const e of document.querySelectorAll('main button, main select, main input, main a'))"
         "{ if (!e.checkVisibility()) continue; e.focus({focusVisible: true});"
@@ -188,30 +183,32 @@ def test_the_focus_is_seen_and_no_motion_is_forced(own, address):
     )
     assert len(seen) > 15
     assert [each for each in seen if each[1] == "none" or each[2] < 2] == []
-    own.execute_cdp_cmd(
+    browser.execute_cdp_cmd(
         "Emulation.setEmulatedMedia",
         {"features": [{"name": "prefers-reduced-motion", "value": "reduce"}]},
     )
-    moving = own.execute_script(
+    moving = browser.execute_script(
         "return [...document.querySelectorAll('*')].filter(e =>"
         " getComputedStyle(e).animationName !== 'none'"
         " || parseFloat(getComputedStyle(e).transitionDuration) > 0).length"
     )
-    own.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": []})
+    browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": []})
     assert moving == 0
 
 
 @pytest.mark.long
-def test_a_dark_page_prints_light_and_is_dark_again(own, address):
-    size(own, 1280, 800)
-    go(own, address, "/reading" + QUICK)
-    own.execute_script("document.getElementById('theme').click()")
+def test_a_dark_page_prints_light_and_is_dark_again(browser, address):
+    size(browser, 1280, 800)
+    go(browser, address, "/reading" + QUICK)
+    browser.execute_script("document.getElementById('theme').click()")
     drawn = "pricewake.ghost.chartOf('reading-rates')"
-    own.execute_script("window.dispatchEvent(new Event('beforeprint'))")
+    browser.execute_script("window.dispatchEvent(new Event('beforeprint'))")
     theme = "return document.documentElement.dataset.theme"
-    assert own.execute_script(theme) == "light"
-    assert own.execute_script(f"return {drawn}._fullLayout.paper_bgcolor").upper() == "#FBFAF6"
-    assert own.execute_script(f"return {drawn}.querySelector('.main-svg').getAttribute('viewBox')")
-    own.execute_script("window.dispatchEvent(new Event('afterprint'))")
-    assert own.execute_script(theme) == "dark"
-    until(own, f"{drawn}._fullLayout.paper_bgcolor.toUpperCase() === '#171A20'")
+    assert browser.execute_script(theme) == "light"
+    assert browser.execute_script(f"return {drawn}._fullLayout.paper_bgcolor").upper() == "#FBFAF6"
+    assert browser.execute_script(
+        f"return {drawn}.querySelector('.main-svg').getAttribute('viewBox')"
+    )
+    browser.execute_script("window.dispatchEvent(new Event('afterprint'))")
+    assert browser.execute_script(theme) == "dark"
+    until(browser, f"{drawn}._fullLayout.paper_bgcolor.toUpperCase() === '#171A20'")

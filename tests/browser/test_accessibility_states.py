@@ -25,92 +25,84 @@ CHOOSE = (
 )
 
 
-@pytest.fixture(scope="module")
-def own(browser):
-    size(browser, 1280, 800)
-    yield browser
-    browser.execute_script("localStorage.setItem('pricewake-theme', 'light')")
-    size(browser, 1280, 800)
-
-
-def test_the_list_of_keys_and_the_notice_of_a_lost_program_break_no_rule(own, address):
-    go(own, address, "/lag" + QUICK)
-    own.find_element(By.TAG_NAME, "body").send_keys("?")
-    until(own, "document.getElementById('keys').open")
-    assert violations(own) == [], "keys"
-    own.switch_to.active_element.send_keys(Keys.ESCAPE)
-    until(own, "!document.getElementById('keys').open")
-    own.execute_script(LOST)
-    own.execute_script("document.getElementById('theme').click()")
-    until(own, SETTLED)
-    assert violations(own) == [], "notice, dark"
+def test_the_list_of_keys_and_the_notice_of_a_lost_program_break_no_rule(browser, address):
+    go(browser, address, "/lag" + QUICK)
+    browser.find_element(By.TAG_NAME, "body").send_keys("?")
+    until(browser, "document.getElementById('keys').open")
+    assert violations(browser) == [], "keys"
+    browser.switch_to.active_element.send_keys(Keys.ESCAPE)
+    until(browser, "!document.getElementById('keys').open")
+    browser.execute_script(LOST)
+    browser.execute_script("document.getElementById('theme').click()")
+    until(browser, SETTLED)
+    assert violations(browser) == [], "notice, dark"
 
 
 @pytest.mark.long
-def test_all_tools_of_the_lag_page_at_work_break_no_rule(own, address):
+def test_all_tools_of_the_lag_page_at_work_break_no_rule(browser, address):
     go(
-        own,
+        browser,
         address,
         "/lag" + QUICK + "&pinned=24:12&band=driver&peaks=sd2&other_responses=Real+output",
     )
-    own.execute_script("document.querySelectorAll('details').forEach(d => { d.open = true; })")
-    until(own, "!document.getElementById('lag-band').hidden")
-    until(own, SETTLED, 60)
-    assert violations(own) == []
+    browser.execute_script(OPEN_ALL)
+    until(browser, "!document.getElementById('lag-band').hidden")
+    until(browser, SETTLED, 60)
+    assert violations(browser) == []
 
 
 @pytest.mark.long
-def test_files_read_refused_and_not_kept_yet_break_no_rule(own, tmp_path):
+def test_files_read_refused_and_not_kept_yet_break_no_rule(browser, tmp_path):
     good, faulty, refused = (tmp_path / name for name in ("good.csv", "faulty.csv", "refused.csv"))
     good.write_text("period,Prices\n2024-01,100\n2024-02,101\n2024-03,102\n")
     faulty.write_text("period,Prices\n2024-01,100\n2024-02,n.a. 1\n2024-04,102\n2024-04,103\n")
     refused.write_text('period,"Prices\n2024-01,100\n')
     with served(Workspace(())) as url:
-        go(own, url, "/data")
-        choose(own, good, faulty, refused)
-        until(own, "document.getElementById('data-preview-head')")
-        own.execute_script("document.querySelectorAll('details').forEach(d => { d.open = true; })")
-        assert violations(own) == []
-        size(own, 400, 800)
-        assert own.execute_script("return document.documentElement.scrollWidth") <= 400
-        assert violations(own) == [], "narrow"
-        size(own, 1280, 800)
+        go(browser, url, "/data")
+        choose(browser, good, faulty, refused)
+        until(browser, "document.getElementById('data-preview-head')")
+        browser.execute_script(OPEN_ALL)
+        assert violations(browser) == []
+        size(browser, 400, 800)
+        assert browser.execute_script("return document.documentElement.scrollWidth") <= 400
+        assert violations(browser) == [], "narrow"
+        size(browser, 1280, 800)
 
 
 @pytest.mark.long
 @pytest.mark.parametrize("path", LONG_WORK)
-def test_work_that_runs_breaks_no_rule(own, address, path):
-    own.get(address + path + LONG_WORK[path])
-    until(own, RUNNING, 30)
-    assert violations(own) == []
+def test_work_that_runs_breaks_no_rule(browser, address, path):
+    browser.get(address + path + LONG_WORK[path])
+    until(browser, RUNNING, 30)
+    assert violations(browser) == []
     far = "[...document.querySelectorAll('.work progress')].some(bar => bar.checkVisibility())"
-    assert own.execute_script(f"return {far}")
+    assert browser.execute_script(f"return {far}")
 
 
 @pytest.mark.long
 @pytest.mark.parametrize("page", PAGES, ids=lambda page: page.TITLE)
-def test_on_paper_no_rule_is_broken(own, address, page):
-    go(own, address, page.PATH + QUICK)
-    own.execute_script(OPEN_ALL)
-    until(own, SETTLED, 40)
-    own.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": "print"})
+def test_on_paper_no_rule_is_broken(browser, address, page):
+    go(browser, address, page.PATH + QUICK)
+    browser.execute_script(OPEN_ALL)
+    until(browser, SETTLED, 40)
+    browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": "print"})
     try:
-        assert violations(own) == []
-        shown = own.execute_script(
+        assert violations(browser) == []
+        shown = browser.execute_script(
             "return [...document.querySelectorAll('main button, main select, .help')]"
             ".filter(e => e.checkVisibility() && e.closest('.controls, .save, .acts')).length"
         )
         assert shown == 0
     finally:
-        own.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": ""})
+        browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"media": ""})
 
 
 @pytest.mark.long
 @pytest.mark.parametrize("page", PAGES, ids=lambda page: page.TITLE)
-def test_an_empty_workspace_breaks_no_rule_and_says_what_to_do(own, page):
+def test_an_empty_workspace_breaks_no_rule_and_says_what_to_do(browser, page):
     with served(Workspace(())) as url:
-        own.get(url + page.PATH)
-        until(own, SETTLED, 40)
-        assert violations(own) == []
-        said = own.execute_script("return document.querySelector('main').innerText")
+        browser.get(url + page.PATH)
+        until(browser, SETTLED, 40)
+        assert violations(browser) == []
+        said = browser.execute_script("return document.querySelector('main').innerText")
         assert any(word in said for word in ("open", "Open", "Choose"))

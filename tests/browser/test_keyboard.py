@@ -11,7 +11,7 @@ from selenium.webdriver.common.action_chains import ActionChains
 from selenium.webdriver.common.keys import Keys
 
 from app.page_table import PAGES
-from tests.browser.driving import size, until
+from tests.browser.driving import until
 from tests.browser.test_accessibility import QUICK, SETTLED
 
 MOST_STOPS = 600
@@ -74,29 +74,22 @@ def press_back(browser):
     ActionChains(browser).key_down(Keys.SHIFT).send_keys(Keys.TAB).key_up(Keys.SHIFT).perform()
 
 
-@pytest.fixture(scope="module")
-def own(browser, address):
-    size(browser, 1280, 800)
-    yield browser
-    size(browser, 1280, 800)
-
-
 @pytest.mark.parametrize("page", FEW, ids=lambda page: page.TITLE)
-def test_the_tab_key_reaches_everything_in_order_and_is_always_seen(own, address, page):
-    own.get(address + page.PATH + QUICK)
-    until(own, SETTLED + " && !(pricewake.brief && pricewake.brief.busy())", 90)
-    own.execute_script(OPEN)
+def test_the_tab_key_reaches_everything_in_order_and_is_always_seen(browser, address, page):
+    browser.get(address + page.PATH + QUICK)
+    until(browser, SETTLED + " && !(pricewake.brief && pricewake.brief.busy())", 90)
+    browser.execute_script(OPEN)
     time.sleep(1)  # what has been opened asks for its numbers
-    until(own, SETTLED, 60)
-    press(own, Keys.TAB)
-    first = own.execute_script(STOP)
+    until(browser, SETTLED, 60)
+    press(browser, Keys.TAB)
+    first = browser.execute_script(STOP)
     assert first["name"] == "Skip to the page"
     assert first["inside"], "2.4.1: the way past the navigation is seen when it is reached"
     assert not first["small"]
     wrong, stops = [], 1
     while stops < MOST_STOPS:
-        press(own, Keys.TAB)
-        stop = own.execute_script(STOP)
+        press(browser, Keys.TAB)
+        stop = browser.execute_script(STOP)
         if stop is None:
             break
         stops += 1
@@ -113,35 +106,35 @@ def test_the_tab_key_reaches_everything_in_order_and_is_always_seen(own, address
     assert wrong == [], str(wrong)
     assert stop is None, f"2.1.2: {stops} stops and no end"
     assert stops > 20
-    left_out = own.execute_script(LEFT_OUT)
+    left_out = browser.execute_script(LEFT_OUT)
     assert left_out == [], str(left_out)
-    assert own.execute_script(UNHELPED) == []
+    assert browser.execute_script(UNHELPED) == []
 
 
-def test_the_skip_link_leads_past_the_navigation(own, address):
-    own.get(address + "/reading" + QUICK)
-    until(own, SETTLED, 60)
-    press(own, Keys.TAB)
-    press(own, Keys.ENTER)
-    assert own.execute_script("return document.activeElement.id") == "page"
-    press(own, Keys.TAB)
-    assert own.execute_script("return Boolean(document.activeElement.closest('main'))")
+def test_the_skip_link_leads_past_the_navigation(browser, address):
+    browser.get(address + "/reading" + QUICK)
+    until(browser, SETTLED, 60)
+    press(browser, Keys.TAB)
+    press(browser, Keys.ENTER)
+    assert browser.execute_script("return document.activeElement.id") == "page"
+    press(browser, Keys.TAB)
+    assert browser.execute_script("return Boolean(document.activeElement.closest('main'))")
 
 
-def test_the_notice_of_a_lost_program_covers_nothing_that_has_the_focus(own, address):
-    own.get(address + "/reading" + QUICK)
-    until(own, SETTLED, 60)
-    own.execute_script(LOST)
+def test_the_notice_of_a_lost_program_covers_nothing_that_has_the_focus(browser, address):
+    browser.get(address + "/reading" + QUICK)
+    until(browser, SETTLED, 60)
+    browser.execute_script(LOST)
     last = "[...document.querySelectorAll('main [data-brief]')].at(-1)"
-    own.execute_script(f"{last}.focus()")
+    browser.execute_script(f"{last}.focus()")
     covered = []
     for _ in range(40):  # upwards, so that each is scrolled to the upper edge
-        press_back(own)
-        stop = own.execute_script(STOP)
-        bottom, top = own.execute_script(
+        press_back(browser)
+        stop = browser.execute_script(STOP)
+        bottom, top = browser.execute_script(
             "return [document.getElementById('connection').getBoundingClientRect().bottom,"
             " document.activeElement.getBoundingClientRect().top]"
         )
-        if top < bottom and stop["inside"] and own.execute_script("return scrollY") > 60:
+        if top < bottom and stop["inside"] and browser.execute_script("return scrollY") > 60:
             covered.append(stop["name"])
     assert covered == []

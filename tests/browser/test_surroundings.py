@@ -3,7 +3,7 @@
 import pytest
 
 from app.page_table import PAGES
-from tests.browser.driving import open_lag, size, until
+from tests.browser.driving import open_lag, until
 from tests.browser.test_accessibility import QUICK, SETTLED
 
 AT_HOME = ("UTC", "en-GB")
@@ -30,7 +30,6 @@ def move(browser, zone, language):
 
 @pytest.fixture(scope="module")
 def own(browser):
-    size(browser, 1280, 800)
     yield browser
     move(browser, "", "")
 
