@@ -4,6 +4,7 @@ import csv
 import io
 import json
 from dataclasses import replace
+from functools import partial
 
 import numpy as np
 import pytest
@@ -13,7 +14,6 @@ from app.breadth.exports import VIEWS, csv_export, view_text
 from app.breadth.fields import BREADTH_VIEWS, SORTED_BY
 from app.breadth.table import TOP_BARS, TOP_PARTS, TOP_ROWS, bars, parts, rows
 from app.breadth.words import adding_up, sentence, verdict
-from app.cli import main
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.figures import breadth as figures
@@ -298,16 +298,8 @@ def test_the_server_sends_the_files():
 
 
 @pytest.fixture
-def run(capsys, tmp_path, monkeypatch):
-    monkeypatch.chdir(tmp_path)
-
-    def call(*words):
-        with pytest.raises(SystemExit) as ended:
-            main(["breadth", *map(str, words)])
-        out, err = capsys.readouterr()
-        return ended.value.code, out, err
-
-    return call
+def run(run):
+    return partial(run, "breadth")
 
 
 def test_the_command_answers_for_files_and_weights(run, shown):

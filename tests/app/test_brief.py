@@ -14,7 +14,7 @@ import pytest
 from app.brief import sources as sources_module
 from app.brief.assembled import CAUTION, OF_THE_JOB, opening, prefilled
 from app.brief.document import document, policy
-from app.brief.markup import markdown, shown, still
+from app.brief.markup import shown, still
 from app.brief.parts import MOST_LETTERS, MOST_PARTS, Draft, Part, read_draft, sent_draft
 from app.brief.sources import settle, source, sources
 from app.state import StateError, ViewState
@@ -353,40 +353,6 @@ def test_ten_thousand_letters_are_kept_and_do_not_spread(bridge):
     long = built(Draft(parts=(Part(kind="words", words="x" * 10_000),)), bridge)
     assert "x" * 10_000 in long.files["brief.html"].decode()
     assert "overflow-wrap: anywhere" in long.files["brief.html"].decode()
-
-
-@pytest.mark.parametrize(
-    ("words", "made"),
-    [
-        ("# A\n\nB **c**", "<h3>A</h3>\n<p>B <strong>c</strong></p>"),
-        ("<b>x</b>", "<p>&lt;b&gt;x&lt;/b&gt;</p>"),
-        ("[x](javascript:alert(1))", "<p>[x](javascript:alert(1))</p>"),
-        ("[x](data:text/html,1)", "<p>[x](data:text/html,1)</p>"),
-        ("![alt](https://h.example/p.png)", "<p>[alt]</p>"),
-        (
-            "[x](https://h.example/)",
-            '<p><a href="https://h.example/" rel="noopener noreferrer nofollow">x</a></p>',
-        ),
-        (f"a{RIGHT_TO_LEFT}b", "<p>ab</p>"),
-    ],
-)
-def test_markdown_becomes_plain_html(words, made):
-    assert markdown(words).strip() == made
-
-
-@pytest.mark.parametrize(
-    ("said", "kept"),
-    [
-        ("The 8 of 19 that matter most. Choose one to see it.", "The 8 of 19 that matter most."),
-        ("Left out: Food; choose others in the table.", "Left out: Food."),
-        ("A holds its season. It can be taken out here: choose so above.", "A holds its season."),
-        ("Cut by 1.5 %. Choose components in the table.", "Cut by 1.5 %."),
-        ("Choose up to 6 responses for X.", ""),
-        ("Chosen anew at 1.5; the test that chooses them does.", None),
-    ],
-)
-def test_sentences_on_what_to_do_are_left_out(said, kept):
-    assert still(said) == (said if kept is None else kept)
 
 
 def test_a_document_of_nothing_but_words_is_one(bridge):

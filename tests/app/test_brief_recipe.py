@@ -1,23 +1,17 @@
 """The recipe: made again to the byte, held against new data, refused in a sentence."""
 
-import errno
 import json
-import os
 import re
 import subprocess
 import sys
 import tomllib
-import zlib
 from pathlib import Path
 
 import numpy as np
 import pytest
 
-from app.brief import chromium, folder, pictures
 from app.brief.building import zipped
-from app.brief.folder import FolderError, check_folder, write_folder
 from app.brief.parts import Draft, Part
-from app.brief.pictures import png_with, svg_with
 from app.brief.recipe import (
     FORMAT,
     RecipeError,
@@ -27,7 +21,7 @@ from app.brief.recipe import (
     recipe_text,
     same_files,
 )
-from app.cli import main
+from app.lag.evidence import completed
 from app.state import ViewState
 from tests.app.briefs import built, desk, quick, write_files
 
@@ -69,13 +63,6 @@ def made(draft, bridge):
 @pytest.fixture(scope="module")
 def recipe(made):
     return read_recipe(made.files["recipe.toml"].decode())
-
-
-def run(arguments, capsys):
-    with pytest.raises(SystemExit) as ended:
-        main([str(each) for each in arguments])
-    told = capsys.readouterr()
-    return ended.value.code, told.out, told.err
 
 
 # Again ---------------------------------------------------------------------------------------
@@ -163,6 +150,16 @@ def test_next_month_rolls_forward_and_marks_what_changed(recipe, tmp_path, made)
     )
 
 
+def test_key_figures_are_the_results_own(made, bridge):
+    state = next(part.state for part in made.draft.parts if part.page == "lag")
+    found = {one.figure.key: one.figure.value for one in made.brief.figures if one.page == "lag"}
+    known = completed(state, bridge)
+    assert found["p_search"] == float(known.search.p)
+    assert found["correlation"] == bridge.cell(state).correlation
+    assert found["best_shift"] == known.search.best_shift
+    assert np.isfinite(list(found.values())).all()
+
+
 def test_the_usual_values_of_then_are_kept(made):
     text = made.files["recipe.toml"].decode()
     assert 'formula = "percent"' in text
@@ -212,12 +209,12 @@ def test_a_damaged_recipe_is_refused_in_a_sentence(made, changed, said):
         read_recipe(changed(made.files["recipe.toml"].decode()))
 
 
-def test_missing_series_are_named(recipe, files, tmp_path, capsys, made):
+def test_missing_series_are_named(recipe, files, tmp_path, run, made):
     only = desk(files[1:])
     assert missing_series(recipe, only) == ("Consumer prices", "Broad money")
     path = tmp_path / "recipe.toml"
     path.write_bytes(made.files["recipe.toml"])
-    code, out, err = run(["brief", "--recipe", path, "-o", tmp_path / "out", *files[1:]], capsys)
+    code, out, err = run("brief", "--recipe", path, "-o", tmp_path / "out", *files[1:])
     assert (code, out) == (2, "")
     assert (
         "the recipe needs series that are not in the files: 'Consumer prices', 'Broad money'" in err
@@ -229,22 +226,20 @@ def test_missing_series_are_named(recipe, files, tmp_path, capsys, made):
     ("content", "said"),
     [(b"\xff\xfe\x00", "must be text"), (b"a = ", "must be TOML"), (None, "No such file")],
 )
-def test_a_recipe_file_that_is_none_is_refused(content, said, tmp_path, capsys):
+def test_a_recipe_file_that_is_none_is_refused(content, said, tmp_path, run):
     path = tmp_path / "recipe.toml"
     if content is not None:
         path.write_bytes(content)
-    code, _, err = run(["brief", "--recipe", path, "-o", tmp_path / "out"], capsys)
+    code, _, err = run("brief", "--recipe", path, "-o", tmp_path / "out")
     assert code == 2
     assert said in err
     assert err.count("\n") == 1
 
 
-def test_a_recipe_takes_no_flags_of_a_new_brief(made, files, tmp_path, capsys):
+def test_a_recipe_takes_no_flags_of_a_new_brief(made, files, tmp_path, run):
     path = tmp_path / "recipe.toml"
     path.write_bytes(made.files["recipe.toml"])
-    code, _, err = run(
-        ["brief", "--recipe", path, "--window", "3", "-o", tmp_path / "o", *files], capsys
-    )
+    code, _, err = run("brief", "--recipe", path, "--window", "3", "-o", tmp_path / "o", *files)
     assert code == 2
     assert "--window cannot go with it" in err
 
@@ -252,11 +247,11 @@ def test_a_recipe_takes_no_flags_of_a_new_brief(made, files, tmp_path, capsys):
 # The command ---------------------------------------------------------------------------------
 
 
-def test_the_command_writes_all_and_says_so(files, tmp_path, capsys):
+def test_the_command_writes_all_and_says_so(files, tmp_path, run):
     out, table = tmp_path / "brief", tmp_path / "figures.csv"
     flags = ["--surrogates", "99", "--draws", "99", "--window", "4", "--shift", "9"]
     flags += ["--form", "one-page", "--title", "June", "--no-pictures"]
-    code, told, _ = run(["brief", "-o", out, "--json", "--csv", table, *flags, *files], capsys)
+    code, told, _ = run("brief", "-o", out, "--json", "--csv", table, *flags, *files)
     assert code == 0
     answer = json.loads(told)
     assert {Path(name) for name in answer["files"]} == {p for p in out.rglob("*") if p.is_file()}
@@ -271,195 +266,6 @@ def test_the_command_writes_all_and_says_so(files, tmp_path, capsys):
     assert "window" not in states["reading"]
     rows = table.read_text(encoding="utf-8").splitlines()
     assert any(row.startswith("lag,") and "correlation" in row for row in rows)
-    again, told, _ = run(["brief", "-o", out, *flags, *files], capsys)  # in place of the earlier
+    again, told, _ = run("brief", "-o", out, *flags, *files)  # in place of the earlier
     assert again == 0
     assert told.startswith("June: ")
-
-
-def test_without_a_chromium_the_brief_still_comes(draft, bridge, monkeypatch):
-    monkeypatch.setenv("BROWSER_PATH", "nowhere/chromium")
-    short = Draft(parts=draft.parts[:2])
-    found = built(short, bridge, images=True)
-    assert sorted({name.rpartition(".")[2] for name in found.files}) == ["csv", "html", "toml"]
-    assert found.said == [
-        "no PNG and SVG were made: no Chromium was found on this machine",
-        "no PDF was made: no Chromium was found on this machine",
-    ]
-
-
-def test_without_the_extra_the_brief_still_comes(draft, bridge, monkeypatch):
-    monkeypatch.setattr(pictures.importlib.util, "find_spec", lambda name: None)
-    monkeypatch.setattr(chromium, "chromium", lambda: None)
-    found = built(Draft(parts=draft.parts[:2]), bridge, images=True)
-    assert "pip install 'pricewake[images]'" in found.said[0]
-
-
-def test_a_chromium_that_hangs_is_ended(tmp_path, monkeypatch):
-    slow = tmp_path / "slow"
-    mark = tmp_path / "pid"
-    slow.write_text(f"#!/bin/sh\necho $$ > {mark}\nsleep 60 & wait\n")
-    slow.chmod(0o755)
-    monkeypatch.setenv("BROWSER_PATH", str(slow))
-    monkeypatch.setattr(chromium, "PATIENCE", 0.5)
-    page = tmp_path / "page.html"
-    page.write_text("x")
-    with pytest.raises(chromium.NoChromiumError, match="took longer than"):
-        chromium.printed(page)
-    with pytest.raises(ProcessLookupError):
-        os.kill(int(mark.read_text()), 0)
-
-
-# The folder ----------------------------------------------------------------------------------
-
-
-def test_a_folder_is_written_whole(tmp_path):
-    write_folder(tmp_path / "a" / "b", {"x.txt": b"1", "views/y.txt": b"2"})
-    assert (tmp_path / "a" / "b" / "views" / "y.txt").read_bytes() == b"2"
-    assert [path.name for path in (tmp_path / "a").iterdir()] == ["b"]
-
-
-def earlier(place):
-    write_folder(place, {"brief.html": b"old", "recipe.toml": b'files = ["brief.html"]'})
-
-
-def test_an_earlier_brief_gives_way_and_leaves_nothing(tmp_path):
-    earlier(tmp_path / "out")
-    write_folder(tmp_path / "out", {"brief.html": b"new"})
-    assert [path.name for path in tmp_path.rglob("*")] == ["out", "brief.html"]
-    assert (tmp_path / "out" / "brief.html").read_bytes() == b"new"
-
-
-@pytest.mark.parametrize("strange", ["notes.txt", "views/mine.csv", "recipe.toml/inside.txt"])
-def test_a_folder_with_other_files_is_left_alone(tmp_path, strange):
-    out = tmp_path / "out"
-    if not strange.startswith("recipe"):
-        earlier(out)
-    (out / strange).parent.mkdir(parents=True, exist_ok=True)
-    (out / strange).write_text("mine")
-    with pytest.raises(FolderError, match=f"also holds '{strange}'"):
-        check_folder(out)
-    with pytest.raises(FolderError, match="nothing else"):
-        write_folder(out, {"brief.html": b"new"})
-    assert (out / strange).read_text() == "mine"
-
-
-@pytest.mark.parametrize("before", [True, False])
-def test_a_full_disk_half_way_leaves_nothing_and_keeps_what_was(tmp_path, monkeypatch, before):
-    out = tmp_path / "out"
-    if before:
-        earlier(out)
-    written = []
-
-    def full(target, content):
-        if len(written) == 2:
-            target.write_bytes(content[:1])
-            raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
-        written.append(target)
-        target.write_bytes(content)
-
-    monkeypatch.setattr(folder, "_write", full)
-    new = {"brief.html": b"new", "a.csv": b"1", "b.csv": b"22", "c.csv": b"3"}
-    with pytest.raises(FolderError, match="the disk is full; nothing was written"):
-        write_folder(out, new)
-    assert len(written) == 2
-    left = sorted(path.relative_to(tmp_path).as_posix() for path in tmp_path.rglob("*"))
-    assert left == (["out", "out/brief.html", "out/recipe.toml"] if before else [])
-    if before:
-        assert (out / "brief.html").read_bytes() == b"old"
-
-
-def test_a_rename_that_fails_brings_back_what_was(tmp_path, monkeypatch):
-    out = tmp_path / "out"
-    earlier(out)
-    rename = Path.rename
-
-    def refusing(path, target):
-        if ".part-" in path.name:
-            raise OSError(errno.EACCES, os.strerror(errno.EACCES))
-        return rename(path, target)
-
-    monkeypatch.setattr(Path, "rename", refusing)
-    with pytest.raises(FolderError, match="Permission denied"):
-        write_folder(out, {"brief.html": b"new"})
-    assert (out / "brief.html").read_bytes() == b"old"
-    assert [path.name for path in tmp_path.iterdir()] == ["out"]
-
-
-def test_a_folder_that_cannot_be_written_is_told_before_any_work(tmp_path, capsys):
-    (tmp_path / "file").write_text("x")
-    for out in (tmp_path / "file", tmp_path / "file" / "under"):
-        code, told, err = (
-            run(["brief", "-o", out, "--no-pictures"], capsys)
-            if out.name == "file"
-            else (2, "", _refused(out))
-        )
-        assert (code, told) == (2, "")
-        assert "-o must be a folder" in err
-    assert (tmp_path / "file").read_text() == "x"
-
-
-def _refused(out):
-    with pytest.raises(FolderError) as told:
-        write_folder(out, {"x": b""})
-    return str(told.value)
-
-
-# Pictures carry where they came from ----------------------------------------------------------
-
-
-def _png():
-    def chunk(kind, body):
-        return (
-            len(body).to_bytes(4, "big") + kind + body + zlib.crc32(kind + body).to_bytes(4, "big")
-        )
-
-    head = (1).to_bytes(4, "big") * 2 + bytes([8, 0, 0, 0, 0])
-    return (
-        b"\x89PNG\r\n\x1a\n"
-        + chunk(b"IHDR", head)
-        + chunk(b"IDAT", zlib.compress(b"\0\0"))
-        + chunk(b"IEND", b"")
-    )
-
-
-def test_notes_in_a_png_are_chunks_of_their_own():
-    found = png_with(_png(), {"Title": "Prices – «up»", "Seed": "1"})
-    place, kinds, notes = 8, [], {}
-    while place < len(found):
-        size = int.from_bytes(found[place : place + 4], "big")
-        kind, body = found[place + 4 : place + 8], found[place + 8 : place + 8 + size]
-        assert zlib.crc32(kind + body) == int.from_bytes(found[place + 8 + size :][:4], "big")
-        kinds.append(kind)
-        if kind == b"iTXt":
-            key, rest = body.split(b"\0", 1)
-            assert rest[:4] == b"\0\0\0\0"
-            notes[key.decode()] = rest[4:].decode()
-        place += 12 + size
-    assert kinds == [b"IHDR", b"iTXt", b"iTXt", b"IDAT", b"IEND"]
-    assert notes == {"Title": "Prices – «up»", "Seed": "1"}
-    with pytest.raises(ValueError, match="must be a PNG"):
-        png_with(b"GIF89a", {})
-
-
-def test_notes_in_an_svg_are_escaped():
-    found = svg_with(b'<svg xmlns="x" width="3"><g/></svg>', "a < b\x01", {"Series": "<b>&"})
-    assert found == (
-        b'<svg xmlns="x" width="3"><title>a &lt; b</title>'
-        b"<desc>Series: &lt;b&gt;&amp;</desc><g/></svg>"
-    )
-    with pytest.raises(ValueError, match="must be an SVG"):
-        svg_with(b"nothing", "", {})
-
-
-def test_key_figures_are_the_results_own(made, bridge):
-    from app.compute import Bridge
-    from app.lag.evidence import completed
-
-    assert isinstance(bridge, Bridge)
-    state = next(part.state for part in made.draft.parts if part.page == "lag")
-    found = {one.figure.key: one.figure.value for one in made.brief.figures if one.page == "lag"}
-    known = completed(state, bridge)
-    assert found["p_search"] == float(known.search.p)
-    assert found["correlation"] == bridge.cell(state).correlation
-    assert found["best_shift"] == known.search.best_shift
-    assert np.isfinite(list(found.values())).all()

@@ -30,13 +30,6 @@ DRAFT = Draft(
 MARK = Mark("Broad money", "2015-06", "before", "new survey")
 
 
-def run(arguments, capsys):
-    with pytest.raises(SystemExit) as ended:
-        main([str(each) for each in arguments])
-    told = capsys.readouterr()
-    return ended.value.code, told.out, told.err
-
-
 @pytest.fixture(scope="module")
 def kept(tmp_path_factory):
     """A workspace with two statements, the second made of later data, a break and two rules."""
@@ -77,12 +70,12 @@ def test_the_recipe_carries_what_the_workspace_remembers(made, kept):
     assert compared(recipe, made.brief, made.csv).data == ()
 
 
-def test_without_the_workspace_every_byte_comes_back(made, kept, tmp_path, capsys):
+def test_without_the_workspace_every_byte_comes_back(made, kept, tmp_path, run):
     files, _ = kept
     recipe = tmp_path / "recipe.toml"
     recipe.write_bytes(made.files["recipe.toml"])
     out = tmp_path / "again"
-    code, said, _ = run(["brief", *files, "--recipe", recipe, "-o", out, "--no-pictures"], capsys)
+    code, said, _ = run("brief", *files, "--recipe", recipe, "-o", out, "--no-pictures")
     assert code == 0
     assert f"{len(made.csv)} files of numbers the same to the byte" in said
     for name, text in made.csv.items():
@@ -92,11 +85,8 @@ def test_without_the_workspace_every_byte_comes_back(made, kept, tmp_path, capsy
         assert (out / name).read_bytes() == made.files[name], name
     # Another workspace is the one that counts, and what it lacks is named.
     code, said, _ = run(
-        [
-            *["brief", *files, "--recipe", recipe, "-o", tmp_path / "other", "--no-pictures"],
-            *["--workspace", tmp_path / "empty.sqlite"],
-        ],
-        capsys,
+        *("brief", *files, "--recipe", recipe, "-o", tmp_path / "other", "--no-pictures"),
+        *("--workspace", tmp_path / "empty.sqlite"),
     )
     first = made.brief.remembered.statements[0]
     assert f"Changed: statement 1 of {first.day}: not in this workspace (fingerprint" in said

@@ -5,24 +5,10 @@ from pathlib import Path
 
 import pytest
 
-from app.cli import main
 from app.workspace import Workspace
 
 DATA = Path(__file__).resolve().parents[1] / "data"
 BOOK = DATA / "xlsx_second_sheet.xlsx"
-
-
-@pytest.fixture
-def run(capsys, tmp_path, monkeypatch):
-    monkeypatch.chdir(tmp_path)
-
-    def call(*words):
-        with pytest.raises(SystemExit) as ended:
-            main([str(word) for word in words])
-        out, err = capsys.readouterr()
-        return ended.value.code, out, err
-
-    return call
 
 
 @pytest.fixture

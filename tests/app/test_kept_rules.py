@@ -6,7 +6,6 @@ import threading
 
 import pytest
 
-from app.cli import main
 from app.kept_rules import MOST, drop_rule, keep_rule, rule_lines, rules_in_force
 from app.migrations import APPLICATION_ID, MIGRATIONS
 from app.reading.alerts import DEFAULT_RULES
@@ -139,30 +138,24 @@ def test_the_page_keeps_rules_by_a_request():
     assert rule_lines(desk.store) == DEFAULT_RULES
 
 
-def run(arguments, capsys):
-    with pytest.raises(SystemExit) as ended:
-        main(arguments)
-    return ended.value.code, capsys.readouterr()
-
-
-def test_the_command_lists_adds_and_removes_rules_and_reading_uses_them(tmp_path, capsys):
+def test_the_command_lists_adds_and_removes_rules_and_reading_uses_them(tmp_path, run):
     file = tmp_path / "prices.csv"
     values = [100 * 1.004**i for i in range(48)]
     rows = [f"{2020 + i // 12}-{i % 12 + 1:02d},{v!r}" for i, v in enumerate(values)]
     file.write_text("\n".join(["period,Prices", *rows]) + "\n")
     kept = str(tmp_path / "w.sqlite")
-    code, said = run(["workspace", "alerts", "--workspace", kept], capsys)
+    code, out, err = run("workspace", "alerts", "--workspace", kept)
     assert code == 2
-    assert "there is no workspace at" in said.err
-    code, said = run(["workspace", "alerts", "--add", OWN, "--workspace", kept], capsys)
-    assert (code, said.out.splitlines()) == (0, [*DEFAULT_RULES, OWN])
+    assert "there is no workspace at" in err
+    code, out, err = run("workspace", "alerts", "--add", OWN, "--workspace", kept)
+    assert (code, out.splitlines()) == (0, [*DEFAULT_RULES, OWN])
     arguments = ["reading", str(file), "--series", "Prices", "--json"]
-    code, said = run([*arguments, "--workspace", kept], capsys)  # 4.9 percent over 12 months
+    code, out, err = run(*arguments, "--workspace", kept)  # 4.9 percent over 12 months
     assert code == 1
-    assert [alert["rule"] for alert in json.loads(said.out)["alerts"]] == [OWN]
-    assert run(arguments, capsys)[0] == 0
-    assert run([*arguments, "--workspace", kept, "--alert", "rate_12m above 6"], capsys)[0] == 0
-    assert run(["workspace", "alerts", "--remove", OWN, "--workspace", kept], capsys)[0] == 0
-    assert run([*arguments, "--workspace", kept], capsys)[0] == 0
-    code, said = run(["workspace", "alerts", "--remove", OWN, "--workspace", kept], capsys)
+    assert [alert["rule"] for alert in json.loads(out)["alerts"]] == [OWN]
+    assert run(*arguments)[0] == 0
+    assert run(*arguments, "--workspace", kept, "--alert", "rate_12m above 6")[0] == 0
+    assert run("workspace", "alerts", "--remove", OWN, "--workspace", kept)[0] == 0
+    assert run(*arguments, "--workspace", kept)[0] == 0
+    code, out, err = run("workspace", "alerts", "--remove", OWN, "--workspace", kept)
     assert code == 2

@@ -3,11 +3,11 @@
 import csv
 import io
 import json
+from functools import partial
 
 import numpy as np
 import pytest
 
-from app.cli import main
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.pages import plain
@@ -219,16 +219,8 @@ def test_an_unknown_view_is_refused(bridge):
 
 
 @pytest.fixture
-def run(capsys, tmp_path, monkeypatch):
-    monkeypatch.chdir(tmp_path)
-
-    def call(*words):
-        with pytest.raises(SystemExit) as ended:
-            main(["reading", "--draws", str(DRAWS), *words])
-        out, err = capsys.readouterr()
-        return ended.value.code, out, err
-
-    return call
+def run(run):
+    return partial(run, "reading", "--draws", DRAWS)
 
 
 def test_the_command_gives_one_object_with_unrounded_numbers(run, bridge):

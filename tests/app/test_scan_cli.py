@@ -13,10 +13,8 @@ from pathlib import Path
 
 import pytest
 
-from app import cli
 from app.compute import Bridge
 from app.intake.reading import read_path
-from app.scan import run
 from app.scan.bridge import draws, question, scan_work
 from app.scan.result_file import panel_text
 from app.state import ViewState
@@ -46,19 +44,12 @@ def counted(monkeypatch):
             seen.append(pair.economy)
             yield pair_scan(pair, **asked)
 
-    monkeypatch.setattr(run, "scanned", scanned)
+    monkeypatch.setattr("app.scan.run.scanned", scanned)
     return seen
 
 
-def call(capsys, *words):
-    with pytest.raises(SystemExit) as left:
-        cli.main(["scan", *map(str, words)])
-    out, err = capsys.readouterr()
-    return left.value.code, out, err
-
-
-def test_the_json_has_every_pair_with_its_keys(capsys, counted, panel):
-    code, out, err = call(capsys, panel, *FLAGS, "--json")
+def test_the_json_has_every_pair_with_its_keys(run, counted, panel):
+    code, out, err = run("scan", panel, *FLAGS, "--json")
     answer = json.loads(out)
     assert (code, err) == (0, "")
     assert [pair["economy"] for pair in answer["pairs"]] == list(SLOPES) == counted
@@ -71,8 +62,8 @@ def test_the_json_has_every_pair_with_its_keys(capsys, counted, panel):
 
 
 @pytest.mark.usefixtures("counted")
-def test_without_json_it_says_what_holds_and_what_it_does_not_say(capsys, panel):
-    code, out, _ = call(capsys, panel, *FLAGS)
+def test_without_json_it_says_what_holds_and_what_it_does_not_say(run, panel):
+    code, out, _ = run("scan", panel, *FLAGS)
     assert code == 0
     assert "2 of 3 pairs hold at 5 % once all of them are paid for" in out
     assert "Long averages. No line here: long averages must have at least 4 economies" in out
@@ -89,54 +80,54 @@ def test_without_json_it_says_what_holds_and_what_it_does_not_say(capsys, panel)
         ("averages", "part,economy,driver,response,first,last,slope_without", 3),
     ],
 )
-def test_each_view_is_written_as_a_table(capsys, panel, tmp_path, view, first, rows):
+def test_each_view_is_written_as_a_table(run, panel, tmp_path, view, first, rows):
     path = tmp_path / "view.csv"
-    code, _, _ = call(capsys, panel, *FLAGS, "--csv", path, "--view", view)
+    code, _, _ = run("scan", panel, *FLAGS, "--csv", path, "--view", view)
     body = [x for x in path.read_text(encoding="utf-8").splitlines() if not x.startswith("# ")]
     assert code == 0
     assert body[0].startswith(first)
     assert len(list(csv.reader(body[1:]))) == rows
 
 
-def test_drivers_and_responses_are_named_by_what_they_are_called_within(capsys, counted, panel):
-    code, out, _ = call(
-        capsys, panel, *FLAGS, "--driver", "consumer prices", "--response", "Broad money", "--json"
+def test_drivers_and_responses_are_named_by_what_they_are_called_within(run, counted, panel):
+    code, out, _ = run(
+        "scan", panel, *FLAGS, "--driver", "consumer prices", "--response", "Broad money", "--json"
     )
     assert code == 0
     assert {pair["driver"] for pair in json.loads(out)["pairs"]} == {"Consumer prices"}
     assert len(counted) == 3
-    code, _, err = call(capsys, panel, "--driver", "Wages")
+    code, _, err = run("scan", panel, "--driver", "Wages")
     assert code == 2
     assert "Drivers must be names of series within an economy, but got 'Wages'" in err
 
 
-def test_a_result_is_gone_on_from_and_nothing_is_searched_twice(capsys, counted, panel, tmp_path):
+def test_a_result_is_gone_on_from_and_nothing_is_searched_twice(run, counted, panel, tmp_path):
     path = tmp_path / "result.csv"
-    assert call(capsys, panel, *FLAGS, "--out", path)[0] == 0
+    assert run("scan", panel, *FLAGS, "--out", path)[0] == 0
     whole = path.read_bytes()
     counted.clear()
-    assert call(capsys, panel, *FLAGS, "--out", path)[0] == 0
+    assert run("scan", panel, *FLAGS, "--out", path)[0] == 0
     assert counted == []
     assert path.read_bytes() == whole
     # One more economy in the files: only that one is searched.
     wider = panel_file(tmp_path / "panel.csv", SLOPES | {"Dunmarrel": 0.4})
-    assert call(capsys, wider, *FLAGS, "--out", path)[0] == 0
+    assert run("scan", wider, *FLAGS, "--out", path)[0] == 0
     assert counted == ["Dunmarrel"]
     # Another seed is another question.
-    code, _, err = call(capsys, wider, *FLAGS, "--seed", "2", "--out", path)
+    code, _, err = run("scan", wider, *FLAGS, "--seed", "2", "--out", path)
     assert code == 2
     assert "--out must be a result of the same question" in err
     # Fewer economies than the file has: their rows would be lost.
-    code, _, err = call(capsys, panel, *FLAGS, "--out", path)
+    code, _, err = run("scan", panel, *FLAGS, "--out", path)
     assert code == 2
     assert "which is not asked for" in err
 
 
-def test_new_data_in_an_old_result_are_refused(capsys, counted, panel, tmp_path):
+def test_new_data_in_an_old_result_are_refused(run, counted, panel, tmp_path):
     path = tmp_path / "result.csv"
-    assert call(capsys, panel, *FLAGS, "--out", path)[0] == 0
+    assert run("scan", panel, *FLAGS, "--out", path)[0] == 0
     other = panel_file(tmp_path / "panel.csv", dict.fromkeys(SLOPES, 0.9))
-    code, _, err = call(capsys, other, *FLAGS, "--out", path)
+    code, _, err = run("scan", other, *FLAGS, "--out", path)
     assert (code, len(counted)) == (2, 3)
     assert "the series of Ardenquay / Broad money / Consumer prices have changed" in err
 
@@ -185,28 +176,26 @@ def rows_of(path):
         (["--out", "."], "--out must be a file that may be written"),
     ],
 )
-def test_wrong_use_is_one_sentence(capsys, panel, words, what):
-    code, out, err = call(capsys, panel, *words)
+def test_wrong_use_is_one_sentence(run, panel, words, what):
+    code, out, err = run("scan", panel, *words)
     assert (code, out) == (2, "")
     assert what in err
     assert err.count("\n") == 1
 
 
 @pytest.mark.usefixtures("counted")
-def test_a_disk_that_fills_half_way_leaves_whole_rows_and_no_half_file(panel, tmp_path, capsys):
+def test_a_disk_that_fills_half_way_leaves_whole_rows_and_no_half_file(panel, tmp_path, run):
     # The size that files may have runs out, as a disk does.
     before = resource.getrlimit(resource.RLIMIT_FSIZE)
     handler = signal.signal(signal.SIGXFSZ, signal.SIG_IGN)
     resource.setrlimit(resource.RLIMIT_FSIZE, (1200, before[1]))
     try:
-        code, _, err = call(capsys, panel, *FLAGS, "--out", tmp_path / "r.csv")
+        code, _, err = run("scan", panel, *FLAGS, "--out", tmp_path / "r.csv")
         assert code == 2
         assert re.search(
             r"--out must be a file that may be written.*(no space|too large)", err, re.I
         )
-        code, _, err = call(
-            capsys, panel, *FLAGS, "--csv", tmp_path / "v.csv", "--view", "surfaces"
-        )
+        code, _, err = run("scan", panel, *FLAGS, "--csv", tmp_path / "v.csv", "--view", "surfaces")
         assert code == 2
         assert "--csv must be a file that may be written" in err
     finally:
@@ -214,19 +203,19 @@ def test_a_disk_that_fills_half_way_leaves_whole_rows_and_no_half_file(panel, tm
         signal.signal(signal.SIGXFSZ, handler)
     assert os.listdir(tmp_path) == ["r.csv"]
     assert (tmp_path / "r.csv").read_bytes().endswith(b"\r\n")
-    assert call(capsys, panel, *FLAGS, "--out", tmp_path / "r.csv")[0] == 0  # and goes on
+    assert run("scan", panel, *FLAGS, "--out", tmp_path / "r.csv")[0] == 0  # and goes on
     assert rows_of(tmp_path / "r.csv") == 3
 
 
-def test_a_device_is_no_result_and_is_not_read_to_its_end(capsys, panel):
+def test_a_device_is_no_result_and_is_not_read_to_its_end(run, panel):
     for words in (["--out", "/dev/zero"], ["--from", "/dev/zero"]):
-        code, _, err = call(capsys, panel, *words)
+        code, _, err = run("scan", panel, *words)
         assert (code, err.count("\n")) == (2, 1)
 
 
-def test_files_without_a_pair_are_one_sentence(capsys, tmp_path):
+def test_files_without_a_pair_are_one_sentence(run, tmp_path):
     path = tmp_path / "a.csv"
     path.write_text("period,Wages\n2001-01,100\n2001-02,101\n")
-    code, _, err = call(capsys, path)
+    code, _, err = run("scan", path)
     assert code == 2
     assert "no economy in the files has both a driver and a response" in err

@@ -7,7 +7,6 @@ import numpy as np
 import pytest
 
 from analytics.panel import PairScan, panel_result, panel_scan
-from app import cli
 from app.compute import Bridge
 from app.pages import scan as page
 from app.places import software_version
@@ -210,33 +209,26 @@ def test_the_page_takes_a_file_and_refuses_in_one_sentence(content):
     assert b"open its file again" in gone.data
 
 
-def call(capsys, *words):
-    with pytest.raises(SystemExit) as left:
-        cli.main(["scan", *map(str, words)])
-    out, err = capsys.readouterr()
-    return left.value.code, out, err
-
-
-def test_the_command_shows_a_result_with_or_without_its_series(capsys, content, tmp_path):
+def test_the_command_shows_a_result_with_or_without_its_series(run, content, tmp_path):
     path = tmp_path / "r.csv"
     path.write_bytes(content)
-    code, out, _ = call(capsys, "--from", path)
+    code, out, _ = run("scan", "--from", path)
     assert code == 0
     assert "3 of 5 pairs hold" in out
     assert "maps and averages are missing" in out
     panel = panel_file(tmp_path / "panel.csv", SLOPES)
-    code, out, _ = call(capsys, panel, "--from", path, "--json")
+    code, out, _ = run("scan", panel, "--from", path, "--json")
     answer = json.loads(out)
     assert code == 0
     assert answer["opened"]["file"] == "r.csv"
     assert answer["opened"]["drawn"] == 5
     assert len(answer["averages"]["slope_without"]) == 5
-    code, _, err = call(capsys, panel, "--from", path, "--seed", "2")
+    code, _, err = run("scan", panel, "--from", path, "--seed", "2")
     assert (code, "so --seed cannot go with --from" in err) == (2, True)
-    code, _, err = call(capsys, panel, "--from", path, "--driver", "Broad money")
+    code, _, err = run("scan", panel, "--from", path, "--driver", "Broad money")
     assert "so --driver cannot go with --from" in err
-    code, _, err = call(capsys, "--from", tmp_path / "none.csv")
+    code, _, err = run("scan", "--from", tmp_path / "none.csv")
     assert code == 2
     assert "--from must be a file that can be read" in err
-    code, _, err = call(capsys, "--from", panel)
+    code, _, err = run("scan", "--from", panel)
     assert (code, err.count("\n")) == (2, 1)

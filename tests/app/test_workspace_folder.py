@@ -12,7 +12,6 @@ from hypothesis import strategies as st
 from hypothesis.extra.numpy import arrays
 
 from analytics.series import Series
-from app.cli import main
 from app.intake.problems import Problem
 from app.intake.reading import Release
 from app.migrations import TABLES, VERSION
@@ -211,49 +210,42 @@ def test_a_folder_that_was_changed_is_refused_and_nothing_is_imported(exported, 
 # The command ---------------------------------------------------------------------------------
 
 
-def run(capsys, *words):
-    with pytest.raises(SystemExit) as ended:
-        main([str(word) for word in words])
-    out = capsys.readouterr()
-    return ended.value.code, out.out, out.err
-
-
-def test_the_command_exports_and_imports(tmp_path, capsys):
+def test_the_command_exports_and_imports(tmp_path, run):
     desk, new = tmp_path / "desk.sqlite", tmp_path / "new.sqlite"
     filled(desk).close()
     out = tmp_path / "out"
-    assert run(capsys, "workspace", "export", out, "--workspace", desk) == (
+    assert run("workspace", "export", out, "--workspace", desk) == (
         0,
         f"3 vintages written to {out}.\n",
         "",
     )
-    assert run(capsys, "workspace", "import", out, "--workspace", new)[0] == 0
+    assert run("workspace", "import", out, "--workspace", new)[0] == 0
     one, two = Store(desk), Store(new)
     assert rows(one) == rows(two)
     one.close()
     two.close()
-    status, _, err = run(capsys, "workspace", "import", out, "--workspace", new)
+    status, _, err = run("workspace", "import", out, "--workspace", new)
     assert (status, err.count("\n")) == (2, 1)
     assert "must go into an empty workspace" in err
-    status, _, err = run(capsys, "workspace", "export", out / "x", "--workspace", tmp_path / "no")
+    status, _, err = run("workspace", "export", out / "x", "--workspace", tmp_path / "no")
     assert status == 2
     assert "there is no workspace at" in err
     assert not (tmp_path / "no").exists()
 
 
 @pytest.mark.skipif("sys.platform != 'linux'", reason="the rule of another platform")
-def test_the_usual_workspace_is_the_one_in_the_data_folder(tmp_path, capsys, monkeypatch):
+def test_the_usual_workspace_is_the_one_in_the_data_folder(tmp_path, run, monkeypatch):
     monkeypatch.setenv("XDG_DATA_HOME", str(tmp_path))
-    status, _, err = run(capsys, "workspace", "export", tmp_path / "out")
+    status, _, err = run("workspace", "export", tmp_path / "out")
     assert status == 2
     assert "there is no workspace at" in err
     export_folder(filled().store, tmp_path / "out")
-    assert run(capsys, "workspace", "import", tmp_path / "out")[0] == 0
+    assert run("workspace", "import", tmp_path / "out")[0] == 0
     assert (tmp_path / "pricewake" / "workspace.sqlite").is_file()
 
 
 def test_commands_depend_on_their_files_alone_unless_a_workspace_is_named(
-    tmp_path, capsys, monkeypatch
+    tmp_path, run, monkeypatch
 ):
     monkeypatch.setenv("XDG_DATA_HOME", str(tmp_path / "data"))
     text = "month,Own prices\n" + "".join(f"2020-{m:02d},{100 + m}\n" for m in range(1, 13))
@@ -261,7 +253,7 @@ def test_commands_depend_on_their_files_alone_unless_a_workspace_is_named(
     file.write_text(text)
 
     def names(*words):
-        status, out, err = run(capsys, "inspect", "--json", *words)
+        status, out, err = run("inspect", "--json", *words)
         assert (status, err) == (0, "")
         return [one["name"] for one in json.loads(out)["series"]]
 
@@ -277,24 +269,24 @@ def test_commands_depend_on_their_files_alone_unless_a_workspace_is_named(
     assert names(other, "--workspace", desk) == ["Own prices", "Other prices"]
 
 
-def test_a_workspace_that_is_not_there_is_no_reason_to_show_the_invented_economy(tmp_path, capsys):
+def test_a_workspace_that_is_not_there_is_no_reason_to_show_the_invented_economy(tmp_path, run):
     for command in ("inspect", "lag"):
-        status, out, err = run(capsys, command, "--workspace", tmp_path / "typo.sqlite")
+        status, out, err = run(command, "--workspace", tmp_path / "typo.sqlite")
         assert (status, out) == (2, "")
         assert "there is no workspace at" in err
     assert list(tmp_path.iterdir()) == []
-    assert run(capsys, "inspect", "--json", "--workspace", ":memory:")[:2] == (
+    assert run("inspect", "--json", "--workspace", ":memory:")[:2] == (
         0,
         '{"series": [], "problems": []}\n',
     )
     bad = tmp_path / "notes.txt"
     bad.write_text("not a workspace")
-    status, _, err = run(capsys, "inspect", "--workspace", bad)
+    status, _, err = run("inspect", "--workspace", bad)
     assert (status, err.count("\n")) == (2, 1)
     assert "nothing was changed in it" in err
 
 
-def test_lag_answers_as_it_stood_on_a_date(tmp_path, capsys):
+def test_lag_answers_as_it_stood_on_a_date(tmp_path, run):
     rng = np.random.default_rng(8)
     growth = rng.standard_normal((2, 120)) / 2
     levels = 100 * np.exp(np.cumsum(growth, axis=1) / 100)
@@ -307,8 +299,8 @@ def test_lag_answers_as_it_stood_on_a_date(tmp_path, capsys):
         here.add(Release("release.csv", tuple(pair), ()), day)
     here.close()
     words = ("lag", "--json", "--surrogates", "19", "--workspace", tmp_path / "desk.sqlite")
-    assert json.loads(run(capsys, *words)[1])["last"] == "2019-12"
-    assert json.loads(run(capsys, *words, "--as-of", "2024-06-30")[1])["last"] == "2018-04"
-    status, _, err = run(capsys, *words, "--as-of", "2024-01-01")
+    assert json.loads(run(*words)[1])["last"] == "2019-12"
+    assert json.loads(run(*words, "--as-of", "2024-06-30")[1])["last"] == "2018-04"
+    status, _, err = run(*words, "--as-of", "2024-01-01")
     assert status == 2
     assert "nothing was loaded yet on 2024-01-01; the first file stands from 2024-03-12" in err

@@ -1,0 +1,110 @@
+"""Pictures of a brief: what stands in them of where they came from, and a brief without them."""
+
+import os
+import zlib
+
+import pytest
+
+from app.brief import chromium, pictures
+from app.brief.parts import Draft, Part
+from app.brief.pictures import png_with, svg_with
+from app.state import ViewState
+from tests.app.briefs import built, desk, quick, write_files
+
+
+@pytest.fixture(scope="module")
+def bridge(tmp_path_factory):
+    return desk(write_files(tmp_path_factory.mktemp("desk"))[:1])
+
+
+@pytest.fixture
+def short():
+    state = quick(ViewState(series="Consumer prices"))
+    return Draft(
+        parts=(
+            Part(kind="verdict", page="reading", state=state),
+            Part(kind="view", page="reading", view="rank", state=state),
+        )
+    )
+
+
+# Without what draws them ----------------------------------------------------------------------
+
+
+def test_without_a_chromium_the_brief_still_comes(short, bridge, monkeypatch):
+    monkeypatch.setenv("BROWSER_PATH", "nowhere/chromium")
+    found = built(short, bridge, images=True)
+    assert sorted({name.rpartition(".")[2] for name in found.files}) == ["csv", "html", "toml"]
+    assert found.said == [
+        "no PNG and SVG were made: no Chromium was found on this machine",
+        "no PDF was made: no Chromium was found on this machine",
+    ]
+
+
+def test_without_the_extra_the_brief_still_comes(short, bridge, monkeypatch):
+    monkeypatch.setattr(pictures.importlib.util, "find_spec", lambda name: None)
+    monkeypatch.setattr(chromium, "chromium", lambda: None)
+    found = built(short, bridge, images=True)
+    assert "pip install 'pricewake[images]'" in found.said[0]
+
+
+def test_a_chromium_that_hangs_is_ended(tmp_path, monkeypatch):
+    slow = tmp_path / "slow"
+    mark = tmp_path / "pid"
+    slow.write_text(f"#!/bin/sh\necho $$ > {mark}\nsleep 60 & wait\n")
+    slow.chmod(0o755)
+    monkeypatch.setenv("BROWSER_PATH", str(slow))
+    monkeypatch.setattr(chromium, "PATIENCE", 0.5)
+    page = tmp_path / "page.html"
+    page.write_text("x")
+    with pytest.raises(chromium.NoChromiumError, match="took longer than"):
+        chromium.printed(page)
+    with pytest.raises(ProcessLookupError):
+        os.kill(int(mark.read_text()), 0)
+
+
+# Where they came from -------------------------------------------------------------------------
+
+
+def _png():
+    def chunk(kind, body):
+        return (
+            len(body).to_bytes(4, "big") + kind + body + zlib.crc32(kind + body).to_bytes(4, "big")
+        )
+
+    head = (1).to_bytes(4, "big") * 2 + bytes([8, 0, 0, 0, 0])
+    return (
+        b"\x89PNG\r\n\x1a\n"
+        + chunk(b"IHDR", head)
+        + chunk(b"IDAT", zlib.compress(b"\0\0"))
+        + chunk(b"IEND", b"")
+    )
+
+
+def test_notes_in_a_png_are_chunks_of_their_own():
+    found = png_with(_png(), {"Title": "Prices – «up»", "Seed": "1"})
+    place, kinds, notes = 8, [], {}
+    while place < len(found):
+        size = int.from_bytes(found[place : place + 4], "big")
+        kind, body = found[place + 4 : place + 8], found[place + 8 : place + 8 + size]
+        assert zlib.crc32(kind + body) == int.from_bytes(found[place + 8 + size :][:4], "big")
+        kinds.append(kind)
+        if kind == b"iTXt":
+            key, rest = body.split(b"\0", 1)
+            assert rest[:4] == b"\0\0\0\0"
+            notes[key.decode()] = rest[4:].decode()
+        place += 12 + size
+    assert kinds == [b"IHDR", b"iTXt", b"iTXt", b"IDAT", b"IEND"]
+    assert notes == {"Title": "Prices – «up»", "Seed": "1"}
+    with pytest.raises(ValueError, match="must be a PNG"):
+        png_with(b"GIF89a", {})
+
+
+def test_notes_in_an_svg_are_escaped():
+    found = svg_with(b'<svg xmlns="x" width="3"><g/></svg>', "a < b\x01", {"Series": "<b>&"})
+    assert found == (
+        b'<svg xmlns="x" width="3"><title>a &lt; b</title>'
+        b"<desc>Series: &lt;b&gt;&amp;</desc><g/></svg>"
+    )
+    with pytest.raises(ValueError, match="must be an SVG"):
+        svg_with(b"nothing", "", {})
