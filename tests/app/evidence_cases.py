@@ -16,6 +16,7 @@ STATE = ViewState(
     driver="Money", response="Prices", window=3, shift=LAG,
     windows="1:12", shifts="-12:24", surrogates=250,
 )  # fmt: skip
+SMALL = replace(STATE, windows="1:6", shifts="-6:12")
 STEP, EVENT = 120, 90
 
 
@@ -86,3 +87,25 @@ def case(name, **changes):
     state = replace(STATE, **(own | changes))
     bridge = Bridge(workspace(*make()))
     return state, bridge, completed(state, bridge)
+
+
+def fresh(*series, **options):
+    """A bridge that has computed nothing yet: over a planted pair, or over other series."""
+    return Bridge(workspace(*(series or planted(**options))))
+
+
+def same(ours, theirs):
+    """Hold two results against each other, part by part, to the bit."""
+    assert type(ours) is type(theirs)
+    if hasattr(ours, "__dataclass_fields__"):
+        for name in ours.__dataclass_fields__:
+            same(getattr(ours, name), getattr(theirs, name))
+    elif isinstance(ours, (tuple, list)):
+        assert len(ours) == len(theirs)
+        for a, b in zip(ours, theirs, strict=True):
+            same(a, b)
+    elif isinstance(ours, dict):
+        assert list(ours) == list(theirs)
+        same(list(ours.values()), list(theirs.values()))
+    else:
+        np.testing.assert_array_equal(ours, theirs)

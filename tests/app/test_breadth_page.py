@@ -1,7 +1,5 @@
 """The Breadth page: words, charts, table, files and command say the numbers of the result."""
 
-import csv
-import io
 import json
 from dataclasses import replace
 from functools import partial
@@ -23,6 +21,8 @@ from app.server import build_app
 from app.state import StateError, ViewState
 from app.workspace import Workspace
 from tests.app.baskets import SHARES, basket, prices_of, series_of, usual, weights_of
+from tests.app.components import nodes, words
+from tests.exported import rows_of
 
 
 @pytest.fixture(scope="module")
@@ -41,26 +41,6 @@ def many(count=60):
     weights *= 1000 / weights.sum(axis=1, keepdims=True)
     series = series_of(prices_of(30, components=count), names=names)
     return basket(series, weights_of(weights, names=names))
-
-
-def components_of(tree):
-    """Every Dash component of a tree."""
-    if isinstance(tree, list | tuple):
-        for each in tree:
-            yield from components_of(each)
-    elif hasattr(tree, "to_plotly_json"):
-        yield tree
-        yield from components_of(getattr(tree, "children", None) or [])
-
-
-def kinds(tree, name):
-    return [each for each in components_of(tree) if type(each).__name__ == name]
-
-
-def text_of(tree):
-    if isinstance(tree, list | tuple):
-        return " ".join(text_of(each) for each in tree)
-    return text_of(tree.children) if hasattr(tree, "children") else str(tree or "")
 
 
 # Words ---------------------------------------------------------------------------------------
@@ -122,12 +102,12 @@ def test_the_table_is_in_the_order_of_its_column(demo, column, way):
 
 def test_a_click_on_a_heading_turns_its_order(demo):
     answer = page.answer(ViewState(), demo)
-    heads = [h for h in kinds(answer.words["table"], "Th") if h.scope == "col"]
-    state = {text_of(h).split(",")[0].strip(): getattr(h, "aria-sort", None) for h in heads}
+    heads = [h for h in nodes(answer.words["table"], "Th") if h.scope == "col"]
+    state = {words(h).split(",")[0].strip(): getattr(h, "aria-sort", None) for h in heads}
     assert state["Contribution"] is not None
     marked = [h for h in heads if getattr(h, "aria-sort", "none") not in ("none", None)]
     assert [getattr(h, "aria-sort") for h in marked] == ["descending"]
-    (button,) = kinds(marked, "Button")
+    (button,) = nodes(marked, "Button")
     assert getattr(button, "data-value") == "points-up"
 
 
@@ -135,15 +115,15 @@ def test_of_many_components_the_first_ones_and_the_rest_are_shown():
     bridge = Bridge(many())
     result = breadth(ViewState(), bridge)
     table = page.answer(ViewState(), bridge).words["table"]
-    body = kinds(kinds(table, "Tbody"), "Tr")
+    body = nodes(nodes(table, "Tbody"), "Tr")
     assert len(body) == TOP_ROWS + 1
-    assert text_of(body[-1]).startswith(f"the other {60 - TOP_ROWS}")
+    assert words(body[-1]).startswith(f"the other {60 - TOP_ROWS}")
     whole = page.answer(ViewState(rows="all"), bridge).words["table"]
-    assert len(kinds(kinds(whole, "Tbody"), "Tr")) == 60
-    names, points, words = bars(result)
+    assert len(nodes(nodes(whole, "Tbody"), "Tr")) == 60
+    names, points, left_out = bars(result)
     assert len(names) == len(points) == TOP_BARS
     rest = result.weighted.points[-1].sum() - points.sum()
-    assert f"the other {60 - TOP_BARS} give {rest:+.2f}".replace("-", "−") in words
+    assert f"the other {60 - TOP_BARS} give {rest:+.2f}".replace("-", "−") in left_out
     stacked = parts(result, result.weighted.points)
     assert len(stacked) == TOP_PARTS + 1
     whole_rate = np.array(list(stacked.values())).sum(axis=0)
@@ -154,7 +134,7 @@ def test_leaving_out_is_a_button_a_row(demo):
     table = page.answer(ViewState(), demo).words["table"]
     buttons = {
         getattr(b, "aria-label"): b
-        for b in kinds(table, "Button")
+        for b in nodes(table, "Button")
         if getattr(b, "data-set", "") == "excluded"
     }
     food = buttons["01 Food and soft drinks is left out"]
@@ -220,12 +200,12 @@ def refused():
 def test_weights_that_do_not_sum_come_with_an_offer_and_the_rest_of_the_page():
     answer = page.answer(ViewState(), Bridge(refused()))
     assert set(answer.charts) == {"strip", "diffusion"}
-    said = text_of(answer.words["notes"])
+    said = words(answer.words["notes"])
     assert "Weights of 2021 must sum to 1000, but sum to 983." in said
-    (offer,) = kinds(answer.words["notes"], "Button")
+    (offer,) = nodes(answer.words["notes"], "Button")
     assert (getattr(offer, "data-set"), getattr(offer, "data-value")) == ("scale", "yes")
-    assert kinds(answer.words["table"], "Tr")
-    assert "983" in text_of(answer.words["contributions-words"])
+    assert nodes(answer.words["table"], "Tr")
+    assert "983" in words(answer.words["contributions-words"])
     scaled = page.answer(ViewState(scale="yes"), Bridge(refused()))
     assert "contributions" in scaled.charts
 
@@ -246,24 +226,19 @@ def test_flat_prices_give_a_page():
 # Files ---------------------------------------------------------------------------------------
 
 
-def read(text):
-    lines = [line for line in text.splitlines() if not line.startswith("#")]
-    return list(csv.reader(io.StringIO("\n".join(lines))))
-
-
 @pytest.mark.parametrize("view", VIEWS)
 def test_each_view_has_a_file_with_header_and_rows(demo, view):
     name, text = csv_export(view, "", demo)
     assert name == f"{view}-breadth-consumer-prices-2026-10.csv"
     assert "# weights: weights.csv; fingerprint" in text
     assert "# state: /breadth?" in text
-    head, *body = read(text)
+    head, *body = rows_of(text)
     assert body
     assert all(len(row) == len(head) for row in body)
 
 
 def test_the_files_hold_every_digit(demo, shown):
-    head, *body = read(csv_export("history", "", demo)[1])
+    head, *body = rows_of(csv_export("history", "", demo)[1])
     last = dict(zip(head, body[-1], strict=True))
     assert float(last["rate_of_all_items"]) == shown.rate[-1]
     assert float(last["04 Housing and energy"]) == shown.weighted.points[-1][3]

@@ -1,10 +1,8 @@
 """The brief: its parts, its words and numbers, and that whatever comes in stays text."""
 
 import base64
-import csv
 import hashlib
 import html
-import io
 import json
 import re
 from dataclasses import replace
@@ -19,6 +17,7 @@ from app.brief.parts import MOST_LETTERS, MOST_PARTS, Draft, Part, read_draft, s
 from app.brief.sources import settle, source, sources
 from app.state import StateError, ViewState
 from tests.app.briefs import built, desk, quick, write_files
+from tests.exported import rows_of
 
 RIGHT_TO_LEFT = "\u202e"
 
@@ -183,16 +182,15 @@ def test_each_number_in_a_verdict_changes_with_the_data(bridge, full, tmp_path):
 
 
 def test_the_words_of_a_brief_are_those_of_the_pages(bridge, full):
-    text = text_of(full.files["brief.html"].decode())
+    text = re.sub(r"\s", "", text_of(full.files["brief.html"].decode()))
+    compared = 0
     for part in full.draft.parts:
         if part.kind == "view":
             found = settle(part.state, bridge, source(part.page), (part.view,))
-            said = re.sub(
-                r"\s+",
-                " ",
-                html.unescape(re.sub("<[^>]*>", " ", still(found.words.get(part.view)))),
-            )
-            assert re.sub(r"\s", "", said) in re.sub(r"\s", "", text)
+            said = re.sub(r"\s", "", text_of(still(found.words.get(part.view))))
+            compared += bool(said)
+            assert said in text
+    assert compared >= 10
 
 
 def test_what_cannot_be_done_on_paper_is_not_asked_for(full):
@@ -216,11 +214,12 @@ def test_caution_and_provenance_stand_at_the_end(bridge, form):
 
 
 def test_the_numbers_of_a_view_are_those_of_its_page(full, bridge):
-    for section in full.brief.sections:
-        if section.stem:
-            page = source(section.part.page)
-            _, text = page.export(section.part.view, section.part.state.to_query(), bridge)
-            assert full.files[f"views/{section.stem}.csv"] == text.encode()
+    kept = [section for section in full.brief.sections if section.stem]
+    assert len(kept) >= 12
+    for section in kept:
+        page = source(section.part.page)
+        _, text = page.export(section.part.view, section.part.state.to_query(), bridge)
+        assert full.files[f"views/{section.stem}.csv"] == text.encode()
 
 
 def test_a_part_that_cannot_be_shown_says_why_and_the_rest_stands(bridge):
@@ -341,8 +340,7 @@ def test_a_hostile_name_stays_text_everywhere(name, tmp_path):
     assert all(re.fullmatch(r"[a-z0-9./-]+", each) and ".." not in each for each in made.files)
     for file, content in made.files.items():
         if file.endswith(".csv"):
-            body = [line for line in content.decode().splitlines() if not line.startswith("#")]
-            for row in csv.reader(io.StringIO("\n".join(body))):
+            for row in rows_of(content.decode()):
                 assert not [cell for cell in row if cell[:1] in "=@" and cell]
 
 

@@ -1,29 +1,23 @@
 """Evidence: the parts are what analytics says of the pair, and keys hold what they depend on."""
 
 from dataclasses import replace
-from itertools import pairwise
 
 import numpy as np
 import pytest
 
-from analytics.hac import hac_surface
-from analytics.influence import cell_without, episodes
+from analytics.influence import episodes
 from analytics.opinions import second_opinions
-from analytics.robust import cell_inference, surface_inference
+from analytics.robust import cell_inference
 from analytics.search import lag_search
-from analytics.series import period_code
 from analytics.shiftset import shift_set
 from analytics.stability import rolling_stability
 from app.cli import LAG_FIELDS
-from app.compute import Bridge, cell_span
-from app.lag import cells
+from app.compute import cell_span
 from app.lag import evidence as ev
 from app.lag.work import WORK
-from app.state import StateError
-from tests.app.economies import LAG, planted, workspace
-from tests.app.evidence_cases import STATE, case, noise, rates
+from tests.app.economies import LAG, planted
+from tests.app.evidence_cases import SMALL, STATE, case, fresh, noise, rates, same
 
-SMALL = replace(STATE, windows="1:6", shifts="-6:12")
 TOOLS = {  # of the chosen cell alone: all long work reads every month, and no tool
     "left_out": "2005-01:2005-12",
     "pinned": "2:2",
@@ -55,27 +49,6 @@ EVERY_CHANGE = {
 }
 
 
-def fresh(*series):
-    return Bridge(workspace(*(series or planted())))
-
-
-def same(ours, theirs):
-    """Hold two results against each other, part by part."""
-    assert type(ours) is type(theirs)
-    if hasattr(ours, "__dataclass_fields__"):
-        for name in ours.__dataclass_fields__:
-            same(getattr(ours, name), getattr(theirs, name))
-    elif isinstance(ours, (tuple, list)):
-        assert len(ours) == len(theirs)
-        for a, b in zip(ours, theirs, strict=True):
-            same(a, b)
-    elif isinstance(ours, dict):
-        assert list(ours) == list(theirs)
-        same(list(ours.values()), list(theirs.values()))
-    else:
-        np.testing.assert_array_equal(ours, theirs)
-
-
 # Parts ---------------------------------------------------------------------------------------
 
 
@@ -104,27 +77,6 @@ def _months_every_cell_has(n, window, shift):
     used = [t - k for t in (first, last) for k in (0, window - 1)]
     used += [month + shift for month in used]
     return min(used), max(used) + 1
-
-
-def test_the_same_months_are_fewer_than_all():
-    bridge = fresh()
-    own, cut = (cells.inference(replace(SMALL, months=m), bridge) for m in ("own", "same"))
-    assert cut.n == 240 - 11 - 12 < own.n == 240 - 2 - LAG
-
-
-@pytest.mark.parametrize("months", ["own", "same"])
-def test_every_cell_of_the_map_is_judged_by_analytics(months):
-    bridge, state = fresh(), replace(SMALL, months=months)
-    pair = bridge.pair(state)
-    options = {"windows": range(1, 7), "shifts": range(-6, 13)}
-    sides = pair.driver.values, pair.response.values
-    same(
-        cells.map_inference(state, bridge),
-        surface_inference(*sides, **options, same_months=months == "same", periods_per_year=12),
-    )
-    same(cells.map_hac(state, bridge), hac_surface(*sides, **options))
-    at = cells.map_inference(state, bridge)
-    assert at.p[2, 6 + LAG] == pytest.approx(cells.inference(state, bridge).p, rel=1e-9)
 
 
 @pytest.mark.parametrize("first", ["2000-01", "1990Q1"])
@@ -348,57 +300,3 @@ def test_the_cell_chosen_does_not_change_the_search_and_the_window_changes_the_s
     assert second.search is first.search is third.search
     assert third.shift_set is first.shift_set
     assert (first.shift_set.window, second.shift_set.window) == (3, 5)
-
-
-# Episodes ------------------------------------------------------------------------------------
-
-
-@pytest.mark.parametrize("months", ["own", "same"])
-@pytest.mark.parametrize("shift", [LAG, 0, -4])
-def test_an_episode_is_named_by_its_months_and_found_by_its_name(shift, months):
-    bridge, state = fresh(), replace(SMALL, shift=shift, months=months)
-    pair = bridge.pair(state)
-    start, stop = cell_span(pair, state)
-    parts = cells.influence(state, bridge).episodes
-    codes = [cells.episode_code(episode, pair, state) for episode in parts]
-    assert len(set(codes)) == len(parts) > 2
-    # They tile the driver's months: each begins in the month after the last one's end.
-    ends = [code.split(":") for code in codes]
-    names = [period_code(period) for period in pair.periods]
-    for (_, last), (first, _) in pairwise(ends):
-        assert names.index(first) == names.index(last) + 1
-    cell_start = start + bridge.cell(state).start
-    assert ends[0][0] == names[cell_start]
-    assert ends[-1][1] == names[cell_start + bridge.cell(state).n - 1]
-    for code, episode in zip(codes, parts, strict=True):
-        found = cells.without_episode(replace(state, without=code), bridge)
-        same(found[0], episode)
-        same(
-            found[1],
-            cell_without(
-                pair.driver.values[start:stop], pair.response.values[start:stop],
-                window=3, shift=shift, episode=episode, periods_per_year=12,
-            ),
-        )  # fmt: skip
-        assert found[1].slope == pytest.approx(episode.slope_without, rel=1e-12)
-
-
-def test_no_episode_named_is_none_left_out():
-    assert cells.without_episode(SMALL, fresh()) is None
-
-
-@pytest.mark.parametrize("name", ["1950-01:1951-01", "2000-03:2000-04", "2001"])
-def test_an_episode_that_this_cell_does_not_have_is_refused(name):
-    if ":" not in name:
-        with pytest.raises(StateError, match="Without must be a stretch"):
-            replace(SMALL, without=name)
-        return
-    with pytest.raises(StateError, match=f"Without must name an episode of this cell, .*{name}"):
-        cells.without_episode(replace(SMALL, without=name), fresh())
-
-
-def test_episodes_of_quarters_are_named_by_quarters():
-    bridge = fresh(*planted(160, first="1980Q1"))
-    code = cells.episode_code(ev.influence(SMALL, bridge).episodes[0], bridge.pair(SMALL), SMALL)
-    assert code.startswith("1980-Q3:")  # the third quarter ends the first window of three
-    assert cells.without_episode(replace(SMALL, without=code), bridge)[0].start == 0

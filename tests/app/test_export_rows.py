@@ -1,7 +1,5 @@
 """Files of the evidence: their rows are the results, and the same state makes the same bytes."""
 
-import csv
-import io
 from dataclasses import replace
 
 import numpy as np
@@ -10,7 +8,6 @@ import pytest
 from analytics.series import period_code
 from app import exports
 from app.cli import VIEW_NAMES
-from app.compute import Bridge
 from app.export_rows import SEARCHED, VIEWS
 from app.lag.cells import (
     episode_code,
@@ -22,27 +19,16 @@ from app.lag.cells import (
 )
 from app.lag.evidence import completed, directions_work, opinions_work, search_work, stability_work
 from app.pages.lag import view
-from tests.app.economies import LAG, planted, workspace
-from tests.app.evidence_cases import STATE, case, noise, rates
+from tests.app.economies import LAG, planted
+from tests.app.evidence_cases import SMALL, case, fresh, noise, rates
+from tests.exported import head_of, rows_of
 
-SMALL = replace(STATE, windows="1:6", shifts="-6:12")
 QUARTERS = replace(SMALL, shift=-3, pinned="2:3", peaks="0.5", other_responses="Prices")
 
 
-def fresh(*series, **options):
-    return Bridge(workspace(*(series or planted(**options))))
-
-
-def head_and_rows(text):
-    lines = text.split("\r\n")
-    head = [line for line in lines if line.startswith("# ")]
-    body = text[sum(len(line) + 2 for line in head) :]
-    rows = list(csv.reader(io.StringIO(body, newline=""), strict=True))
-    return dict(line[2:].split(": ", 1) for line in head), rows
-
-
 def exported(name, state=SMALL, bridge=None):
-    return head_and_rows(exports.csv_export(name, state.to_query(), bridge or fresh())[1])
+    text = exports.csv_export(name, state.to_query(), bridge or fresh())[1]
+    return head_of(text), rows_of(text)
 
 
 def column(rows, name, where=None):
@@ -386,7 +372,7 @@ def test_names_that_a_spreadsheet_would_run_stay_in_the_header(name):
     bridge = fresh(side, prices)
     state = with_episode(bridge, replace(SMALL, driver="=1+1"))
     text = exports.csv_export(name, state.to_query(), bridge)[1]
-    head, rows = head_and_rows(text)
+    head, rows = head_of(text), rows_of(text)
     assert head["driver"].startswith("=1+1; @SUM(A1); source +cmd")
     for row in rows:
         for field in row:

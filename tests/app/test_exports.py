@@ -20,6 +20,7 @@ from app.pages.lag import CAUTION, view
 from app.places import software_version
 from app.state import StateError, ViewState
 from tests.app.economies import LAG, levels, planted, workspace
+from tests.exported import head_of, rows_of
 
 STATE = ViewState(driver="Money", response="Prices", window=3, shift=LAG, surrogates=39)
 CHARTS = ("surface", "scatter", "overlay")
@@ -40,20 +41,11 @@ def shown(state=STATE, here=None):
     return view(state, here or shared())
 
 
-def taken_apart(text):
-    """The ``#`` lines and the rows under them, read by the csv module."""
-    lines = text.split("\r\n")
-    assert lines.pop() == ""  # the last row ends too
-    head = [line for line in lines if line.startswith("# ")]
-    assert lines[: len(head)] == head
-    body = text[sum(len(line) + 2 for line in head) :]
-    rows = list(csv.reader(io.StringIO(body, newline=""), strict=True))
-    return dict(line[2:].split(": ", 1) for line in head), rows
-
-
 def export(name, state=STATE, here=None):
     file, text = exports.csv_export(name, state.to_query(), here or shared())
-    return file, text, *taken_apart(text)
+    assert text.endswith("\r\n")
+    assert text.count("\n") == text.count("\r\n")
+    return file, text, head_of(text), rows_of(text)
 
 
 def numbers(rows, column):
@@ -309,7 +301,7 @@ def test_file_names_tell_shifts_apart():
              "＝1+1", "＋1", "－1+2", "＠A1", "-1 1", "+1e", "--1"],
 )  # fmt: skip
 def test_text_that_a_spreadsheet_would_run_is_defused(text):
-    _, rows = taken_apart(exports.csv_text([("a", "b")], [["name"], [text]]))
+    rows = rows_of(exports.csv_text([("a", "b")], [["name"], [text]]))
     assert rows == [["name"], ["'" + text]]
 
 
@@ -318,14 +310,14 @@ def test_text_that_a_spreadsheet_would_run_is_defused(text):
              "e-mail@x", ""],
 )  # fmt: skip
 def test_text_that_it_would_not_run_is_left_alone(text):
-    _, rows = taken_apart(exports.csv_text([("a", "b")], [["name", "x"], [text, "y"]]))
+    rows = rows_of(exports.csv_text([("a", "b")], [["name", "x"], [text, "y"]]))
     assert rows == [["name", "x"], [text, "y"]]
 
 
 @given(st.lists(st.floats(allow_nan=False, allow_infinity=False), min_size=1))
 def test_numbers_come_back_to_the_last_digit_and_are_never_quoted(values):
     text = exports.csv_text([], [["value", "place"], *([v, i] for i, v in enumerate(values))])
-    _, rows = taken_apart(text)
+    rows = rows_of(text)
     assert [float(row[0]) for row in rows[1:]] == values
     assert [int(row[1]) for row in rows[1:]] == list(range(len(values)))
     assert "'" not in text

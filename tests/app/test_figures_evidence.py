@@ -8,21 +8,16 @@ import pandas as pd
 import pytest
 
 from analytics.series import period_label
-from app.compute import Bridge, cell_span
+from app.compute import cell_span
 from app.figures import evidence as figures
 from app.lag.cells import episode_code, inference, influence, without_episode
 from app.lag.evidence import completed, opinions_work, stability_work
 from app.pages.lag import view
-from tests.app.economies import LAG, planted, workspace
-from tests.app.evidence_cases import STATE, case
+from tests.app.economies import LAG, planted
+from tests.app.evidence_cases import SMALL, case, fresh
 
-SMALL = replace(STATE, windows="1:6", shifts="-6:12")
 CELLS = [("own", LAG, "2000-01"), ("same", LAG, "2000-01"), ("own", -4, "2000-01"),
          ("same", -4, "1980Q1")]  # fmt: skip
-
-
-def fresh(*series, **options):
-    return Bridge(workspace(*(series or planted(**options))))
 
 
 def at(months, shift, first):

@@ -9,6 +9,8 @@ import pytest
 from app.compute import Bridge
 from app.page_table import EXPORTS, PAGES
 from app.state import ViewState
+from tests.app.components import nodes
+from tests.exported import rows_of
 from tests.hostile import FORMULA, LINK, NAMES, workspace
 
 NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?")
@@ -30,15 +32,9 @@ def query(bridge):
 
 def views_of(component):
     """The views that a page offers as CSV, read from its own buttons."""
-    found = []
-    mark = getattr(component, "data-csv", None) or getattr(component, "data-saves", None)
-    if mark:
-        found.append(mark)
-    children = getattr(component, "children", None)
-    for child in children if isinstance(children, list | tuple) else [children]:
-        if child is not None and not isinstance(child, str | int | float):
-            found += views_of(child)
-    return found
+    all_of = nodes(component)
+    marks = (getattr(one, "data-csv", None) or getattr(one, "data-saves", None) for one in all_of)
+    return [mark for mark in marks if mark]
 
 
 def test_the_names_are_cut_and_kept_as_text(bridge):
@@ -63,8 +59,7 @@ def test_no_cell_of_any_file_is_a_formula_and_numbers_stay_numbers(page, bridge,
             continue
         given += 1
         assert re.fullmatch(r"[a-z0-9-]+\.csv", file), file
-        body = "\n".join(line for line in text.split("\r\n") if not line.startswith("#"))
-        for row in csv.reader(io.StringIO(body, newline="")):
+        for row in rows_of(text):
             for cell in row:
                 assert not cell.startswith(RUNS) or NUMBER.fullmatch(cell), (view, cell)
                 numbers += bool(NUMBER.fullmatch(cell))

@@ -1,7 +1,7 @@
 """Chunked work: the same result in any order, from any number of tabs, after any loss."""
 
-import threading
 from dataclasses import dataclass, field
+from functools import partial
 
 import numpy as np
 import pytest
@@ -16,6 +16,7 @@ from app.lag.evidence import search_work, shift_set_work
 from app.memory import Memory
 from app.state import ViewState
 from tests.app.economies import LAG, planted, workspace
+from tests.app.threads import at_once
 
 STATE = ViewState(
     driver="Money", response="Prices", window=3, shift=LAG,
@@ -134,23 +135,8 @@ def test_the_shift_set_by_chunks_is_the_loop_of_analytics():
 
 def tabs(jobs, *works):
     """Let a thread for each of some works ask until it has the result; the results."""
-    results, failures = [None] * len(works), []
-    start = threading.Barrier(len(works))
-
-    def ask(place):
-        try:
-            start.wait(10)
-            results[place] = jobs.complete(works[place])
-        except Exception as error:
-            failures.append(error)
-
-    threads = [threading.Thread(target=ask, args=(k,)) for k in range(len(works))]
-    for thread in threads:
-        thread.start()
-    for thread in threads:
-        thread.join(60)
-    assert not any(thread.is_alive() for thread in threads)
-    assert failures == []
+    results = at_once(*(partial(jobs.complete, work) for work in works), seconds=60)
+    assert not any(isinstance(result, Exception) for result in results)
     return results
 
 

@@ -2,7 +2,7 @@
 
 import json
 import sqlite3
-import threading
+from functools import partial
 
 import pytest
 
@@ -13,6 +13,7 @@ from app.server import build_app
 from app.store import Store
 from app.workspace import Workspace
 from app.workspace_folder import export_folder, import_folder
+from tests.app.threads import at_once
 
 OWN = "rate_12m above 3"
 
@@ -86,14 +87,12 @@ def test_two_tabs_that_change_rules_at_once_lose_nothing(tmp_path):
             if limit % 3 == 0:
                 drop_rule(store, f"rate_12m above {limit}")
 
-    threads = [threading.Thread(target=fill, args=(t, 20 + 100 * i)) for i, t in enumerate(tabs)]
-    for thread in threads:
-        thread.start()
-    for thread in threads:
-        thread.join()
+    starts = (20, 120)
+    done = at_once(*(partial(fill, *each) for each in zip(tabs, starts, strict=True)))
+    assert done == [None, None]
     wanted = {
         f"rate_12m above {limit}"
-        for start in (20, 120)
+        for start in starts
         for limit in range(start, start + 12)
         if limit % 3
     }

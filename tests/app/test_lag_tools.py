@@ -1,7 +1,5 @@
 """The tools of the Lag page: figures, words and files are the results of the same state."""
 
-import csv
-import io
 import json
 from dataclasses import replace
 
@@ -33,6 +31,7 @@ from app.pages.lag_tools import peak_words, response_words
 from app.state import StateError, ViewState
 from tests.app.economies import LAG, planted, workspace
 from tests.app.evidence_cases import noise, rates
+from tests.exported import records
 
 STATE = ViewState(
     driver="Money", response="Prices", window=3, shift=LAG, windows="1:6", shifts="-6:12",
@@ -53,10 +52,9 @@ def bridge():
     return Bridge(workspace(*three()))
 
 
-def rows_of(name, state, bridge):
+def exported(name, state, bridge):
     text = exports.csv_export(name, state.to_query(), bridge)[1]
-    lines = [line for line in text.split("\r\n") if line and not line.startswith("# ")]
-    return text, list(csv.DictReader(io.StringIO("\n".join(lines))))
+    return text, records(text)
 
 
 def numbers(rows, column, part):
@@ -82,13 +80,13 @@ def test_the_scatter_draws_and_saves_the_slice(bridge, band):
     drawn = (line.x, line.y) if band == "driver" else (line.y, line.x)
     np.testing.assert_array_equal(drawn[0], path.centre)
     np.testing.assert_array_equal(drawn[1], path.mean)
-    _, rows = rows_of("scatter", state, bridge)
+    _, rows = exported("scatter", state, bridge)
     name = "driver" if band == "response" else "response"
     assert numbers(rows, name, "chosen slice") == pytest.approx([path.mean[30]], nan_ok=True)
     np.testing.assert_allclose(
         numbers(rows, name, "slice path"), np.delete(path.mean, 30), rtol=1e-12
     )
-    assert "slice path" not in rows_of("scatter", STATE, bridge)[0]
+    assert "slice path" not in exported("scatter", STATE, bridge)[0]
 
 
 def test_the_scatter_draws_and_saves_counts(bridge):
@@ -103,7 +101,7 @@ def test_the_scatter_draws_and_saves_counts(bridge):
     np.testing.assert_array_equal(np.nan_to_num(squares.z), counts.both)
     assert squares.visible is True
     assert figure.layout.xaxis.domain[1] < figure.layout.xaxis2.domain[0]
-    _, rows = rows_of("scatter", state, bridge)
+    _, rows = exported("scatter", state, bridge)
     np.testing.assert_array_equal(numbers(rows, "count", "driver count"), counts.driver)
     np.testing.assert_array_equal(
         numbers(rows, "count", "square count"), counts.both[counts.both > 0]
@@ -132,7 +130,7 @@ def test_months_left_out_are_left_out_of_cell_map_words_and_files(bridge):
     assert shown.cell.n == bridge.cell(STATE).n - len(touched) == 234 - 2 - 26
     assert shown.surface.correlation[shown.surface.cell(3, LAG)] == pytest.approx(plain.correlation)
     assert ", without Jan 2005 to Jun 2006" in shown.sentence
-    text, rows = rows_of("scatter", state, bridge)
+    text, rows = exported("scatter", state, bridge)
     assert "without Jan 2005 to Jun 2006" in text.splitlines()[1]
     for row in [row for row in rows if row["part"] == "pair"]:
         for side in ("driver_period", "response_period"):
@@ -244,7 +242,7 @@ def test_peaks_are_drawn_said_and_saved(bridge):
     words = str(peak_words(peaks, pair, state))
     assert f"{100 * plain.by_chance:.0f} % of all months" in words
     assert "do not speak for this shift" in words
-    _, rows = rows_of("peaks", state, bridge)
+    _, rows = exported("peaks", state, bridge)
     matched = [row for row in rows if row["part"] == "matched"]
     assert [int(row["distance"]) for row in matched] == plain.distance.tolist()
     assert len(rows) == plain.driver.size + plain.response.size - plain.pairs.shape[0]
@@ -261,7 +259,7 @@ def test_the_plane_has_its_density_when_it_is_open(bridge):
     density = density_of(STATE, bridge)
     trace = density_surface(density)
     np.testing.assert_allclose(trace.z, density.density / density.density.max())
-    _, rows = rows_of("plane", STATE, bridge)
+    _, rows = exported("plane", STATE, bridge)
     np.testing.assert_array_equal(numbers(rows, "density", "density"), density.density.ravel())
     same = Bridge(workspace(*rates(noise()[0], noise()[0])))
     assert density_of(replace(STATE, shift=0), same) is None  # an exact line has no error
@@ -282,7 +280,7 @@ def test_a_pinned_cell_stands_beside_the_chosen_one(bridge):
     np.testing.assert_array_equal(figure.data[2].y, chosen.cell.response)
     assert figure.layout.xaxis.range == figure.layout.xaxis2.range
     assert figure.layout.yaxis.range == figure.layout.yaxis2.range
-    _, rows = rows_of("compare", state, bridge)
+    _, rows = exported("compare", state, bridge)
     values = {row["part"]: (row["pinned"], row["chosen"]) for row in rows}
     assert values["slope"] == (repr(pinned.cell.slope), repr(chosen.cell.slope))
     known = completed(state, bridge)
@@ -321,7 +319,7 @@ def test_each_response_is_searched_as_if_it_stood_alone_and_paid_for_together(br
     np.testing.assert_array_equal(figure.data[0].y, found[0].surface.correlation[2])
     words = str(response_words(found, state, bridge, ""))
     assert "asked 2 responses (Holm 1979)" in words
-    _, rows = rows_of("responses", state, bridge)
+    _, rows = exported("responses", state, bridge)
     assert [float(row["search_adjusted_p"]) for row in rows if row["part"] == "best"] == [
         one.p for one in found
     ]

@@ -1,12 +1,14 @@
 """Results by explicit key: made once, whoever asks, in a dict or in the server's cache."""
 
 import threading
+import time
 
 import numpy as np
 import pytest
 from flask import Flask
 
 from app.memory import Memory, server_cache
+from tests.app.threads import at_once
 
 
 def of_the_server():
@@ -48,20 +50,15 @@ def test_two_memories_know_nothing_of_each_other():
 
 
 def test_many_threads_make_a_result_once(memory):
-    made, given = [], []
-    start = threading.Barrier(8)
+    made = []
 
-    def ask():
-        start.wait(10)
-        given.append(memory.once("a", lambda: made.append(1) or len(made)))
+    def make():
+        made.append(1)
+        time.sleep(0.05)
+        return len(made)
 
-    threads = [threading.Thread(target=ask) for _ in range(8)]
-    for thread in threads:
-        thread.start()
-    for thread in threads:
-        thread.join(10)
+    assert at_once(*[lambda: memory.once("a", make)] * 8) == [1] * 8
     assert made == [1]
-    assert given == [1] * 8
 
 
 def test_another_key_does_not_wait(memory):
@@ -87,14 +84,15 @@ def test_one_result_may_ask_for_another(memory):
     assert memory.found("b") == 2
 
 
-def test_a_failure_is_not_kept_and_locks_nothing(memory):
+def test_a_failure_is_raised_to_each_kept_by_none_and_locks_nothing(memory):
     def fail():
         raise ValueError("no")
 
-    for _ in range(2):
-        with pytest.raises(ValueError, match="no"):
-            memory.once("a", fail)
+    for many in (1, 4):
+        met = at_once(*[lambda: memory.once("a", fail)] * many)
+        assert [(type(error), str(error)) for error in met] == [(ValueError, "no")] * many
     assert memory.found("a") is None
+    assert memory._locks == {}
     assert memory.once("a", lambda: 1) == 1
     assert memory._locks == {}
 

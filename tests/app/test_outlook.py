@@ -1,6 +1,5 @@
 """An outlook gathered from a state: path, fan, backtest, vintages, drivers, bad input."""
 
-import json
 import re
 from dataclasses import replace
 
@@ -8,7 +7,6 @@ import numpy as np
 import pandas as pd
 import pytest
 from scipy.stats import percentileofscore
-from statsmodels.datasets import macrodata
 
 from analytics.backtest import backtest
 from analytics.backtest_scores import backtest_scores
@@ -17,7 +15,6 @@ from analytics.outlook import implied_path
 from analytics.outlook_target import outlook_target
 from analytics.path_intervals import path_fan
 from analytics.series import Series
-from app.cli import main
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.intake.reading import Release
@@ -26,11 +23,13 @@ from app.outlook.bridge import EQUAL, WEIGHED, completed_outlook, fans, outlook,
 from app.outlook.exports import VIEWS, csv_export, view_text
 from app.outlook.fields import OUTLOOK_VIEWS
 from app.outlook.inputs import inputs, past_views, vintages_of
-from app.outlook.words import sentence, verdict
+from app.outlook.saying import say
+from app.outlook.words import held_words, sentence, verdict
 from app.outlook.work import backtest_work
 from app.state import ViewState
 from app.workspace import Workspace
 from tests.app.outlooks import QUICK, economy, release, released
+from tests.exported import rows_of
 
 
 def state_of(query="", **changes):
@@ -202,7 +201,7 @@ def test_drivers_stand_beside_each_other_and_combined():
 # What cannot be said -------------------------------------------------------------------------
 
 
-def desk_of(money, prices, **marks):
+def desk_of(money, prices):
     return Bridge(Workspace((Release("a.csv", (money, prices), ()),)))
 
 
@@ -256,8 +255,6 @@ def test_a_break_under_the_path_is_said():
 
 
 def test_intervals_that_did_not_hold_carry_what_was_measured(known):
-    from app.outlook.words import held_words
-
     off = np.full_like(known.fan.measured, 0.1)
     bad = replace(known, fan=replace(known.fan, measured=off))
     assert [held_words(bad, row) for row in range(3)] == [
@@ -288,11 +285,21 @@ def test_the_verdict_says_first_where_no_benchmark_is_beaten(known):
         assert f"{h}" in text[0]
 
 
-# Files and command ---------------------------------------------------------------------------
+def test_a_statement_is_only_made_from_the_newest_print(bridge):
+    for past in (state_of(last="2019-06"), state_of(as_of="2020-02-01")):
+        with pytest.raises(ValueError, match="must start from the newest print, Jun 2020"):
+            say(past, "We knew.", "", bridge)
+    with pytest.raises(ValueError, match="by its number, but got 'one'"):
+        say(state_of(), "Up.", "one", bridge)
 
 
-def rows_of(text):
-    return [line.split(",") for line in text.splitlines() if not line.startswith("#")]
+def test_the_invented_economy_has_an_outlook():
+    known = outlook(ViewState(), Bridge(Workspace(demo_releases())))
+    assert known.reach == 24
+    assert sentence(known).endswith("percent in Oct 2027.")
+
+
+# Files ---------------------------------------------------------------------------------------
 
 
 def test_every_view_is_a_file_with_its_header_and_numbers(known):
@@ -319,163 +326,3 @@ def test_an_export_does_the_long_work_that_it_needs(bridge):
     name, text = csv_export("through", query, bridge)
     assert name == "outlook-through-money-prices-2020-06.csv"
     assert len(rows_of(text)) > 50
-
-
-def run(arguments, capsys):
-    with pytest.raises(SystemExit) as ended:
-        main(arguments)
-    return ended.value.code, capsys.readouterr()
-
-
-@pytest.fixture(scope="module")
-def macro(tmp_path_factory):
-    """US quarterly M1 and consumer prices, 1959 Q1 to 2009 Q3, of statsmodels' macrodata."""
-    data = macrodata.load_pandas().data
-    lines = [
-        f"{int(year)}-Q{int(quarter)},{m1!r},{cpi!r}"
-        for year, quarter, m1, cpi in data[["year", "quarter", "m1", "cpi"]].itertuples(index=False)
-    ]
-    path = tmp_path_factory.mktemp("macro") / "macro.csv"
-    path.write_text("\n".join(["period,M1,CPI", *lines]) + "\n")
-    return path
-
-
-def test_the_command_on_quarters_agrees_with_the_analytics(macro, capsys):
-    flags = ["--driver", "M1", "--response", "CPI", "--window", "4", "--shift", "8"]
-    code, said = run(["outlook", str(macro), *flags, "--cells", "kept", "--json"], capsys)
-    answer = json.loads(said.out)
-    assert code == 0
-    assert answer["frequency"] == "quarterly"
-    data = macrodata.load_pandas().data
-    x, y = (100 * np.diff(np.log(data[name].to_numpy())) for name in ("m1", "cpi"))
-    rules = {"window": 4, "shift": 8}
-    path = implied_path(x, y, **rules, compounding="log", periods_per_year=4)
-    assert [row["period"] for row in answer["path"]][::7] == ["2009-Q4", "2011-Q3"]
-    np.testing.assert_allclose([r["mean"] for r in answer["path"]], path.window_mean, atol=1e-9)
-    np.testing.assert_allclose([r["rate_12m"] for r in answer["path"]], path.yearly, atol=1e-9)
-    means = path_fan(x, y, **rules, target=outlook_target("window", window=4, periods_per_year=4))
-    low, high = means.band(answer["level"])
-    np.testing.assert_allclose([r["low"] for r in answer["path"]], low, atol=1e-9)
-    np.testing.assert_allclose([r["high"] for r in answer["path"]], high, atol=1e-9)
-    target = outlook_target("yearly", window=4, periods_per_year=4)
-    scores = backtest_scores(backtest(x, y, **rules, target=target, periods_per_year=4), RELATION)
-    year = answer["backtest"]
-    best = int(np.argmin(scores.benchmark_rmse[:, 3]))
-    assert year["benchmark"] == scores.benchmarks[best]
-    assert year["rmse"] == pytest.approx(scores.rmse[3], abs=1e-9)
-    assert year["rmse_benchmark"] == pytest.approx(scores.benchmark_rmse[best, 3], abs=1e-9)
-    assert year["dm_p"] == pytest.approx(scores.dm[best][3].p, abs=1e-9)
-    assert year["coverage"] == pytest.approx(scores.coverage[1][3].share)
-    assert year["rmse"] > year["rmse_benchmark"]  # narrow money says little of these prices
-    assert "beat its best benchmark at" in answer["verdict"][0]
-
-
-def test_the_command_writes_a_view_and_says_what_the_page_says(macro, tmp_path, capsys):
-    target = tmp_path / "gap.csv"
-    flags = ["--driver", "M1", "--response", "CPI", "--cells", "kept", "--last", "1985-Q4"]
-    code, said = run(["outlook", str(macro), *flags, "--csv", str(target), "--view", "gap"], capsys)
-    assert code == 0
-    assert said.out.startswith("M1, 4-quarter window, leading CPI by 8 quarters")
-    assert "not a cause" in said.out
-    assert rows_of(target.read_text())[-1][0] == "1985-Q4"
-
-
-def test_as_of_a_period_uses_nothing_after_it(macro, capsys):
-    flags = ["--driver", "M1", "--response", "CPI", "--cells", "kept", "--json"]
-    code, said = run(["outlook", str(macro), *flags, "--as-of", "1990-Q2"], capsys)
-    answer = json.loads(said.out)
-    assert (code, answer["origin"], answer["path"][0]["period"]) == (0, "1990-Q2", "1990-Q3")
-
-
-def test_as_of_a_date_uses_the_vintages_of_that_date(tmp_path, capsys):
-    kept = str(tmp_path / "w.sqlite")
-    desk = Workspace(path=kept)
-    desk.add(release(140, revised=0.01), "2020-01-15")
-    desk.add(release(144), "2020-02-15")
-    desk.close()
-    flags = ["--driver", "Money", "--response", "Prices", "--window", "3", "--shift", "6"]
-    flags += ["--cells", "kept", "--json", "--workspace", kept]
-    now = json.loads(run(["outlook", *flags], capsys)[1].out)
-    then = json.loads(run(["outlook", *flags, "--as-of", "2020-01-31"], capsys)[1].out)
-    assert (then["origin"], now["origin"]) == ("2019-08", "2019-12")
-    assert (then["backtest"]["dates_from_vintages"], now["backtest"]["dates_from_vintages"]) == (
-        0,
-        5,
-    )
-    x, y = (100 * np.diff(np.log(series.values)) for series in release(140, revised=0.01).series)
-    path = implied_path(x, y, window=3, shift=6)
-    np.testing.assert_allclose([r["rate_1m"] for r in then["path"]], path.single, atol=1e-9)
-
-
-def test_the_command_needs_no_files_and_refuses_in_one_sentence(capsys):
-    short = ["--first", "2012-01", "--cells", "kept", "--window", "6", "--shift", "12"]
-    code, said = run(["outlook", *short, "--json"], capsys)
-    answer = json.loads(said.out)
-    assert code == 0
-    assert len(answer["path"]) == 12
-    assert answer["backtest"]["dates"] > 24
-    for arguments, words in (
-        (["--driver", "Wages"], "no loaded series is named 'Wages'"),
-        (["--scheme", "both"], "must be one of expanding, rolling"),
-        (["--say", "up"], "name one with --workspace"),
-        (["--supersedes", "1"], "goes with --say"),
-    ):
-        code, said = run(["outlook", *arguments], capsys)
-        assert code == 2
-        assert words in said.err
-        assert said.err.count("\n") == 1
-
-
-def test_the_command_keeps_a_statement_and_scores_it_when_prints_arrive(tmp_path, capsys):
-    kept = str(tmp_path / "w.sqlite")
-    money, prices = economy(150)
-
-    def file(n):
-        path = tmp_path / "release.csv"
-        rows = [
-            f"{month},{float(m)!r},{float(p)!r}"
-            for month, m, p in zip(
-                money.periods[:n], money.values[:n], prices.values[:n], strict=True
-            )
-        ]
-        path.write_text("\n".join(["period,Money,Prices", *rows]) + "\n")
-        return str(path)
-
-    flags = ["--driver", "Money", "--response", "Prices", "--window", "3", "--shift", "6"]
-    flags += ["--cells", "kept", "--workspace", kept, "--json"]
-    said = run(["outlook", file(140), *flags, "--say", "Prices ease."], capsys)[1]
-    first = json.loads(said.out)
-    assert [one["outcomes"] for one in first["statements"]] == [0]
-    said = run(["outlook", file(144), *flags], capsys)[1]
-    (one,) = json.loads(said.out)["statements"]
-    assert (one["words"], one["origin"], one["outcomes"]) == ("Prices ease.", "2019-08", 4)
-    growth = 100 * np.log(prices.values[12:] / prices.values[:-12])
-    for h, row in enumerate(one["horizons"][:4], start=1):
-        assert row["stated"] == pytest.approx(first["path"][h - 1]["rate_12m"], abs=1e-12)
-        assert row["outcome"] == pytest.approx(growth[140 - 13 + h], abs=1e-9)
-        low, high = first["path"][h - 1]["rate_12m_low"], first["path"][h - 1]["rate_12m_high"]
-        assert row["inside"]["0.8"] == (low <= row["outcome"] <= high)
-        assert (row["rank"] > 50) == (row["outcome"] > row["stated"])
-    coverage = json.loads(said.out)["running_coverage"]["Prices"]
-    assert [level["outcomes"] for level in coverage] == [4, 4, 4]
-    inside = sum(row["inside"]["0.8"] for row in one["horizons"][:4])
-    assert coverage[1]["inside"] == inside
-    code, said = run(["outlook", file(144), *flags, "--say", "No.", "--supersedes", "7"], capsys)
-    assert code == 2
-    assert "there is no number 7" in said.err
-
-
-def test_a_statement_is_only_made_from_the_newest_print(bridge):
-    from app.outlook.saying import say
-
-    for past in (state_of(last="2019-06"), state_of(as_of="2020-02-01")):
-        with pytest.raises(ValueError, match="must start from the newest print, Jun 2020"):
-            say(past, "We knew.", "", bridge)
-    with pytest.raises(ValueError, match="by its number, but got 'one'"):
-        say(state_of(), "Up.", "one", bridge)
-
-
-def test_the_invented_economy_has_an_outlook(request):
-    known = outlook(ViewState(), Bridge(Workspace(demo_releases())))
-    assert known.reach == 24
-    assert sentence(known).endswith("percent in Oct 2027.")

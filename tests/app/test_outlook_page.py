@@ -15,6 +15,7 @@ from app.outlook.saying import say
 from app.pages import outlook as page
 from app.server import build_app
 from app.state import ViewState
+from tests.app.components import nodes, words
 from tests.app.outlooks import QUICK, release, released
 
 QUERY = f"driver=Money&response=Prices&{QUICK}"
@@ -33,19 +34,6 @@ def answer(bridge):
     return page.answer(STATE, bridge)
 
 
-def walk(part):
-    yield part
-    children = getattr(part, "children", None)
-    for child in children if isinstance(children, list | tuple) else [children]:
-        if child is not None:
-            yield from walk(child)
-
-
-def text_of(part):
-    parts = part if isinstance(part, list) else [part]
-    return " ".join(each for one in parts for each in walk(one) if isinstance(each, str))
-
-
 def drawn(chart):
     return json.loads(chart) if isinstance(chart, str) else json.loads(chart.to_json())
 
@@ -59,7 +47,7 @@ def values(trace, axis="y"):
 
 
 def test_the_page_has_a_place_for_every_view_and_every_word(bridge):
-    parts = list(walk(page.layout(f"?{QUERY}", bridge)))
+    parts = nodes(page.layout(f"?{QUERY}", bridge))
     ids = {getattr(part, "id", None) for part in parts}
     assert {f"outlook-{place}" for place in page.PLACES} <= ids
     assert {f"outlook-{view}" for view in VIEWS} <= ids
@@ -94,21 +82,21 @@ def test_the_charts_hold_the_numbers_of_the_results(bridge, answer):
 
 def test_the_words_have_the_numbers_of_the_results(bridge, answer):
     known = outlook(STATE, bridge)
-    table = text_of(answer.words["backtest-words"])
+    table = words(answer.words["backtest-words"])
     for h in (3, 6, 12, 24, 36):
         assert f"{known.scores.rmse[h - 1]:.2f}" in table
         assert f"{known.scores.mae[h - 1]:.2f}" in table
     assert "the scores flatter" in table
-    assert f"{known.direct.with_driver[11]:.2f}" in text_of(answer.words["direct-words"])
-    assert f"{known.gap.observed[-1]:.2f}" in text_of(answer.words["gap-words"])
-    coverage = text_of(answer.words["coverage-words"])
+    assert f"{known.direct.with_driver[11]:.2f}" in words(answer.words["direct-words"])
+    assert f"{known.gap.observed[-1]:.2f}" in words(answer.words["gap-words"])
+    coverage = words(answer.words["coverage-words"])
     assert f"{known.scores.coverage[1][11].n}" in coverage
 
 
 def test_nothing_has_been_kept_yet_and_the_page_says_what_that_is_for(answer):
-    said = text_of(answer.words["statements-words"])
+    said = words(answer.words["statements-words"])
     assert said.startswith("No statement has been kept yet.")
-    assert "none: it stands beside them" in text_of(answer.words["supersedes"])
+    assert "none: it stands beside them" in words(answer.words["supersedes"])
 
 
 def test_without_a_path_the_rest_of_the_page_stands(bridge):
@@ -118,7 +106,7 @@ def test_without_a_path_the_rest_of_the_page_stands(bridge):
     assert not shown.jobs
     assert "shift must be 1 or more" in shown.verdict
     for place in ("fan-words", "backtest-words", "direct-words"):
-        assert "shift must be 1 or more" in text_of(shown.words[place])
+        assert "shift must be 1 or more" in words(shown.words[place])
 
 
 def test_statements_are_listed_with_what_came_of_them():
@@ -127,7 +115,7 @@ def test_statements_are_listed_with_what_came_of_them():
     completed_outlook(STATE, bridge)
     first = say(STATE, "Prices <b>ease</b>.", "", bridge)
     shown = page.answer(STATE, bridge)
-    assert "No outcome yet." in text_of(shown.words["statements-words"])
+    assert "No outcome yet." in words(shown.words["statements-words"])
     assert "statements" in shown.charts
     desk.add(release(143), "2020-02-15")
     second = say(STATE, "They do not.", str(first), bridge)
@@ -136,15 +124,15 @@ def test_statements_are_listed_with_what_came_of_them():
     assert [one.score.known for one in known.judged] == [5, 2]
     assert known.running["Prices"].n.tolist() == [2, 2, 2]  # the superseded one does not count
     shown = page.answer(STATE, bridge)
-    words = text_of(shown.words["statements-words"])
-    assert "Prices <b>ease</b>." in words
-    assert f"Superseded by statement {second}." in words
-    assert f"Supersedes statement {first}." in words
-    assert "2 outcomes so far" in words
+    said = words(shown.words["statements-words"])
+    assert "Prices <b>ease</b>." in said
+    assert f"Superseded by statement {second}." in said
+    assert f"Supersedes statement {first}." in said
+    assert "2 outcomes so far" in said
     score = known.judged[0].score
     newest = "above" if score.error[4] > 0 else "below"
-    assert f"{abs(score.error[4]):.2f} {newest} the path, rank {score.rank[4]:.0f} of 100" in words
-    choices = text_of(shown.words["supersedes"])
+    assert f"{abs(score.error[4]):.2f} {newest} the path, rank {score.rank[4]:.0f} of 100" in said
+    choices = words(shown.words["supersedes"])
     assert f"{second}, of" in choices
     assert f"{first}, of" not in choices
     traces = {t.get("name"): t for t in drawn(shown.charts["statements"])["data"]}
@@ -162,9 +150,9 @@ def test_earlier_statements_fold_away():
         say(STATE, f"View {number}.", "", bridge)
     listed = page.answer(STATE, bridge).words["statements-words"]
     fold = listed[-1]
-    assert text_of(fold).startswith("2 earlier statements")
-    assert "View 0." in text_of(fold)
-    assert "View 2." not in text_of(fold)
+    assert words(fold).startswith("2 earlier statements")
+    assert "View 0." in words(fold)
+    assert "View 2." not in words(fold)
 
 
 def test_a_statement_whose_series_are_gone_is_shown_and_not_scored():
@@ -179,7 +167,7 @@ def test_a_statement_whose_series_are_gone_is_shown_and_not_scored():
     desk.add(Release("other.csv", (money, replace(prices, name="Costs")), ()), "2020-03-15")
     state = ViewState.from_query(QUERY.replace("Prices", "Costs"))
     shown = page.answer(state, Bridge(desk))
-    assert "Not scored: no loaded series is named 'Prices'" in text_of(
+    assert "Not scored: no loaded series is named 'Prices'" in words(
         shown.words["statements-words"]
     )
 
@@ -201,7 +189,7 @@ def test_a_statement_is_kept_by_a_request_and_refused_in_a_sentence():
 
     done = post(query=f"?{QUERY}", words="Prices ease.", supersedes="")
     assert (done.status_code, done.json["message"]) == (200, "Kept as statement 1.")
-    for body, words in (
+    for body, why in (
         ({"words": " "}, "must have words"),
         ({"words": "x", "supersedes": "9"}, "there is no number 9"),
         ({"words": "x", "query": f"?{QUERY}&last=2018-01"}, "must start from the newest print"),
@@ -210,7 +198,7 @@ def test_a_statement_is_kept_by_a_request_and_refused_in_a_sentence():
     ):
         refused = post(**{"query": f"?{QUERY}", "supersedes": "", **body})
         assert refused.status_code == 422
-        assert words in refused.json["message"]
+        assert why in refused.json["message"]
     with desk.store.look() as db:
         assert db.execute("SELECT COUNT(*) FROM statements").fetchone()[0] == 1
 

@@ -1,8 +1,6 @@
 """The Data page: what it says and offers for a state; its requests; its files; its charts."""
 
-import csv
 from dataclasses import replace
-from urllib.parse import unquote
 
 import numpy as np
 import pandas as pd
@@ -12,45 +10,19 @@ from analytics.series import Series
 from app.compute import Bridge
 from app.demo import demo_releases
 from app.desk import bridge as desk
-from app.desk import pending
 from app.desk.exports import csv_export
-from app.figures.data import revisions_chart, sparkline
 from app.intake.problems import Problem
 from app.intake.reading import Release, read_release
 from app.pages import data as page
 from app.server import build_app
 from app.state import ViewState
 from app.workspace import Workspace
+from tests.app.asking import GOOD
+from tests.app.components import props, words
 from tests.app.test_desk import vintages
+from tests.exported import rows_of
 
 STATE = ViewState(series="Prices")
-GOOD = b"month,Money,Prices\n" + b"".join(
-    b"%d-%02d,%d,%d\n" % (2000 + i // 12, i % 12 + 1, 100 + i, 200 + i * i) for i in range(60)
-)
-
-
-def nodes(component):
-    """Every component inside one, itself first."""
-    found = []
-    if isinstance(component, (list, tuple)):
-        for each in component:
-            found += nodes(each)
-    elif hasattr(component, "to_plotly_json"):
-        found.append(component)
-        found += nodes(getattr(component, "children", None))
-    return found
-
-
-def words(component):
-    if isinstance(component, (list, tuple)):
-        return " ".join(words(each) for each in component)
-    if hasattr(component, "to_plotly_json"):
-        return words(getattr(component, "children", None))
-    return "" if component is None else str(component)
-
-
-def props(component):
-    return [each.to_plotly_json()["props"] for each in nodes(component)]
 
 
 def answer(workspace, state=STATE):
@@ -216,149 +188,7 @@ def test_the_preview_says_what_was_understood_and_changes_nothing():
     assert "revises" not in fresh
 
 
-# Requests ------------------------------------------------------------------------------------
-
-
-@pytest.fixture
-def own():
-    here = Workspace(placeholder=demo_releases())
-    return build_app(here).server.test_client(), here
-
-
-def post(client, address, body):
-    return client.post(address, json=body)
-
-
-def test_a_previewed_file_is_kept_only_when_asked(own):
-    client, here = own
-    sent = client.post("/intake?preview=1&name=release.csv", data=GOOD)
-    assert sent.status_code == 200
-    assert sent.json["series"] == ["Money", "Prices"]
-    assert here.as_of().placeholder
-    kept = post(client, "/intake/keep", {"tokens": [sent.json["token"]], "day": "2024-03-12"})
-    assert (kept.status_code, kept.json["kept"][0]["file"]) == (200, "release.csv")
-    assert list(here.series) == ["Money", "Prices"]
-    assert here.as_of().files[0].day == "2024-03-12"
-    again = post(client, "/intake/keep", {"tokens": [sent.json["token"]]})
-    assert again.status_code == 422
-    assert "no longer held for a look; open it again" in again.json["message"]
-    assert len(here.releases) == 1
-
-
-def test_files_that_gave_way_are_counted_and_the_others_kept(own, monkeypatch):
-    monkeypatch.setattr(pending, "MOST_FILES", 2)
-    client, here = own
-    tokens = [
-        client.post(f"/intake?preview=1&name={k}.csv", data=GOOD).json["token"] for k in range(4)
-    ]
-    kept = post(client, "/intake/keep", {"tokens": tokens})
-    assert (kept.status_code, kept.json["left"]) == (422, [])
-    assert kept.json["message"] == "2 files are no longer held for a look; open them again"
-    assert [each.name for each in here.releases] == ["2.csv", "3.csv"]
-
-
-def test_a_discarded_file_is_gone(own):
-    client, here = own
-    token = client.post("/intake?preview=1&name=a.csv", data=GOOD).json["token"]
-    assert post(client, "/intake/discard", {"tokens": [token]}).status_code == 200
-    assert post(client, "/intake/keep", {"tokens": [token]}).status_code == 422
-    assert here.as_of().placeholder
-
-
-def test_several_files_are_kept_in_their_order(own):
-    client, here = own
-    tokens = [
-        client.post(f"/intake?preview=1&name={name}.csv", data=GOOD).json["token"] for name in "ab"
-    ]
-    kept = post(client, "/intake/keep", {"tokens": tokens, "day": ""})
-    assert [each["file"] for each in kept.json["kept"]] == ["a.csv", "b.csv"]
-    assert [each.name for each in here.releases] == ["a.csv", "b.csv"]
-
-
-@pytest.mark.parametrize("body", [None, [], {}, {"tokens": "x"}, {"tokens": [1]}, {"tokens": None}])
-def test_keep_without_files_is_refused(own, body):
-    client, here = own
-    answer = post(client, "/intake/keep", body)
-    assert (answer.status_code, here.as_of().placeholder) == (422, True)
-    assert len(answer.json["message"]) > 10
-
-
-@pytest.mark.parametrize("day", ["2024-02-30", "today", "'; --", "9" * 5000])
-def test_a_day_that_is_none_keeps_nothing_and_the_file_stays_held(own, day):
-    client, here = own
-    token = client.post("/intake?preview=1&name=a.csv", data=GOOD).json["token"]
-    answer = post(client, "/intake/keep", {"tokens": [token], "day": day})
-    assert answer.status_code == 422
-    assert "must be a date" in answer.json["message"]
-    assert here.as_of().placeholder
-    assert post(client, "/intake/keep", {"tokens": [token]}).status_code == 200
-
-
-def test_corrections_and_files_out_of_view_over_the_wire(own):
-    client, here = own
-    client.post("/intake?name=release.csv", data=GOOD)
-    sent = {"series": "Prices", "field": "kind", "value": "index"}
-    assert post(client, "/workspace/correct", sent).status_code == 200
-    assert here.named("Prices").kind == "index"
-    assert post(client, "/workspace/hide", {"file": "release.csv"}).status_code == 200
-    assert here.series == {}
-    assert post(client, "/workspace/show", {"file": "release.csv"}).status_code == 200
-    assert here.named("Prices").kind == "index"
-
-
-@pytest.mark.parametrize(
-    ("act", "body", "status", "said"),
-    [
-        ("correct", {"series": "Nope", "field": "unit", "value": "x"}, 422, "no loaded series"),
-        ("correct", {"series": "Nope", "field": "unit"}, 422, "the page must say what"),
-        ("correct", {"series": ["x"], "field": "unit", "value": "x"}, 422, "the page must say"),
-        ("hide", {"file": "nope.csv"}, 422, "no file in view is named 'nope.csv'"),
-        ("show", {}, 422, "the page must say what"),
-        ("close", {}, 404, "there is nothing named 'close' to do"),
-        ("__init__", {}, 404, "there is nothing named"),
-    ],
-)
-def test_what_cannot_be_changed_is_refused_in_a_sentence(own, act, body, status, said):
-    client, _ = own
-    answer = post(client, f"/workspace/{act}", body)
-    assert answer.status_code == status
-    assert said in answer.json["message"]
-    headers = {"Sec-Fetch-Site": "cross-site"}
-    assert client.post(f"/workspace/{act}", json=body, headers=headers).status_code == 403
-
-
-def test_a_workspace_that_cannot_be_read_is_told_on_the_page(own):
-    client, here = own
-    client.post("/intake?name=release.csv", data=GOOD)
-    with here.store.change() as db:
-        db.execute("UPDATE vintages SET content = x'0102'")
-    said = "the vintage of 'Money' in the workspace is damaged"
-    for path in ("/lag", "/data"):
-        sent = {
-            "output": "..page.children...page-title.children..",
-            "outputs": [
-                {"id": "page", "property": "children"},
-                {"id": "page-title", "property": "children"},
-            ],
-            "inputs": [
-                {"id": "address", "property": "pathname", "value": path},
-                {"id": "address", "property": "search", "value": ""},
-            ],
-            "changedPropIds": ["address.pathname"],
-        }
-        answer = client.post("/_dash-update-component", json=sent)
-        assert answer.status_code == 200
-        assert path == "/data" or said in answer.get_data(as_text=True)
-    table = client.get("/export/data/series.csv")
-    assert (table.status_code, said in table.get_data(as_text=True)) == (400, True)
-
-
 # Files ---------------------------------------------------------------------------------------
-
-
-def body_of(text):
-    lines = [line for line in text.splitlines() if not line.startswith("#")]
-    return list(csv.reader(lines))
 
 
 def test_the_revisions_leave_as_they_are_on_the_page():
@@ -366,7 +196,7 @@ def test_the_revisions_leave_as_they_are_on_the_page():
     found = desk.revised(STATE, here)
     name, text = csv_export("revisions", STATE.to_query(), here)
     assert name == "revisions-prices-growth.csv"
-    table = body_of(text)
+    table = rows_of(text)
     assert table[0] == [
         *("period", "first", "stood from", "latest", "revision", "vintages"),
         *("first print", "counted"),
@@ -391,7 +221,7 @@ def test_the_list_of_series_leaves_as_a_file():
     here = Bridge(vintages(4))
     name, text = csv_export("series", "", here)
     assert name == "series.csv"
-    table = body_of(text)
+    table = rows_of(text)
     found = dict(zip(table[0], table[1], strict=True))
     assert found["name"] == "Prices"
     assert found["vintages"] == "4"
@@ -414,46 +244,3 @@ def test_what_is_not_there_cannot_be_exported(view, workspace, said):
     answer = client.get(f"/export/data/{view}.csv")
     assert answer.status_code == 400
     assert said in answer.get_data(as_text=True)
-
-
-# Charts --------------------------------------------------------------------------------------
-
-
-def test_the_chart_draws_the_result_and_nothing_else():
-    found = desk.revised(STATE, Bridge(vintages()))
-    chart = revisions_chart(found.result, found.start, found.unit)
-    latest, printed, change = chart.data
-    shown = slice(found.start, None)
-    np.testing.assert_array_equal(latest.y, found.result.latest[shown])
-    expected = np.where(found.result.first_print, found.result.first, np.nan)[shown]
-    np.testing.assert_array_equal(printed.y, expected)
-    np.testing.assert_array_equal(change.y[:-1], found.result.revision[shown][:-1])
-    assert np.isnan(change.y[-1])  # the newest print cannot have been revised
-    assert latest.text[-1] == "Apr 2023"
-    assert chart.layout.yaxis.title.text == "percent a month"
-    assert {trace.name for trace in chart.data} == {"latest", "first print", "revision"}
-
-
-def path_of(values):
-    svg = unquote(sparkline(np.array(values, float)).removeprefix("data:image/svg+xml,"))
-    assert svg.startswith('<svg xmlns="http://www.w3.org/2000/svg"')
-    return svg.split(' d="')[1].split('"')[0]
-
-
-def test_the_small_line_runs_from_low_to_high_and_breaks_at_a_gap():
-    assert path_of([0, 1]) == "M2.0 26.0L118.0 2.0"
-    assert path_of([1, 0, 1]) == "M2.0 2.0L60.0 26.0L118.0 2.0"
-    assert path_of([0, 1, np.nan, 1, 0]).count("M") == 2
-    assert path_of([5, 5, 5]) == "M2.0 14.0L60.0 14.0L118.0 14.0"
-    assert path_of([7.0]) == "M2.0 14.0h.01"
-    assert "nan" not in path_of([1e308, -1e308, 0])
-
-
-def test_no_jump_of_a_long_series_is_lost_in_the_small_line():
-    values = np.ones(5000)
-    values[1234] = 10.0
-    path = path_of(values)
-    assert " 2.0L" in path
-    assert path.count("L") < 200
-    values[3000] = np.nan
-    assert path_of(values).count("M") == 2

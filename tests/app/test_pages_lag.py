@@ -12,6 +12,7 @@ from app.lag.evidence import completed
 from app.pages.lag import CAUTION, layout, payload, view
 from app.state import ViewState, field_kind
 from app.workspace import Workspace
+from tests.app.components import nodes, words
 from tests.app.economies import LAG, planted, workspace
 
 STATE = ViewState(driver="Money", response="Prices", window=3, shift=LAG, surrogates=39)
@@ -25,32 +26,9 @@ def answered(state, here):
     return answer(view(state, here), completed(state, here))
 
 
-def parts(component):
-    """Every component of a page."""
-    found = [component]
-    children = getattr(component, "children", None)
-    for child in children if isinstance(children, list) else [children]:
-        if hasattr(child, "to_plotly_json"):
-            found += parts(child)
-    return found
-
-
 def by_id(page, name):
-    (found,) = [part for part in parts(page) if getattr(part, "id", None) == name]
+    (found,) = [part for part in nodes(page) if getattr(part, "id", None) == name]
     return found
-
-
-def words(page):
-    return " ".join(
-        child
-        for part in parts(page)
-        for child in (
-            part.children
-            if isinstance(getattr(part, "children", None), list)
-            else [getattr(part, "children", None)]
-        )
-        if isinstance(child, str)
-    )
 
 
 # The answer ----------------------------------------------------------------------------------
@@ -210,14 +188,14 @@ def test_the_page_has_a_control_for_each_field_that_it_changes():
     page = layout(STATE.to_query(), bridge())
     shown = {
         getattr(part, "data-control"): getattr(part, "data-help-words")
-        for part in parts(page)
+        for part in nodes(page)
         if hasattr(part, "data-control")
     }
     at_least = {
         "driver", "response", "window", "shift", "growth", "first", "last", "months", "quantity"
     }  # fmt: skip
     assert at_least <= shown.keys()
-    ids = [part.id for part in parts(page) if getattr(part, "id", None)]
+    ids = [part.id for part in nodes(page) if getattr(part, "id", None)]
     assert len(ids) == len(set(ids))
     for name in at_least:
         assert shown[name] == field_kind(name).help
@@ -226,7 +204,7 @@ def test_the_page_has_a_control_for_each_field_that_it_changes():
 @pytest.mark.parametrize("name", ["surface", "scatter", "overlay"])
 def test_each_view_can_be_saved_as_png_svg_and_csv(name):
     page = layout(STATE.to_query(), bridge())
-    (buttons,) = [part for part in parts(page) if getattr(part, "data-saves", None) == name]
+    (buttons,) = [part for part in nodes(page) if getattr(part, "data-saves", None) == name]
     assert set(getattr(buttons, "data-kinds").split()) == {"table", "png", "svg", "csv", "brief"}
     assert by_id(page, f"lag-{name}").config["plotlyServerURL"] == ""
 

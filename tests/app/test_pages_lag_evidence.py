@@ -6,7 +6,6 @@ from dataclasses import asdict, replace
 import numpy as np
 import pytest
 
-from app.compute import Bridge
 from app.figures import evidence as figures
 from app.lag.cells import episode_code, influence
 from app.lag.evidence import (
@@ -23,15 +22,12 @@ from app.pages.lag_evidence import FOLDS, answer
 from app.pages.lag_words import MOST_EPISODES
 from app.server import build_app
 from app.words import p_words, percent, shift_words
+from tests.app import evidence_cases as cases
+from tests.app.components import nodes, words
 from tests.app.economies import LAG, planted, workspace
-from tests.app.evidence_cases import STATE, case, noise, rates
-from tests.app.test_pages_lag import parts, words
+from tests.app.evidence_cases import case, fresh, noise, rates
 
-SMALL = replace(STATE, windows="1:6", shifts="-6:12", surrogates=300)  # two chunks
-
-
-def fresh(*series, **options):
-    return Bridge(workspace(*(series or planted(**options))))
+SMALL = replace(cases.SMALL, surrogates=300)  # two chunks
 
 
 def taken(state, bridge, opened=()):
@@ -42,10 +38,6 @@ def taken(state, bridge, opened=()):
     return {"strip": strip, "verdict": said, **dict(zip(FOLDS, folds, strict=True)), "data": data}
 
 
-def text(children):
-    return " ".join(words(child) for child in children)
-
-
 def strip_values(found):
     """Name and value of each figure of the strip."""
 
@@ -54,7 +46,7 @@ def strip_values(found):
         return inner if isinstance(inner, str) else inner.children
 
     return [
-        tuple(first(part) for part in parts(item) if type(part).__name__ in ("Dt", "Dd"))
+        tuple(first(part) for part in nodes(item) if type(part).__name__ in ("Dt", "Dd"))
         for item in found["strip"]
     ]
 
@@ -72,7 +64,7 @@ def test_before_the_search_the_page_asks_for_it():
     assert data["state"] == asdict(SMALL)
     assert found["verdict"].startswith("Not searched yet")
     assert ("search-adjusted p", "not searched") in strip_values(found)
-    assert "once the search is done" in text(found["profile"])
+    assert "once the search is done" in words(found["profile"])
 
 
 def test_while_the_search_runs_nothing_is_said_of_it():
@@ -92,7 +84,7 @@ def test_after_the_search_the_set_is_asked_for_where_it_holds():
     assert found["data"]["set"] == []
     assert "profile" not in found["data"]["figures"]
     assert len(found["data"]["support"]) == 2
-    assert text(found["profile"]) == "Being worked out."
+    assert words(found["profile"]) == "Being worked out."
     bridge.jobs.complete(shift_set_work(SMALL, bridge))
     found = taken(SMALL, bridge)
     assert found["data"]["jobs"] == []
@@ -123,9 +115,9 @@ def test_when_all_is_done_the_page_shows_what_python_completes():
     worth = round(known.inference.effective_months)
     said = f"{known.inference.n} months behave like {worth} independent ones"
     assert values[3] == ("effective months", said)
-    assert f"One-sided {p_words(search.p_one_sided)}." in text(found["strip"])
+    assert f"One-sided {p_words(search.p_one_sided)}." in words(found["strip"])
     moved = f"{search.p_error:.3f}".lstrip("0")
-    assert f"Another seed moves p by about {moved}." in text(found["strip"])
+    assert f"Another seed moves p by about {moved}." in words(found["strip"])
 
 
 def test_an_unrelated_pair_shows_no_set_and_asks_for_none():
@@ -135,7 +127,7 @@ def test_an_unrelated_pair_shows_no_set_and_asks_for_none():
     assert found["data"]["set"] == []
     assert len(found["data"]["support"]) == 2
     assert "profile" not in found["data"]["figures"]
-    assert f"It does not here (p {p_words(known.search.p)}), so none is shown." in text(
+    assert f"It does not here (p {p_words(known.search.p)}), so none is shown." in words(
         found["profile"]
     )
 
@@ -147,7 +139,7 @@ def test_a_pair_that_cannot_be_searched_gets_the_sentence_and_no_work(name):
     assert found["data"]["jobs"] == []
     assert found["data"]["support"] == []
     assert found["verdict"].startswith(f"There is no search here: {known.refusal}.")
-    assert text(found["profile"]) == f"There is no search here: {known.refusal}."
+    assert words(found["profile"]) == f"There is no search here: {known.refusal}."
     assert ("search-adjusted p", "not searched") in strip_values(found)
     assert "directions" not in taken(state, bridge, ("opinions",))["data"]["jobs"]
 
@@ -161,7 +153,7 @@ def test_a_refused_shift_set_is_not_asked_for_again():
         bridge.jobs.step(shift_set_work(SMALL, bridge))
     found = taken(SMALL, bridge)
     assert found["data"]["jobs"] == []
-    assert "There is no set here: the response must not follow" in text(found["profile"])
+    assert "There is no set here: the response must not follow" in words(found["profile"])
 
 
 # Folds ---------------------------------------------------------------------------------------
@@ -174,7 +166,7 @@ def test_an_opened_fold_asks_for_what_it_needs():
     opened = ("opinions", "stability")
     found = taken(SMALL, bridge, opened)
     assert found["data"]["jobs"] == ["directions", "opinions", "stability"]
-    assert text(found["opinions"]) == text(found["stability"]) == "Being worked out."
+    assert words(found["opinions"]) == words(found["stability"]) == "Being worked out."
     for kind in found["data"]["jobs"]:
         bridge.jobs.complete(WORK[kind](SMALL, bridge))
     found = taken(SMALL, bridge, opened)
@@ -188,7 +180,7 @@ def test_the_words_of_the_opinions_are_their_numbers():
     bridge = fresh()
     asked = bridge.jobs.complete(opinions_work(SMALL, bridge))
     both = bridge.jobs.complete(directions_work(SMALL, bridge))
-    said = text(taken(SMALL, bridge, ("opinions",))["opinions"])
+    said = words(taken(SMALL, bridge, ("opinions",))["opinions"])
     for opinion in asked.opinions:
         assert f"{opinion.method} {shift_words(opinion.shift, 'month')}" in said
     assert f"driver first, search-adjusted p {p_words(both.forward.p)}" in said
@@ -199,7 +191,7 @@ def test_the_words_of_the_opinions_are_their_numbers():
 def test_the_words_of_stability_are_its_numbers():
     bridge = fresh()
     stable = bridge.jobs.complete(stability_work(SMALL, bridge))
-    said = text(taken(SMALL, bridge, ("stability",))["stability"])
+    said = words(taken(SMALL, bridge, ("stability",))["stability"])
     assert f"a slope over {stable.span} months" in said
     assert said.endswith(f"probability {p_words(stable.rolling_slope.p_constant)}.")
 
@@ -213,7 +205,7 @@ def test_work_that_is_refused_is_said_and_not_asked_for_again():
             bridge.jobs.step(WORK[kind](state, bridge))
     found = taken(state, bridge, ("opinions",))
     assert found["data"]["jobs"] == []
-    assert text(found["opinions"]).startswith("Other methods cannot be asked here: the map has no")
+    assert words(found["opinions"]).startswith("Other methods cannot be asked here: the map has no")
 
 
 @pytest.mark.parametrize("months", ["own", "same"])
@@ -223,9 +215,9 @@ def test_the_episodes_are_listed_by_weight_and_can_be_chosen(months):
     ranked = sorted(known.influence.episodes, key=lambda e: -max(abs(e.share), e.weight))
     assert len(ranked) > 2
     found = taken(state, bridge)
-    said = text(found["episodes"])
+    said = words(found["episodes"])
     assert said.startswith(fragility(known, pair, state))
-    buttons = [part for child in found["episodes"] for part in parts(child)
+    buttons = [part for part in nodes(found["episodes"])
                if type(part).__name__ == "Button"]  # fmt: skip
     codes = [episode_code(e, pair, state) for e in ranked[:MOST_EPISODES]]
     assert [getattr(b, "data-without") for b in buttons] == codes
@@ -236,7 +228,7 @@ def test_the_episodes_are_listed_by_weight_and_can_be_chosen(months):
 
     chosen = replace(state, without=codes[1])
     found = taken(chosen, bridge)
-    buttons = [part for child in found["episodes"] for part in parts(child)
+    buttons = [part for part in nodes(found["episodes"])
                if type(part).__name__ == "Button"]  # fmt: skip
     assert [getattr(b, "aria-pressed") for b in buttons].count("true") == 1
     assert getattr(buttons[1], "aria-pressed") == "true"
@@ -248,7 +240,7 @@ def test_the_episodes_are_listed_by_weight_and_can_be_chosen(months):
 def test_an_episode_of_another_cell_is_said_and_the_page_stays():
     bridge = fresh()
     found = taken(replace(SMALL, without="1990-01:1991-01"), bridge)
-    assert "Without must name an episode of this cell" in text(found["episodes"])
+    assert "Without must name an episode of this cell" in words(found["episodes"])
     assert "without" not in found["data"]["figures"]
     assert found["verdict"]
 
@@ -257,7 +249,7 @@ def test_the_fold_of_the_plane_names_its_interval():
     bridge = fresh()
     judged = completed(SMALL, bridge).inference
     low, high = judged.slope_interval
-    said = text(taken(SMALL, bridge)["plane"])
+    said = words(taken(SMALL, bridge)["plane"])
     assert f"Slope {judged.slope:.3f}, 95 % interval {low:.3f} to {high:.3f}" in said
     assert "Seasonal means are taken out first." in said
 

@@ -1,7 +1,5 @@
 """The Reading page without a browser: its words, charts, files and the command."""
 
-import csv
-import io
 import json
 from functools import partial
 
@@ -18,8 +16,10 @@ from app.reading.fields import READING_FIELDS, READING_VIEWS
 from app.reading.words import set_off
 from app.state import ViewState
 from app.workspace import Workspace
+from tests.app.components import nodes, words
 from tests.app.economies import workspace
 from tests.app.test_reading import prices, walk
+from tests.exported import records, taken_apart
 
 DRAWS = 99
 
@@ -29,25 +29,10 @@ def bridge():
     return Bridge(Workspace(demo_releases()))
 
 
-def text_of(component):
-    """All the words of a component."""
-    if component is None:
-        return ""
-    if isinstance(component, str):
-        return component
-    if isinstance(component, list | tuple):
-        return " ".join(text_of(part) for part in component)
-    return text_of(getattr(component, "children", None))
-
-
-def ids_of(component):
-    if isinstance(component, list | tuple):
-        return {name for part in component for name in ids_of(part)}
-    found = {component.id} if getattr(component, "id", None) else set()
-    if hasattr(component, "data-saves"):  # its buttons are built in the browser
-        found.add(f"csv-{getattr(component, 'data-saves')}")
-    children = getattr(component, "children", None)
-    return found | ids_of(children) if children is not None and children != "" else found
+def ids_of(tree):
+    found = {node.id for node in nodes(tree) if getattr(node, "id", None)}
+    saved = {getattr(node, "data-saves", None) for node in nodes(tree)} - {None}
+    return found | {f"csv-{name}" for name in saved}  # buttons are built in the browser
 
 
 def drawn(chart):
@@ -69,11 +54,11 @@ def test_every_view_is_drawn_and_the_long_work_is_left_to_be_asked_for(bridge):
     assert set(answer.charts) == set(VIEWS)
     assert set(answer.words) == set(page.PLACES)
     assert list(answer.jobs) == ["goodness"]
-    assert "is being tested" in text_of(answer.words["distribution-words"])
+    assert "is being tested" in words(answer.words["distribution-words"])
     completed_reading(ViewState(draws=DRAWS, seed=9), bridge)
     done = page.answer(ViewState(draws=DRAWS, seed=9), bridge)
     assert not done.jobs
-    assert "Anderson-Darling p" in text_of(done.words["distribution-words"])
+    assert "Anderson-Darling p" in words(done.words["distribution-words"])
 
 
 def test_a_slider_move_redraws_the_path_and_keeps_the_rest(bridge):
@@ -93,22 +78,22 @@ def test_display_choices_change_the_chart_kept(bridge):
 
 def test_the_words_beside_the_charts_have_the_numbers_of_the_results(bridge):
     state = ViewState(coming=1, draws=DRAWS)
-    known, words = reading(state, bridge), page.answer(state, bridge).words
-    table = text_of(words["summary"])
+    known, shown = reading(state, bridge), page.answer(state, bridge).words
+    table = words(shown["summary"])
     for formula in ("percent", "log"):
         for name in ("one", "quarter_annualised", "half_annualised", "year", "annual_average"):
             assert f"{getattr(known.rates[formula], name):.2f}" in table
-    assert f"{known.path.yearly[-1]:.1f} percent" in text_of(words["whatif-words"])
-    assert f"{known.drops.rate[0]:.2f} percent drops out" in text_of(words["base-words"])
-    assert f"{known.standing.below} below" in text_of(words["rank-words"])
-    assert "IAS 29" in text_of(words["episodes-words"])
+    assert f"{known.path.yearly[-1]:.1f} percent" in words(shown["whatif-words"])
+    assert f"{known.drops.rate[0]:.2f} percent drops out" in words(shown["base-words"])
+    assert f"{known.standing.below} below" in words(shown["rank-words"])
+    assert "IAS 29" in words(shown["episodes-words"])
 
 
 def test_alerts_stand_on_the_page(bridge):
     state = ViewState(newest="1973-07")
-    words = text_of(page.answer(state, bridge).words["alerts"])
-    assert "The 12-month rate is 14.91 percent, above 5.00 percent." in words
-    assert text_of(page.answer(ViewState(), bridge).words["alerts"]) == ""
+    said = words(page.answer(state, bridge).words["alerts"])
+    assert "The 12-month rate is 14.91 percent, above 5.00 percent." in said
+    assert words(page.answer(ViewState(), bridge).words["alerts"]) == ""
 
 
 @pytest.mark.parametrize(
@@ -124,7 +109,7 @@ def test_a_view_that_cannot_be_drawn_says_why(series, views):
     answer = page.answer(ViewState(series="Prices"), Bridge(workspace(series)))
     assert set(answer.charts) == views
     for missing in set(VIEWS) - views:
-        assert "Not shown: " in text_of(answer.words[f"{missing}-words"]), missing
+        assert "Not shown: " in words(answer.words[f"{missing}-words"]), missing
 
 
 def test_an_unknown_series_is_said_in_one_sentence(bridge):
@@ -176,12 +161,6 @@ def test_axes_carry_units(bridge):
 # Files and command ---------------------------------------------------------------------------
 
 
-def rows_of(text):
-    lines = text.splitlines()
-    head = [line for line in lines if line.startswith("#")]
-    return head, list(csv.DictReader(io.StringIO("\n".join(lines[len(head) :]))))
-
-
 def test_views_of_the_command_and_of_the_page_are_the_same():
     assert set(READING_VIEWS) == set(VIEWS)
 
@@ -190,8 +169,8 @@ def test_views_of_the_command_and_of_the_page_are_the_same():
 def test_every_view_is_a_file_that_names_what_it_holds(bridge, view):
     name, text = csv_export(view, f"draws={DRAWS}", bridge)
     assert name == f"reading-{view}-consumer-prices-2026-10.csv"
-    head, rows = rows_of(text)
-    assert rows
+    head, rows = taken_apart(text)
+    assert len(rows) > 1
     assert any("fingerprint" in line for line in head)
     assert any("/reading?draws=99" in line for line in head)
     if view in ("distribution", "quantiles"):
@@ -200,16 +179,16 @@ def test_every_view_is_a_file_that_names_what_it_holds(bridge, view):
 
 def test_files_keep_every_digit(bridge):
     known = reading(ViewState(), bridge)
-    _, rates = rows_of(view_text("rates", known))
+    rates = records(view_text("rates", known))
     assert float(rates[-1]["rate_12m_percent"]) == known.rates["percent"].year
     assert float(rates[-1]["annual_average_log"]) == known.rates["log"].annual_average
     assert rates[0]["rate_1m_percent"] == ""
     assert float(rates[-1]["factor"]) == known.factor.values[-1]
-    _, base = rows_of(view_text("base", known))
+    base = records(view_text("base", known))
     for row in base[:24]:
         assert float(row["new"]) + float(row["base"]) == pytest.approx(float(row["change"]))
     assert [row["part"] for row in base] == ["observed"] * 24 + ["to come"] * 12
-    _, steps = rows_of(view_text("rank", known))
+    steps = records(view_text("rank", known))
     assert float(steps[-1]["share_at_or_below"]) == 1.0
 
 
@@ -280,7 +259,7 @@ def test_a_date_reads_the_vintages_and_a_month_the_print(run):
 def test_the_command_writes_the_view_asked_for(run, tmp_path):
     status, _, _ = run("--csv", "out.csv", "--view", "episodes")
     assert status == 0
-    _, rows = rows_of((tmp_path / "out.csv").read_text(encoding="utf-8"))
+    rows = records((tmp_path / "out.csv").read_text(encoding="utf-8"))
     assert {"kind", "first", "last", "peak"} <= set(rows[0])
 
 

@@ -1,6 +1,5 @@
 """`pricewake scan`: what it prints and writes, what it goes on from, and its refusals."""
 
-import csv
 import json
 import os
 import re
@@ -20,6 +19,7 @@ from app.scan.result_file import panel_text
 from app.state import ViewState
 from app.workspace import Workspace
 from tests.app.panels import SMALL, panel_file
+from tests.exported import rows_of
 
 ROOT = Path(__file__).resolve().parents[2]
 SLOPES = {"Ardenquay": 1.0, "Belmorrow": 0.0, "Corvessa": 0.6}
@@ -83,10 +83,10 @@ def test_without_json_it_says_what_holds_and_what_it_does_not_say(run, panel):
 def test_each_view_is_written_as_a_table(run, panel, tmp_path, view, first, rows):
     path = tmp_path / "view.csv"
     code, _, _ = run("scan", panel, *FLAGS, "--csv", path, "--view", view)
-    body = [x for x in path.read_text(encoding="utf-8").splitlines() if not x.startswith("# ")]
+    names, *body = rows_of(path.read_text(encoding="utf-8"))
     assert code == 0
-    assert body[0].startswith(first)
-    assert len(list(csv.reader(body[1:]))) == rows
+    assert ",".join(names).startswith(first)
+    assert len(body) == rows
 
 
 def test_drivers_and_responses_are_named_by_what_they_are_called_within(run, counted, panel):
@@ -143,11 +143,11 @@ def test_a_scan_killed_half_way_goes_on_where_it_was(panel, tmp_path):
         [*words, "--out", str(path)], cwd=ROOT, env=env, stdout=subprocess.DEVNULL
     )
     end = time.monotonic() + 90
-    while time.monotonic() < end and rows_of(path) < 2:
+    while time.monotonic() < end and whole_rows(path) < 2:
         time.sleep(0.02)
     first.send_signal(signal.SIGKILL)
     first.wait()
-    left = rows_of(path)
+    left = whole_rows(path)
     assert 2 <= left < 9
     text = path.read_bytes()
     assert text.endswith(b"\r\n")
@@ -159,7 +159,7 @@ def test_a_scan_killed_half_way_goes_on_where_it_was(panel, tmp_path):
     assert path.read_bytes().decode() == panel_text(never_stopped, question(state, bridge).settings)
 
 
-def rows_of(path):
+def whole_rows(path):
     """Whole rows below the head and the names of the columns."""
     if not path.exists():
         return 0
@@ -204,7 +204,7 @@ def test_a_disk_that_fills_half_way_leaves_whole_rows_and_no_half_file(panel, tm
     assert os.listdir(tmp_path) == ["r.csv"]
     assert (tmp_path / "r.csv").read_bytes().endswith(b"\r\n")
     assert run("scan", panel, *FLAGS, "--out", tmp_path / "r.csv")[0] == 0  # and goes on
-    assert rows_of(tmp_path / "r.csv") == 3
+    assert whole_rows(tmp_path / "r.csv") == 3
 
 
 def test_a_device_is_no_result_and_is_not_read_to_its_end(run, panel):

@@ -21,8 +21,9 @@ from app.server import build_app
 from app.state import StateError, ViewState
 from app.words import p_words
 from app.workspace import Workspace
+from tests.app.components import nodes, words
 from tests.app.panels import DRAWS, SMALL, panel_file, panel_workspace
-from tests.app.test_scan_page import parts, rows_of, text
+from tests.app.test_scan_page import rows_of
 
 STATE = ViewState(**SMALL)
 SLOPES = {"Ardenquay": 1.0, "Belmorrow": 0.0, "Corvessa": 0.6, "Dunmarrel": 0.0, "Elquire": 0.8}
@@ -66,14 +67,14 @@ def test_without_the_series_the_table_and_the_shifts_are_there(searched, content
     assert "6 pairs of 6 economies, windows 1 to 4 and shifts −2 to +8 months" in shown.sentence
     assert shown.sentence.endswith("opened from r.csv")
     assert shown.verdict.startswith("3 of 5 pairs hold")
-    said = text(shown.words["notes"])
+    said = words(shown.words["notes"])
     assert f"Opened from r.csv, written by Pricewake {software_version()}: seed 1, 99" in said
     assert "maps and averages are missing" in said
-    table = text(shown.words["pairs"])
+    table = words(shown.words["pairs"])
     for scan_, p in zip(panel.pairs, panel.p_scan, strict=True):
         assert scan_.economy in table
         assert scan_.refused in table if scan_.refused else p_words(p) in table
-    assert parts(shown.words["pairs"], "Link") == []  # there is nothing to lead to
+    assert nodes(shown.words["pairs"], "Link") == []  # there is nothing to lead to
     assert (shown.jobs, shown.state.surrogates) == ({}, 99)
     assert sum(sum(bar.y) for bar in shown.charts["shifts"].data) == 5
     with pytest.raises(StateError, match="not held any more; open its file again"):
@@ -84,16 +85,16 @@ def test_with_the_series_maps_averages_and_links_are_those_of_the_search(searche
     asked, _ = searched
     shown, bridge = shown_in(panel_workspace(SLOPES), content)
     assert set(shown.charts) == {"surfaces", "shifts", "averages"}
-    assert len(parts(shown.words["pairs"], "Link")) == len(parts(shown.words["maps"], "Link")) == 5
-    assert "maps and averages are of the 5 of 6 pairs" in text(shown.words["notes"])
+    assert len(nodes(shown.words["pairs"], "Link")) == len(nodes(shown.words["maps"], "Link")) == 5
+    assert "maps and averages are of the 5 of 6 pairs" in words(shown.words["notes"])
     known = scan(shown.state, bridge)
     assert [one.names for one in known.question.pairs] == [one.names for one in asked.pairs]
     assert known.question.averages == asked.averages
     # A series that has changed since is not drawn as if it were the one that was searched.
     other = panel_workspace(SLOPES | {"Corvessa": 0.5})
     shown, _ = shown_in(other, content)
-    assert len(parts(shown.words["maps"], "Link")) == 4
-    assert "the 4 of 6 pairs" in text(shown.words["notes"])
+    assert len(nodes(shown.words["maps"], "Link")) == 4
+    assert "the 4 of 6 pairs" in words(shown.words["notes"])
 
 
 def test_its_views_leave_as_csv_and_the_pairs_can_be_opened_again(content):
@@ -120,7 +121,7 @@ def test_a_scan_that_was_stopped_says_so(searched, content):
     rows = [",".join(map(_cell, row(one))).encode() for one in panel.pairs[:3]]
     growing = b"\r\n".join([head, columns, *rows, b""])
     shown, _ = shown_in(Workspace(), growing + b"Dunmarrel,Broad mon")
-    said = text(shown.words["notes"])
+    said = words(shown.words["notes"])
     assert "had not come to its end" in said
     assert "last line of the file is cut short" in said
     assert "2 of 3 pairs hold" in shown.verdict

@@ -1,14 +1,11 @@
 """The Scan page: words, charts and tables hold the numbers of the result; many pairs wait."""
 
-import csv
-import io
 import json
 import math
 from dataclasses import replace
 
 import numpy as np
 import pytest
-from dash.development.base_component import Component
 
 from analytics.panel import panel_surface
 from app.compute import Bridge
@@ -23,7 +20,9 @@ from app.server import build_app
 from app.state import ViewState
 from app.words import p_words, signed
 from app.workspace import Workspace
+from tests.app.components import nodes, words
 from tests.app.panels import SMALL, panel_workspace
+from tests.exported import records
 
 STATE = replace(ViewState(), **SMALL)
 SLOPES = {"Ardenquay": 1.0, "Belmorrow": 0.0, "Corvessa": 0.6, "Dunmarrel": 0.0, "Elquire": 0.8}
@@ -41,37 +40,17 @@ def done(bridge):
     return page.answer(STATE, bridge)
 
 
-def parts(tree, kind):
-    """Every component of a kind, in order."""
-    if isinstance(tree, list | tuple):
-        return [found for each in tree for found in parts(each, kind)]
-    if not isinstance(tree, Component):
-        return []
-    own = [tree] if type(tree).__name__ == kind else []
-    return own + parts(getattr(tree, "children", None), kind)
-
-
-def text(tree):
-    if isinstance(tree, list | tuple):
-        return " ".join(filter(None, map(text, tree)))
-    if isinstance(tree, Component):
-        return text(getattr(tree, "children", None))
-    return "" if tree is None else str(tree)
-
-
 def rows_of(bridge, view, query):
-    _, body = csv_export(view, query, bridge)
-    lines = [line for line in body.splitlines() if not line.startswith("# ")]
-    return list(csv.DictReader(io.StringIO("\n".join(lines))))
+    return records(csv_export(view, query, bridge)[1])
 
 
 def test_before_the_search_the_maps_and_averages_are_there_and_the_table_waits():
     shown = page.answer(STATE, Bridge(panel_workspace(SLOPES)))
     assert shown.jobs == {"scan": "Searching 5 pairs"}
     assert set(shown.charts) == {"surfaces", "averages"}
-    assert "comes once every pair is searched" in text(shown.words["pairs"])
+    assert "comes once every pair is searched" in words(shown.words["pairs"])
     assert "5 pairs to be searched" in shown.verdict
-    assert len(parts(shown.words["maps"], "Canvas")) == 5
+    assert len(nodes(shown.words["maps"], "Canvas")) == 5
 
 
 def test_the_maps_have_the_correlations_of_the_surfaces_in_hundredths(done, bridge):
@@ -92,16 +71,16 @@ def test_the_maps_have_the_correlations_of_the_surfaces_in_hundredths(done, brid
 
 def test_the_table_and_the_small_maps_lead_to_the_lag_page(done, bridge):
     known = scan(STATE, bridge)
-    table = parts(done.words["pairs"], "Tr")[1:]
-    tiles = parts(done.words["maps"], "Link")
+    table = nodes(done.words["pairs"], "Tr")[1:]
+    tiles = nodes(done.words["maps"], "Link")
     for line, tile, row in zip(table, tiles, league(known), strict=True):
-        (link,) = parts(line, "Link")
+        (link,) = nodes(line, "Link")
         assert link.href == tile.href
         state = ViewState.from_query(link.href.partition("?")[2])
         assert state.driver == f"{row.scan.economy}: Broad money"
         assert (state.window, state.shift) == (row.scan.window, row.scan.shift)
         assert (state.seed, state.surrogates) == (row.scan.seed, 99)
-        shown = text(line)
+        shown = words(line)
         for written in (
             row.scan.economy,
             signed(row.scan.shift, 0),
@@ -161,7 +140,7 @@ def test_the_correction_decides_what_is_found():
         "None of 5 pairs hold at 5 % once all of them are paid for (Holm)"
     )
     assert "Benjamini-Hochberg leaves 3" in by_holm.verdict
-    assert "Holm can find none" in text(by_holm.words["notes"])
+    assert "Holm can find none" in words(by_holm.words["notes"])
 
 
 def test_many_pairs_wait_to_be_asked_for(monkeypatch):
@@ -170,7 +149,7 @@ def test_many_pairs_wait_to_be_asked_for(monkeypatch):
     bridge = Bridge(panel_workspace(SLOPES))
     shown = page.answer(STATE, bridge)
     assert shown.jobs == {}
-    (button,) = parts(shown.words["notes"], "Button")
+    (button,) = nodes(shown.words["notes"], "Button")
     assert button.to_plotly_json()["props"]["data-set"] == "begin"
     with pytest.raises(ValueError, match="the pairs must be searched first"):
         csv_export("pairs", STATE.to_query(), bridge)
@@ -181,8 +160,8 @@ def test_one_economy_says_how_to_load_more_and_shows_the_invented_panel_when_ask
     desk = Workspace(placeholder=demo_releases())
     bridge = Bridge(desk)
     shown = page.answer(STATE, bridge)
-    assert "One economy is loaded" in text(shown.words["notes"])
-    (button,) = parts(shown.words["notes"], "Button")
+    assert "One economy is loaded" in words(shown.words["notes"])
+    (button,) = nodes(shown.words["notes"], "Button")
     assert button.id == "scan-panel"
     client = build_app(desk).server.test_client()
     headers = {"Sec-Fetch-Site": "same-origin"}
@@ -201,8 +180,8 @@ def test_the_invented_panel_stays_away_from_files_of_the_users_own():
     assert answer.status_code == 422
     assert len(desk.as_of().series) == 2
     shown = page.answer(STATE, Bridge(desk))
-    assert parts(shown.words["notes"], "Button") == []
-    assert "must have at least 4 economies" in text(shown.words["averages-words"])
+    assert nodes(shown.words["notes"], "Button") == []
+    assert "must have at least 4 economies" in words(shown.words["averages-words"])
 
 
 def test_the_work_comes_pair_by_pair():
@@ -231,4 +210,4 @@ def test_a_page_without_a_pair_is_one_sentence():
     with pytest.raises(ValueError, match="no economy in the files has both"):
         page.answer(replace(STATE, drivers=""), Bridge(Workspace()))
     laid = page.layout("?surrogates=0", Bridge(Workspace()))
-    assert "Surrogates must be a whole number" in text(laid)
+    assert "Surrogates must be a whole number" in words(laid)

@@ -1,6 +1,5 @@
 """The result file of a scan: whole rows, gone on from, refused where it is another question's."""
 
-import csv
 import math
 import os
 
@@ -10,6 +9,7 @@ from analytics.panel import PairScan, panel_result
 from app.scan import result_file
 from app.scan.result_file import COLUMNS, ResultFile, panel_text
 from app.scan.task import ScanError
+from tests.exported import records, taken_apart
 
 SETTINGS = "growth=log&surrogates=99&seed=1"
 SCANS = (
@@ -65,11 +65,8 @@ def test_pairs_come_back_to_the_bit(tmp_path):
 def test_the_file_is_a_table_that_others_can_read(tmp_path):
     path = tmp_path / "r.csv"
     opened(path).finish(panel_result(SCANS))
-    lines = path.read_text(encoding="utf-8").splitlines()
-    head = [line for line in lines if line.startswith("# ")]
-    assert f"# question: {SETTINGS}" in head
-    with path.open(newline="", encoding="utf-8") as text:
-        rows = list(csv.reader(line for line in text if not line.startswith("# ")))
+    head, rows = taken_apart(path.read_text(encoding="utf-8"))
+    assert f"question: {SETTINGS}" in head
     assert rows[0] == list(COLUMNS)
     assert {len(row) for row in rows} == {len(COLUMNS)}
     first = dict(zip(*rows[:2], strict=True))
@@ -169,7 +166,6 @@ def test_adjusted_p_values_wait_until_all_pairs_are_there(tmp_path):
     opened(path, wanted=WANTED).finish(panel_result(SCANS))
     grown = WANTED | {("New", "M2", "CPI"): "f"}
     assert len(opened(path, wanted=grown).known) == 3
-    body = [x for x in path.read_text(encoding="utf-8").splitlines() if not x.startswith("# ")]
-    first = dict(zip(COLUMNS, next(csv.reader([body[1]])), strict=True))
+    first = records(path.read_text(encoding="utf-8"))[0]
     assert (first["p_scan"], first["p_holm"]) == ("", "")
     assert math.isclose(float(first["p_search"]), 0.01)

@@ -1,7 +1,5 @@
 """A season taken out here: one result for every page, said wherever it is used."""
 
-import csv
-import io
 from dataclasses import replace
 
 import numpy as np
@@ -25,6 +23,7 @@ from app.reading.exports import csv_export as reading_csv
 from app.seasons import season_words
 from app.state import ViewState
 from app.workspace import Workspace
+from tests.exported import records
 
 START = pd.Period("1990-01", "M")
 PATTERN = np.array([2.0, -1, 0, 1, 0, -2, -1, 0, 1, 0, -1, 1])
@@ -48,11 +47,6 @@ STATE = ViewState(driver="Money", response="Prices", window=6, shift=3, season="
 @pytest.fixture(scope="module")
 def bridge():
     return Bridge(Workspace((Release("a.csv", (PRICES, MONEY, *OTHERS), ()),)))
-
-
-def rows_of(text):
-    lines = [line for line in text.splitlines() if not line.startswith("#")]
-    return list(csv.DictReader(io.StringIO("\n".join(lines))))
 
 
 def words_of(parts):
@@ -91,7 +85,7 @@ def test_the_data_page_shows_the_season_of_the_series_chosen(bridge):
     name, text = data_csv("season", "unadjusted=Money", bridge)
     assert name == "season-money.csv"
     assert "not official" in text
-    rows = rows_of(text)
+    rows = records(text)
     assert [float(row["season"]) for row in rows] == drawn.y.tolist()
     assert float(rows[7]["as_used"]) == MONEY.values[7]
 
@@ -117,7 +111,7 @@ def test_the_lag_page_shows_and_exports_what_it_took_out(bridge):
     drawn = charts["figures"]["season"]["data"]
     assert [trace["name"] for trace in drawn] == ["Money", "Prices"]
     _, text = exports.csv_export("season", STATE.to_query(), bridge)
-    rows = rows_of(text)
+    rows = records(text)
     money = [float(row["season"]) for row in rows if row["series"] == "Money"]
     assert money == seasonal_adjustment(MONEY).season.values.tolist()
     assert "# made here: Money: adjusted here by STL; not official" in text
@@ -162,7 +156,7 @@ def test_the_label_stands_on_screen_and_in_files(bridge):
     assert HERE not in words_of(shown.words["alerts"])  # no reason for alarm
     text = reading_csv("rates", state.to_query(), bridge)[1]
     assert "adjusted here by STL; not official" in text
-    column = [float(row["value_adjusted_here"]) for row in rows_of(text)]
+    column = [float(row["value_adjusted_here"]) for row in records(text)]
     assert column == seasonal_adjustment(PRICES).adjusted.values.tolist()
     assert HERE in reading_answer(reading_of(state, bridge), ())["adjusted_here"]
 

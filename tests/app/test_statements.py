@@ -2,8 +2,8 @@
 
 import json
 import sqlite3
-import threading
 from dataclasses import replace
+from functools import partial
 
 import numpy as np
 import pandas as pd
@@ -28,6 +28,7 @@ from app.state import ViewState
 from app.store import Store
 from app.workspace import Workspace
 from app.workspace_folder import export_folder, import_folder
+from tests.app.threads import at_once
 
 LEVELS = (0.5, 0.8, 0.95)
 
@@ -144,19 +145,8 @@ def test_superseding_keeps_the_original_and_happens_once(store):
 def test_of_two_programs_that_supersede_the_same_statement_one_is_refused(tmp_path):
     programs = [Store(tmp_path / "w.sqlite"), Store(tmp_path / "w.sqlite")]
     first = keep_statement(programs[0], said(), "2024-11-12")
-    answers: list[object] = []
-
-    def supersede(store):
-        try:
-            answers.append(keep_statement(store, said(supersedes=first), "2024-12-12"))
-        except StatementError as error:
-            answers.append(str(error))
-
-    threads = [threading.Thread(target=supersede, args=(one,)) for one in programs]
-    for thread in threads:
-        thread.start()
-    for thread in threads:
-        thread.join()
+    second = said(supersedes=first)
+    answers = at_once(*(partial(keep_statement, one, second, "2024-12-12") for one in programs))
     assert sorted(map(str, answers)) == [
         "2",
         "statement 1 is superseded by statement 2 already; supersede that one",

@@ -1,7 +1,7 @@
 """The workspace: series by name, the newest file winning, also under threads."""
 
-import threading
 from dataclasses import replace
+from functools import partial
 
 import numpy as np
 import pandas as pd
@@ -13,6 +13,7 @@ from app.intake.problems import Problem
 from app.intake.reading import Release
 from app.state import ViewState
 from app.workspace import UnknownSeriesError, Workspace
+from tests.app.threads import at_once
 
 
 def series(name, value=1.0, n=30):
@@ -130,29 +131,19 @@ def test_what_a_reader_holds_does_not_change_under_it():
 
 
 def test_threads_may_add_and_read_at_once():
-    here, failures = Workspace((release("a.csv", "One"),)), []
-    start = threading.Barrier(8)
+    here = Workspace((release("a.csv", "One"),))
 
     def work(place):
-        start.wait()
-        try:
-            for k in range(100):
-                if place % 2:
-                    here.add(Release(f"{place}.csv", (series(f"S{place}", k),), ()))
-                else:
-                    assert "One" in here.series
-                    assert here.named("One").values[0] == 1.0
-                    seen = here.releases
-                    assert len({each.name for each in seen}) == len(seen)
-        except Exception as error:
-            failures.append(error)
+        for k in range(100):
+            if place % 2:
+                here.add(Release(f"{place}.csv", (series(f"S{place}", k),), ()))
+            else:
+                assert "One" in here.series
+                assert here.named("One").values[0] == 1.0
+                seen = here.releases
+                assert len({each.name for each in seen}) == len(seen)
 
-    threads = [threading.Thread(target=work, args=(place,)) for place in range(8)]
-    for thread in threads:
-        thread.start()
-    for thread in threads:
-        thread.join()
-    assert failures == []
+    assert at_once(*(partial(work, place) for place in range(8))) == [None] * 8
     assert sorted(here.series) == ["One", "S1", "S3", "S5", "S7"]
     assert here.named("S7").values[0] == 99.0
 

@@ -6,7 +6,7 @@ import pytest
 
 from app.demo import demo_releases
 from app.workspace import Workspace
-from tests.browser import driving
+from tests.browser import data_page, driving
 
 
 def pytest_collection_modifyitems(items):
@@ -45,6 +45,25 @@ def address():
     """Give the address of a dashboard that shows the invented economy."""
     with driving.served(Workspace(demo_releases())) as url:
         yield url
+
+
+@pytest.fixture
+def data(browser, tmp_path):
+    """Give the Data page on a workspace file of this test alone, with an empty log."""
+    browser.get_log("browser")
+    here = Workspace(placeholder=demo_releases(), path=tmp_path / "desk" / "desk.sqlite")
+    with driving.served(here) as url:
+        data_page.opened(browser, url)
+        yield browser, url, here
+    here.close()
+
+
+@pytest.fixture
+def release(tmp_path):
+    """Give the path of a good file: 300 months of money and prices."""
+    path = tmp_path / "release.csv"
+    path.write_text(data_page.planted()[0])
+    return path
 
 
 @pytest.fixture

@@ -61,6 +61,7 @@ def served(workspace: Workspace) -> Iterator[str]:
         ident=None,
         map=sockets,
     )
+    server.channel_class = _Channel
     thread = threading.Thread(target=server.run, daemon=True)
     thread.start()
     try:
@@ -69,6 +70,15 @@ def served(workspace: Workspace) -> Iterator[str]:
         server.task_dispatcher.shutdown()
         server.trigger.pull_trigger(lambda: _closed(sockets))  # by the thread that reads them
         thread.join(10)
+
+
+class _Channel(HTTPChannel):  # type: ignore[misc]
+    """A connection that lets go of an upload which the browser broke off half way."""
+
+    def handle_close(self) -> None:
+        if self.request is not None:
+            self.request.close()
+        super().handle_close()
 
 
 def _closed(sockets: dict[int, Any]) -> None:

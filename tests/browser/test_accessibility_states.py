@@ -6,9 +6,9 @@ from selenium.webdriver.common.keys import Keys
 
 from app.page_table import PAGES
 from app.workspace import Workspace
+from tests.browser.data_page import choose
 from tests.browser.driving import served, size, until
 from tests.browser.test_accessibility import OPEN_ALL, QUICK, SETTLED, go, violations
-from tests.browser.test_data_page import choose
 from tests.browser.test_keyboard import LOST
 
 LONG_WORK = {
