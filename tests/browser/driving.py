@@ -72,7 +72,7 @@ def served(workspace: Workspace) -> Iterator[str]:
         thread.join(10)
 
 
-class _Channel(HTTPChannel):  # type: ignore[misc]
+class _Channel(HTTPChannel):
     """A connection that lets go of an upload which the browser broke off half way."""
 
     def handle_close(self) -> None:
