@@ -26,9 +26,15 @@
     return `${year}-${String(place * (12 / perYear) + 1).padStart(2, "0")}-01`;
   }
 
+  /* The same in milliseconds, as an axis of dates counts. */
+  function firstMoment(ordinal, perYear) {
+    const { year, place } = parts(ordinal, perYear);
+    return Date.UTC(year, place * (12 / perYear), 1);
+  }
+
   function decimalYear(ordinal, perYear) {
     return 1970 + (ordinal + 0.5) / perYear;
   }
 
-  pricewake.calendar = { label, code, firstDay, decimalYear };
+  pricewake.calendar = { label, code, firstDay, firstMoment, decimalYear };
 })();

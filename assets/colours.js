@@ -98,5 +98,5 @@
     choose(current());
   }).observe(document.documentElement, { childList: true, subtree: true });
 
-  pricewake.theme = { show, colour, figures: shown };
+  pricewake.theme = { show, colour, current, figures: shown };
 })();

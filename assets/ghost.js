@@ -18,7 +18,7 @@
       box.appendChild(canvas);
     }
     const ratio = window.devicePixelRatio || 1;
-    const width = chart.clientWidth, height = chart.clientHeight;
+    const { width, height } = chart._fullLayout; // asking the page itself would lay it out anew
     if (canvas.width !== Math.round(width * ratio) || canvas.height !== Math.round(height * ratio)) {
       canvas.width = Math.round(width * ratio);
       canvas.height = Math.round(height * ratio);
@@ -40,6 +40,8 @@
       : (value) => axis._offset + axis._length - (value - low) * factor;
   }
 
+  let inside = null; // the axes of the chart that is drawn: [left, top, width, height]
+
   /* Draw with `paint(pen, x, y)` inside the axes, and with `beside(pen, axes, x, y)` around them; x and
      y turn numbers of the axes into pixels. */
   function show(id, paint, beside) {
@@ -47,9 +49,10 @@
     if (!chart || !chart._fullLayout || !chart._fullLayout.xaxis) return;
     const { xaxis, yaxis } = chart._fullLayout;
     const pen = canvasOver(chart);
+    inside = [xaxis._offset, yaxis._offset, xaxis._length, yaxis._length];
     pen.save();
     pen.beginPath();
-    pen.rect(xaxis._offset, yaxis._offset, xaxis._length, yaxis._length);
+    pen.rect(...inside);
     pen.clip();
     paint(pen, scaleOf(xaxis), scaleOf(yaxis));
     pen.restore();
@@ -73,5 +76,72 @@
     pen.stroke();
   }
 
-  pricewake.ghost = { chartOf, show, hide, path };
+  /* A line 1.8 pixels wide, as three hairlines; `on` pixels of it are drawn and `off` left out in
+     turn. One wide stroke with dashes keeps a canvas without a graphics card five times as long. */
+  const STRANDS = [[0, 0], [0.8, 0], [0, 0.8]];
+  function line(pen, xs, ys, x, y, on = Infinity, off = 0) {
+    pen.lineWidth = 1;
+    pen.beginPath();
+    for (const [right, down] of STRANDS) {
+      let open = false, drawn = true, left = on, px = 0, py = 0;
+      for (let i = 0; i < xs.length; i++) {
+        if (ys[i] === null || xs[i] === null) continue;
+        const toX = x(xs[i]) + right, toY = y(ys[i]) + down;
+        if (!open) pen.moveTo(toX, toY);
+        else {
+          const long = Math.hypot(toX - px, toY - py);
+          let at = 0;
+          while (long - at > left) {
+            at += left;
+            const turnX = px + ((toX - px) * at) / long, turnY = py + ((toY - py) * at) / long;
+            if (drawn) pen.lineTo(turnX, turnY); else pen.moveTo(turnX, turnY);
+            drawn = !drawn;
+            left = drawn ? on : off;
+          }
+          left -= long - at;
+          if (drawn) pen.lineTo(toX, toY);
+        }
+        open = true;
+        px = toX; py = toY;
+      }
+    }
+    pen.stroke();
+  }
+
+  /* The share of each pixel of a square that a disc around its middle covers. */
+  function disc(radius) {
+    const reach = Math.ceil(radius), size = 2 * reach + 1;
+    const cover = Float32Array.from({ length: size * size }, (_, k) => {
+      const away = Math.hypot((k % size) - reach, Math.floor(k / size) - reach);
+      return Math.max(0, Math.min(1, radius + 0.5 - away));
+    });
+    return { cover, reach, size };
+  }
+
+  /* Discs at points, each laid over those before it in its colour [red, green, blue]: written into
+     the pixels themselves, as an arc for each takes ten times as long. To be drawn first. */
+  let sheet = null;
+  function dots(pen, xs, ys, x, y, colours, radius, opacity) {
+    const ratio = window.devicePixelRatio || 1;
+    const [left, top, width, height] = inside.map((value) => Math.round(value * ratio));
+    if (!sheet || sheet.width !== width || sheet.height !== height) sheet = new ImageData(width, height);
+    const pixels = sheet.data.fill(0), { cover, reach, size } = disc(radius * ratio);
+    for (let i = 0; i < xs.length; i++) {
+      const across = Math.floor(x(xs[i]) * ratio) - left - reach, down = Math.floor(y(ys[i]) * ratio) - top - reach;
+      const [red, green, blue] = colours[i];
+      for (let k = 0; k < cover.length; k++) {
+        const column = across + (k % size), row = down + Math.floor(k / size);
+        if (!cover[k] || column < 0 || column >= width || row < 0 || row >= height) continue;
+        const at = 4 * (row * width + column), over = cover[k] * opacity;
+        const under = (pixels[at + 3] / 255) * (1 - over), all = over + under;
+        pixels[at] = (red * over + pixels[at] * under) / all;
+        pixels[at + 1] = (green * over + pixels[at + 1] * under) / all;
+        pixels[at + 2] = (blue * over + pixels[at + 2] * under) / all;
+        pixels[at + 3] = 255 * all;
+      }
+    }
+    pen.putImageData(sheet, left, top);
+  }
+
+  pricewake.ghost = { chartOf, show, hide, path, line, dots };
 })();

@@ -7,16 +7,27 @@
   const byId = (id) => document.getElementById(id);
   const MARGIN = 0.86; // figures/lag_slices.MARGIN
 
-  function pointColours(scatter) {
-    const { colorscale, cmin, cmax } = scatter.data[0].marker;
-    const stops = colorscale.map(([at, hex]) => [at, [1, 3, 5].map((i) => parseInt(hex.slice(i, i + 2), 16))]);
-    return (year) => {
-      const at = Math.max(0, Math.min(1, (year - cmin) / (cmax - cmin)));
-      const k = Math.max(1, stops.findIndex(([stop]) => stop >= at));
-      const [[a, from], [b, to]] = [stops[k - 1], stops[k]];
-      const rgb = from.map((c, i) => Math.round(c + ((to[i] - c) * (at - a)) / (b - a || 1)));
-      return `rgba(${rgb.join(",")},0.75)`;
-    };
+  /* The colour of each month of the calendar, [red, green, blue]: figures/theme.time_scale. */
+  function monthColours({ driver, ordinal, perYear, figures }) {
+    const { cmin, cmax } = figures.scatter.data[0].marker;
+    const stops = ["early", "middle", "late"].map((name) => {
+      const hex = theme.colour(name);
+      return [1, 3, 5].map((i) => parseInt(hex.slice(i, i + 2), 16));
+    });
+    return driver.values.map((_, i) => {
+      const at = 2 * Math.max(0, Math.min(1, (calendar.decimalYear(ordinal + i, perYear) - cmin) / (cmax - cmin)));
+      const [from, to, way] = at < 1 ? [stops[0], stops[1], at] : [stops[1], stops[2], at - 1];
+      return from.map((part, k) => part + (to[k] - part) * way);
+    });
+  }
+
+  /* The same, found once for the data and the theme that are shown. */
+  function coloursOf(page) {
+    const shown = theme.current();
+    if (page.coloursFor !== page.data || page.coloursIn !== shown) {
+      Object.assign(page, { coloursFor: page.data, coloursIn: shown, colours: monthColours(page.data) });
+    }
+    return page.colours;
   }
 
   /* The band of the state on the cell: {along, other, low, high, held, path, mean, count}; or null. */
@@ -63,12 +74,8 @@
       if (!cell) return;
       if (state.points === "counts") squares(pen, counts, x, y, shadeOf);
       else {
-        for (let i = 0; i < cell.n; i++) {
-          pen.fillStyle = page.colours[cell.months[i]];
-          pen.beginPath();
-          pen.arc(x(cell.driver[i]), y(cell.response[i]), 2.5, 0, 2 * Math.PI);
-          pen.fill();
-        }
+        const colours = coloursOf(page), { size, opacity } = page.data.figures.scatter.data[0].marker;
+        ghost.dots(pen, cell.driver, cell.response, x, y, cell.months.map((month) => colours[month]), size / 2, opacity);
       }
       pen.lineWidth = 1.2;
       pen.strokeStyle = theme.colour("mark");
@@ -182,7 +189,7 @@
     Object.assign(band.style, slice.across
       ? { left: `${xaxis._offset + ends[0]}px`, width: `${ends[1] - ends[0]}px`, top: `${yaxis._offset}px`, height: `${yaxis._length}px` }
       : { left: `${xaxis._offset}px`, width: `${xaxis._length}px`, top: `${yaxis._offset + ends[0]}px`, height: `${ends[1] - ends[0]}px` });
-    byId("lag-slice-words").textContent = pricewake.words.sliceSentence(page);
+    pricewake.words.write(byId("lag-slice-words"), pricewake.words.sliceSentence(page));
   }
 
   function listen() {
@@ -233,5 +240,5 @@
     pricewake.lag.settle();
   }, true);
 
-  pricewake.lagScatter = { pointColours, sliceOf, paint, figure, listen };
+  pricewake.lagScatter = { sliceOf, paint, figure, listen };
 })();

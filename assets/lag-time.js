@@ -8,14 +8,12 @@
 
   function paint(page) {
     const { ordinals, driver, response } = page.overlay;
-    const days = ordinals.map((o) => Date.parse(calendar.firstDay(o, page.data.perYear)));
+    const days = ordinals.map((o) => calendar.firstMoment(o, page.data.perYear));
     ghost.show("lag-overlay", (pen, x, y) => {
-      pen.lineWidth = 1.8;
       pen.strokeStyle = theme.colour("driver");
-      ghost.path(pen, days, driver, x, y);
+      ghost.line(pen, days, driver, x, y);
       pen.strokeStyle = theme.colour("response");
-      pen.setLineDash([5, 2]);
-      ghost.path(pen, days, response, x, y);
+      ghost.line(pen, days, response, x, y, 5, 2);
     });
   }
 

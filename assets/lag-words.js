@@ -4,6 +4,13 @@
   const pricewake = (window.pricewake = window.pricewake || {});
   const signed = (value, digits) => (value < 0 ? "−" : "+") + Math.abs(value).toFixed(digits);
   const plain = (value, digits) => (value < 0 ? "−" : "") + Math.abs(value).toFixed(digits);
+  /* Write words into a place. A text that is there is written over: nothing is added to the page, so
+     nobody who watches it for new parts is called. */
+  function write(place, text) {
+    const there = place.firstChild;
+    if (!there || there.nodeType !== Node.TEXT_NODE || there.nextSibling) place.textContent = text;
+    else if (there.data !== text) there.data = text;
+  }
   const counted = (n, noun) => `${n} ${noun}${n === 1 ? "" : "s"}`;
 
   /* The headline; a part [field, words, tail] is a number that leads to its slider. */
@@ -57,5 +64,5 @@
     return `${view}-${sides}-window-${window}-shift-${shift < 0 ? "minus-" : ""}${Math.abs(shift)}`;
   }
 
-  pricewake.words = { counted, signed, sentenceParts, sentence, readout, movedResponse, sliceSentence, equation, subtitle, stem };
+  pricewake.words = { write, counted, signed, sentenceParts, sentence, readout, movedResponse, sliceSentence, equation, subtitle, stem };
 })();

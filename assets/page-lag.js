@@ -4,7 +4,7 @@
 (function () {
   "use strict";
   const pricewake = (window.pricewake = window.pricewake || {});
-  const { calendar, ghost, theme, controls, words, lagCell, lagMap, lagScatter, lagTime } = pricewake;
+  const { ghost, theme, controls, words, lagCell, lagMap, lagScatter, lagTime } = pricewake;
   const RESTING = 140, HOLDING = 500; // milliseconds without a move; while the pointer is held down
   const SLIDERS = ["window", "shift", "band_place", "band_width"]; // moved by the hand
   const DRAWN_HERE = ["points", "band", "band_place", "band_width"]; // the server need not answer
@@ -12,32 +12,43 @@
   const page = { data: null, state: null, cell: null, timer: 0, frame: 0, moves: 0, held: false };
 
   const byId = (id) => document.getElementById(id);
-  const { counted, signed } = words;
+  const { counted, signed, write } = words;
 
   /* Words ------------------------------------------------------------------------------------ */
 
+  /* A part of the headline that is a number: it leads to its slider. */
+  function numberPart(name) {
+    const unbroken = document.createElement("span"), button = document.createElement("button");
+    unbroken.className = "unbroken";
+    Object.assign(button, { type: "button", className: "number", title: `Move the ${name} slider` });
+    button.onclick = () => controls.field(name).focus();
+    unbroken.append(button, "");
+    return unbroken;
+  }
+
+  /* Written over while its numbers keep their length, else made anew: what is there never slides. */
+  function showHeadline(parts) {
+    const head = byId("lag-sentence");
+    const shape = parts.map((part) => (typeof part === "string" ? part.length : part[0] + part[1].length)).join();
+    if (head.shape !== shape || head.childNodes.length !== parts.length) {
+      head.replaceChildren(...parts.map((part) => (typeof part === "string" ? document.createTextNode("") : numberPart(part[0]))));
+      head.shape = shape;
+    }
+    parts.forEach((part, place) => {
+      const there = head.childNodes[place];
+      if (typeof part === "string") { if (there.data !== part) there.data = part; return; }
+      write(there.firstChild, part[1]);
+      if (there.lastChild.data !== part[2]) there.lastChild.data = part[2];
+    });
+  }
+
   function showWords() {
     const { state, cell, data } = page;
-    const head = byId("lag-sentence");
-    head.replaceChildren(
-      ...words.sentenceParts(page.data, state).map((part) => {
-        if (typeof part === "string") return document.createTextNode(part);
-        const button = document.createElement("button");
-        button.type = "button";
-        button.className = "number";
-        button.textContent = part[1];
-        button.title = `Move the ${part[0]} slider`;
-        button.onclick = () => controls.field(part[0]).focus();
-        const unbroken = document.createElement("span");
-        unbroken.className = "unbroken";
-        unbroken.append(button, part[2]);
-        return unbroken;
-      }),
-    );
-    byId("lag-equation").textContent = cell ? words.equation(data, cell) : "";
-    byId("lag-readout").textContent = words.readout(page);
-    byId("lag-driver-words").textContent = data.driver.name;
-    byId("lag-response-words").textContent = words.movedResponse(page);
+    showHeadline(words.sentenceParts(data, state));
+    write(byId("lag-equation"), cell ? words.equation(data, cell) : "");
+    write(byId("lag-readout"), words.readout(page));
+    write(byId("lag-driver-words"), data.driver.name);
+    write(byId("lag-response-words"), words.movedResponse(page));
     for (const [name, said] of [
       ["window", counted(state.window, data.noun)],
       ["shift", `${signed(state.shift, 0)} ${data.noun}${Math.abs(state.shift) === 1 ? "" : "s"}`],
@@ -59,7 +70,7 @@
     lagTime.paint(page);
     pricewake.player.follow();
     page.moves += 1;
-    performance.mark("pricewake-painted", { detail: { window, shift } });
+    page.painted = { window, shift };
   }
 
   /* `changes` may name window, shift and the place of the band; sliders, map and charts follow. */
@@ -186,8 +197,6 @@
       [field.min, field.max] = bounds;
     }
     reflect(SLIDERS);
-    const colour = lagScatter.pointColours(data.figures.scatter);
-    page.colours = data.driver.values.map((_, i) => colour(calendar.decimalYear(data.ordinal + i, data.perYear)));
     page.cell = lagCell.cellAt(data, page.state.window, page.state.shift);
     page.overlay = lagCell.overlayAt(data, page.state.window, page.state.shift);
     page.laid = "";

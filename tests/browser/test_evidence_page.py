@@ -208,14 +208,12 @@ def test_stop_stops_asking_and_a_moving_slider_never_waits_for_the_search(browse
     before = browser.execute_script("return pricewake.lag.moves")
     painted = browser.execute_async_script(
         "const done = arguments[0], page = pricewake.lag, seen = [], waits = [];"
-        "performance.clearMarks('pricewake-painted');"
         "let shift = -12;"
         "const step = () => {"
         "  if (shift > 36) return done({seen, waits, running: pricewake.work.running});"
         "  const at = performance.now(); page.move({shift});"
         "  requestAnimationFrame(() => {"
-        "    const marks = performance.getEntriesByName('pricewake-painted');"
-        "    seen.push([shift, marks.length ? marks[marks.length - 1].detail.shift : null,"
+        "    seen.push([shift, page.painted.shift,"
         "      Boolean(document.querySelector('#lag-scatter').closest('.plot.moving'))]);"
         "    waits.push(performance.now() - at); shift += 2; setTimeout(step, 20); });"
         "}; step();"
