@@ -119,13 +119,7 @@ def inspect(
 @cli_parts.state_options(LAG_FIELDS)
 @cli_parts.as_json
 @cli_parts.csv_path
-@click.option(
-    "--view",
-    type=click.Choice(VIEW_NAMES),
-    default="surface",
-    show_default=True,
-    help="Which view --csv writes.",
-)
+@cli_parts.view(VIEW_NAMES, "surface")
 @cli_parts.kept_in
 def lag(
     files: tuple[Path, ...],
@@ -183,13 +177,7 @@ def lag(
 )
 @cli_parts.as_json
 @cli_parts.csv_path
-@click.option(
-    "--view",
-    type=click.Choice(READING_VIEWS),
-    default="rates",
-    show_default=True,
-    help="Which view --csv writes.",
-)
+@cli_parts.view(READING_VIEWS, "rates")
 @cli_parts.kept_in
 def reading(
     files: tuple[Path, ...],

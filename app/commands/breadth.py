@@ -23,13 +23,7 @@ from app.state import ViewState
 @cli_parts.as_of
 @cli_parts.as_json
 @cli_parts.csv_path
-@click.option(
-    "--view",
-    type=click.Choice(BREADTH_VIEWS),
-    default="contributions",
-    show_default=True,
-    help="Which view --csv writes.",
-)
+@cli_parts.view(BREADTH_VIEWS, "contributions")
 @cli_parts.kept_in
 def breadth(
     files: tuple[Path, ...],

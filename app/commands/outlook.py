@@ -35,13 +35,7 @@ from app.outlook.fields import OUTLOOK_FIELDS, OUTLOOK_VIEWS
 )
 @cli_parts.as_json
 @cli_parts.csv_path
-@click.option(
-    "--view",
-    type=click.Choice(OUTLOOK_VIEWS),
-    default="fan",
-    show_default=True,
-    help="Which view --csv writes.",
-)
+@cli_parts.view(OUTLOOK_VIEWS, "fan")
 @cli_parts.kept_in
 def outlook(
     files: tuple[Path, ...],

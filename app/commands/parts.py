@@ -3,7 +3,7 @@
 import contextlib
 import json
 import math
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import asdict, fields
 from pathlib import Path
 from typing import Any
@@ -51,6 +51,19 @@ as_json = click.option(
 csv_path = click.option(
     "--csv", "csv_path", type=click.Path(path_type=Path), help="Write a CSV file."
 )
+
+
+def view(names: Sequence[str], usual: str) -> Callable[[Callable[..., Any]], Callable[..., Any]]:
+    """Give a command the choice of the view that its CSV file holds."""
+    return click.option(
+        "--view",
+        type=click.Choice(names),
+        default=usual,
+        show_default=True,
+        help="Which view --csv writes.",
+    )
+
+
 kept_in = click.option(
     "--workspace",
     "kept_in",

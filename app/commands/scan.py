@@ -61,13 +61,7 @@ if TYPE_CHECKING:
 )
 @cli_parts.as_json
 @cli_parts.csv_path
-@click.option(
-    "--view",
-    type=click.Choice(SCAN_VIEWS),
-    default="pairs",
-    show_default=True,
-    help="Which view --csv writes.",
-)
+@cli_parts.view(SCAN_VIEWS, "pairs")
 @cli_parts.kept_in
 def scan(
     files: tuple[Path, ...],

@@ -7,6 +7,7 @@ from dash import html
 from app.breadth.bridge import Breadth
 from app.breadth.table import TOP_ROWS, Row, rows
 from app.breadth.words import over_words, tracking_words
+from app.pages.tables import sorter
 from app.words import plain, signed
 
 
@@ -22,8 +23,17 @@ def component_table(shown: Breadth) -> list[Any]:
         ("points", f"Contribution, {over}"),
         *((("points_1m", f"Contribution, one-{noun}"),) if shown.span > 1 else ()),
     )
-    sorted_by, _, way = shown.state.sort.rpartition("-")
-    head = [_sorter(column, words, sorted_by, way) for column, words in columns]
+    head = [
+        sorter(
+            "sort",
+            column,
+            words,
+            shown.state.sort,
+            first="up" if column == "name" else "down",
+            numeric=column != "name",
+        )
+        for column, words in columns
+    ]
     listed = rows(shown)
     cut = listed if shown.state.rows == "all" or len(listed) <= TOP_ROWS + 1 else listed[:TOP_ROWS]
     kept = [column for column, _ in columns]
@@ -52,25 +62,6 @@ def component_table(shown: Breadth) -> list[Any]:
         ),
         html.P([*more, " ", *restored]),
     ]
-
-
-def _sorter(column: str, words: str, sorted_by: str, way: str) -> html.Th:
-    here = column == sorted_by
-    first = "up" if column == "name" else "down"
-    turned = {"up": "down", "down": "up"}[way] if here else first
-    sign = {"up": " ▲", "down": " ▼"}[way] if here else ""
-    state = {"up": "ascending", "down": "descending"}[way] if here else "none"
-    return html.Th(
-        html.Button(
-            [words, html.Span(sign, **{"aria-hidden": "true"})],
-            type="button",
-            className="sorter",
-            **{"data-set": "sort", "data-value": f"{column}-{turned}"},
-        ),
-        scope="col",
-        className="" if column == "name" else "numeric",
-        **{"aria-sort": state},
-    )
 
 
 def _cells(row: Row, columns: list[str]) -> list[Any]:

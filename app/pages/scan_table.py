@@ -6,6 +6,7 @@ from typing import Any
 from dash import dcc, html
 
 from analytics.panel import PanelPair
+from app.pages.tables import sorter
 from app.scan.bridge import Scan
 from app.scan.league import TOP_ROWS, LeagueRow, lag_address, league
 from app.scan.words import map_label, pair_words, waiting_words
@@ -30,7 +31,6 @@ def league_table(known: Scan) -> list[Any]:
     if not rows:
         return [html.P(waiting_words(known), className="quiet")]
     loaded = {pair.names for pair in known.question.pairs}
-    sorted_by, _, way = state.league.rpartition("-")
     cut = rows if state.league_rows == "all" or len(rows) <= TOP_ROWS + 1 else rows[:TOP_ROWS]
     more: list[Any] = []
     if len(rows) > TOP_ROWS + 1:
@@ -43,7 +43,7 @@ def league_table(known: Scan) -> list[Any]:
     return [
         html.Table(
             [
-                html.Thead(html.Tr([_sorter(*column, sorted_by, way) for column in COLUMNS])),
+                html.Thead(html.Tr([_head(*column, state.league) for column in COLUMNS])),
                 html.Tbody([_row(row, known, loaded) for row in cut]),
             ],
             className="table league",
@@ -99,26 +99,11 @@ def map_list(
     return html.Ul(items, className="small-maps", **{"data-stamp": stamp})
 
 
-def _sorter(column: str, words: str, sorted_by: str, way: str) -> html.Th:
-    numeric = "" if column in ("economy", "") else "numeric"
+def _head(column: str, words: str, sorted_by: str) -> html.Th:
     if not column:
-        return html.Th(words, scope="col", className=numeric)
-    here = column == sorted_by
+        return html.Th(words, scope="col")
     first = "down" if column in ("correlation", "share") else "up"
-    turned = {"up": "down", "down": "up"}[way] if here else first
-    sign = {"up": " ▲", "down": " ▼"}[way] if here else ""
-    state = {"up": "ascending", "down": "descending"}[way] if here else "none"
-    return html.Th(
-        html.Button(
-            [words, html.Span(sign, **{"aria-hidden": "true"})],
-            type="button",
-            className="sorter",
-            **{"data-set": "league", "data-value": f"{column}-{turned}"},
-        ),
-        scope="col",
-        className=numeric,
-        **{"aria-sort": state},
-    )
+    return sorter("league", column, words, sorted_by, first=first, numeric=column != "economy")
 
 
 def _row(row: LeagueRow, known: Scan, loaded: Collection[tuple[str, str, str]]) -> html.Tr:

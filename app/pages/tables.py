@@ -61,6 +61,31 @@ def table(
     )
 
 
+def sorter(
+    field: str, column: str, words: str, sorted_by: str, *, first: str, numeric: bool
+) -> html.Th:
+    """Return the head of a column whose button orders the table by it, or turns the order round.
+
+    `field` of the state holds column and way, as `sorted_by` does; the button of another column
+    orders `first` "up" or "down".
+    """
+    by, _, way = sorted_by.rpartition("-")
+    here = column == by
+    turned = {"up": "down", "down": "up"}[way] if here else first
+    sign = {"up": " ▲", "down": " ▼"}[way] if here else ""
+    return html.Th(
+        html.Button(
+            [words, html.Span(sign, **{"aria-hidden": "true"})],
+            type="button",
+            className="sorter",
+            **{"data-set": field, "data-value": f"{column}-{turned}"},
+        ),
+        scope="col",
+        className="numeric" if numeric else "",
+        **{"aria-sort": {"up": "ascending", "down": "descending"}[way] if here else "none"},
+    )
+
+
 def packed(words: Any) -> Any:
     """Return components with every table packed that holds nothing but HTML and links.
 
