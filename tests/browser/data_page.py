@@ -93,12 +93,3 @@ def kept(browser):
 def gone(browser):
     """Wait until nothing is previewed."""
     until(browser, "!document.getElementById('data-preview-head')")
-
-
-def severe(browser):
-    """Give the console's errors, but for refusals that the page was answered."""
-    return [
-        entry
-        for entry in browser.get_log("browser")
-        if entry["level"] == "SEVERE" and "422" not in entry["message"]
-    ]

@@ -144,6 +144,15 @@ def blank(driver: webdriver.Chrome) -> None:
     driver.get_log("performance")
 
 
+def severe(driver: webdriver.Chrome, *expected: str) -> list[dict[str, Any]]:
+    """Return the errors in the console since the last look, without those that were expected."""
+    return [
+        entry
+        for entry in driver.get_log("browser")
+        if entry["level"] == "SEVERE" and not any(each in entry["message"] for each in expected)
+    ]
+
+
 def until(driver: webdriver.Chrome, script: str, seconds: float = 15) -> object:
     """Wait until a JavaScript expression is true; gives its value."""
     return WebDriverWait(driver, seconds, poll_frequency=0.05).until(

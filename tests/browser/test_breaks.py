@@ -1,14 +1,12 @@
 """A break found, marked, seen on the Lag page and taken away, through the browser."""
 
-import json
-
 import pytest
 from selenium.webdriver.common.by import By
 from selenium.webdriver.support.ui import Select
 
 from app.demo import demo_releases
 from app.workspace import Workspace
-from tests.browser.driving import READY, served, until
+from tests.browser.driving import READY, served, severe, until
 
 SAID = (
     "break treated at Jul 1987: growth of the month set to the mean of the months before and after"
@@ -54,8 +52,7 @@ def test_a_break_is_found_marked_said_and_taken_away(desk):
     until(browser, "!document.querySelector('[data-break=unmark]')")
     until(browser, "document.activeElement.id === 'breaks-message'")  # its button is gone
     assert here.as_of().marks == ()
-    severe = [e for e in browser.get_log("browser") if e["level"] == "SEVERE"]
-    assert severe == [], json.dumps(severe)
+    assert severe(browser) == []
 
 
 def test_a_mark_by_hand_and_one_that_cannot_be(desk):

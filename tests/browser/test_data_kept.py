@@ -17,11 +17,10 @@ from tests.browser.data_page import (
     listed,
     opened,
     previewed,
-    severe,
     text_of,
     told,
 )
-from tests.browser.driving import READY, size, until
+from tests.browser.driving import READY, severe, size, until
 
 
 def revised(here, months=30, first=200):
@@ -75,7 +74,7 @@ def test_the_last_of_many_series_is_found_and_corrected(data):
     assert (
         browser.execute_script("return document.querySelectorAll('#data-series img').length") == 0
     )
-    assert severe(browser) == []
+    assert severe(browser, "422") == []
 
 
 def test_a_correction_is_kept_and_remembered(data):
@@ -105,7 +104,7 @@ def test_a_correction_is_kept_and_remembered(data):
         ".filter(e => e.value !== undefined).map(e => e.value)"
     )
     assert shown == ["index", "2015 = 100", "unknown"]
-    assert severe(browser) == []
+    assert severe(browser, "422") == []
 
 
 def test_a_file_is_taken_out_of_view_and_brought_back(data):
@@ -121,7 +120,7 @@ def test_a_file_is_taken_out_of_view_and_brought_back(data):
     browser.find_element(By.CSS_SELECTOR, "[data-act=show]").click()
     listed(browser, 2)
     assert set(here.series) == {"A", "B"}
-    assert severe(browser) == []
+    assert severe(browser, "422") == []
 
 
 def test_every_page_shows_what_stood_on_the_date_chosen(data):
@@ -158,7 +157,7 @@ def test_every_page_shows_what_stood_on_the_date_chosen(data):
     assert browser.execute_script(
         "return [...document.querySelectorAll('[id^=nav-]')].every(a => !a.href.includes('as_of'))"
     )
-    assert severe(browser) == []
+    assert severe(browser, "422") == []
 
 
 def test_revisions_are_drawn_and_said_as_they_are_computed(data):
@@ -181,7 +180,7 @@ def test_revisions_are_drawn_and_said_as_they_are_computed(data):
     chosen.send_keys("values")
     until(browser, "location.search.includes('revised=values')")
     told(browser, "data-revisions-words", "not named")
-    assert severe(browser) == []
+    assert severe(browser, "422") == []
 
 
 @pytest.mark.parametrize("theme", ["light", "dark"])

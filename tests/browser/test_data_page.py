@@ -20,11 +20,10 @@ from tests.browser.data_page import (
     planted,
     previewed,
     send,
-    severe,
     text_of,
     told,
 )
-from tests.browser.driving import READY, until
+from tests.browser.driving import READY, severe, until
 
 
 def test_own_files_take_the_place_of_the_invented_economy_once_they_are_kept(data, release):
@@ -48,7 +47,7 @@ def test_own_files_take_the_place_of_the_invented_economy_once_they_are_kept(dat
     cell = lag_cell(*growth, window=12, shift=24)
     np.testing.assert_allclose(shown[1], cell.driver, atol=1e-9)
     assert not browser.find_element(By.ID, "invented").is_displayed()
-    assert severe(browser) == []
+    assert severe(browser, "422") == []
     again = Workspace(path=here.store.path)  # another program sees what was kept
     assert list(again.series) == ["Money in hand", "Shop prices"]
     again.close()
@@ -78,7 +77,7 @@ def test_several_files_at_once_good_and_bad(data, release, tmp_path):
     assert "Found in the files" in found
     assert "must be a number, but got 'x'" in found
     assert "1 error" in text_of(browser, "data-verdict")
-    assert severe(browser) == []
+    assert severe(browser, "422") == []
 
 
 BAD = (
@@ -174,7 +173,7 @@ def test_a_whole_folder_of_files_is_opened_at_once(data):
     told(browser, "intake-message", "kept", 60)
     assert text_of(browser, "intake-message") == f"{len(files)} files: kept"
     assert {each.name for each in here.releases} == {path.name for path in files}
-    assert severe(browser) == []
+    assert severe(browser, "422") == []
 
 
 def test_another_sheet_of_a_workbook_is_read_in_the_preview(data):

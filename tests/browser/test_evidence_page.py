@@ -1,7 +1,5 @@
 """What the exploration was worth, on the page: asked for in chunks, shown, stopped, reproduced."""
 
-import csv
-import io
 import json
 import re
 import time
@@ -19,7 +17,8 @@ from app.lag.verdict import verdict
 from app.state import ViewState
 from app.words import p_words
 from app.workspace import Workspace
-from tests.browser.driving import open_lag, until
+from tests.browser.driving import open_lag, severe, until
+from tests.exported import records
 
 SHORT = {"surrogates": 250, "windows": "1:24", "shifts": "-12:36"}
 DONE = (
@@ -62,10 +61,6 @@ def asked_for(driver):
             if "/lag/work/" in sent.get("url", ""):
                 found.append(sent["url"].split("/lag/work/")[1])
     return found
-
-
-def no_errors(driver):
-    return [entry for entry in driver.get_log("browser") if entry["level"] == "SEVERE"] == []
 
 
 def opened(driver, name):
@@ -127,9 +122,7 @@ def test_verdict_folds_and_map_are_pythons_and_a_reload_reproduces_them(
         time.sleep(0.05)
     text = path.read_text()
     assert f"# search: p {known.search.p!r};" in text
-    body = "\n".join(row for row in text.splitlines() if not row.startswith("#"))
-    rows = list(csv.DictReader(io.StringIO(body)))
-    shares = [float(row["covariance_share"]) for row in rows]
+    shares = [float(row["covariance_share"]) for row in records(text)]
     assert shares == [e.share for e in known.influence.episodes]
 
     # An episode is left out: in the address, in the chart; and back.
@@ -174,7 +167,7 @@ def test_verdict_folds_and_map_are_pythons_and_a_reload_reproduces_them(
     assert traces(browser, "lag-episodes") == shares
     assert len(traces(browser, "lag-surface")) == 4
     browser.find_element(By.ID, "theme").click()
-    assert no_errors(browser)
+    assert severe(browser) == []
 
 
 def test_stop_stops_asking_and_a_moving_slider_never_waits_for_the_search(browser, address, bridge):
@@ -232,7 +225,7 @@ def test_stop_stops_asking_and_a_moving_slider_never_waits_for_the_search(browse
     names = asked_for(browser)
     assert names[-1].startswith("shift_set?")
     assert sum(name.startswith("search?") for name in names) <= 50, "no chunk is done twice"
-    assert no_errors(browser)
+    assert severe(browser) == []
 
 
 def test_an_unrelated_pair_reads_found_nothing(browser, address, bridge):
@@ -247,7 +240,7 @@ def test_an_unrelated_pair_reads_found_nothing(browser, address, bridge):
     browser.find_element(By.CSS_SELECTOR, "#fold-profile summary").click()
     assert "none is shown" in browser.find_element(By.ID, "lag-profile-words").text
     assert browser.execute_script("return document.getElementById('place-profile').hidden")
-    assert no_errors(browser)
+    assert severe(browser) == []
 
 
 def test_a_cell_that_cannot_be_judged_is_said_and_the_page_goes_on(browser, address, bridge):
@@ -264,4 +257,4 @@ def test_a_cell_that_cannot_be_judged_is_said_and_the_page_goes_on(browser, addr
     browser.execute_script("pricewake.lag.move({window: 6, shift: 6}); pricewake.lag.settle()")
     until(browser, DONE + " && pricewake.lag.known.state.shift === 6")
     assert shown_words(browser) == words_of(bridge, state)
-    assert no_errors(browser)
+    assert severe(browser) == []

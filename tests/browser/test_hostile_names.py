@@ -1,7 +1,5 @@
 """Series whose names are attacks, on every page: nothing runs, is fetched, or breaks."""
 
-import csv
-import io
 import json
 from dataclasses import replace
 
@@ -15,7 +13,8 @@ from app.state import ViewState
 from tests import hostile
 from tests.app.briefs import built
 from tests.app.test_hostile_names import NUMBER, RUNS
-from tests.browser.driving import served, size, until
+from tests.browser.driving import served, severe, size, until
+from tests.exported import rows_of
 
 SAID = "document.querySelector('main h1') && document.querySelector('main h1').textContent"
 QUIET = "!pricewake.plain.busy() && !pricewake.lag.busy()"
@@ -81,8 +80,7 @@ def test_no_name_runs_anything_or_breaks_the_page(browser, place, page):
     sent = asked_for(browser)
     assert [each for each in sent if not each.startswith((url, "data:", "blob:"))] == []
     assert [each for each in sent if each.endswith("/x")] == []
-    severe = [e for e in browser.get_log("browser") if e["level"] == "SEVERE"]
-    assert severe == []
+    assert severe(browser) == []
     for width in (1280, 400):
         size(browser, width, 800)
         until(browser, f"document.documentElement.scrollWidth <= {width}", 15)
@@ -107,9 +105,7 @@ def test_a_brief_of_hostile_names_is_harmless_when_opened_from_its_file(browser,
         assert not set(name) & set('<>"|:*?\\'), name
         if not name.endswith(".csv"):
             continue
-        lines = files[name].decode().split("\r\n")
-        body = "\n".join(line for line in lines if not line.startswith("#"))
-        for row in csv.reader(io.StringIO(body, newline="")):
+        for row in rows_of(files[name].decode()):
             for cell in row:
                 assert not cell.startswith(RUNS) or NUMBER.fullmatch(cell), (name, cell)
                 cells += 1
@@ -129,7 +125,7 @@ def test_a_brief_of_hostile_names_is_harmless_when_opened_from_its_file(browser,
     assert "onerror=" in browser.execute_script("return document.body.innerText")
     sent = [each for each in asked_for(browser) if not each.startswith(("data:", "blob:"))]
     assert set(sent) == {page.as_uri()}
-    assert [e for e in browser.get_log("browser") if e["level"] == "SEVERE"] == []
+    assert severe(browser) == []
     for width in (1280, 400):
         size(browser, width, 800)
         until(browser, f"document.documentElement.scrollWidth <= {width}", 15)

@@ -1,7 +1,5 @@
 """The Lag page as a person uses it, in a real browser; numbers, not only presence."""
 
-import csv
-import io
 import json
 import math
 import struct
@@ -18,7 +16,8 @@ from app.demo import demo_releases
 from app.pages import lag as page
 from app.state import ViewState
 from app.workspace import Workspace
-from tests.browser.driving import READY, open_lag, until
+from tests.browser.driving import READY, open_lag, served, severe, until
+from tests.exported import records
 
 
 @pytest.fixture(scope="module")
@@ -58,7 +57,7 @@ def check_cell(driver, bridge, shown):
 
 
 def test_page_opens_with_an_empty_console_and_asks_no_other_host(lag, address):
-    assert [entry for entry in lag.get_log("browser") if entry["level"] == "SEVERE"] == []
+    assert severe(lag) == []
     urls = [
         json.loads(entry["message"])["message"]["params"]["request"]["url"]
         for entry in lag.get_log("performance")
@@ -261,8 +260,7 @@ def test_csv_button_gives_the_numbers_on_screen(lag, address, bridge, downloads)
     lag.find_element(By.ID, "csv-scatter").click()
     path = downloads / "scatter-broad-money-consumer-prices-window-12-shift-23.csv"
     wait_for(path)
-    lines = [x for x in path.read_text().splitlines() if not x.startswith("#")]
-    rows = [row for row in csv.DictReader(io.StringIO("\n".join(lines))) if row["part"] == "pair"]
+    rows = [row for row in records(path.read_text()) if row["part"] == "pair"]
     points = drawn(lag, "lag-scatter", 0)
     np.testing.assert_allclose([float(row["driver"]) for row in rows], points["x"], atol=1e-9)
     np.testing.assert_allclose([float(row["response"]) for row in rows], points["y"], atol=1e-9)
@@ -322,7 +320,6 @@ def test_no_request_leaves_while_a_slider_moves(lag):
 
 def test_quarterly_pair_opens_at_one_and_two_years(browser, tmp_path):
     from app.intake.reading import read_release
-    from tests.browser.driving import served
 
     rng = np.random.default_rng(7)
     growth = rng.standard_normal(160)  # response = driver six quarters earlier

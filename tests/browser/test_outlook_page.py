@@ -1,6 +1,5 @@
 """The Outlook page as a person uses it: a path, the past gone through, a statement and its fate."""
 
-import csv
 import time
 
 import numpy as np
@@ -16,7 +15,8 @@ from app.intake.reading import Release
 from app.outlook.bridge import completed_outlook
 from app.state import ViewState
 from tests.app.outlooks import QUICK, release, released
-from tests.browser.driving import served, size, until
+from tests.browser.driving import served, severe, size, until
+from tests.exported import rows_of
 
 QUERY = f"driver=Money&response=Prices&{QUICK}"
 READY = (
@@ -62,14 +62,6 @@ def trace(driver, view, name):
         f"outlook-{view}",
         name,
     )
-
-
-def severe(driver, *expected):
-    return [
-        entry
-        for entry in driver.get_log("browser")
-        if entry["level"] == "SEVERE" and not any(each in entry["message"] for each in expected)
-    ]
 
 
 def test_what_is_drawn_and_said_are_the_numbers_of_the_results(page, desk):
@@ -208,7 +200,7 @@ def test_a_statement_is_kept_scored_when_prints_arrive_and_superseded(page, desk
         "const done = arguments[0];"
         "fetch(document.getElementById('csv-statements').href).then(r => r.text()).then(done)"
     )
-    rows = list(csv.reader(line for line in text.splitlines() if not line.startswith("#")))
+    rows = rows_of(text)
     first = [row for row in rows if row[0] == "1" and row[10] == "yearly"]
     assert [row[2] for row in first] == ["Prices ease."] * 6
     stated = np.array([float(row[13]) for row in first])

@@ -1,6 +1,5 @@
 """The Reading page as a person uses it, in a real browser."""
 
-import csv
 import json
 import time
 
@@ -16,7 +15,8 @@ from app.reading.bridge import reading
 from app.reading.exports import VIEWS
 from app.state import ViewState
 from app.workspace import Workspace
-from tests.browser.driving import until
+from tests.browser.driving import severe, until
+from tests.exported import rows_of
 
 DRAWN = (
     "window.pricewake && pricewake.plain && pricewake.plain.data && pricewake.plain.state &&"
@@ -53,7 +53,7 @@ def trace(driver, view, index):
 
 
 def test_the_page_opens_once_with_an_empty_console_and_asks_no_other_host(page, address):
-    assert [entry for entry in page.get_log("browser") if entry["level"] == "SEVERE"] == []
+    assert severe(page) == []
     sent = [
         message["params"]["request"]["url"]
         for entry in page.get_log("performance")
@@ -156,7 +156,7 @@ def test_every_view_saves_a_picture_and_a_file(page, downloads):
         "const done = arguments[0];"
         "fetch(document.getElementById('csv-base').href).then(r => r.text()).then(done)"
     )
-    rows = list(csv.reader(line for line in text.splitlines() if not line.startswith("#")))
+    rows = rows_of(text)
     assert rows[0][:3] == ["period", "part", "yearly_rate"]
 
 

@@ -3,7 +3,7 @@
 from selenium.webdriver.common.by import By
 from selenium.webdriver.common.keys import Keys
 
-from tests.browser.driving import until
+from tests.browser.driving import severe, until
 
 DRAWN = (
     "window.pricewake && pricewake.plain && pricewake.plain.data && !pricewake.plain.busy()"
@@ -38,8 +38,4 @@ def test_a_rule_is_kept_raises_its_alert_and_is_taken_away(browser, address):
     until(browser, "!document.getElementById('reading-alerts').textContent.includes('50.00')")
     assert listed(browser) == before
     assert browser.find_element(By.CSS_SELECTOR, ".rules[open]")
-    assert [
-        entry
-        for entry in browser.get_log("browser")
-        if entry["level"] == "SEVERE" and "keep-rule" not in entry["message"]
-    ] == []
+    assert severe(browser, "keep-rule") == []

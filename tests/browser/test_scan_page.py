@@ -15,7 +15,7 @@ from app.scan.result_file import panel_text
 from app.state import ViewState
 from tests.app.panels import SMALL, panel_workspace
 from tests.browser import driving
-from tests.browser.driving import size, until
+from tests.browser.driving import severe, size, until
 
 SLOPES = {"Ardenquay": 1.0, "Belmorrow": 0.0, "Corvessa": 0.6, "Dunmarrel": 0.0, "Elquire": 0.8}
 STATE = replace(ViewState(), **SMALL)
@@ -75,7 +75,7 @@ def scale(theme):
 
 
 def test_the_maps_are_painted_from_the_numbers_of_python_in_both_themes(page, known):
-    assert [e for e in page.get_log("browser") if e["level"] == "SEVERE"] == []
+    assert severe(page) == []
     pairs = {pair.names: pair for pair in known.question.pairs}
     for theme in ("light", "dark"):
         if theme == "dark":

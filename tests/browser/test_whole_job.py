@@ -4,8 +4,6 @@ Prices follow money by six months with a slope of 0.5; money is redefined in Jan
 components with weights make up the index. What the screen says is held against plain numpy here.
 """
 
-import csv
-import io
 import re
 import time
 import urllib.request
@@ -21,6 +19,7 @@ from selenium.webdriver.support.ui import Select
 from app.demo import demo_releases
 from app.workspace import Workspace
 from tests.browser.driving import READY, served, until
+from tests.exported import records
 
 MONTHS, LAG, SLOPE, BREAK = 240, 6, 0.5, 120
 PARTS = ("01 Bread", "02 Fuel", "03 Rent", "04 Travel")
@@ -98,9 +97,7 @@ def rows_of(browser, view):
     """The rows of a view's CSV, fetched from where its button leads."""
     address = browser.find_element(By.ID, f"csv-{view}").get_attribute("href")
     with urllib.request.urlopen(address, timeout=60) as answer:
-        text = answer.read().decode()
-    lines = [line for line in text.splitlines() if not line.startswith("#")]
-    return list(csv.DictReader(io.StringIO("\n".join(lines))))
+        return records(answer.read().decode())
 
 
 def number_in(text, pattern):
@@ -236,7 +233,5 @@ def test_the_brief_is_taken_along(browser, place, economy, downloads, monkeypatc
     direction = "rose" if monthly > 0 else "fell"
     assert f"Shop prices {direction} {abs(monthly):.2f} percent in Dec 2019" in brief
     assert f"The 12-month rate is {100 * (prices[-1] / prices[-13] - 1):.1f} percent" in brief
-    lines = [line for line in text.splitlines() if not line.startswith("#")]
-    rows = list(csv.DictReader(io.StringIO("\n".join(lines))))
-    assert len(rows) > 150
+    assert len(records(text)) > 150
     assert "investment or policy advice" in brief
