@@ -81,7 +81,8 @@ class Bridge:
         ValueError
             As in `rates`, or the two do not overlap.
         """
-        return align(*self.rates(state))
+        sides = self.rates(state)
+        return self.memory.once("pair:" + self.key(state.question()), lambda: align(*sides))
 
     def rates(self, state: ViewState) -> tuple[Series, Series]:
         """Growth rates of driver and response, each over its own part of the sample.
@@ -102,12 +103,16 @@ class Bridge:
                 f"driver and response must be two series, but both are {state.driver!r}; a series"
                 " leads itself by 0 with correlation 1"
             )
-        formula: Any = state.growth
-        used = self.prepared(state)
-        return (
-            _sample(growth_rate(used.driver, formula=formula), state),
-            _sample(growth_rate(used.response, formula=formula), state),
-        )
+
+        def make() -> tuple[Series, Series]:
+            formula: Any = state.growth
+            used = self.prepared(state)
+            return (
+                _sample(growth_rate(used.driver, formula=formula), state),
+                _sample(growth_rate(used.response, formula=formula), state),
+            )
+
+        return self.memory.once("rates:" + self.key(state.question()), make)
 
     def prepared(self, state: ViewState) -> Prepared:
         """Return driver and response as they are paired: breaks, season and frequency seen to."""

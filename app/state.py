@@ -5,6 +5,7 @@ control; `app.controls` draws them and `app.cli` makes its flags from the same r
 """
 
 from dataclasses import Field, dataclass, field, fields, replace
+from functools import lru_cache
 from typing import Any, cast
 from urllib.parse import parse_qsl, urlencode
 
@@ -324,13 +325,11 @@ class ViewState:
 
     def numbers(self) -> "ViewState":
         """Return the state with display-only fields at their default: the cache key."""
-        plain: dict[str, Any] = {i.name: i.default for i in fields(self) if kind_of(i).display}
-        return replace(self, **plain)
+        return _numbers(self)
 
     def question(self) -> "ViewState":
         """Return `numbers` without the cell chosen: all cells of one surface share it."""
-        cell: dict[str, Any] = {name: getattr(ViewState, name) for name in CELL_FIELDS}
-        return replace(self.numbers(), **cell)
+        return _question(self)
 
     def sentence(self, noun: str = "month", span: str = "", without: str = "") -> str:
         """Say the state in one sentence; `span` and `without` are the sample in words."""
@@ -344,6 +343,18 @@ class ViewState:
             relation = f"beside {self.response} of the same {noun}"
         stood = f", as it stood on {self.as_of}" if self.as_of else ""
         return f"{self.driver}, {smoothed}, {relation}{', ' + span if span else ''}{without}{stood}"
+
+
+@lru_cache(maxsize=256)  # asked for several times an answer, and every field is checked
+def _numbers(state: ViewState) -> ViewState:
+    plain: dict[str, Any] = {i.name: i.default for i in fields(state) if kind_of(i).display}
+    return replace(state, **plain)
+
+
+@lru_cache(maxsize=256)
+def _question(state: ViewState) -> ViewState:
+    cell: dict[str, Any] = {name: getattr(ViewState, name) for name in CELL_FIELDS}
+    return replace(state.numbers(), **cell)
 
 
 def kind_of(item: "Field[Any]") -> FieldKind:

@@ -11,7 +11,7 @@ import pandas as pd
 import plotly.graph_objects as go
 
 from analytics.series import period_label
-from app.figures.theme import colour, diverging, template
+from app.figures.theme import colour, diverging, dress
 
 PARTS = tuple(f"part-{number}" for number in range(1, 8))
 DASHES = ("solid", "solid", "dash", "dot")
@@ -33,8 +33,8 @@ def contribution_bars(names: list[str], points: np.ndarray, unit: str) -> go.Fig
             hovertemplate="%{y}: %{x:+.3f} points<extra></extra>",
         )
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": _room(names) + 56, "r": 12, "t": 8, "b": 44},
         bargap=0.3,
         xaxis={
@@ -96,15 +96,12 @@ def contribution_history(
             hovertemplate="%{text}: rate %{y:+.2f}<extra></extra>",
         )
     )
-    return go.Figure(
-        traces,
-        go.Layout(
-            template=template(),
-            margin={"l": 56, "r": 12, "t": 8, "b": 28},
-            barmode="relative",
-            meta={"key": [*key, ("line", "ink", total)]},
-            yaxis={"title": {"text": unit}, "zeroline": True, "zerolinecolor": colour("ink")},
-        ),
+    return dress(
+        go.Figure(traces),
+        margin={"l": 56, "r": 12, "t": 8, "b": 28},
+        barmode="relative",
+        meta={"key": [*key, ("line", "ink", total)]},
+        yaxis={"title": {"text": unit}, "zeroline": True, "zerolinecolor": colour("ink")},
     )
 
 
@@ -158,8 +155,8 @@ def component_strip(
             hovertemplate="%{x|%b %Y}<br>%{y}: " + hover + "<extra></extra>",
         )
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": _room(shown) if few else 56, "r": 52, "t": 8, "b": 28},
         xaxis={"showgrid": False, "tickangle": 0},
         yaxis={
@@ -214,14 +211,11 @@ def core_lines(
                 hovertemplate=f"%{{text}}: {escape(name, False)} %{{y:.2f}} %<extra></extra>",
             )
         )
-    return go.Figure(
-        traces,
-        go.Layout(
-            template=template(),
-            margin={"l": 56, "r": 12, "t": 8, "b": 28},
-            meta={"key": key},
-            yaxis={"title": {"text": f"{over} rate (%)"}},
-        ),
+    return dress(
+        go.Figure(traces),
+        margin={"l": 56, "r": 12, "t": 8, "b": 28},
+        meta={"key": key},
+        yaxis={"title": {"text": f"{over} rate (%)"}},
     )
 
 
@@ -248,8 +242,8 @@ def diffusion_lines(periods: pd.PeriodIndex, lines: dict[str, np.ndarray]) -> go
             for place, (name, values) in enumerate(lines.items())
         ]
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 56, "r": 12, "t": 8, "b": 28},
         meta={
             "key": [
@@ -294,14 +288,11 @@ def weight_areas(periods: pd.PeriodIndex, parts: dict[str, np.ndarray]) -> go.Fi
                 hovertemplate=f"%{{text}}: {escape(name, False)} %{{y:.2f}} %<extra></extra>",
             )
         )
-    return go.Figure(
-        traces,
-        go.Layout(
-            template=template(),
-            margin={"l": 56, "r": 12, "t": 8, "b": 28},
-            meta={"key": key},
-            yaxis={"title": {"text": "weight (%)"}, "range": [0, 100]},
-        ),
+    return dress(
+        go.Figure(traces),
+        margin={"l": 56, "r": 12, "t": 8, "b": 28},
+        meta={"key": key},
+        yaxis={"title": {"text": "weight (%)"}, "range": [0, 100]},
     )
 
 

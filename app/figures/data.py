@@ -7,7 +7,7 @@ import plotly.graph_objects as go
 
 from analytics.revisions import Revisions
 from analytics.series import FloatArray, period_label
-from app.figures.theme import colour, template
+from app.figures.theme import colour, dress
 
 WIDE, TALL = 120, 28  # of the small line, in its own units
 STRETCHES = 60  # of a long series, in the small line
@@ -107,8 +107,8 @@ def revisions_chart(result: Revisions, start: int, unit: str) -> go.Figure:
             ),
         ]
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 66, "r": 12, "t": 26, "b": 30},
         showlegend=True,
         legend={"orientation": "h", "x": 0, "y": 1.02, "yanchor": "bottom"},

@@ -16,7 +16,7 @@ from analytics.stability import Stability
 from app.compute import noun
 from app.figures.lag import axis_title, rate_unit
 from app.figures.lag_slices import density_surface
-from app.figures.theme import colour, template
+from app.figures.theme import colour, dress
 from app.state import ViewState
 
 
@@ -54,8 +54,8 @@ def shift_profile(chosen: ShiftSet, pair: Pair) -> go.Figure:
             ),
         ]
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 60, "r": 12, "t": 34, "b": 48},
         showlegend=True,
         legend=_above(),
@@ -96,8 +96,8 @@ def parameter_plane(
         annotation={"text": "slope 0: no relation", "font": {"size": 11}},
         annotation_position="bottom right",
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 60, "r": 12, "t": 34, "b": 48},
         showlegend=True,
         legend=_above(),
@@ -137,8 +137,8 @@ def episode_shares(influence: InfluenceResult, pair: Pair, start: int) -> go.Fig
                 name=words,
             )
         )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 60, "r": 12, "t": 34, "b": 30},
         showlegend=True,
         legend=_above(),
@@ -198,8 +198,8 @@ def scatter_without(
             ),
         ]
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 66, "r": 12, "t": 50, "b": 48},
         showlegend=True,
         legend=_above(),
@@ -215,7 +215,7 @@ def opinion_profiles(opinions: SecondOpinions, pair: Pair) -> go.Figure:
         (name, shifts, estimate, low, high, token)
         for name, shifts, estimate, low, high, token in _profiles(opinions)
     ]
-    figure = go.Figure()
+    figure, axes = go.Figure(), {}
     for place, (name, shifts, estimate, low, high, token) in enumerate(rows):
         axis = "" if place == 0 else str(place + 1)
         ends = _bands(place, len(rows))
@@ -243,20 +243,17 @@ def opinion_profiles(opinions: SecondOpinions, pair: Pair) -> go.Figure:
                 name=name,
             )
         )
-        figure.update_layout(
-            {
-                f"yaxis{axis}": {
-                    "domain": ends,
-                    "title": {"text": name.replace(" ", "<br>", 1), "font": {"size": 11}},
-                    "zeroline": True,
-                    "zerolinecolor": colour("ink"),
-                    "zerolinewidth": 1,
-                    "nticks": 4,
-                }
-            }
-        )
-    figure.update_layout(
-        template=template(),
+        axes[f"yaxis{axis}"] = {
+            "domain": ends,
+            "title": {"text": name.replace(" ", "<br>", 1), "font": {"size": 11}},
+            "zeroline": True,
+            "zerolinecolor": colour("ink"),
+            "zerolinewidth": 1,
+            "nticks": 4,
+        }
+    dress(
+        figure,
+        **axes,
         margin={"l": 74, "r": 12, "t": 8, "b": 44},
         xaxis={
             "title": {"text": f"{noun(pair)}s after the driver"},
@@ -301,8 +298,8 @@ def stability_courses(stable: Stability, pair: Pair, start: int) -> go.Figure:
             ),
         ]
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 60, "r": 12, "t": 34, "b": 30},
         showlegend=True,
         legend=_above(),

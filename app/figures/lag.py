@@ -16,7 +16,7 @@ from analytics.slices import Counts, SlicePath
 from analytics.surface import LagSurface
 from app.compute import Overlay, noun
 from app.figures.lag_slices import count_traces, side_axes, slice_traces
-from app.figures.theme import colour, diverging, sequential, template, time_scale
+from app.figures.theme import colour, diverging, dress, sequential, time_scale
 from app.state import ViewState
 
 SCATTER_TRACES = (
@@ -73,8 +73,8 @@ def surface_heatmap(
     )
     step = {"monthly": 12, "quarterly": 4, "annual": 1}[pair.driver.frequency]
     axis = {"showgrid": False, "ticklen": 11, "tick0": 0, "dtick": step, "fixedrange": True}
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 66, "r": 70, "t": 8, "b": 56},
         xaxis={
             **axis,
@@ -156,10 +156,9 @@ def cell_scatter(
             *count_traces(counts, noun(pair), squares_shown=state.points == "counts"),
         ]
     )
-    figure.update_layout(
-        template=template(), margin={"l": 66, "r": 70, "t": 8, "b": 48}, **side_axes(state)
-    )
-    figure.update_layout(
+    dress(figure, margin={"l": 66, "r": 70, "t": 8, "b": 48}, **side_axes(state))
+    dress(
+        figure,
         xaxis={"title": {"text": axis_title(pair.driver, state)}},
         yaxis={"title": {"text": axis_title(pair.response, state, lines=2)}},
     )
@@ -197,8 +196,8 @@ def overlay_lines(
             ),
         ]
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 56, "r": 12, "t": 8, "b": 28},
         xaxis={"hoverformat": "%b %Y"},
         yaxis={"title": {"text": shared_unit(pair)}},

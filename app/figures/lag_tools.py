@@ -8,7 +8,7 @@ import plotly.graph_objects as go
 
 from analytics.series import Pair, period_label
 from app.figures.lag import axis_title, pair_labels
-from app.figures.theme import colour, template
+from app.figures.theme import colour, dress
 from app.lag.tools import OneCell, OneResponse, Peaks
 from app.words import plain, shift_words, signed
 
@@ -67,8 +67,8 @@ def compare_scatters(pinned: OneCell, chosen: OneCell, pair: Pair, unit: str) ->
     for axis, values in ends.items():
         low, high = min(values), max(values)
         spans[axis] = [low - 0.04 * (high - low), high + 0.04 * (high - low)]
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 66, "r": 12, "t": 44, "b": 48},
         xaxis={
             "domain": [0, 0.48],
@@ -134,7 +134,7 @@ def response_profiles(responses: list[OneResponse]) -> go.Figure:
     shown = [r for r in responses if r.surface is not None and r.best is not None]
     across = min(3, max(1, len(shown)))
     down = -(-len(shown) // across) if shown else 1
-    figure = go.Figure()
+    figure, axes = go.Figure(), {}
     for place, one in enumerate(shown):
         assert one.surface is not None
         assert one.best is not None
@@ -181,25 +181,21 @@ def response_profiles(responses: list[OneResponse]) -> go.Figure:
             showarrow=False,
             font={"size": 12},
         )
-        figure.update_layout(
-            {
-                f"xaxis{axis}": {
-                    "domain": [left + 0.03, left + 1 / across - 0.01],
-                    "anchor": f"y{axis}",
-                    "title": {"text": f"shift ({one.unit}s)" if row == down - 1 else ""},
-                    "nticks": 6,
-                },
-                f"yaxis{axis}": {
-                    "domain": [top - 1 / down + 0.08, top - 0.06],
-                    "anchor": f"x{axis}",
-                    "range": [-1, 1],
-                    "nticks": 3,
-                    "zeroline": True,
-                    "zerolinecolor": colour("ink"),
-                    "zerolinewidth": 1,
-                    "title": {"text": "correlation" if column == 0 else ""},
-                },
-            }
-        )
-    figure.update_layout(template=template(), margin={"l": 40, "r": 12, "t": 8, "b": 40})
+        axes[f"xaxis{axis}"] = {
+            "domain": [left + 0.03, left + 1 / across - 0.01],
+            "anchor": f"y{axis}",
+            "title": {"text": f"shift ({one.unit}s)" if row == down - 1 else ""},
+            "nticks": 6,
+        }
+        axes[f"yaxis{axis}"] = {
+            "domain": [top - 1 / down + 0.08, top - 0.06],
+            "anchor": f"x{axis}",
+            "range": [-1, 1],
+            "nticks": 3,
+            "zeroline": True,
+            "zerolinecolor": colour("ink"),
+            "zerolinewidth": 1,
+            "title": {"text": "correlation" if column == 0 else ""},
+        }
+    dress(figure, **axes, margin={"l": 40, "r": 12, "t": 8, "b": 40})
     return figure

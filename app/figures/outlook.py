@@ -10,7 +10,7 @@ import plotly.graph_objects as go
 
 from analytics.series import FloatArray
 from app.figures.reading import above, ring, when
-from app.figures.theme import colour, template
+from app.figures.theme import colour, dress
 
 TINTS = ("few-2", "few-3", "few-4")  # widest interval to narrowest
 DASHES = ("solid", "5px,2px", "dot", "dashdot", "longdash", "2px,4px", "8px,2px,2px,2px", "solid")
@@ -113,7 +113,8 @@ def gap_lines(
         ]
     )
     _dress(figure, unit)
-    figure.update_layout(
+    dress(
+        figure,
         bargap=0,
         xaxis={"anchor": "y2", "range": [*when(periods[[0, -1]])]},
         yaxis={"domain": [0.4, 1]},
@@ -249,8 +250,8 @@ def _line(
 
 
 def _dress(figure: go.Figure, unit: str, *, right: int = 16) -> None:
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 56, "r": right, "t": 40, "b": 34},
         showlegend=True,
         legend=above(),

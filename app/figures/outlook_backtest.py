@@ -8,7 +8,7 @@ from analytics.backtest_scores import Scores
 from analytics.direct import DirectForecasts
 from analytics.series import FloatArray
 from app.figures.reading import above, when
-from app.figures.theme import colour, template
+from app.figures.theme import colour, dress
 
 TONES = {"no change": "mark", "autoregression": "other", "mean so far": "late"}
 DASHES = {"no change": "solid", "autoregression": "5px,2px", "mean so far": "dot"}
@@ -120,8 +120,8 @@ def gain_through_time(periods: pd.PeriodIndex, gain: FloatArray, against: str) -
 
 
 def _dress(figure: go.Figure, across: str, unit: str, *, legend: bool = True) -> None:
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 60, "r": 16, "t": 40 if legend else 14, "b": 44 if across else 34},
         showlegend=legend,
         legend=above(),

@@ -11,7 +11,7 @@ from analytics.base_effect import BaseEffects, DropOuts
 from analytics.carry_over import Path
 from analytics.high_inflation import Run
 from analytics.series import Series, period_code, period_label
-from app.figures.theme import colour, template
+from app.figures.theme import colour, dress
 
 YEAR = {"monthly": "12-month", "quarterly": "four-quarter", "annual": "yearly"}
 
@@ -253,15 +253,16 @@ def _dress(
     span: pd.PeriodIndex | None = None,
     **layout: object,
 ) -> None:
+    along: dict[str, object] = {"hoverformat": "%b %Y"}
     if span is not None:  # markers at the end would have plotly add years of white
         ends = when(span[[0, -1]])
-        figure.update_xaxes(range=[ends[0], ends[1] + 0.012 * (ends[1] - ends[0])])
-    figure.update_layout(
-        template=template(),
+        along["range"] = [ends[0], ends[1] + 0.012 * (ends[1] - ends[0])]
+    dress(
+        figure,
         margin={"l": 56, "r": 16, "t": 40 if legend else 14, "b": 34},
         showlegend=legend,
         legend=above(),
-        xaxis={"hoverformat": "%b %Y"},
+        xaxis=along,
         yaxis={"title": {"text": unit}},
         **layout,
     )
@@ -275,8 +276,15 @@ def above() -> dict[str, object]:
 def _today(figure: go.Figure, last: pd.Period, coming: pd.Period) -> None:
     """Draw the line between what is known and what is to come."""
     ends = when(pd.PeriodIndex([last, coming]))
-    figure.add_vline(
-        x=ends[0] + (ends[1] - ends[0]) / 2,
+    middle = ends[0] + (ends[1] - ends[0]) / 2
+    figure.add_shape(
+        type="line",
+        x0=middle,
+        x1=middle,
+        xref="x",
+        y0=0,
+        y1=1,
+        yref="y domain",
         line={"color": colour("ink"), "width": 1, "dash": "dot"},
     )
 

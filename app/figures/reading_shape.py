@@ -10,7 +10,7 @@ from analytics.distribution import Fit, KernelFit
 from analytics.families import FAMILIES
 from analytics.standing import Standing
 from app.figures.reading import above, ring
-from app.figures.theme import colour, template
+from app.figures.theme import colour, dress
 
 FAMILY_LINES = {  # colour and dash of each family, so that hue alone tells nothing apart
     "laplace": ("fit", "solid"),
@@ -56,8 +56,8 @@ def standing_steps(found: Standing, unit: str) -> go.Figure:
             ),
         ]
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 56, "r": 16, "t": 14, "b": 48},
         xaxis={"title": {"text": escape(unit, False)}},
         yaxis={"title": {"text": "of 100 readings, at or below"}, "range": [0, 104]},
@@ -128,8 +128,8 @@ def density_curves(
         xanchor="right" if before else "left",
         xshift=-4 if before else 4,
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 56, "r": 16, "t": 44, "b": 48},
         showlegend=True,
         legend=above(),
@@ -167,8 +167,8 @@ def quantile_points(found: Standing, fit: Fit, unit: str) -> go.Figure:
             ),
         ]
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 56, "r": 16, "t": 14, "b": 48},
         xaxis={"title": {"text": f"{label[0].upper()}{label[1:]} quantile"}},
         yaxis={"title": {"text": f"observed, {escape(unit, False)}"}},

@@ -12,7 +12,7 @@ import plotly.graph_objects as go
 
 from analytics.long_averages import LongAverages
 from analytics.surface import LagSurface
-from app.figures.theme import colour, diverging, template
+from app.figures.theme import colour, diverging, dress
 
 Bin = tuple[float, int, int]  # middle, pairs that hold, other pairs
 
@@ -100,12 +100,11 @@ def surface_maps(
             )
     size = [max(800, 90 + 185 * across), 210 + 135 * down]
     layout |= {
-        "template": template(),
         "margin": {"l": 40, "r": 8, "t": 40, "b": 40},
         "meta": {"stamp": stamp, "size": size},
         "annotations": annotations,
     }
-    return go.Figure(traces, layout)
+    return dress(go.Figure(traces), **layout)
 
 
 def shift_bars(bins: Sequence[Bin], width: int, span: tuple[int, int], unit: str) -> go.Figure:
@@ -130,8 +129,8 @@ def shift_bars(bins: Sequence[Bin], width: int, span: tuple[int, int], unit: str
             )
         ]
     )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         barmode="stack",
         margin={"l": 50, "r": 12, "t": 8, "b": 48},
         xaxis={
@@ -197,8 +196,8 @@ def average_points(
             yshift=12,
             font={"size": 11},
         )
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 60, "r": 24, "t": 20, "b": 48},
         xaxis={"title": {"text": f"{escape(driver, False)}, percent a year"}, "type": kind},
         yaxis={"title": {"text": f"{escape(response, False)}, percent a year"}, "type": kind},

@@ -6,7 +6,7 @@ import plotly.graph_objects as go
 
 from analytics.seasonal import SeasonalAdjustment
 from analytics.series import period_label
-from app.figures.theme import colour, template
+from app.figures.theme import colour, dress
 
 DASHES = ("solid", "dot")
 
@@ -26,8 +26,8 @@ def season_lines(parts: Sequence[SeasonalAdjustment]) -> go.Figure:
             hovertemplate="%{text}: season %{y:+.2f}<extra></extra>",
         )
     units = dict.fromkeys(found.season.unit or "unit not named" for found in parts)
-    figure.update_layout(
-        template=template(),
+    dress(
+        figure,
         margin={"l": 66, "r": 12, "t": 26 if len(parts) > 1 else 8, "b": 30},
         showlegend=len(parts) > 1,
         legend={"orientation": "h", "x": 0, "y": 1.02, "yanchor": "bottom"},

@@ -1,9 +1,12 @@
 """The plotly template: colours, type and sizes, all read from assets/tokens.css."""
 
 import re
+from collections.abc import Mapping
 from functools import lru_cache
+from typing import Any
 
 import plotly.graph_objects as go
+import plotly.io as pio
 
 from app.places import bundled
 
@@ -75,10 +78,7 @@ def time_scale() -> list[list[float | str]]:
 
 @lru_cache(maxsize=1)
 def template() -> go.layout.Template:
-    """Return the template of every chart: no frames, thin rules, system type.
-
-    A figure copies it, so all can share one.
-    """
+    """Return the template of every chart: no frames, thin rules, system type."""
     axis = {
         "showgrid": True,
         "gridcolor": colour("rule"),
@@ -109,3 +109,26 @@ def template() -> go.layout.Template:
             "colorscale": {"sequential": sequential(), "diverging": diverging()},
         }
     )
+
+
+def dress(figure: go.Figure, **layout: Any) -> go.Figure:
+    """Lay the template and a layout over what a figure has, and return it.
+
+    What ``update_layout`` does, in a tenth of its time: the layout is made once and whole, and the
+    template put under it unread.
+    """
+    pio.templates.default = template()
+    figure.layout.template = None  # else it is copied, part by part
+    figure.layout = _over(figure.layout.to_plotly_json(), layout)
+    return figure
+
+
+def _over(had: Mapping[str, Any], new: Mapping[str, Any]) -> dict[str, Any]:
+    """Return one mapping laid over another, what both hold laid over in turn."""
+    both = dict(had)
+    for name, value in new.items():
+        below = both.get(name)
+        both[name] = (
+            _over(below, value) if isinstance(below, dict) and isinstance(value, dict) else value
+        )
+    return both

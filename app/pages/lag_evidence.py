@@ -164,36 +164,39 @@ def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[A
             if results[kind] is None and not refusals[kind]:
                 jobs.append(kind)
     start = cell_span(pair, state)[0]
-    charts: dict[str, Figure] = {
-        "plane": figures.parameter_plane(
-            known.inference, pair, density_of(state, bridge) if "plane" in opened else None
-        ),
-        "episodes": figures.episode_shares(known.influence, pair, start),
-    }
-    if known.found and known.shift_set is not None:
-        charts["profile"] = figures.shift_profile(known.shift_set, pair)
     left_out, refused = None, ""
     try:
         left_out = without_episode(state, bridge)
     except StateError as error:
         refused = str(error)
-    if left_out is not None:
-        charts["without"] = figures.scatter_without(known.inference, *left_out, pair, state, start)
-    if results.get("opinions") is not None:
-        charts["opinions"] = figures.opinion_profiles(results["opinions"], pair)
-    if results.get("stability") is not None:
-        charts["stability"] = figures.stability_courses(results["stability"], pair, start)
     used = bridge.prepared(state)
-    charts |= lag_season.chart(used)
     both, unpinned = None, ""
     try:
         both = two_cells(state, bridge)
     except ValueError as error:
         unpinned = str(error)
-    if both is not None:
-        charts["compare"] = tool_figures.compare_scatters(*both, pair, noun(pair))
     peaks = peaks_of(state, bridge)
     several = results.get("responses")
+    charts: dict[str, Figure] = {}  # those that are seen
+    if "plane" in opened:
+        density = density_of(state, bridge)
+        charts["plane"] = figures.parameter_plane(known.inference, pair, density)
+    if "episodes" in opened:
+        charts["episodes"] = figures.episode_shares(known.influence, pair, start)
+        if left_out is not None:
+            charts["without"] = figures.scatter_without(
+                known.inference, *left_out, pair, state, start
+            )
+    if "profile" in opened and known.found and known.shift_set is not None:
+        charts["profile"] = figures.shift_profile(known.shift_set, pair)
+    if results.get("opinions") is not None:
+        charts["opinions"] = figures.opinion_profiles(results["opinions"], pair)
+    if results.get("stability") is not None:
+        charts["stability"] = figures.stability_courses(results["stability"], pair, start)
+    if "season" in opened:
+        charts |= lag_season.chart(used)
+    if "compare" in opened and both is not None:
+        charts["compare"] = tool_figures.compare_scatters(*both, pair, noun(pair))
     if several is not None and any(one.best for one in several):
         charts["responses"] = tool_figures.response_profiles(list(several))
     words = {

@@ -15,6 +15,7 @@ from analytics.several import holm
 from analytics.slices import pair_counts, slice_path
 from app import exports
 from app.compute import Bridge
+from app.figures.evidence import parameter_plane
 from app.figures.lag import overlay_lines
 from app.figures.lag_slices import density_surface
 from app.figures.lag_tools import compare_scatters, peak_traces, response_profiles
@@ -252,11 +253,11 @@ def test_peaks_are_drawn_said_and_saved(bridge):
 # The parameter plane -------------------------------------------------------------------------
 
 
-def test_the_plane_has_its_density_when_it_is_open(bridge):
-    closed = answer(STATE, bridge, ())[-1]["figures"]["plane"]["data"]
-    opened = answer(STATE, bridge, ("plane",))[-1]["figures"]["plane"]["data"]
-    assert len(opened) == len(closed) + 1
-    density = density_of(STATE, bridge)
+def test_the_plane_has_its_density(bridge):
+    density, inference = density_of(STATE, bridge), completed(STATE, bridge).inference
+    bare = parameter_plane(inference, bridge.pair(STATE)).data
+    drawn = answer(STATE, bridge, ("plane",))[-1]["figures"]["plane"]["data"]
+    assert len(drawn) == len(bare) + 1
     trace = density_surface(density)
     np.testing.assert_allclose(trace.z, density.density / density.density.max())
     _, rows = exported("plane", STATE, bridge)
@@ -292,7 +293,7 @@ def test_a_pin_outside_the_map_is_said_and_breaks_nothing(bridge):
     state = replace(STATE, pinned="50:3")
     with pytest.raises(StateError, match="Pinned cell must lie on this map"):
         two_cells(state, bridge)
-    _, _, *folds, data = answer(state, bridge, ())
+    _, _, *folds, data = answer(state, bridge, ("compare",))
     assert "must lie on this map" in str(folds[list(FOLDS).index("compare")])
     assert "compare" not in data["figures"]
     json.dumps(data, allow_nan=False)

@@ -27,6 +27,7 @@ from tests.app.components import nodes, words
 from tests.app.economies import LAG, planted, workspace
 from tests.app.evidence_cases import case, fresh, noise, rates
 
+SHOWN = ("profile", "plane", "episodes")  # folds that are open
 SMALL = replace(cases.SMALL, surrogates=300)  # two chunks
 
 
@@ -60,7 +61,8 @@ def test_before_the_search_the_page_asks_for_it():
     data = found["data"]
     assert data["jobs"] == ["search"]
     assert (data["support"], data["set"]) == ([], [])
-    assert set(data["figures"]) == {"plane", "episodes"}
+    assert data["figures"] == {}, "no fold is open"
+    assert set(taken(SMALL, bridge, SHOWN)["data"]["figures"]) == {"plane", "episodes"}
     assert data["state"] == asdict(SMALL)
     assert found["verdict"].startswith("Not searched yet")
     assert ("search-adjusted p", "not searched") in strip_values(found)
@@ -79,14 +81,14 @@ def test_while_the_search_runs_nothing_is_said_of_it():
 def test_after_the_search_the_set_is_asked_for_where_it_holds():
     bridge = fresh()
     bridge.jobs.complete(search_work(SMALL, bridge))
-    found = taken(SMALL, bridge)
+    found = taken(SMALL, bridge, SHOWN)
     assert found["data"]["jobs"] == ["shift_set"]
     assert found["data"]["set"] == []
     assert "profile" not in found["data"]["figures"]
     assert len(found["data"]["support"]) == 2
     assert words(found["profile"]) == "Being worked out."
     bridge.jobs.complete(shift_set_work(SMALL, bridge))
-    found = taken(SMALL, bridge)
+    found = taken(SMALL, bridge, SHOWN)
     assert found["data"]["jobs"] == []
     assert "profile" in found["data"]["figures"]
 
@@ -94,7 +96,7 @@ def test_after_the_search_the_set_is_asked_for_where_it_holds():
 def test_when_all_is_done_the_page_shows_what_python_completes():
     bridge = fresh()
     known, pair = completed(SMALL, bridge), bridge.pair(SMALL)
-    found = taken(SMALL, bridge)
+    found = taken(SMALL, bridge, SHOWN)
     data, search = found["data"], known.search
     assert data["jobs"] == []
     assert found["verdict"] == " ".join(verdict(known, pair, SMALL))
@@ -122,7 +124,7 @@ def test_when_all_is_done_the_page_shows_what_python_completes():
 
 def test_an_unrelated_pair_shows_no_set_and_asks_for_none():
     state, bridge, known = case("unrelated")
-    found = taken(state, bridge)
+    found = taken(state, bridge, SHOWN)
     assert found["data"]["jobs"] == []
     assert found["data"]["set"] == []
     assert len(found["data"]["support"]) == 2
@@ -227,7 +229,7 @@ def test_the_episodes_are_listed_by_weight_and_can_be_chosen(months):
         assert f"{percent(episode.share)} {change} {p_words(episode.p_without)}" in said
 
     chosen = replace(state, without=codes[1])
-    found = taken(chosen, bridge)
+    found = taken(chosen, bridge, SHOWN)
     buttons = [part for part in nodes(found["episodes"])
                if type(part).__name__ == "Button"]  # fmt: skip
     assert [getattr(b, "aria-pressed") for b in buttons].count("true") == 1

@@ -107,7 +107,7 @@ def test_without_an_unadjusted_series_the_page_says_so():
 
 
 def test_the_lag_page_shows_and_exports_what_it_took_out(bridge):
-    *_, charts = lag_answer(STATE, bridge, ())
+    *_, charts = lag_answer(STATE, bridge, ("season",))
     drawn = charts["figures"]["season"]["data"]
     assert [trace["name"] for trace in drawn] == ["Money", "Prices"]
     _, text = exports.csv_export("season", STATE.to_query(), bridge)
