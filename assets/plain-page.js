@@ -24,6 +24,18 @@
     page.timer = setTimeout(send, wait);
   }
 
+  /* A chart that is drawn is not sent again. Answers may cross, so the last ones are kept. */
+  const CHARTS_KEPT = 12;
+
+  function kept(place, mark, chart) {
+    const charts = (place.charts = place.charts || new Map());
+    const text = chart || charts.get(mark);
+    charts.delete(mark);
+    if (text) charts.set(mark, text);
+    if (charts.size > CHARTS_KEPT) charts.delete(charts.keys().next().value);
+    return text;
+  }
+
   /* What the server answered: {asked, state, defaults, sentence, subtitles, source, stem, figures}. */
   function adopt(data) {
     if (!data || !root()) return window.dash_clientside.no_update;
@@ -39,17 +51,24 @@
       }
       controls.publish(name, page.state, data.defaults, false);
     }
+    const drawn = {};
+    let missed = false;
     for (const place of root().querySelectorAll(".plain-plot")) {
       const view = place.id.slice(name.length + 1, -"-place".length);
-      const figure = (data.figures || {})[view];
+      const { mark, chart } = (data.figures || {})[view] || {};
       const section = place.closest(".view");
-      place.hidden = !figure;
-      if (section) section.querySelector(".save").hidden = !figure;
-      if (figure === place.drawn) continue;
-      place.drawn = figure;
-      if (figure) pricewake.theme.show(`${name}-${view}`, JSON.parse(figure));
+      place.hidden = !mark;
+      if (section) section.querySelector(".save").hidden = !mark;
+      const text = kept(place, mark, chart);
+      if (mark && text) drawn[view] = mark;
+      else missed = missed || Boolean(mark);
+      if (mark === place.drawn) continue;
+      place.drawn = mark;
+      if (text) pricewake.theme.show(`${name}-${view}`, JSON.parse(text));
       else pricewake.theme.figures.delete(`${name}-${view}`);
     }
+    window.dash_clientside.set_props(`${name}-drawn`, { data: drawn });
+    if (missed) window.dash_clientside.set_props(`${name}-tick`, { data: Date.now() }); // to be sent it after all
     work(name, data);
     return window.dash_clientside.no_update;
   }

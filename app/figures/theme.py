@@ -78,7 +78,10 @@ def time_scale() -> list[list[float | str]]:
 
 @lru_cache(maxsize=1)
 def template() -> go.layout.Template:
-    """Return the template of every chart: no frames, thin rules, system type."""
+    """Return the template of every chart: no frames, thin rules, system type.
+
+    Figures made from then on start with it.
+    """
     axis = {
         "showgrid": True,
         "gridcolor": colour("rule"),
@@ -91,7 +94,7 @@ def template() -> go.layout.Template:
         "title": {"standoff": 8, "font": {"size": type_size(1)}},
         "automargin": False,
     }
-    return go.layout.Template(
+    made = go.layout.Template(
         layout={
             "font": {
                 "family": type_face(),
@@ -109,6 +112,8 @@ def template() -> go.layout.Template:
             "colorscale": {"sequential": sequential(), "diverging": diverging()},
         }
     )
+    pio.templates.default = made
+    return made
 
 
 def dress(figure: go.Figure, **layout: Any) -> go.Figure:
@@ -117,7 +122,7 @@ def dress(figure: go.Figure, **layout: Any) -> go.Figure:
     What ``update_layout`` does, in a tenth of its time: the layout is made once and whole, and the
     template put under it unread.
     """
-    pio.templates.default = template()
+    template()
     figure.layout.template = None  # else it is copied, part by part
     figure.layout = _over(figure.layout.to_plotly_json(), layout)
     return figure

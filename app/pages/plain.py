@@ -4,11 +4,12 @@ A page of this kind has ``answer(state, bridge)``, which returns the words of ea
 charts of each view. assets/plain-page.js is the other half.
 """
 
+import hashlib
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import asdict, dataclass, field
 from typing import Any
 
-from dash import ClientsideFunction, Dash, Input, Output, dcc, html
+from dash import ClientsideFunction, Dash, Input, Output, State, dcc, html
 from plotly.graph_objects import Figure
 
 from app import controls
@@ -69,6 +70,7 @@ def frame(
             dcc.Store(id=f"{name}-state", data=asdict(state)),
             dcc.Store(id=f"{name}-answer"),
             dcc.Store(id=f"{name}-adopted"),
+            dcc.Store(id=f"{name}-drawn", data={}),
             dcc.Store(id=f"{name}-tick", data=0),
             html.Header(
                 [
@@ -123,7 +125,10 @@ def register(
     answer: Callable[[ViewState, Bridge], Answer],
     places: Sequence[str],
 ) -> None:
-    """Register the one callback of such a page; `places` are the ids that take ``words``."""
+    """Register the one callback of such a page; `places` are the ids that take ``words``.
+
+    The page says which charts it shows, by their marks; those are not sent again.
+    """
 
     @app.callback(
         Output(f"{name}-sentence", "children"),
@@ -134,8 +139,11 @@ def register(
         Output(f"{name}-answer", "data"),
         Input(f"{name}-state", "data"),
         Input(f"{name}-tick", "data"),
+        State(f"{name}-drawn", "data"),
     )
-    def _answer(values: dict[str, Any], _tick: int) -> tuple[Any, ...]:
+    def _answer(
+        values: dict[str, Any], _tick: int, drawn: dict[str, str] | None
+    ) -> tuple[Any, ...]:
         nothing = [[] for _ in places]
         defaults = asdict(ViewState())
         try:
@@ -159,7 +167,10 @@ def register(
             "stem": shown.stem,
             "jobs": list(shown.jobs),
             "jobWords": dict(shown.jobs),
-            "figures": {view: _text(chart) for view, chart in shown.charts.items()},
+            "figures": {
+                view: _unless_drawn(_text(chart), (drawn or {}).get(view))
+                for view, chart in shown.charts.items()
+            },
         }
         words = [packed(shown.words.get(place, [])) for place in places]
         return shown.sentence, shown.verdict, "", False, *words, data
@@ -187,3 +198,9 @@ def key_list(entries: Sequence[tuple[str, str, str]]) -> html.Ul:
 def _text(chart: Figure | str) -> str:
     """Return a chart as text: it goes through the JSON of the answer unread."""
     return chart if isinstance(chart, str) else str(chart.to_json())
+
+
+def _unless_drawn(chart: str, drawn: str | None) -> dict[str, str]:
+    """Return a chart with its mark, or the mark alone where that one is drawn."""
+    mark = hashlib.blake2b(chart.encode(), digest_size=9).hexdigest()
+    return {"mark": mark} if mark == drawn else {"mark": mark, "chart": chart}

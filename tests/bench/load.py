@@ -23,25 +23,28 @@ import urllib.error
 import urllib.request
 from dataclasses import asdict, replace
 from pathlib import Path
+from typing import Any
 
 from app.state import ViewState
 
 SLIDER = 0.12  # seconds between answers while a slider is dragged: assets/plain-page.js
 DRAG = 2.0  # seconds
 LIMIT = 0.300
+Shapes = dict[str, tuple[list[str], ...]]  # output of a callback: ids of its inputs and states
 FLAT = 1.15  # memory at the end over memory after the first third
 
 
 class Tab(threading.Thread):
     """One page that somebody drags and asks on."""
 
-    def __init__(self, address: str, seed: int, until: float, shapes: dict[str, list[str]]) -> None:
+    def __init__(self, address: str, seed: int, until: float, shapes: Shapes) -> None:
         super().__init__(daemon=True)
         self.address, self.until, self.shapes = address, until, shapes
         self.on_lag = seed % 2 == 0
         self.random = random.Random(seed)
         self.times: dict[str, list[float]] = {}
         self.errors: list[str] = []
+        self.drawn: dict[str, dict[str, str]] = {}  # marks of the charts that this page shows
 
     def run(self) -> None:
         """Drag, ask for one thing or another, drag again, until the time is over."""
@@ -106,30 +109,41 @@ class Tab(threading.Thread):
             json.load(answer)
 
     def _callback(self, place: str, state: ViewState) -> None:
-        output, inputs = next(shape for shape in self.shapes.items() if place in shape[0])
+        output, (inputs, states) = next(each for each in self.shapes.items() if place in each[0])
         parts = [part.rsplit(".", 1) for part in output.strip(".").split("...")]
-        given = {"state": asdict(state), "tick": 0, "open": []}
-        self._post(
+        given = {"state": asdict(state), "tick": 0, "open": [], "drawn": self.drawn.get(place)}
+
+        def stores(names: list[str]) -> list[dict[str, object]]:
+            return [
+                {"id": name, "property": "data", "value": given[name.rsplit("-", 1)[1]]}
+                for name in names
+            ]
+
+        answer = self._post(
             {
                 "output": output,
                 "outputs": [{"id": name, "property": prop} for name, prop in parts],
-                "inputs": [
-                    {"id": name, "property": "data", "value": given[name.rsplit("-", 1)[1]]}
-                    for name in inputs
-                ],
+                "inputs": stores(inputs),
+                "state": stores(states),
                 "changedPropIds": [f"{inputs[0]}.data"],
             }
         )
+        if "drawn" in str(states):
+            page = place.split("-")[0]
+            charts = answer["response"][f"{page}-answer"]["data"]["figures"]
+            self.drawn[place] = {view: chart["mark"] for view, chart in charts.items()}
 
-    def _post(self, body: dict[str, object]) -> None:
+    def _post(self, body: dict[str, object]) -> dict[str, Any]:
         request = urllib.request.Request(
             f"{self.address}/_dash-update-component",
             json.dumps(body).encode(),
             {"Content-Type": "application/json"},
         )
         with urllib.request.urlopen(request, timeout=60) as answer:
-            if answer.status != 200 or "response" not in json.load(answer):
+            found: dict[str, Any] = json.load(answer)
+            if answer.status != 200 or "response" not in found:
                 raise ValueError(f"status {answer.status}")
+        return found
 
 
 def memory(pid: int) -> float:
@@ -164,7 +178,9 @@ def measure(seconds: int, tabs: int) -> bool:
             try:
                 with urllib.request.urlopen(f"{address}/_dash-dependencies", timeout=5) as answer:
                     shapes = {
-                        each["output"]: [given["id"] for given in each["inputs"]]
+                        each["output"]: tuple(
+                            [given["id"] for given in each[kind]] for kind in ("inputs", "state")
+                        )
                         for each in json.load(answer)
                     }
                 break
