@@ -2,11 +2,12 @@
 
 from dash import dcc, html
 
+from app.keys import key_list
 from app.page_table import PAGES
 
 
 def frame(invented: bool) -> html.Div:
-    """Return what stays while pages change: name, navigation, notices, theme switch."""
+    """Return what stays while pages change: name, navigation, notices, keys, theme switch."""
     return html.Div(
         [
             dcc.Location(id="address", refresh="callback-nav"),
@@ -31,6 +32,7 @@ def frame(invented: bool) -> html.Div:
                         className="invented",
                         hidden=not invented,
                     ),
+                    html.Button("Keys", id="show-keys", type="button"),
                     html.Button("Dark", id="theme", type="button", **{"aria-pressed": "false"}),
                 ],
                 className="bar",
@@ -38,6 +40,7 @@ def frame(invented: bool) -> html.Div:
             html.Div(id="connection", role="status", className="connection", hidden=True),
             html.Main(html.P("Opening …", className="opening"), id="page", tabIndex="-1"),
             html.Div(id="toast", role="status", className="toast"),
+            key_list(),
         ],
         id="frame",
     )

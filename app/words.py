@@ -8,13 +8,13 @@ MINUS = "\N{MINUS SIGN}"
 
 
 def signed(value: float, digits: int = 2) -> str:
-    """Return a number with its sign shown: ``+0.80``, ``−0.15``."""
-    return f"{value:+.{digits}f}".replace("-", MINUS)
+    """Return a number with its sign shown: ``+0.80``, ``−0.15``; ``+0.00`` once it rounds to 0."""
+    return f"{value:+z.{digits}f}".replace("-", MINUS)
 
 
 def plain(value: float, digits: int = 2) -> str:
-    """Return a number with a sign only below zero."""
-    return f"{value:.{digits}f}".replace("-", MINUS)
+    """Return a number with a sign only below zero, once rounded."""
+    return f"{value:z.{digits}f}".replace("-", MINUS)
 
 
 def p_words(p: float | None) -> str:
@@ -59,6 +59,17 @@ def runs_words(numbers: list[int]) -> str:
             runs.append([number])
     parts = [f"{r[0]:+d}" if len(r) == 1 else f"{r[0]:+d} to {r[-1]:+d}" for r in runs]
     return ", ".join(parts).replace("-", MINUS).replace("+0", "0")
+
+
+def as_sentence(words: str) -> str:
+    """Return an error's words as they stand on a page: a capital first, a full stop last.
+
+    Examples
+    --------
+    >>> as_sentence("nothing is loaded yet")
+    'Nothing is loaded yet.'
+    """
+    return words[:1].upper() + words[1:] + ("" if words.endswith((".", "?")) else ".")
 
 
 def slug(text: str, longest: int = 60) -> str:

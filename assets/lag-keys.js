@@ -1,15 +1,10 @@
-/* Keys of the Lag page that work anywhere outside a text field, the list of them, pinning, folding. */
+/* Keys of the Lag page that work anywhere outside a text field, pinning, folding. */
 (function () {
   "use strict";
   const pricewake = (window.pricewake = window.pricewake || {});
   const byId = (id) => document.getElementById(id);
   const TYPED = "input:not([type=range]):not([type=checkbox]), select, textarea, [contenteditable]";
   const PRESSED = "button, summary, a[href]";
-
-  function showKeys() {
-    const list = byId("keys");
-    if (list && !list.open) list.showModal();
-  }
 
   function pin(what) {
     const page = pricewake.lag, { state, data } = page;
@@ -49,12 +44,12 @@
       if (key === "y" || event.shiftKey) pricewake.trail.forward(); else pricewake.trail.back();
       return;
     }
-    if (key === "escape" && !(byId("keys") && byId("keys").open)) {
+    if (byId("keys").open) return;
+    if (key === "escape") {
       if (!pricewake.player.stop()) pricewake.lagTime.drop();
       return;
     }
-    if (typed || (byId("keys") && byId("keys").open)) return;
-    if (event.key === "?") { event.preventDefault(); showKeys(); }
+    if (typed) return;
     if (key === "p") pin("chosen");
     const pressed = event.target.closest && event.target.closest(PRESSED);
     if (event.key === " " && !pressed && byId("tool-player").open) {
@@ -65,8 +60,6 @@
 
   document.addEventListener("click", (event) => {
     const at = (selector) => event.target.closest && event.target.closest(selector);
-    if (event.target.id === "show-keys") showKeys();
-    if (event.target.id === "close-keys" || event.target.id === "keys") byId("keys").close();
     for (const name of ["pin", "response", "without"]) {
       const button = at(`.folds [data-${name}]`); // it is made anew with the answer
       if (button) pricewake.lag.refocus = `.folds [data-${name}="${CSS.escape(button.dataset[name])}"]`;

@@ -5,6 +5,7 @@
   const { ghost, theme, calendar } = pricewake;
   const { endsOf } = pricewake.lagCell;
   const byId = (id) => document.getElementById(id);
+  const ONE_LINE = 20; // figures/lag.ONE_LINE
   const MARGIN = 0.86; // figures/lag_slices.MARGIN
 
   /* The colour of each month of the calendar, [red, green, blue]: figures/theme.time_scale. */
@@ -120,7 +121,7 @@
     const { name, unit } = data[side];
     const shown = name.length <= 32 ? name : `${name.slice(0, 30)}…`;
     const smoothed = state.window === 1 ? "" : `${state.window}-${data.noun} mean, `;
-    return `${escaped(shown)}${side === "driver" ? ", " : "<br>"}${smoothed}${escaped(unit)}`;
+    return `${escaped(shown)}${side === "driver" && name.length <= ONE_LINE ? ", " : "<br>"}${smoothed}${escaped(unit)}`;
   }
 
   /* The chart of the cell: the traces of figures.lag.cell_scatter with these numbers. */

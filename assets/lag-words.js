@@ -2,8 +2,12 @@
 (function () {
   "use strict";
   const pricewake = (window.pricewake = window.pricewake || {});
-  const signed = (value, digits) => (value < 0 ? "−" : "+") + Math.abs(value).toFixed(digits);
-  const plain = (value, digits) => (value < 0 ? "−" : "") + Math.abs(value).toFixed(digits);
+  /* A number with its sign; what rounds to zero has none below it. The twin of app/words.py. */
+  function signed(value, digits, above = "+") {
+    const size = Math.abs(value).toFixed(digits);
+    return (value < 0 && Number(size) ? "−" : above) + size;
+  }
+  const plain = (value, digits) => signed(value, digits, "");
   /* Write words into a place. A text that is there is written over: nothing is added to the page, so
      nobody who watches it for new parts is called. */
   function write(place, text) {
@@ -11,6 +15,7 @@
     if (!there || there.nodeType !== Node.TEXT_NODE || there.nextSibling) place.textContent = text;
     else if (there.data !== text) there.data = text;
   }
+  const asSentence = (words) => words.charAt(0).toUpperCase() + words.slice(1) + (/[.?]$/.test(words) ? "" : ".");
   const counted = (n, noun) => `${n} ${noun}${n === 1 ? "" : "s"}`;
 
   /* The headline; a part [field, words, tail] is a number that leads to its slider. */
@@ -46,8 +51,9 @@
   }
 
   function equation({ noun }, cell) {
-    const slope = `${cell.slope < 0 ? "−" : "+"} ${Math.abs(cell.slope).toFixed(3)} × driver`;
-    return `response = ${plain(cell.intercept, 3)} ${slope}    r = ${signed(cell.correlation, 2)}    n = ${counted(cell.n, noun)}`;
+    const slope = signed(cell.slope, 3).replace(/^./, "$& ");
+    const measures = [`r = ${signed(cell.correlation, 2)}`, `n = ${counted(cell.n, noun)}`].map((each) => each.replaceAll(" ", "\u00a0"));
+    return `response = ${plain(cell.intercept, 3)} ${slope} × driver    ${measures.join("    ")}`;
   }
 
   /* Second line of a saved chart. */
@@ -64,5 +70,5 @@
     return `${view}-${sides}-window-${window}-shift-${shift < 0 ? "minus-" : ""}${Math.abs(shift)}`;
   }
 
-  pricewake.words = { write, counted, signed, sentenceParts, sentence, readout, movedResponse, sliceSentence, equation, subtitle, stem };
+  pricewake.words = { write, asSentence, counted, signed, sentenceParts, sentence, readout, movedResponse, sliceSentence, equation, subtitle, stem };
 })();

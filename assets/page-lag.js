@@ -186,7 +186,7 @@
     if (data.error) {
       byId("lag-sentence").textContent = "Nothing to show for this choice.";
       byId("lag-readout").textContent = "";
-      return data.error;
+      return pricewake.words.asSentence(data.error);
     }
     if (before) for (const name of DRAWN_HERE) page.state[name] = before[name];
     if (before && within(before.window, data.windows) && within(before.shift, data.shifts)) {

@@ -3,6 +3,8 @@
   "use strict";
   const pricewake = (window.pricewake = window.pricewake || {});
   const SHEET = 700; // pixels between the margins of A4 or Letter
+  const LOWER = 0.75; // of the height on screen: three views to a sheet rather than two
+  const TALL = ".strip, .contributions, .surface, .scatter, .overlay, .quantiles, .gap, .fold-plot";
   let before = null;
 
   const shown = () => [...document.querySelectorAll(".js-plotly-plot")].filter((c) => c._fullLayout && c.checkVisibility());
@@ -14,6 +16,8 @@
     }
   }
 
+  const heightOf = (chart) => Math.round(chart._fullLayout.height * (chart.closest(TALL) ? 1 : LOWER));
+
   window.addEventListener("beforeprint", () => {
     const root = document.documentElement;
     before = root.dataset.theme;
@@ -22,7 +26,7 @@
       redraw((figure) => structuredClone(figure));
     }
     for (const chart of shown()) {
-      window.Plotly.relayout(chart, { width: SHEET, height: chart._fullLayout.height, autosize: false });
+      window.Plotly.relayout(chart, { width: SHEET, height: heightOf(chart), autosize: false });
     }
     pricewake.legends.mend();
     for (const drawing of document.querySelectorAll(".js-plotly-plot .main-svg")) {

@@ -2,7 +2,7 @@
 (function () {
   "use strict";
   function look() {
-    for (const box of document.querySelectorAll(".table, .run-table")) {
+    for (const box of document.querySelectorAll(".table, .run-table, .place")) {
       const scrolls = box.scrollWidth > box.clientWidth + 1 || box.scrollHeight > box.clientHeight + 1;
       const reached = box.hasAttribute("tabindex");
       if (scrolls && !reached) box.setAttribute("tabindex", "0");

@@ -110,9 +110,10 @@ def adding_up(shown: Breadth) -> str:
     if np.isnan(rate):
         return f"The contributions add up to {plain(parts, 2)}; the published total has no rate."
     gap = float(shown.residual[-1])
+    left = "less than 0.001" if abs(gap) < 0.0005 else signed(gap, 3)
     return (
         f"The contributions add up to {plain(parts, 3)}; {shown.total.name} as published changed by"
-        f" {plain(rate, 3)}, so {signed(gap, 4)} points are rounding and anything else that the"
+        f" {plain(rate, 3)}, so {left} points are rounding and anything else that the"
         " components do not carry."
     )
 

@@ -17,7 +17,8 @@ from app.pages.as_of import day_words
 from app.places import bundled, software_version
 
 _HERE = Path(__file__).resolve().parent
-MOST_ROWS = 4  # key figures that changed, on one page
+MOST_ROWS = 3  # key figures that changed, on one page
+LESS = 16  # pixels of every chart, on one page
 MANY = 8  # series of one file and kind that are listed one by one
 
 
@@ -46,6 +47,10 @@ def document(
     charts: dict[str, Any] = {}
     small = brief.draft.form == "one-page"
     body = (_one_page if small else _full)(brief.sections, charts)
+    changes = _changes(since, small)
+    if small and changes:  # to leave it room on the page
+        for each in charts.values():
+            each["figure"]["layout"]["height"] -= LESS
     data = json.dumps(charts, separators=(",", ":"), allow_nan=False).replace("<", "\\u003c")
     style, library, script = _style(), _library(), _read("document.js")
     where = f" Their pictures lie in the folder {safe(pictures)}." if pictures else ""
@@ -68,7 +73,7 @@ def document(
 <p class="dateline">{safe(day_words(day))} · made with Pricewake {safe(software_version())}</p>
 </header>
 <noscript><p class="refused">The charts need JavaScript, which is off here.{where}</p></noscript>
-{_changes(since, small)}
+{changes}
 {body}
 <section class="caution">
 <p>{safe(CAUTION)}</p>
@@ -244,6 +249,8 @@ def _change_row(change: Change) -> str:
 
 
 def _provenance(series: Sequence[Provenance], small: bool) -> str:
+    if not series:
+        return ""
     groups: dict[tuple[str, str, str], list[Provenance]] = {}
     for one in series:
         groups.setdefault((one.file, one.kind, one.source), []).append(one)

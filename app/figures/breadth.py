@@ -11,7 +11,8 @@ import pandas as pd
 import plotly.graph_objects as go
 
 from analytics.series import period_label
-from app.figures.theme import colour, diverging, dress
+from app.figures.theme import colour, diverging, dress, scale_title
+from app.words import signed
 
 PARTS = tuple(f"part-{number}" for number in range(1, 8))
 DASHES = ("solid", "solid", "dash", "dot")
@@ -22,8 +23,10 @@ RATES_SHOWN = 95  # percentile of absolute rates at which the colours of the str
 
 def contribution_bars(names: list[str], points: np.ndarray, unit: str) -> go.Figure:
     """Draw a bar a component for one print, in the order given, the first on top."""
-    signs = [f"{value:+.2f}".replace("-", "−") for value in points]
-    shown = [f"{_label(name)}  <b>{sign}</b>" for name, sign in zip(names, signs, strict=True)]
+    shown = [
+        f"{_label(name)}  <b>{signed(value)}</b>\N{NO-BREAK SPACE}"
+        for name, value in zip(names, points, strict=True)
+    ]
     figure = go.Figure(
         go.Bar(
             x=points,
@@ -42,7 +45,7 @@ def contribution_bars(names: list[str], points: np.ndarray, unit: str) -> go.Fig
             "zeroline": True,
             "zerolinecolor": colour("ink"),
             "zerolinewidth": 1,
-            "nticks": 6,
+            "nticks": 5,
             "tickangle": 0,
         },
         yaxis={
@@ -147,18 +150,19 @@ def component_strip(
                 "outlinewidth": 0,
                 "xpad": 4,
                 "nticks": 6,
-                "title": {
-                    "text": "rank, 0 to 100" if by_rank else f"{over} rate, percent",
-                    "side": "right",
-                },
+                "title": scale_title("rank, 0 to 100" if by_rank else f"{over} rate, percent"),
             },
             hovertemplate="%{x|%b %Y}<br>%{y}: " + hover + "<extra></extra>",
         )
     )
     dress(
         figure,
-        margin={"l": _room(shown) if few else 56, "r": 52, "t": 8, "b": 28},
-        xaxis={"showgrid": False, "tickangle": 0},
+        margin={"l": _room(shown, 5.8) if few else 56, "r": 52, "t": 8, "b": 28},
+        xaxis={
+            "showgrid": False,
+            "tickangle": 0,
+            "tickfont": {"size": 10},  # beside the names a narrow screen has little room
+        },
         yaxis={
             "autorange": "reversed",
             "showgrid": False,
@@ -166,6 +170,7 @@ def component_strip(
             "type": "category",
             "tickvals": [escape(name, False) for name in names],
             "ticktext": shown,
+            "tickfont": {"size": 11},
             "showticklabels": few,
             **({} if few else {"title": {"text": f"{len(names)} components, largest on top"}}),
         },
@@ -300,8 +305,8 @@ def _label(name: str) -> str:
     return escape(name if len(name) <= LONGEST else name[: LONGEST - 1].rstrip() + "…", False)
 
 
-def _room(labels: list[str]) -> int:
-    return 20 + int(6.4 * min(LONGEST, max(map(len, labels), default=8)))
+def _room(labels: list[str], letter: float = 6.4) -> int:
+    return 20 + int(letter * min(LONGEST, max(map(len, labels), default=8)))
 
 
 def _part(place: int, count: int) -> str:

@@ -16,7 +16,7 @@ from analytics.slices import Counts, SlicePath
 from analytics.surface import LagSurface
 from app.compute import Overlay, noun
 from app.figures.lag_slices import count_traces, side_axes, slice_traces
-from app.figures.theme import colour, diverging, dress, sequential, time_scale
+from app.figures.theme import colour, diverging, dress, scale_title, sequential, time_scale
 from app.state import ViewState
 
 SCATTER_TRACES = (
@@ -31,6 +31,7 @@ SCATTER_TRACES = (
     "response_counts",
     "squares",
 )
+ONE_LINE = 20  # letters of a name that fit beside window and unit on a narrow screen
 OVERLAY_TRACES = ("driver", "response")
 P_MAPS = {"p_cell": "per-cell p", "p_naive": "naive p", "p_hac": "HAC p"}
 
@@ -48,16 +49,16 @@ def surface_heatmap(
         values = surface.correlation if state.quantity == "correlation" else surface.slope
         top = 1.0 if state.quantity == "correlation" else float(np.nanmax(np.abs(values)))
         scale = {"zmin": -top, "zmax": top, "colorscale": diverging()}
-        bar = {"title": {"text": state.quantity, "side": "right"}}
+        bar = {"title": scale_title(state.quantity)}
         hover = f"{where}{state.quantity} %{{z:+.2f}}<br>%{{customdata}} {unit}s"
         custom = surface.pairs
     else:
         values, custom = -np.log10(np.maximum(p, 1e-6)), p
         scale = {"zmin": 0.0, "zmax": 6.0, "colorscale": sequential()}
         bar = {
-            "title": {"text": P_MAPS[state.quantity], "side": "right"},
+            "title": scale_title(P_MAPS[state.quantity]),
             "tickvals": [0, 1, -np.log10(0.05), 2, 3, 4, 5, 6],
-            "ticktext": ["1", ".1", ".05", ".01", ".001", "1e-4", "1e-5", "1e-6 or less"],
+            "ticktext": ["1", ".1", ".05", ".01", ".001", "1e-4", "1e-5", "≤ 1e-6"],
         }
         hover = f"{where}{P_MAPS[state.quantity]} %{{customdata:.3f}}"
     figure = go.Figure(
@@ -78,6 +79,7 @@ def surface_heatmap(
         margin={"l": 66, "r": 70, "t": 8, "b": 56},
         xaxis={
             **axis,
+            "tickangle": 0,
             "range": [surface.shifts[0] - 0.5, surface.shifts[-1] + 0.5],
             "title": {"text": f"shift ({unit}s; above 0 the driver leads)"},
         },
@@ -124,7 +126,7 @@ def cell_scatter(
                         "thickness": 8,
                         "len": 0.6,
                         "outlinewidth": 0,
-                        "title": {"text": "driver read in", "side": "right"},
+                        "title": scale_title("driver read in"),
                         "tickformat": "d",
                         "nticks": 6,
                     },
@@ -156,7 +158,7 @@ def cell_scatter(
             *count_traces(counts, noun(pair), squares_shown=state.points == "counts"),
         ]
     )
-    dress(figure, margin={"l": 66, "r": 70, "t": 8, "b": 48}, **side_axes(state))
+    dress(figure, margin={"l": 66, "r": 70, "t": 8, "b": foot(pair)}, **side_axes(state))
     dress(
         figure,
         xaxis={"title": {"text": axis_title(pair.driver, state)}},
@@ -244,9 +246,15 @@ def shared_unit(pair: Pair) -> str:
     return units.pop() if len(units) == 1 else "percent"
 
 
+def foot(pair: Pair) -> int:
+    """Return the room below a chart whose horizontal axis is the driver's, in pixels."""
+    return 64 if len(pair.driver.name) > ONE_LINE else 48
+
+
 def axis_title(series: Series, state: ViewState, *, lines: int = 1) -> str:
     """Return the axis title: name, window and unit, on one line or two."""
     name = series.name if len(series.name) <= 32 else series.name[:30] + "…"
+    lines = 2 if len(name) > ONE_LINE else lines
     smoothed = "" if state.window == 1 else f"{state.window}-{PERIOD_NOUN[series.frequency]} mean, "
     parted = ", " if lines == 1 else "<br>"
     return f"{escape(name, False)}{parted}{smoothed}{escape(rate_unit(series), False)}"

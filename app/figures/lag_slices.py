@@ -12,7 +12,7 @@ import plotly.graph_objects as go
 from analytics.cell import LagCell
 from analytics.error_density import ErrorDensity
 from analytics.slices import Counts, SlicePath
-from app.figures.theme import colour, sequential
+from app.figures.theme import colour, scale_title, sequential
 from app.state import ViewState
 
 MARGIN = 0.86  # where the counts at the sides begin, in parts of the plot
@@ -127,14 +127,17 @@ def density_surface(density: ErrorDensity) -> go.Contour:
         x=density.intercept,
         y=density.slope,
         z=density.density / top,
-        colorscale=[[place / 3, hue] for place, (_, hue) in enumerate(sequential()[:4])],
+        colorscale=[
+            [0.0, colour("paper")],  # where there is next to nothing it has no edge
+            *([place / 3, hue] for place, (_, hue) in enumerate(sequential()[1:4], 1)),
+        ],
         contours={"start": 0.1, "end": 0.9, "size": 0.1},
         line={"width": 0.4, "color": colour("rule")},
         colorbar={
             "thickness": 8,
             "len": 0.7,
             "outlinewidth": 0,
-            "title": {"text": "density over its highest", "side": "right"},
+            "title": scale_title("density over its highest"),
         },
         hovertemplate="intercept %{x:.3f}, slope %{y:.3f}: %{z:.2f} of the highest<extra></extra>",
         name="density of the error",

@@ -7,7 +7,7 @@ import numpy as np
 import plotly.graph_objects as go
 
 from analytics.series import Pair, period_label
-from app.figures.lag import axis_title, pair_labels
+from app.figures.lag import axis_title, foot, pair_labels
 from app.figures.theme import colour, dress
 from app.lag.tools import OneCell, OneResponse, Peaks
 from app.words import plain, shift_words, signed
@@ -69,7 +69,7 @@ def compare_scatters(pinned: OneCell, chosen: OneCell, pair: Pair, unit: str) ->
         spans[axis] = [low - 0.04 * (high - low), high + 0.04 * (high - low)]
     dress(
         figure,
-        margin={"l": 66, "r": 12, "t": 44, "b": 48},
+        margin={"l": 66, "r": 12, "t": 44, "b": foot(pair)},
         xaxis={
             "domain": [0, 0.48],
             "range": spans["x"],

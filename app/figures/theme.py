@@ -60,6 +60,11 @@ def _token(name: str) -> str:
     return found.group(1)
 
 
+def scale_title(words: str) -> dict[str, Any]:
+    """Return the title of a colour scale, beside it and as large as those of axes."""
+    return {"text": words, "side": "right", "font": {"size": type_size(1)}}
+
+
 def diverging() -> list[list[float | str]]:
     """Colour scale for quantities with a sign; the middle is zero."""
     names = ["low-3", "low-2", "low-1", "zero", "high-1", "high-2", "high-3"]

@@ -25,6 +25,7 @@ from app.lag.tools import counts_of, slice_of
 from app.pages import lag_evidence, lag_layout
 from app.places import software_version
 from app.state import StateError, ViewState
+from app.words import as_sentence
 
 PATH, TITLE = "/lag", "Lag"
 CAUTION = (
@@ -158,7 +159,7 @@ def layout(query: str, bridge: Bridge) -> html.Div:
     for side in {"driver", "response"} - named:
         state = _with(state, **{side: getattr(opening, side)})
     data = payload(state, bridge)
-    data |= {"fresh": True, "notes": [*refused, *data.get("notes", [])]}
+    data |= {"fresh": True, "notes": [*map(as_sentence, refused), *data.get("notes", [])]}
     shown = ViewState(**data["state"])
     names = list(bridge.in_view(shown).series)
     ranges = data.get("windows", [1, 60]), data.get("shifts", [-36, 60])

@@ -21,6 +21,7 @@ from app.lag.verdict import verdict
 from app.lag.work import WORK
 from app.pages import lag_season, lag_tools, lag_words
 from app.state import StateError, ViewState
+from app.words import as_sentence
 
 FOLDS = {
     "profile": "Which shifts fit as well",
@@ -136,7 +137,7 @@ def register(app: Dash, bridge: Bridge) -> None:
             return answer(controls.sent_state(state), bridge, tuple(opened or ()))
         except ValueError as error:
             nothing = {"figures": {}, "jobs": [], "support": [], "set": [], "peaks": []}
-            return [], f"{error}.", *empty, {"state": state, **nothing}
+            return [], as_sentence(str(error)), *empty, {"state": state, **nothing}
 
 
 def answer(state: ViewState, bridge: Bridge, opened: tuple[str, ...]) -> tuple[Any, ...]:

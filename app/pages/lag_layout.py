@@ -1,4 +1,4 @@
-"""What stands where on the Lag page: headline, controls, three charts, folds, the list of keys."""
+"""What stands where on the Lag page: headline, controls, three charts, folds."""
 
 from typing import Any
 
@@ -9,25 +9,6 @@ from app.figures.theme import CONFIG
 from app.pages import lag_evidence, lag_tools
 from app.pages.as_of import as_of_line
 from app.state import ViewState
-
-KEYS = {
-    "On the map and its sliders": (
-        ("← →", "shift by one"),
-        ("↑ ↓", "window by one"),
-        ("Shift + ← →", "shift by a year (on the map)"),
-        ("Page Up, Page Down", "window by a year on the map; a slider by ten"),
-        ("Home, End", "least and largest shift; on a slider, its ends"),
-        ("Ctrl + Home, Ctrl + End", "least and largest window (on the map)"),
-    ),
-    "Anywhere outside a text field": (
-        ("Space", "play or pause, while the player is open"),
-        ("Ctrl + Z", "back to the state before"),
-        ("Ctrl + Shift + Z", "forward again"),
-        ("P", "pin the chosen cell"),
-        ("?", "this list"),
-        ("Esc", "stop the player, drop the months chosen, or close this list"),
-    ),
-}
 
 
 def body(
@@ -125,7 +106,6 @@ def body(
             ),
             lag_evidence.folds(shown),
             html.P(caution, className="caution"),
-            _keys(),
         ],
         className="lag-page",
     )
@@ -169,37 +149,10 @@ def _acts() -> html.Div:
             html.Button("Redo", id="redo", type="button", disabled=True),
             html.Button("Pin", type="button", **{"data-pin": "chosen"}),
             html.Button("Copy link", id="copy-link", type="button"),
-            html.Button("Keys", id="show-keys", type="button"),
         ],
         className="acts",
         role="group",
         **{"aria-label": "This view"},
-    )
-
-
-def _keys() -> html.Dialog:
-    return html.Dialog(
-        [
-            html.H2("Keys", id="keys-title"),
-            *[
-                html.Div(
-                    [
-                        html.H3(where),
-                        html.Dl(
-                            [
-                                html.Div([html.Dt(html.Kbd(keys)), html.Dd(does)])
-                                for keys, does in rows
-                            ]
-                        ),
-                    ]
-                )
-                for where, rows in KEYS.items()
-            ],
-            html.Button("Close", id="close-keys", type="button"),
-        ],
-        id="keys",
-        className="keys",
-        **{"aria-labelledby": "keys-title"},
     )
 
 

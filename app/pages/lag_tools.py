@@ -11,7 +11,7 @@ from app.lag.evidence import Evidence
 from app.lag.tools import MOST_RESPONSES, OneCell, OneResponse, Peaks
 from app.pages.tables import names_select
 from app.state import ViewState
-from app.words import counted, p_words, plain, shift_words, signed
+from app.words import as_sentence, counted, p_words, plain, shift_words, signed
 
 MOST_BUTTONS = 20  # names beside each other; more are chosen from a list
 SPEEDS = {"3": "slow", "10": "usual", "30": "fast"}  # cells a second
@@ -200,7 +200,7 @@ def compare_words(
 ) -> list[Any]:
     """Put the numbers of the pinned cell beside those of the chosen one."""
     if refused:
-        return [html.P(f"{refused}.", className="message")]
+        return [html.P(as_sentence(refused), className="message")]
     if both is None:
         return [
             html.P("No cell is pinned: a pinned one stands here beside the chosen one."),
@@ -311,7 +311,7 @@ def response_words(
         picks,
     ]
     if refused:
-        return [*parts, html.P(f"{refused}.", className="message")]
+        return [*parts, html.P(as_sentence(refused), className="message")]
     if not listed:
         return parts
     if found is None:

@@ -10,7 +10,17 @@ from app.lag.cells import episode_code
 from app.lag.evidence import Directions, Evidence
 from app.lag.verdict import effective_words, fragility
 from app.state import ViewState
-from app.words import counted, p_words, percent, plain, runs_words, shift_words, signed, slug
+from app.words import (
+    as_sentence,
+    counted,
+    p_words,
+    percent,
+    plain,
+    runs_words,
+    shift_words,
+    signed,
+    slug,
+)
 
 MOST_EPISODES = 8
 
@@ -175,7 +185,7 @@ def episode_words(known: Evidence, pair: Pair, state: ViewState, refused: str) -
     head = ("Episode of the driver", "Driver", "Share", "Slope without it", "Per-cell p without it")
     return [
         html.P(fragility(known, pair, state)),
-        *([html.P(refused, className="message")] if refused else []),
+        *([html.P(as_sentence(refused), className="message")] if refused else []),
         html.Table(
             [
                 html.Thead(html.Tr([html.Th(text, scope="col") for text in head])),

@@ -17,6 +17,7 @@ from app.compute import Bridge
 from app.figures.theme import CONFIG
 from app.pages.tables import packed
 from app.state import ViewState
+from app.words import as_sentence
 
 
 @dataclass(frozen=True, eq=False)
@@ -76,7 +77,11 @@ def frame(
                 [
                     html.H1(id=f"{name}-sentence"),
                     html.P(id=f"{name}-verdict", className="verdict", **{"aria-live": "polite"}),
-                    html.P(" ".join(refused), id=f"{name}-message", className="message"),
+                    html.P(
+                        " ".join(map(as_sentence, refused)),
+                        id=f"{name}-message",
+                        className="message",
+                    ),
                     html.Div(
                         [
                             html.Progress(id=f"{name}-progress", value="0", max="1"),
@@ -156,7 +161,14 @@ def register(
                 "figures": {},
                 "sentence": "",
             }
-            return "Nothing to show for this choice.", "", str(error), True, *nothing, data
+            return (
+                "Nothing to show for this choice.",
+                "",
+                as_sentence(str(error)),
+                True,
+                *nothing,
+                data,
+            )
         data = {
             "asked": values,
             "state": asdict(shown.state),

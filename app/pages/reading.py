@@ -38,6 +38,7 @@ PLACES = (
     "quantiles-words",
     "episodes-words",
 )
+SCREEN_ONLY = ("rules",)  # a form; what the rules found stands in the alerts
 
 
 def layout(query: str, bridge: Bridge) -> html.Div:

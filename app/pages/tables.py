@@ -72,7 +72,7 @@ def sorter(
     by, _, way = sorted_by.rpartition("-")
     here = column == by
     turned = {"up": "down", "down": "up"}[way] if here else first
-    sign = {"up": " ▲", "down": " ▼"}[way] if here else ""
+    sign = {"up": "\N{NO-BREAK SPACE}▲", "down": "\N{NO-BREAK SPACE}▼"}[way] if here else ""
     return html.Th(
         html.Button(
             [words, html.Span(sign, **{"aria-hidden": "true"})],

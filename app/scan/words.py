@@ -37,7 +37,7 @@ def sentence(asked: Question) -> str:
         stood = f", opened from {asked.opened.name}"
     return (
         f"{_listed(roles.drivers)} against {_listed(roles.responses)}:"
-        f" {counted(len(roles.pairs), 'pair')} of {economies}{_grid(asked)}{stood}"
+        f" {counted(len(roles.pairs), 'pair')} of {economies}{_grid(asked)}{stood}."
     )
 
 
@@ -54,13 +54,17 @@ def verdict(known: Scan) -> str:
     judged = int(np.isfinite(panel.p_scan).sum())
     refused = len(panel.pairs) - judged
     if not judged:
+        if refused == 1:
+            return "The one pair could not be searched; the table says why."
         return f"None of {counted(refused, 'pair')} could be searched; the table says why."
     found, other = found_pairs(panel, asked.state.correction), _other(asked.state.correction)
     by = CORRECTIONS[asked.state.correction]
+    holding = f"{len(found) or 'None'} of {judged} pairs {'holds' if len(found) == 1 else 'hold'}"
+    if judged == 1:
+        holding = "The one pair holds" if found else "The one pair does not hold"
     positive = ", positive relations only" if asked.state.sign == "positive" else ""
     said = [
-        f"{len(found) or 'None'} of {counted(judged, 'pair')}"
-        f" {'holds' if len(found) == 1 else 'hold'} at 5 % once all of them are paid for"
+        f"{holding} at 5 % once all of them are paid for"
         f" ({by}{positive})" + (f": {_named(found, asked)}." if found else "."),
         f"{CORRECTIONS[other]} leaves {len(found_pairs(panel, other)) or 'none'}.",
     ]

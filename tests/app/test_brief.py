@@ -193,7 +193,9 @@ def test_the_words_of_a_brief_are_those_of_the_pages(bridge, full):
     assert compared >= 10
 
 
-def test_what_cannot_be_done_on_paper_is_not_asked_for(full):
+def test_what_cannot_be_done_on_paper_is_not_asked_for(bridge, full):
+    found = settle(full.draft.parts[0].state, bridge, source("reading"), ())
+    assert "rule-list" not in str(found.notes)
     text = text_of(full.files["brief.html"].decode())
     assert not re.search(r"\b[Cc]hoose\b", text)
     assert "leave out" not in text

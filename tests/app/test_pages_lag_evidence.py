@@ -306,9 +306,9 @@ def test_the_page_gets_the_answer(client):
     ("changes", "said"),
     [
         ({"windows": "1:50", "shifts": "0:30", "window": 40, "shift": 30}, "24 pairs"),
-        ({"driver": "Nobody"}, "no loaded series is named 'Nobody'"),
+        ({"driver": "Nobody"}, "No loaded series is named 'Nobody'"),
         ({"window": 700}, "Window must be a whole number from 1 to 60"),
-        ({"stranger": 1}, "the page must send the fields of a view"),
+        ({"stranger": 1}, "The page must send the fields of a view"),
     ],
 )
 def test_a_state_that_cannot_be_judged_gets_a_sentence_and_empty_places(client, changes, said):

@@ -121,3 +121,12 @@ def test_counted(n, said):
 def test_signs_are_true_minus_signs():
     assert (signed(0.8), signed(-0.154)) == ("+0.80", f"{MINUS}0.15")
     assert (plain(0.8, 3), plain(-0.154, 3)) == ("0.800", f"{MINUS}0.154")
+
+
+@pytest.mark.parametrize(
+    ("value", "digits"), [(-0.0004, 3), (-0.004, 2), (-0.0, 2), (0.0004, 3), (0.0, 2), (-0.4, 0)]
+)
+def test_what_rounds_to_zero_has_no_minus(value, digits):
+    zero = f"{0:.{digits}f}"
+    assert (signed(value, digits), plain(value, digits)) == (f"+{zero}", zero)
+    assert signed(-(10.0**-digits), digits) == f"{MINUS}{10.0**-digits:.{digits}f}"

@@ -26,7 +26,7 @@ CHOOSE = (
 
 
 def test_the_list_of_keys_and_the_notice_of_a_lost_program_break_no_rule(browser, address):
-    go(browser, address, "/lag" + QUICK)
+    go(browser, address, "/reading" + QUICK)
     browser.find_element(By.TAG_NAME, "body").send_keys("?")
     until(browser, "document.getElementById('keys').open")
     assert violations(browser) == [], "keys"

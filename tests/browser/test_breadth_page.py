@@ -156,11 +156,19 @@ def test_each_view_has_its_file_and_its_print(page):
         assert legend == (view in ("history", "core", "diffusion", "weights"))
 
 
+APART = """[...document.querySelectorAll('.js-plotly-plot .xaxislayer-above')].every((axis) => {
+  const labels = [...axis.querySelectorAll('.xtick text')].map((e) => e.getBoundingClientRect());
+  labels.sort((one, other) => one.left - other.left);
+  return labels.every((one, i) => i === 0 || one.left - labels[i - 1].right >= 4);
+})"""
+
+
 @pytest.mark.parametrize("width", [400, 1280, 1920])
-def test_nothing_runs_off_the_side(page, width):
+def test_nothing_runs_off_the_side_or_together(page, width):
     size(page, width, 900)
     try:
         until(page, f"document.documentElement.scrollWidth <= {width}")
+        until(page, APART)
     finally:
         size(page, 1280, 800)
 

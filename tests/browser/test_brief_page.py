@@ -17,6 +17,7 @@ from app.brief.building import Building
 from app.brief.charts import as_picture
 from app.brief.parts import Draft, Part
 from app.brief.pictures import Pictures
+from app.brief.recipe import Change, Comparison
 from app.brief.sources import source
 from tests.app.briefs import desk, quick, write_files
 from tests.browser import driving
@@ -201,9 +202,19 @@ def test_the_pdf_is_printed_in_a4_and_no_chart_is_cut(made):
 def test_one_page_fits_on_one_page_of_either_paper(bridge, _chromium_there):
     states = {name: quick(opening(name, bridge)) for name in OF_THE_JOB}
     draft = prefilled(bridge, "one-page", states)
-    for paper, height in (("a4", 842), ("letter", 792)):
+    moved = Change(
+        "Reading", "Consumer prices, 12-month rate (percent)", "3.98", "4.13", "+0.15", True
+    )
+    said = (
+        "Consumer prices (prices.csv) has 1 month more, to Jun 2022, and 14 earlier values differ"
+    )
+    since = Comparison((said, said, said), (moved,) * 6)
+    for paper, height, changes in (
+        ("a4", 842, None), ("letter", 792, None), ("a4", 842, since), ("letter", 792, since)
+    ):  # fmt: skip
         building = Building(draft, bridge, Pictures(), numbers=False, images=False, paper=paper)
         building.finish()
+        building.since = changes
         building._print()
         pdf = building.files["brief.pdf"]
         assert len(re.findall(rb"/Type /Page\b", pdf)) == 1

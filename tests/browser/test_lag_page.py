@@ -229,7 +229,7 @@ def test_sample_and_formula_are_taken(lag, bridge):
 @pytest.mark.parametrize(
     ("query", "words"),
     [
-        ("?driver=Nothing", "no loaded series is named 'Nothing'"),
+        ("?driver=Nothing", "No loaded series is named 'Nothing'"),
         ("?driver=Consumer+prices", "must be two series"),
         ("?first=2026-01", "must have at least 24 months"),
         ("?first=2031-01", "has no value in the sample"),

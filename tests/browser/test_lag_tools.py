@@ -248,6 +248,9 @@ def test_months_chosen_on_the_chart_are_left_out_and_numbers_follow(lag, bridge)
     assert 600 < cell.n < 766
     assert f"over {cell.n} months" in lag.find_element(By.ID, "lag-readout").text
     assert signed(cell.correlation) in lag.find_element(By.ID, "lag-readout").text
+    for value, digits in ((-0.0004, 3), (-0.004, 2), (0.004, 2), (-0.006, 2)):
+        twin = lag.execute_script("return pricewake.words.signed(...arguments)", value, digits)
+        assert twin == signed(value, digits)
     assert f"without {said}." in lag.find_element(By.ID, "lag-sentence").text
     assert lag.find_element(By.ID, "field-left_out").get_attribute("value") == left_out
     until(lag, "document.getElementById('lag-verdict').textContent.includes('Without the months')"
