@@ -19,6 +19,7 @@ from app.places import software_version
 LOOPBACK = frozenset({"127.0.0.1", "localhost", "::1"})
 FILES = ("/intake", "/scan/result")  # requests that are a file, and have limits of their own
 MAX_WORDS = 2 * 2**20  # bytes of a request that is no file
+CALLBACKS = "/_dash-update-component"  # where the pages of the framework ask
 SHUT = frozenset({"/_reload-hash"})  # what the framework opens for developers
 TOKEN_LETTERS = 43  # 32 random bytes in letters that an address may hold
 
@@ -73,7 +74,10 @@ def guard(server: Flask, app: Dash, door: Door) -> None:
             origin = request.headers.get("Origin")
             if origin and urlsplit(origin).netloc != request.host:
                 abort(403)
-        return _with_token(door.token) if door.token else None
+        elsewhere = _with_token(door.token) if door.token else None
+        if request.path == CALLBACKS and request.is_json and not _is_question(app):
+            abort(400)
+        return elsewhere
 
     policy: dict[str, str] = {}
 
@@ -96,6 +100,18 @@ def guard(server: Flask, app: Dash, door: Door) -> None:
         response.headers["Referrer-Policy"] = "no-referrer"
         response.headers["X-Pricewake"] = software_version()
         return response
+
+
+def _is_question(app: Dash) -> bool:
+    """Say whether a request asks a callback that there is, in the shape that one takes."""
+    asked = request.get_json(silent=True)
+    if not isinstance(asked, dict) or str(asked.get("output")) not in app.callback_map:
+        return False
+    parts = [asked.get("inputs"), asked.get("state", [])]
+    return all(
+        isinstance(part, list) and all(isinstance(each, dict) and "id" in each for each in part)
+        for part in parts
+    )
 
 
 def _with_token(token: str) -> Answer | None:
