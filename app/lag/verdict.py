@@ -167,8 +167,9 @@ def _set_sentence(known: Evidence, pair: Pair, state: ViewState) -> str:
         )
     if chosen.shifts.size == 1:
         return (
-            f"At window {state.window} the data tell {shift_words(int(chosen.shifts[0]), unit)}"
-            f" apart from every other shift ({100 * chosen.level:.0f} % shift set)."
+            f"At window {state.window} the data tell a shift of"
+            f" {shift_words(int(chosen.shifts[0]), unit)} apart from every other"
+            f" ({100 * chosen.level:.0f} % shift set)."
         )
     return (
         f"At window {state.window} the data cannot tell shifts"

@@ -134,7 +134,7 @@ def test_a_planted_lag_is_said_with_its_direction_and_calendar(name, words):
 def test_the_shift_set_of_a_strong_lag_is_said_to_be_one_shift(lag, name):
     assert case(name)[2].shift_set.shifts.tolist() == [lag]
     assert (
-        f"At window 3 the data tell {shift_words(lag, 'month')} apart from every other shift"
+        f"At window 3 the data tell a shift of {shift_words(lag, 'month')} apart from every other"
         " (95 % shift set)."
     ) in said(name)
 
