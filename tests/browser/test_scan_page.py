@@ -162,7 +162,7 @@ def test_a_result_file_is_opened_and_left_again(page, known, tmp_path):
     page.find_element(By.ID, "scan-open").click()
     page.find_element(By.ID, "scan-file").send_keys(str(path))
     until(page, ANSWERED + " && pricewake.plain.data.state.result", 30)
-    until(page, "document.getElementById('scan-sentence').textContent.endsWith('result.csv')")
+    until(page, "document.getElementById('scan-sentence').textContent.endsWith('result.csv.')")
     assert names(page) == [row.scan.economy for row in league(known)]
     assert "result=" in page.current_url
     path.write_text("a,b\r\n", encoding="utf-8")
