@@ -372,3 +372,9 @@ def test_nothing_on_the_page_shifts_once_it_is_there(browser, address):
     )
     until(browser, "pricewake.lag.state.shift === 60 && " + CALM)
     assert browser.execute_script("return window.shifts") == 0
+    rooms = browser.execute_script(
+        "return [...document.querySelectorAll('.strip-item:not(.worth) dd')]"
+        ".map(each => each.getBoundingClientRect().width)"
+    )
+    assert len(rooms) == 3
+    assert len(set(rooms)) == 1, "every p has the same room, whatever it is"
