@@ -19,7 +19,8 @@ from app.brief.chromium import NOWHERE, NoChromiumError, chromium
 from app.places import bundled
 
 SCALE = 2
-PATIENCE = 40.0  # seconds for one picture, the start of the browser included
+PATIENCE = 40.0  # seconds for one picture
+START = 20.0  # seconds for the browser to start; now and then one hangs, so there is a second try
 IDLE = 60.0  # seconds after which a browser that nobody asks is closed
 _PNG = b"\x89PNG\r\n\x1a\n"
 
@@ -63,7 +64,7 @@ class Pictures:
             self._thread = threading.Thread(target=self._loop.run_forever, daemon=True)
             self._thread.start()
             try:
-                self._browser = self._wait(_opened(self._proxy))
+                self._browser = self._wait(_opened(self._proxy), 2 * START + PATIENCE)
             except Exception as error:
                 self.close()
                 raise NoChromiumError(
@@ -117,9 +118,9 @@ class Pictures:
             if not loop.is_running():
                 loop.close()
 
-    def _wait(self, coroutine: Any) -> Any:
+    def _wait(self, coroutine: Any, patience: float = PATIENCE) -> Any:
         assert self._loop is not None
-        return asyncio.run_coroutine_threadsafe(coroutine, self._loop).result(PATIENCE)
+        return asyncio.run_coroutine_threadsafe(coroutine, self._loop).result(patience)
 
     def _close_later(self) -> None:
         if self._timer is not None:
@@ -132,6 +133,13 @@ class Pictures:
 
 
 async def _opened(proxy: str) -> Any:
+    try:
+        return await _started(proxy)
+    except TimeoutError:
+        return await _started(proxy)
+
+
+async def _started(proxy: str) -> Any:
     import kaleido
 
     browser = kaleido.Kaleido(
@@ -142,7 +150,12 @@ async def _opened(proxy: str) -> Any:
         path=chromium(),
         proxy_server=proxy,
     )
-    await browser.open()
+    try:
+        await asyncio.wait_for(browser.open(), START)
+    except BaseException:
+        with contextlib.suppress(Exception):  # it is given up either way
+            await asyncio.wait_for(browser.close(), START / 4)
+        raise
     return browser
 
 

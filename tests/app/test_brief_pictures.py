@@ -1,7 +1,9 @@
 """Pictures of a brief: what stands in them of where they came from, and a brief without them."""
 
+import asyncio
 import os
 import zlib
+from typing import ClassVar
 
 import pytest
 
@@ -64,6 +66,45 @@ def test_a_chromium_that_hangs_is_ended(tmp_path, monkeypatch):
 
 
 # Where they came from -------------------------------------------------------------------------
+
+
+class _Browser:
+    """Stands for kaleido's browser: the first `hanging` of them never open."""
+
+    hanging = 0
+    started: ClassVar[list["_Browser"]] = []
+
+    def __init__(self, **_):
+        self.open_now = False
+        self.started.append(self)
+
+    async def open(self):
+        await asyncio.sleep(60 if len(self.started) <= self.hanging else 0)
+        self.open_now = True
+
+    async def close(self):
+        self.open_now = None
+
+
+@pytest.mark.parametrize("hanging", [0, 1, 2])
+def test_a_drawing_browser_that_hangs_is_started_once_more(monkeypatch, hanging):
+    kaleido = pytest.importorskip("kaleido")
+    monkeypatch.setattr(kaleido, "Kaleido", _Browser)
+    monkeypatch.setattr(pictures, "missing", lambda: "")
+    monkeypatch.setattr(pictures, "START", 0.2)
+    monkeypatch.setattr(_Browser, "hanging", hanging)
+    monkeypatch.setattr(_Browser, "started", [])
+    drawing = pictures.Pictures()
+    try:
+        if hanging == 2:
+            with pytest.raises(chromium.NoChromiumError, match="did not start"):
+                drawing.start()
+        else:
+            drawing.start()
+        states = [each.open_now for each in _Browser.started]
+        assert states == {0: [True], 1: [None, True], 2: [None, None]}[hanging]
+    finally:
+        drawing.close()
 
 
 def _png():
