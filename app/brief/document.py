@@ -18,7 +18,7 @@ from app.places import bundled, software_version
 
 _HERE = Path(__file__).resolve().parent
 MOST_ROWS = 3  # key figures that changed, on one page
-LESS = 16  # pixels of every chart, on one page
+LESS = 34  # pixels of every chart, on one page
 MANY = 8  # series of one file and kind that are listed one by one
 
 
