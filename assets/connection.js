@@ -12,6 +12,7 @@
   function say(text) {
     if (!place()) return;
     place().hidden = !text;
+    document.documentElement.classList.toggle("noticed", Boolean(text)); // ":has" would be asked at every move
     if (place().textContent !== text) place().textContent = text;
   }
 
@@ -75,5 +76,6 @@
       setTimeout(() => { if (!link.lost) say(""); }, 2 * PATIENCE);
     }, 100);
   });
-  pricewake.connection = link;
+
+  pricewake.connection = Object.assign(link, { say });
 })();

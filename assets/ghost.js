@@ -80,60 +80,71 @@
      turn. One wide stroke with dashes keeps a canvas without a graphics card five times as long. */
   const STRANDS = [[0, 0], [0.8, 0], [0, 0.8]];
   function line(pen, xs, ys, x, y, on = Infinity, off = 0) {
+    const course = []; // x, y, and whether it is drawn to
+    let open = false, drawn = true, left = on, px = 0, py = 0;
+    for (let i = 0; i < xs.length; i++) {
+      if (ys[i] === null || xs[i] === null) continue;
+      const toX = x(xs[i]), toY = y(ys[i]);
+      if (open && off) {
+        const long = Math.hypot(toX - px, toY - py);
+        let at = 0;
+        while (long - at > left) {
+          at += left;
+          course.push(px + ((toX - px) * at) / long, py + ((toY - py) * at) / long, drawn);
+          drawn = !drawn;
+          left = drawn ? on : off;
+        }
+        left -= long - at;
+      }
+      course.push(toX, toY, open && drawn);
+      open = true;
+      px = toX; py = toY;
+    }
     pen.lineWidth = 1;
     pen.beginPath();
     for (const [right, down] of STRANDS) {
-      let open = false, drawn = true, left = on, px = 0, py = 0;
-      for (let i = 0; i < xs.length; i++) {
-        if (ys[i] === null || xs[i] === null) continue;
-        const toX = x(xs[i]) + right, toY = y(ys[i]) + down;
-        if (!open) pen.moveTo(toX, toY);
-        else {
-          const long = Math.hypot(toX - px, toY - py);
-          let at = 0;
-          while (long - at > left) {
-            at += left;
-            const turnX = px + ((toX - px) * at) / long, turnY = py + ((toY - py) * at) / long;
-            if (drawn) pen.lineTo(turnX, turnY); else pen.moveTo(turnX, turnY);
-            drawn = !drawn;
-            left = drawn ? on : off;
-          }
-          left -= long - at;
-          if (drawn) pen.lineTo(toX, toY);
-        }
-        open = true;
-        px = toX; py = toY;
+      for (let k = 0; k < course.length; k += 3) {
+        if (course[k + 2]) pen.lineTo(course[k] + right, course[k + 1] + down);
+        else pen.moveTo(course[k] + right, course[k + 1] + down);
       }
     }
     pen.stroke();
   }
 
-  /* The share of each pixel of a square that a disc around its middle covers. */
+  /* The pixels that a disc around the middle of one touches, with the share of each that it covers. */
   function disc(radius) {
-    const reach = Math.ceil(radius), size = 2 * reach + 1;
-    const cover = Float32Array.from({ length: size * size }, (_, k) => {
-      const away = Math.hypot((k % size) - reach, Math.floor(k / size) - reach);
-      return Math.max(0, Math.min(1, radius + 0.5 - away));
-    });
-    return { cover, reach, size };
+    const reach = Math.ceil(radius), found = { reach, right: [], down: [], share: [] };
+    for (let down = -reach; down <= reach; down++) {
+      for (let right = -reach; right <= reach; right++) {
+        const share = Math.min(1, radius + 0.5 - Math.hypot(right, down));
+        if (share <= 0) continue;
+        found.right.push(right); found.down.push(down); found.share.push(share);
+      }
+    }
+    return found;
   }
 
-  /* Discs at points, each laid over those before it in its colour [red, green, blue]: written into
+  /* Discs at points, each laid over those before it in its colour, [red, green, blue] of `colourOf(i)`: written into
      the pixels themselves, as an arc for each takes ten times as long. To be drawn first. */
   let sheet = null;
-  function dots(pen, xs, ys, x, y, colours, radius, opacity) {
+  function dots(pen, xs, ys, x, y, colourOf, radius, opacity) {
     const ratio = window.devicePixelRatio || 1;
     const [left, top, width, height] = inside.map((value) => Math.round(value * ratio));
     if (!sheet || sheet.width !== width || sheet.height !== height) sheet = new ImageData(width, height);
-    const pixels = sheet.data.fill(0), { cover, reach, size } = disc(radius * ratio);
+    const pixels = sheet.data.fill(0), { reach, right, down, share } = disc(radius * ratio);
     for (let i = 0; i < xs.length; i++) {
-      const across = Math.floor(x(xs[i]) * ratio) - left - reach, down = Math.floor(y(ys[i]) * ratio) - top - reach;
-      const [red, green, blue] = colours[i];
-      for (let k = 0; k < cover.length; k++) {
-        const column = across + (k % size), row = down + Math.floor(k / size);
-        if (!cover[k] || column < 0 || column >= width || row < 0 || row >= height) continue;
-        const at = 4 * (row * width + column), over = cover[k] * opacity;
-        const under = (pixels[at + 3] / 255) * (1 - over), all = over + under;
+      const column = Math.floor(x(xs[i]) * ratio) - left, row = Math.floor(y(ys[i]) * ratio) - top;
+      const inner = column >= reach && row >= reach && column < width - reach && row < height - reach;
+      const [red, green, blue] = colourOf(i);
+      for (let k = 0; k < share.length; k++) {
+        const across = column + right[k], along = row + down[k];
+        if (!inner && (across < 0 || along < 0 || across >= width || along >= height)) continue;
+        const at = 4 * (along * width + across), over = share[k] * opacity, before = pixels[at + 3];
+        if (before === 0) {
+          pixels[at] = red; pixels[at + 1] = green; pixels[at + 2] = blue; pixels[at + 3] = 255 * over;
+          continue;
+        }
+        const under = (before / 255) * (1 - over), all = over + under;
         pixels[at] = (red * over + pixels[at] * under) / all;
         pixels[at + 1] = (green * over + pixels[at + 1] * under) / all;
         pixels[at + 2] = (blue * over + pixels[at + 2] * under) / all;

@@ -33,7 +33,7 @@
     );
     if (!cell) return null;
     cell.start += from;
-    cell.months = cell.months.map((month) => month + from);
+    if (from) cell.months = cell.months.map((month) => month + from);
     return cell;
   }
 

@@ -12,18 +12,12 @@
     return chart && chart._fullLayout && chart._fullLayout.xaxis ? chart._fullLayout : null;
   }
 
+  /* Two lines over the whole map, which a move shifts and lays out not at all. */
   function placeCross() {
     const axes = axesOf("lag-surface"), cross = byId("lag-cross");
     if (!axes || !cross || !page().state) return;
-    const { xaxis, yaxis } = axes;
-    const left = xaxis._offset + xaxis.c2p(page().state.shift);
-    const top = yaxis._offset + yaxis.c2p(page().state.window);
-    cross.style.transform = `translate(${left}px, ${top}px)`;
-    cross.style.setProperty("--left", `${xaxis._offset - left}px`);
-    cross.style.setProperty("--right", `${xaxis._offset + xaxis._length - left}px`);
-    cross.style.setProperty("--top", `${yaxis._offset - top}px`);
-    cross.style.setProperty("--bottom", `${yaxis._offset + yaxis._length - top}px`);
-    cross.hidden = false;
+    cross.style.setProperty("--across", `${axes.xaxis.c2p(page().state.shift)}px`);
+    cross.style.setProperty("--down", `${axes.yaxis.c2p(page().state.window)}px`);
   }
 
   /* The sliders lie on the axes of the map: thumb centre over cell centre. */
@@ -44,6 +38,9 @@
       top: `${yaxis._offset + tall / 2 - THUMB / 2}px`,
       height: `${yaxis._length - tall + THUMB}px`,
       left: `${xaxis._offset - THUMB / 2 - 1}px`,
+    });
+    Object.assign(byId("lag-cross").style, {
+      left: `${xaxis._offset}px`, width: `${xaxis._length}px`, top: `${yaxis._offset}px`, height: `${yaxis._length}px`,
     });
     placeCross();
   }

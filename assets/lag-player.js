@@ -13,7 +13,7 @@
 
   function label() {
     const button = byId("play");
-    if (button) button.textContent = still.matches ? "Step" : player.on ? "Pause" : "Play";
+    if (button) pricewake.words.write(button, still.matches ? "Step" : player.on ? "Pause" : "Play");
   }
 
   /* The scrub has the bounds and the place of what is swept. */

@@ -76,7 +76,7 @@
       if (state.points === "counts") squares(pen, counts, x, y, shadeOf);
       else {
         const colours = coloursOf(page), { size, opacity } = page.data.figures.scatter.data[0].marker;
-        ghost.dots(pen, cell.driver, cell.response, x, y, cell.months.map((month) => colours[month]), size / 2, opacity);
+        ghost.dots(pen, cell.driver, cell.response, x, y, (i) => colours[cell.months[i]], size / 2, opacity);
       }
       pen.lineWidth = 1.2;
       pen.strokeStyle = theme.colour("mark");
@@ -179,6 +179,8 @@
     const band = byId("lag-band"), chart = ghost.chartOf("lag-scatter");
     if (!band) return;
     const slice = page.slice || null;
+    if (band.hidden && !slice && band.choice === page.state.band) return;
+    band.choice = page.state.band;
     band.hidden = !slice;
     for (const each of document.querySelectorAll(".band-only")) each.hidden = page.state.band === "off";
     byId("lag-slice-words").hidden = !slice;

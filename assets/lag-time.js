@@ -6,9 +6,18 @@
   const byId = (id) => document.getElementById(id);
   const chosen = { codes: null, days: null };
 
+  /* First moment of a period, looked up: a move asks for a thousand. */
+  function momentOf(data) {
+    const known = (data.moments = data.moments || new Map());
+    return (ordinal) => {
+      if (!known.has(ordinal)) known.set(ordinal, calendar.firstMoment(ordinal, data.perYear));
+      return known.get(ordinal);
+    };
+  }
+
   function paint(page) {
     const { ordinals, driver, response } = page.overlay;
-    const days = ordinals.map((o) => calendar.firstMoment(o, page.data.perYear));
+    const days = ordinals.map(momentOf(page.data));
     ghost.show("lag-overlay", (pen, x, y) => {
       pen.strokeStyle = theme.colour("driver");
       ghost.line(pen, days, driver, x, y);

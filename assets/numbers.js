@@ -4,7 +4,19 @@
   "use strict";
   const pricewake = (window.pricewake = window.pricewake || {});
 
-  function trailingMean(values, window) {
+  /* What was found of an array for its last argument: a slider asks for the same again and again. */
+  function remembered(find) {
+    const found = new WeakMap();
+    return (values, argument) => {
+      const last = found.get(values);
+      if (last && last.argument === argument) return last.result;
+      const result = find(values, argument);
+      found.set(values, { argument, result });
+      return result;
+    };
+  }
+
+  const trailingMean = remembered((values, window) => {
     const means = new Float64Array(Math.max(0, values.length - window + 1));
     for (let i = 0; i < means.length; i++) {
       let sum = 0;
@@ -12,16 +24,16 @@
       means[i] = sum / window;
     }
     return means;
-  }
+  });
 
   function mean(values) {
     let sum = 0;
-    for (const value of values) sum += value;
+    for (let i = 0; i < values.length; i++) sum += values[i];
     return sum / values.length;
   }
 
   /* Variance at or below which a stretch counts as constant: surface.smallest_variance. */
-  function smallestVariance(values) {
+  const smallestVariance = remembered((values) => {
     const centre = mean(values);
     let square = 0, largest = 0;
     for (const value of values) {
@@ -29,11 +41,14 @@
       largest = Math.max(largest, Math.abs(value));
     }
     return Math.max((1e-12 * square) / values.length, (1e-12 * largest) ** 2);
-  }
+  });
 
   function sliceMeans(along, other, slices) {
     let low = Infinity, high = -Infinity;
-    for (const value of along) { low = Math.min(low, value); high = Math.max(high, value); }
+    for (let i = 0; i < along.length; i++) {
+      if (along[i] < low) low = along[i];
+      if (along[i] > high) high = along[i];
+    }
     const count = new Array(slices).fill(0), sum = new Array(slices).fill(0);
     for (let i = 0; i < along.length; i++) {
       const place = Math.min(slices - 1, Math.floor(((along[i] - low) / (high - low)) * slices));
@@ -81,7 +96,8 @@
     let n = Math.max(0, smoothDriver.length - Math.abs(shift));
     let x = smoothDriver.slice(from, from + n);
     let y = smoothResponse.slice(from + shift, from + shift + n);
-    let months = Array.from({ length: n }, (_, i) => from + window - 1 + i);
+    let months = new Array(n);
+    for (let i = 0; i < n; i++) months[i] = from + window - 1 + i;
     if (kept) {
       const read = monthsRead(kept, window);
       const whole = (_, i) => read[from + i] && read[from + shift + i];

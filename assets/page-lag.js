@@ -6,10 +6,11 @@
   const pricewake = (window.pricewake = window.pricewake || {});
   const { ghost, theme, controls, words, lagCell, lagMap, lagScatter, lagTime } = pricewake;
   const RESTING = 140, HOLDING = 500; // milliseconds without a move; while the pointer is held down
+  const READABLE = 90; // milliseconds between words: nobody reads numbers that change more often
   const SLIDERS = ["window", "shift", "band_place", "band_width"]; // moved by the hand
   const DRAWN_HERE = ["points", "band", "band_place", "band_width"]; // the server need not answer
   const OF_THE_CELL = ["window", "shift", "without", "pinned", "peaks", "other_responses", ...DRAWN_HERE];
-  const page = { data: null, state: null, cell: null, timer: 0, frame: 0, moves: 0, held: false };
+  const page = { data: null, state: null, cell: null, timer: 0, frame: 0, moves: 0, held: false, words: 0, said: 0 };
 
   const byId = (id) => document.getElementById(id);
   const { counted, signed, write } = words;
@@ -57,6 +58,19 @@
     }
   }
 
+  function say() {
+    clearTimeout(page.words);
+    Object.assign(page, { words: 0, said: performance.now() });
+    if (byId("lag-sentence")) showWords(); // else the page is left already
+  }
+
+  /* The words of a move: at once, or when those before could be read. */
+  function saySoon() {
+    const left = page.said + READABLE - performance.now();
+    if (left <= 0) say();
+    else if (!page.words) page.words = setTimeout(say, left);
+  }
+
   /* A move: drawn in the next frame, latest wins ---------------------------------------------- */
 
   function draw() {
@@ -65,7 +79,7 @@
     page.cell = lagCell.cellAt(page.data, window, shift);
     page.overlay = lagCell.overlayAt(page.data, window, shift);
     lagMap.placeCross();
-    showWords();
+    saySoon();
     lagScatter.paint(page);
     lagTime.paint(page);
     pricewake.player.follow();
@@ -124,6 +138,7 @@
     page.timer = 0;
     if (!page.data || page.data.error || !byId("lag-sentence")) return; // the page may be left already
     if (page.frame) { cancelAnimationFrame(page.frame); draw(); }
+    if (page.words) say();
     publish();
     lagMap.layOver(page.known);
     if (page.cell) theme.show("lag-scatter", lagScatter.figure(page));
@@ -200,7 +215,7 @@
     page.cell = lagCell.cellAt(data, page.state.window, page.state.shift);
     page.overlay = lagCell.overlayAt(data, page.state.window, page.state.shift);
     page.laid = "";
-    showWords();
+    say();
     settle();
     pricewake.player.follow();
     if (data.fresh) pricewake.trail.begin();
@@ -255,7 +270,7 @@
   window.dash_clientside = Object.assign({}, window.dash_clientside, { lag: { adopt, question } });
   pricewake.lag = page;
   Object.assign(page, { move, publish, query, settle, hold, ask, put, take, showTime, layOver: lagMap.layOver });
-  page.busy = () => Boolean(page.timer || page.frame || document.querySelector(".plot.moving"));
+  page.busy = () => Boolean(page.timer || page.frame || page.words || document.querySelector(".plot.moving"));
   /* What an answer of the server must be about to be shown: all but what is drawn here. */
   page.answerable = (state) => JSON.stringify(Object.entries(state).filter(([name]) => !DRAWN_HERE.includes(name)).sort(([a], [b]) => (a < b ? -1 : 1)));
   page.cellName = () => `${page.question} ${page.state.window} ${page.state.shift} ${page.state.peaks}`;

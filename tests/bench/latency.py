@@ -19,12 +19,13 @@ import subprocess
 import sys
 import time
 import urllib.request
-from collections.abc import Iterator, Sequence
-from contextlib import contextmanager
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import closing, contextmanager
 from itertools import count
 
 import numpy as np
 import pandas as pd
+import websocket
 from selenium import webdriver
 
 from analytics.series import Series
@@ -212,25 +213,20 @@ def _drag(driver: webdriver.Chrome) -> list[Row]:
     )
     x, y, low, high = box
 
-    def mouse(kind: str, at: float) -> None:
-        driver.execute_cdp_cmd(
-            "Input.dispatchMouseEvent",
-            {"type": kind, "x": at, "y": y, "button": "left", "buttons": 1, "clickCount": 1},
-        )
-
     driver.get_log("performance")
-    mouse("mouseMoved", x)
-    mouse("mousePressed", x)
-    driver.execute_script(_WATCH)
-    start, sent, step, at = time.perf_counter(), 0, 6.0, x
-    while time.perf_counter() - start < 2.5:
-        if not low < at + step < high:
-            step = -step
-        at += step
-        mouse("mouseMoved", at)
-        sent += 1
-        time.sleep(max(0.0, start + sent * 0.016 - time.perf_counter()))
-    length = time.perf_counter() - start
+    with _hand(driver, y) as mouse:
+        mouse("mouseMoved", x)
+        mouse("mousePressed", x)
+        driver.execute_script(_WATCH)
+        start, sent, step, at = time.perf_counter(), 0, 6.0, x
+        while time.perf_counter() - start < 2.5:
+            if not low < at + step < high:
+                step = -step
+            at += step
+            mouse("mouseMoved", at)
+            sent += 1
+            time.sleep(max(0.0, start + sent * 0.016 - time.perf_counter()))
+        length = time.perf_counter() - start
     seen = driver.execute_script(
         "const seen = window.benchFrames; window.benchFrames = null;"
         "return {moves: pricewake.lag.moves - seen.moves, gap: Math.max(...seen.gaps)}"
@@ -241,7 +237,8 @@ def _drag(driver: webdriver.Chrome) -> list[Row]:
         if (told := json.loads(entry["message"])["message"]["params"]).get("request")
         and "/alive" not in told["request"]["url"]
     ]
-    mouse("mouseReleased", at)
+    with _hand(driver, y) as mouse:
+        mouse("mouseReleased", at)
     released = time.perf_counter()
     until(driver, "!pricewake.lag.busy()")
     rate = seen["moves"] / length
@@ -261,6 +258,25 @@ def _drag(driver: webdriver.Chrome) -> list[Row]:
             None,
         ),
     ]
+
+
+@contextmanager
+def _hand(driver: webdriver.Chrome, y: float) -> Iterator[Callable[[str, float], None]]:
+    """Move the mouse as a hand does, which does not wait until the page has painted."""
+    place = driver.capabilities["goog:chromeOptions"]["debuggerAddress"]
+    with urllib.request.urlopen(f"http://{place}/json/list") as answer:
+        page = next(each for each in json.load(answer) if each["type"] == "page")
+    numbers = count(1)
+    with closing(
+        websocket.create_connection(page["webSocketDebuggerUrl"], suppress_origin=True)
+    ) as line:
+
+        def mouse(kind: str, at: float) -> None:
+            how = {"type": kind, "x": at, "y": y, "button": "left", "buttons": 1, "clickCount": 1}
+            asked = {"id": next(numbers), "method": "Input.dispatchMouseEvent", "params": how}
+            line.send(json.dumps(asked))
+
+        yield mouse
 
 
 def _player(driver: webdriver.Chrome) -> list[Row]:

@@ -56,10 +56,7 @@ return [...document.querySelectorAll('main :is(.control, .slider) :is(select, in
   }).map(e => e.id);
 """
 OPEN = "document.querySelectorAll('main details').forEach(d => { d.open = true; })"
-LOST = (
-    "const said = document.getElementById('connection'); said.hidden = false;"
-    "said.textContent = 'Pricewake does not answer. What is on the page stays.'"
-)
+LOST = "pricewake.connection.say('Pricewake does not answer. What is on the page stays.')"
 FEW = [
     page if page.TITLE == "Reading" else pytest.param(page, marks=pytest.mark.long)
     for page in PAGES

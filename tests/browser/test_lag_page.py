@@ -119,10 +119,11 @@ def test_slider_move_moves_the_crosshair_to_the_cell(lag):
     key(lag, "shift", Keys.HOME)
     offset = lag.execute_script(
         "const c = pricewake.ghost.chartOf('lag-surface'), f = c._fullLayout,"
-        " b = c.getBoundingClientRect(), m = document.getElementById('lag-cross')"
-        ".getBoundingClientRect(), t = document.getElementById('field-shift')"
-        ".getBoundingClientRect();"
-        "return [m.left - b.left - f.xaxis._offset - f.xaxis.c2p(-36),"
+        " b = c.getBoundingClientRect(), m = document.getElementById('lag-cross'),"
+        " line = new DOMMatrix(getComputedStyle(m, '::after').transform),"
+        " t = document.getElementById('field-shift').getBoundingClientRect();"
+        "return [m.getBoundingClientRect().left + line.m41 - b.left - f.xaxis._offset"
+        " - f.xaxis.c2p(-36),"
         " t.left + 8 - b.left - f.xaxis._offset - f.xaxis.c2p(-36)]"
     )
     assert abs(offset[0]) < 0.6, "crosshair stands on the cell"
