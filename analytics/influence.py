@@ -216,10 +216,14 @@ def episodes(
     cell = PartialCell(
         driver, response, window=window, shift=shift, periods_per_year=periods_per_year
     )
-    whole = cell.relation(cell.all_pairs)
     borders = _runs(cell.driver, max(periods_per_year, window))
     spans = list(pairwise(borders))
-    found = tuple(_episode(cell, whole, start, stop) for start, stop in spans)
+    whole, *rest = cell.relations(
+        np.stack([cell.all_pairs, *(_kept(cell.n, [span]) for span in spans)])
+    )
+    found = tuple(
+        _episode(cell, whole, without, *span) for without, span in zip(rest, spans, strict=True)
+    )
     cause = int(np.argmax([episode.weight for episode in found]))
     fragility = found[cause].weight
     return InfluenceResult(
@@ -238,11 +242,12 @@ def episodes(
     )
 
 
-def _episode(cell: PartialCell, whole: Relation, start: int, stop: int) -> Episode:
-    """Measure one run of pairs."""
+def _episode(
+    cell: PartialCell, whole: Relation, without: Relation, start: int, stop: int
+) -> Episode:
+    """Measure one run of pairs; `without` is the relation over the others."""
     x, y = cell.driver - cell.driver.mean(), cell.response - cell.response.mean()
     products = x * y
-    without = cell.relation(_kept(cell.n, [(start, stop)]))
     return Episode(
         start=start,
         stop=stop,
@@ -278,12 +283,12 @@ def _removals(cell: PartialCell, spans: list[tuple[int, int]], p: float, level: 
     gone: list[tuple[int, int]] = []
     left = list(spans)
     while p <= level and left:
-        trials = []
-        for span in left:
-            kept = _kept(cell.n, [*gone, span])
-            p_without = cell.relation(kept).p
-            usable = kept.sum() >= 5 * cell.window and np.isfinite(p_without)
-            trials.append(p_without if usable else 1.0)
+        kept = np.stack([_kept(cell.n, [*gone, span]) for span in left])
+        enough = kept.sum(axis=1) >= 5 * cell.window
+        trials = [
+            relation.p if usable and np.isfinite(relation.p) else 1.0
+            for relation, usable in zip(cell.relations(kept), enough, strict=True)
+        ]
         most = int(np.argmax(trials))
         p = trials[most]
         gone.append(left.pop(most))

@@ -65,7 +65,7 @@ def test_without_the_series_the_table_and_the_shifts_are_there(searched, content
     shown, bridge = shown_in(Workspace(), content)
     assert set(shown.charts) == {"shifts"}
     assert "6 pairs of 6 economies, windows 1 to 4 and shifts −2 to +8 months" in shown.sentence
-    assert shown.sentence.endswith("opened from r.csv")
+    assert shown.sentence.endswith("opened from r.csv.")
     assert shown.verdict.startswith("3 of 5 pairs hold")
     said = words(shown.words["notes"])
     assert f"Opened from r.csv, written by Pricewake {software_version()}: seed 1, 99" in said
