@@ -6,6 +6,7 @@ import threading
 from collections.abc import Iterator
 from contextlib import contextmanager
 from typing import Any
+from urllib.parse import urlsplit
 
 from selenium import webdriver
 from selenium.webdriver.chrome.options import Options
@@ -96,8 +97,17 @@ class _Chrome(webdriver.Chrome):
     def get_log(self, log_type: str) -> list[dict[str, Any]]:
         """Return what was logged since the last look."""
         entries: list[dict[str, Any]] = super().get_log(log_type)
-        ended = "/alive - Failed to load resource"
-        return [entry for entry in entries if ended not in entry["message"]]
+        here = urlsplit(self.current_url).netloc
+
+        def of_a_page_left(message: str) -> bool:
+            return "ERR_CONNECTION_REFUSED" in message and f"//{here}/" not in message
+
+        return [
+            entry
+            for entry in entries
+            if "/alive - Failed to load resource" not in entry["message"]
+            and not of_a_page_left(entry["message"])
+        ]
 
 
 @contextmanager
