@@ -3,7 +3,6 @@
 import errno
 import signal
 import socket
-import sys
 import threading
 import webbrowser
 from importlib import import_module
@@ -23,8 +22,6 @@ DEFAULT_PORT = 8391
 FIRST_PAGE_AFTER = 0.3
 # The first page is shown by then, and nobody has asked for HAC errors:
 COMPILE_AFTER = 10.0
-# Who comes back from numpy waits so long for the interpreter; eight tabs feel the usual 0.005:
-TURN = 0.0005
 
 
 @click.command()
@@ -77,7 +74,6 @@ def serve(
         later = threading.Timer(seconds, act, (given,))
         later.daemon = True
         later.start()
-    sys.setswitchinterval(TURN)
     signal.signal(signal.SIGTERM, signal.default_int_handler)
     try:
         server.run()
