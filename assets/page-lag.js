@@ -27,10 +27,10 @@
     return unbroken;
   }
 
-  /* Written over while its numbers keep their length, else made anew: what is there never slides. */
+  /* Written over while only its digits change, else made anew: what is there never slides. */
   function showHeadline(parts) {
     const head = byId("lag-sentence");
-    const shape = parts.map((part) => (typeof part === "string" ? part.length : part[0] + part[1].length)).join();
+    const shape = parts.join("|").replace(/\d/g, "0");
     if (head.shape !== shape || head.childNodes.length !== parts.length) {
       head.replaceChildren(...parts.map((part) => (typeof part === "string" ? document.createTextNode("") : numberPart(part[0]))));
       head.shape = shape;

@@ -135,7 +135,7 @@ def page(address: str, query: str, throttle: int, *flags: str) -> list[Row]:
         driver.set_script_timeout(300)
         open_lag(driver, address, query)
         _throttle(driver, throttle)
-        restyle = driver.execute_async_script(_RESTYLE, 40)
+        restyle = driver.execute_async_script(_RESTYLE, 12)
         _throttle(driver, 1)
         open_lag(driver, address, f"{query}&surrogates=9999&seed={next(_SEEDS)}")
         driver.execute_script("document.getElementById('tool-player').open = true")
