@@ -183,7 +183,7 @@ def test_revisions_are_drawn_and_said_as_they_are_computed(data):
     assert severe(browser, "422") == []
 
 
-@pytest.mark.parametrize("theme", ["light", "dark"])
+@pytest.mark.parametrize("theme", ["light", pytest.param("dark", marks=pytest.mark.long)])
 @pytest.mark.parametrize("width", [1280, 400])
 def test_nothing_runs_out_of_the_page(data, release, width, theme):
     browser, url, here = data

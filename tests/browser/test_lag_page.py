@@ -240,20 +240,20 @@ def test_sample_and_formula_are_taken(lag, bridge):
         ("?first=2023-01", "A shift of 24 months is outside this map"),
     ],
 )
-def test_bad_addresses_get_one_sentence_and_the_page_stays_usable(lag, address, query, words):
-    lag.get(f"{address}/lag{query}")
-    until(lag, "window.pricewake && pricewake.lag && pricewake.lag.data")
-    until(lag, "document.getElementById('lag-message').textContent")
-    assert words in lag.find_element(By.ID, "lag-message").text
-    assert "Traceback" not in lag.page_source
+def test_bad_addresses_get_one_sentence_and_the_page_stays_usable(browser, address, query, words):
+    browser.get(f"{address}/lag{query}")
+    until(browser, "window.pricewake && pricewake.lag && pricewake.lag.data")
+    until(browser, "document.getElementById('lag-message').textContent")
+    assert words in browser.find_element(By.ID, "lag-message").text
+    assert "Traceback" not in browser.page_source
     for name, value in (("driver", "Broad money"), ("response", "Consumer prices")):
-        lag.find_element(By.CSS_SELECTOR, f"#field-{name} option[value='{value}']").click()
-    lag.execute_script("const f = document.getElementById('field-first'); f.value = '';"
+        browser.find_element(By.CSS_SELECTOR, f"#field-{name} option[value='{value}']").click()
+    browser.execute_script("const f = document.getElementById('field-first'); f.value = '';"
                        "f.dispatchEvent(new Event('change', {bubbles: true}))")  # fmt: skip
-    lag.find_element(By.CSS_SELECTOR, "#field-growth option[value='percent']").click()
-    until(lag, READY + " && pricewake.lag.data.state.growth === 'percent'")
-    assert lag.execute_script("return pricewake.lag.data.driver.values.length") == 801
-    assert lag.find_element(By.ID, "lag-message").text == ""
+    browser.find_element(By.CSS_SELECTOR, "#field-growth option[value='percent']").click()
+    until(browser, READY + " && pricewake.lag.data.state.growth === 'percent'")
+    assert browser.execute_script("return pricewake.lag.data.driver.values.length") == 801
+    assert browser.find_element(By.ID, "lag-message").text == ""
 
 
 def test_csv_button_gives_the_numbers_on_screen(lag, address, bridge, downloads):
@@ -267,17 +267,15 @@ def test_csv_button_gives_the_numbers_on_screen(lag, address, bridge, downloads)
     np.testing.assert_allclose([float(row["response"]) for row in rows], points["y"], atol=1e-9)
 
 
-@pytest.mark.parametrize(
-    ("view", "width", "height"),
-    [("surface", 2200, 1520), ("scatter", 1800, 1720), ("overlay", 2400, 1120)],
-)
-def test_png_button_saves_the_view_at_twice_the_scale(lag, downloads, view, width, height):
-    lag.find_element(By.CSS_SELECTOR, f"[data-save=png][data-view={view}]").click()
-    path = downloads / f"{view}-broad-money-consumer-prices-window-12-shift-24.png"
-    wait_for(path)
-    head = path.read_bytes()[:24]
-    assert head[:8] == b"\x89PNG\r\n\x1a\n"
-    assert struct.unpack(">II", head[16:24]) == (width, height)
+def test_png_button_saves_each_view_at_twice_the_scale(lag, downloads):
+    sizes = {"surface": (2200, 1520), "scatter": (1800, 1720), "overlay": (2400, 1120)}
+    for view, size in sizes.items():
+        lag.find_element(By.CSS_SELECTOR, f"[data-save=png][data-view={view}]").click()
+        path = downloads / f"{view}-broad-money-consumer-prices-window-12-shift-24.png"
+        wait_for(path)
+        head = path.read_bytes()[:24]
+        assert head[:8] == b"\x89PNG\r\n\x1a\n"
+        assert struct.unpack(">II", head[16:24]) == size
 
 
 def test_saved_chart_names_state_source_and_version(lag):
