@@ -24,6 +24,12 @@
 
   const escaped = (text) => text.replaceAll("&", "&amp;").replaceAll("<", "&lt;").replaceAll(">", "&gt;");
 
+  /* Rows that the chart library sets a legend in: columns as wide as the longest name. */
+  function legendRows({ data }, room) {
+    const names = data.filter((t) => t.name && t.showlegend !== false && t.visible !== false).map((t) => t.name.length);
+    return Math.max(1, Math.ceil(names.length / Math.max(1, Math.floor(room / (6.5 * Math.max(...names, 0) + 60)))));
+  }
+
   function printed(view, page, prefix = "lag") {
     const figure = structuredClone(pricewake.theme.figures.get(`${prefix}-${view}`));
     const [width, height] = SIZES[view] || (figure.layout.meta || {}).size || [1000, 680];
@@ -31,7 +37,7 @@
     const source = wrapped(page.source(), Math.floor(width / 6.5));
     const { layout } = figure;
     const legend = layout.showlegend || (layout.meta || {}).key || view === "scatter" || view === "overlay";
-    const top = 50 + 24 * title.length + (legend ? 26 : 0), bottom = 62 + 15 * source.length;
+    const top = 50 + 24 * title.length + (legend ? 7 + 19 * legendRows(figure, width - 160) : 0), bottom = 62 + 15 * source.length;
     layout.margin = { ...layout.margin, t: top, b: bottom, l: Math.max(70, (layout.margin || {}).l || 0) };
     layout.title = {
       text: `${title.map(escaped).join("<br>")}<br><span style="font-size:13px">${escaped(page.subtitle(view))}</span>`,
