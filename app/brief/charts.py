@@ -70,7 +70,7 @@ def as_picture(
     margin = layout.get("margin") or {}
     layout["margin"] = {
         **margin,
-        "t": 50 + 24 * len(above) + (26 if legend else 0),
+        "t": 50 + 24 * len(above) + (7 + 19 * _legend_rows(figure, width - 160) if legend else 0),
         "b": 62 + 15 * len(below),
         "l": max(70, margin.get("l", 0)),
         **({"r": 90} if name == "lag scatter" else {}),
@@ -106,6 +106,19 @@ def as_picture(
         layout["legend"] = _legend()
     layout.update(width=width, height=height, autosize=False)
     return figure
+
+
+def _legend_rows(figure: Mapping[str, Any], room: int) -> int:
+    """Rows of a legend whose columns are as wide as the longest name: legendRows in saving.js."""
+    names = [
+        len(trace["name"])
+        for trace in figure["data"]
+        if trace.get("name")
+        and trace.get("showlegend") is not False
+        and trace.get("visible") is not False
+    ]
+    across = max(1, int(room / (6.5 * max(names, default=0) + 60)))
+    return max(1, -(-len(names) // across))
 
 
 def _parted(title: str) -> str:

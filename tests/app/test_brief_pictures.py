@@ -8,6 +8,7 @@ from typing import ClassVar
 import pytest
 
 from app.brief import chromium, pictures
+from app.brief.charts import as_picture
 from app.brief.parts import Draft, Part
 from app.brief.pictures import png_with, svg_with
 from app.state import ViewState
@@ -149,3 +150,21 @@ def test_notes_in_an_svg_are_escaped():
     )
     with pytest.raises(ValueError, match="must be an SVG"):
         svg_with(b"nothing", "", {})
+
+
+@pytest.mark.parametrize(
+    ("names", "rows"),
+    [
+        ([], 1),
+        (["a", "b"], 1),
+        (["months", "least squares", "ellipse", "mean response in slices of the driver"], 2),
+        (["x" * 60] * 3, 3),
+    ],
+)
+def test_every_row_of_a_legend_has_its_room(names, rows):
+    chart = {"data": [{"name": name} for name in names], "layout": {"showlegend": True}}
+    bare = {"data": chart["data"], "layout": {}}
+    high, low = (as_picture(each, "lag scatter", "a", "b", "c") for each in (chart, bare))
+    room = high["layout"]["margin"]["t"] - low["layout"]["margin"]["t"]
+    assert room == 7 + 19 * rows
+    assert high["layout"]["height"] == low["layout"]["height"]
